@@ -1,0 +1,139 @@
+"""The circuit as understood: flat elements with SI values between named nodes, and what is asked of them.
+
+Produced by `simcore.design.elaborate` from a description and values of lets. Everything downstream reads only this.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Any
+
+from grammar.description import Expression, Span
+from grammar.quantities import Quantity
+
+
+@dataclass(frozen=True)
+class Port:
+    """A pair of terminals: current counts positive from a through the element to b. name is "" for a two-terminal
+    element, w1, w2 ... for a transformer's windings, L1, L2, L3 for a set's phases (b is then the star point)."""
+
+    name: str
+    a: str
+    b: str
+
+
+@dataclass(frozen=True)
+class Element:
+    """One element.
+
+    given: key -> value as the kind's declaration asks (data sheet merged in, defaults NOT filled in):
+           scalar: float in SI; point: (value, at); ratio and list: tuple of floats; series: tuple of (key, value);
+           curve: tuple of (value, at); harmonics: tuple of (order, share, angle in rad); amplitude: (tuple of values, measure, of);
+           text and word: str; expression: a resolved Expression whose names are full names of nodes and elements
+    """
+
+    name: str
+    kind: str
+    ports: tuple[Port, ...]
+    given: dict[str, Any]
+    label: str | None = None
+    span: Span | None = field(default=None, compare=False, repr=False)
+    key_spans: dict[str, Span] = field(default_factory=dict, compare=False, repr=False)
+
+
+@dataclass(frozen=True)
+class Observed:
+    """A named signal; names in the expression are full names."""
+
+    name: str
+    value: Expression
+    unit: str
+    label: str | None = None
+
+
+@dataclass(frozen=True)
+class Change:
+    """An action on the circuit: verb open, close, short (of an element or winding, `T1.w3`) or set (of a let)."""
+
+    verb: str
+    target: str
+    value: Quantity | str | None = None
+    span: Span | None = field(default=None, compare=False, repr=False)
+
+
+@dataclass(frozen=True)
+class PlannedStudy:
+    """A study with its values worked out, SI units. angle in rad, None where none is given; worst holds the figure of
+    `angle = worst for`; last in periods; changes hold from the start, events from their time in s, sorted."""
+
+    name: str
+    kind: str
+    duration: float | None = None
+    period: float | None = None
+    angle: float | None = None
+    worst: Expression | None = None
+    after: str | None = None
+    last: float | None = None
+    accuracy: float = 1e-3
+    record_every: float | None = None
+    changes: tuple[Change, ...] = ()
+    events: tuple[tuple[float, Change], ...] = ()
+    label: str | None = None
+    span: Span | None = field(default=None, compare=False, repr=False)
+
+
+@dataclass(frozen=True)
+class Requirement:
+    """One requirement on one study (repeats, `each study` and `each KIND` spread out).
+
+    relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at other
+    studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for reports
+    """
+
+    study: str
+    relation: str
+    figure: Expression | None
+    bound: Expression | None
+    upper: Expression | None
+    wording: str
+    label: str | None = None
+    elements: tuple[str, ...] = ()
+    margin: float = 0.0
+    table: str | None = None
+    span: Span | None = field(default=None, compare=False, repr=False)
+
+
+@dataclass(frozen=True)
+class LetValue:
+    """A let's value as used, with its tolerance in the value's own SI unit (None where it has none)."""
+
+    name: str
+    value: Quantity | str
+    low: float | None = None
+    high: float | None = None
+    distribution: str = "uniform"
+    label: str | None = None
+
+
+@dataclass(frozen=True)
+class Circuit:
+    """A flat circuit. Elements, observes, studies and requirements in the order written."""
+
+    name: str
+    purpose: str
+    references: tuple[str, ...]
+    ambient: float
+    elements: dict[str, Element]
+    lets: dict[str, LetValue]
+    observes: dict[str, Observed]
+    studies: dict[str, PlannedStudy]
+    requirements: tuple[Requirement, ...]
+
+    def nodes(self) -> list[str]:
+        """Node names in order of first mention."""
+        found: dict[str, None] = {}
+        for element in self.elements.values():
+            for port in element.ports:
+                found[port.a] = None
+                found[port.b] = None
+        return list(found)
