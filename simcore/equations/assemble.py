@@ -1,0 +1,161 @@
+"""One backward-Euler step of a circuit as a graph of scalars: companion conductances, elimination, new states.
+
+Modified nodal analysis with companion models. Inputs of the graph: p0, p1 ... parameters; h the step; t the time at its end;
+y0, y1 ... the states before it; v0, v1 ... the nonlinear branches' voltages at the last Newton iterate.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Hashable, Sequence
+from dataclasses import dataclass, field
+
+from simcore.components.frame import Branch, CurrentBranch, Frame, NonlinearBranch, SeriesBranch
+from simcore.equations.eliminate import Elimination, Guard
+from simcore.equations.reduce import Form, Reduction, forces_voltage
+from simcore.equations.values import Level, Value, derivative
+
+
+@dataclass(frozen=True)
+class State:
+    """What a branch carries from step to step: its "current" or its "voltage"."""
+
+    branch: int
+    quantity: str
+    initial: Value
+    new: Value
+
+
+@dataclass(frozen=True)
+class Junction:
+    """A nonlinear branch's Newton iterate: the voltage put in, and the one that the linearised circuit gives back."""
+
+    branch: int
+    variable: Value
+    new: Value
+    scale: Value
+    critical: Value
+
+
+@dataclass(frozen=True)
+class Column:
+    """What a run records: a free unknown or the current of a branch."""
+
+    unknown: Hashable | None
+    branch: int | None
+    value: Value
+
+
+@dataclass
+class System:
+    """A circuit's equations, ready to be emitted or evaluated."""
+
+    frame: Frame
+    reduction: Reduction
+    states: list[State] = field(default_factory=list)
+    junctions: list[Junction] = field(default_factory=list)
+    columns: list[Column] = field(default_factory=list)
+    guards: list[Guard] = field(default_factory=list)
+
+
+@dataclass(frozen=True)
+class _Companion:
+    """i = conductance * v + offset, v without the known part of its form."""
+
+    form: Form
+    conductance: Value
+    offset: Value
+
+
+def assemble(frame: Frame, references: Sequence[Hashable]) -> System:
+    """The equations of one step. Raises reduce.ContradictoryLoop where ideal voltages close a loop."""
+    return _Assembly(frame, references).system
+
+
+class _Assembly:
+    def __init__(self, frame: Frame, references: Sequence[Hashable]):
+        self.graph = frame.graph
+        self.step = self.graph.input("h", Level.STEP, positive=True)
+        self.rate = 1.0 / self.step
+        reduction = Reduction(self.graph, frame.branches, references)
+        self.system = System(frame, reduction)
+        self._histories: dict[tuple[int, str], Value] = {}
+        companions = [self._companion(index, branch) for index, branch in enumerate(frame.branches)]
+        elimination = Elimination(self.graph, list(reduction.free))
+        for companion in companions:
+            if companion is not None:
+                elimination.stamp(companion.form.weights, companion.conductance, companion.offset)
+        solution = elimination.solve()
+        self.system.guards = elimination.guards
+        self.system.columns = [Column(unknown, None, solution[unknown]) for unknown in reduction.free]
+        for index, branch in enumerate(frame.branches):
+            companion = companions[index]
+            if companion is not None and not isinstance(branch, CurrentBranch):
+                self._results(index, branch, companion, solution)
+
+    def _companion(self, index: int, branch: Branch) -> _Companion | None:
+        if forces_voltage(branch):
+            return None
+        form = self.system.reduction.form(branch.weights)
+        if isinstance(branch, CurrentBranch):
+            return _Companion(form, self.graph.zero, branch.current)
+        if isinstance(branch, NonlinearBranch):
+            slope = derivative(branch.current, branch.variable)
+            return _Companion(form, slope, branch.current - slope * branch.variable + slope * form.known)
+        return self._series(index, branch, form)
+
+    def _series(self, index: int, branch: SeriesBranch, form: Form) -> _Companion:
+        impedance, behind = branch.resistance, branch.source - form.known
+        if branch.inductance.constant != 0.0:
+            reactance = branch.inductance * self.rate
+            impedance = impedance + reactance
+            behind = behind - reactance * self._history(index, "current")
+        if branch.capacitance is not None:
+            behind = behind + self._history(index, "voltage")
+            conductance = self._with_capacitance(impedance, branch.capacitance)
+        else:
+            conductance = 1.0 / impedance
+        return _Companion(form, conductance, -(conductance * behind))
+
+    def _with_capacitance(self, impedance: Value, capacitance: Value) -> Value:
+        """The conductance of an impedance in series with h / C, written so that no part of it may vanish."""
+        if impedance.constant == 0.0:
+            return capacitance * self.rate
+        return capacitance / (self.step + impedance * capacitance)
+
+    def _history(self, branch: int, quantity: str) -> Value:
+        key = (branch, quantity)
+        if key not in self._histories:
+            self._histories[key] = self.graph.input(f"y{len(self._histories)}", Level.TIME)
+        return self._histories[key]
+
+    def _results(self, index: int, branch: Branch, companion: _Companion, solution: dict[Hashable, Value]) -> None:
+        terms = [weight * solution[unknown] for unknown, weight in companion.form.weights.items()]
+        voltage = self.graph.total(terms)
+        current = companion.conductance * voltage + companion.offset
+        if isinstance(branch, NonlinearBranch):
+            new = voltage + companion.form.known
+            self.system.junctions.append(Junction(index, branch.variable, new, branch.scale, branch.critical))
+        elif isinstance(branch, SeriesBranch):
+            self._states(index, branch, voltage + companion.form.known, current)
+        if not is_resistor(branch):
+            self.system.columns.append(Column(None, index, current))
+
+    def _states(self, index: int, branch: SeriesBranch, voltage: Value, current: Value) -> None:
+        if (index, "current") in self._histories:
+            self.system.states.append(State(index, "current", branch.initial_current, current))
+        if branch.capacitance is not None:
+            alone = branch.resistance.constant == 0.0 and branch.inductance.constant == 0.0
+            charged = self._history(index, "voltage") + self.step / branch.capacitance * current
+            new = voltage - branch.source if alone else charged
+            self.system.states.append(State(index, "voltage", branch.initial_voltage, new))
+
+
+def is_resistor(branch: Branch) -> bool:
+    """Whether a branch's current is its voltage over a resistance, so that it need not be recorded."""
+    return (
+        isinstance(branch, SeriesBranch)
+        and branch.resistance.constant != 0.0
+        and branch.inductance.constant == 0.0
+        and branch.capacitance is None
+        and branch.source.constant == 0.0
+    )

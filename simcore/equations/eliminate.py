@@ -1,0 +1,132 @@
+"""Sparse symbolic elimination that does not subtract where physics gives positive conductances.
+
+A row keeps its conductances to other unknowns and its conductance to the reference instead of the diagonal, which is their sum.
+Eliminating an unknown then only adds products of positive numbers: no pivoting, no growth, no cancellation (the star-mesh
+transformation; Grassmann, Taksar and Heyman, Operations Research 33, 1985). Rows touched by windings or other weights keep an
+explicit diagonal and are guarded: the run checks that their pivot did not shrink to rounding.
+Order: unknowns whose row changes seldom first, then fewest neighbours (Markowitz, Management Science 3, 1957).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Hashable
+from dataclasses import dataclass, field
+
+from simcore.equations.values import Graph, Level, Value
+
+Terms = dict[Hashable, list[Value]]
+
+
+@dataclass
+class _Row:
+    mutual: Terms = field(default_factory=dict)
+    ground: list[Value] = field(default_factory=list)
+    diagonal: list[Value] = field(default_factory=list)
+    right: list[Value] = field(default_factory=list)
+    sums: bool = True
+
+
+@dataclass
+class _Step:
+    unknown: Hashable
+    factors: dict[Hashable, Value]
+    right: Value
+
+
+@dataclass(frozen=True)
+class Guard:
+    """A pivot and the sum it started from; their ratio tells how much cancelled."""
+
+    pivot: Value
+    start: Value
+
+
+class Elimination:
+    """Conductance stamps in, unknowns as graph values out."""
+
+    def __init__(self, graph: Graph, unknowns: list[Hashable]):
+        self._graph = graph
+        self._rows: dict[Hashable, _Row] = {unknown: _Row() for unknown in unknowns}
+        self.guards: list[Guard] = []
+
+    def stamp(self, weights: dict[Hashable, Value], conductance: Value, injected: Value) -> None:
+        """Add i = conductance * (sum of weights * unknowns) + injected, flowing out of the unknowns by their weights."""
+        pairs = list(weights.items())
+        whole = self._graph.total([weight for _, weight in pairs])
+        plain = conductance.positive and _is_plain(pairs)
+        for unknown, weight in pairs:
+            row = self._rows[unknown]
+            row.right.append(-(weight * injected))
+            row.diagonal.append(conductance * weight * weight)
+            row.ground.append(conductance * weight * whole)
+            row.sums = row.sums and plain
+            for other, other_weight in pairs:
+                if other is not unknown:
+                    row.mutual.setdefault(other, []).append(-(conductance * weight * other_weight))
+
+    def solve(self) -> dict[Hashable, Value]:
+        """Eliminate all unknowns and give each as a value; the stamps are used up."""
+        steps = []
+        remaining = dict.fromkeys(self._rows)
+        ranks = {unknown: self._rank(unknown) for unknown in remaining}
+        while remaining:
+            pivot = min(remaining, key=lambda unknown: ranks[unknown])
+            del remaining[pivot]
+            neighbours = list(self._rows[pivot].mutual)
+            steps.append(self._eliminate(pivot))
+            for unknown in neighbours:
+                ranks[unknown] = self._rank(unknown)
+        solution: dict[Hashable, Value] = {}
+        for step in reversed(steps):
+            terms = [factor * solution[other] for other, factor in step.factors.items()]
+            solution[step.unknown] = self._graph.total([step.right, *terms])
+        return solution
+
+    def _rank(self, unknown: Hashable) -> tuple[Level, int]:
+        row = self._rows[unknown]
+        entries = [*row.diagonal, *row.ground, *(term for terms in row.mutual.values() for term in terms)]
+        return (max((entry.level for entry in entries), default=Level.DESIGN), len(row.mutual))
+
+    def _eliminate(self, pivot: Hashable) -> _Step:
+        total = self._graph.total
+        row = self._rows.pop(pivot)
+        mutual = {other: total(terms) for other, terms in row.mutual.items()}
+        ground = total(row.ground)
+        diagonal = total([ground, *mutual.values()]) if row.sums else total(row.diagonal)
+        if not row.sums:
+            self.guards.append(Guard(diagonal, total([term for term in row.diagonal if term.operation != "neg"])))
+        right = total(row.right)
+        factors = {other: conductance / diagonal for other, conductance in mutual.items()}
+        for other, factor in factors.items():
+            target = self._rows[other]
+            del target.mutual[pivot]
+            target.right.append(factor * right)
+            if target.sums and not row.sums:
+                self._use_diagonal(target, mutual[other])
+            if target.sums:
+                target.ground.append(factor * ground)
+            else:
+                target.diagonal.append(-(factor * mutual[other]))
+        self._fill(factors, mutual)
+        return _Step(pivot, factors, right / diagonal)
+
+    def _fill(self, factors: dict[Hashable, Value], mutual: dict[Hashable, Value]) -> None:
+        others = list(mutual)
+        for position, first in enumerate(others):
+            for second in others[position + 1 :]:
+                value = factors[first] * mutual[second]
+                self._rows[first].mutual.setdefault(second, []).append(value)
+                self._rows[second].mutual.setdefault(first, []).append(value)
+
+    def _use_diagonal(self, row: _Row, lost: Value) -> None:
+        """From here on the row's diagonal stands by itself: it starts from its sum, the pivot's share included."""
+        row.sums = False
+        row.diagonal = [*row.ground, *(term for terms in row.mutual.values() for term in terms), lost]
+
+
+def _is_plain(pairs: list[tuple[Hashable, Value]]) -> bool:
+    """A conductance between two unknowns, or from one to the reference."""
+    constants = [weight.constant for _, weight in pairs]
+    if len(constants) == 1:
+        return constants[0] in (1.0, -1.0)
+    return sorted(constants, key=lambda number: (number is None, number or 0.0)) == [-1.0, 1.0]

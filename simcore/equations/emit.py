@@ -1,0 +1,86 @@
+"""Graph values as lines of straight-line Python over local floats, grouped by how often they must be computed.
+
+Emission is exact and repeatable: numbers by repr, values in the order of their making, names that are our own indices. No text of a
+description reaches the source.
+"""
+
+from __future__ import annotations
+
+from simcore.equations.values import FUNCTIONS, Level, Value, ancestors
+
+_INLINE_DEPTH = 6
+
+
+class Emitter:
+    """Assigns values to stages and writes each stage's lines; a value used once, by its own stage, is written in place."""
+
+    def __init__(self, stages: dict[str, list[Value]]):
+        """stages: name -> targets that must be known after it. The names "variant", "step" and "time" take the values of
+        those levels; a value that changes at every iteration belongs to the first stage that needs it."""
+        self._stage: dict[int, str] = {}
+        self._depth: dict[int, int] = {}
+        self._text: dict[int, str] = {}
+        self._kept = {target.index for targets in stages.values() for target in targets}
+        self.lines: dict[str, list[str]] = {name: [] for name in stages}
+        levels = {Level.VARIANT: "variant", Level.STEP: "step", Level.TIME: "time"}
+        for name, targets in stages.items():
+            for value in ancestors(targets):
+                if value.operation not in ("constant", "input") and value.index not in self._stage:
+                    self._stage[value.index] = levels.get(value.level, name)
+        self._write(stages)
+
+    def _write(self, stages: dict[str, list[Value]]) -> None:
+        values = ancestors([target for targets in stages.values() for target in targets])
+        users: dict[int, list[Value]] = {}
+        for value in values:
+            if value.operation not in ("constant", "input"):
+                for argument in value.arguments:
+                    users.setdefault(argument.index, []).append(value)
+        for value in values:
+            if value.operation in ("constant", "input"):
+                self._text[value.index] = _leaf(value)
+                self._depth[value.index] = 0
+                continue
+            self._emit(value, users.get(value.index, []))
+
+    def _emit(self, value: Value, users: list[Value]) -> None:
+        expression, depth = self._expression(value)
+        stage = self._stage[value.index]
+        single = len(users) == 1 and self._stage.get(users[0].index) == stage
+        if single and value.index not in self._kept and depth < _INLINE_DEPTH:
+            self._text[value.index] = expression if value.operation in FUNCTIONS else f"({expression})"
+            self._depth[value.index] = depth
+            return
+        name = f"x{value.index}"
+        self.lines[stage].append(f"{name} = {expression}")
+        self._text[value.index] = name
+        self._depth[value.index] = 0
+
+    def _expression(self, value: Value) -> tuple[str, int]:
+        texts = [self._text[argument.index] for argument in value.arguments]
+        depth = 1 + max(self._depth[argument.index] for argument in value.arguments)
+        if value.operation in FUNCTIONS:
+            return f"{value.operation}({texts[0]})", depth
+        if value.operation == "neg":
+            return f"-{texts[0]}", depth
+        return f"{texts[0]} {value.operation} {texts[1]}", depth
+
+    def name(self, value: Value) -> str:
+        """How a target is called in the source."""
+        return self._text[value.index]
+
+
+def _leaf(value: Value) -> str:
+    if value.operation == "input":
+        return value.arguments[0]
+    number = value.arguments[0]
+    return f"({number!r})" if number < 0.0 else repr(number)
+
+
+def operation_counts(source_values: list[Value]) -> dict[str, int]:
+    """How many operations of each kind the targets need, for tests that hold the generator to a table."""
+    counts: dict[str, int] = {}
+    for value in ancestors(source_values):
+        if value.operation not in ("constant", "input"):
+            counts[value.operation] = counts.get(value.operation, 0) + 1
+    return counts

@@ -1,0 +1,275 @@
+"""The whole run of a circuit as the source of one function: time loop, extrapolation, Newton iteration, step control.
+
+Every solve is a backward-Euler step. A basic step of size H is taken once with H, twice with H/2 and three times with H/3, and the
+results are extrapolated (Deuflhard, SIAM Review 27, 1985; Hairer and Wanner, Solving Ordinary Differential Equations II, 1996, IV.9);
+with order 1 it is one backward-Euler step without error control, which gives the consistent start of a segment and, with a huge H,
+the operating point. Kept within floats, math functions, lists and tuples, so that it can be compiled as it stands.
+
+Interface of the emitted function `run(p, s, out, c)`:
+p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states, ends and peaks of the watched currents; read and
+written back. out: records of 1 + 2 * columns numbers: time at the end of a step, then each column's middle and end value.
+c: the controls, in the order of CONTROLS. Returns (status, numbers written, steps, rejected, solves, iterations, weak pivots).
+"""
+
+from __future__ import annotations
+
+from simcore.equations.assemble import System
+from simcore.equations.emit import Emitter
+from simcore.equations.values import Value
+
+CONTROLS = (
+    "t_end",
+    "largest",
+    "smallest",
+    "tolerance",
+    "order",
+    "limit",
+    "fade",
+    "record",
+    "room",
+    "floor_voltage",
+    "floor_current",
+    "watch_tolerance",
+)
+DONE, FULL, NO_CONVERGENCE = 0, 1, 2
+_WEAK_PIVOT = 1e-10
+
+
+class RunSource:
+    """Writes the source of a system's run. `source` is the text; `watched` the positions of the columns whose curvature
+    bounds the step, besides the states."""
+
+    def __init__(self, system: System):
+        self.system = system
+        junction_branches = {junction.branch for junction in system.junctions}
+        self.watched = [i for i, column in enumerate(system.columns) if column.branch in junction_branches]
+        self.emitter = Emitter(self._stages())
+        self._lines: list[str] = []
+        self._build()
+        self.source = "\n".join(self._lines) + "\n"
+
+    def _stages(self) -> dict[str, list[Value]]:
+        system = self.system
+        fixed = [value for j in system.junctions for value in (j.scale, j.critical)]
+        after = [state.new for state in system.states] + [column.value for column in system.columns]
+        after += [value for guard in system.guards for value in (guard.pivot, guard.start)]
+        return {
+            "variant": fixed,
+            "step": [],
+            "time": [],
+            "iteration": [junction.new for junction in system.junctions],
+            "after": after,
+        }
+
+    def _add(self, indent: int, *lines: str) -> None:
+        self._lines.extend("    " * indent + line for line in lines)
+
+    def _each(self, indent: int, count: int, *templates: str) -> None:
+        """Write the templates for each index; `#` stands for it."""
+        for index in range(count):
+            self._add(indent, *(template.replace("#", str(index)) for template in templates))
+
+    def _build(self) -> None:
+        states, junctions = len(self.system.states), len(self.system.junctions)
+        self._prologue(states, junctions)
+        self._add(1, "while True:")
+        self._choose_size()
+        self._extrapolation(states, junctions)
+        self._on_failure(junctions)
+        self._control(states)
+        self._accept(states, junctions)
+        self._epilogue(states, junctions)
+
+    def _prologue(self, states: int, junctions: int) -> None:
+        add = self._add
+        add(0, "def run(p, s, out, c):")
+        self._each(1, len(self.system.frame.numbers), "p# = p[#]")
+        add(1, *(f"{name} = c[{index}]" for index, name in enumerate(CONTROLS)))
+        add(1, *self.emitter.lines["variant"])
+        for index, junction in enumerate(self.system.junctions):
+            scale, critical = self.emitter.name(junction.scale), self.emitter.name(junction.critical)
+            add(1, f"w{index} = {scale}", f"k{index} = {critical}", f"b{index} = {scale} * 0.001")
+            add(1, f"o{index} = {scale} * -6.0", f"g{index} = {scale} * 7.0")
+        add(1, "now = s[0]", "wish = s[1]")
+        position = 2
+        for letter, count in self._saved(states, junctions):
+            add(1, *(f"{letter}{index} = s[{position + index}]" for index in range(count)))
+            position += count
+        columns = len(self.system.columns)
+        self._each(1, states, "e1_# = 0.0", "e2_# = 0.0", "e3_# = 0.0")
+        self._each(1, columns, "c1_# = 0.0", "c2_# = 0.0", "c3_# = 0.0", "m_# = 0.0")
+        self._each(1, len(self.watched), "d_# = 0.0")
+        self._each(1, junctions, "n# = u#", "a# = 0.0")
+        add(1, "f1, f2, f3, q1, q2, q3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0", "r0, r1, r2 = 0.0, 1.0, 0.0")
+        add(1, "if order == 2:", "    f1, f2, f3, q1, q2, q3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
+        add(1, "if order == 3:", "    f1, f2, f3, q1, q2, q3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
+        add(1, "if order > 1:", "    r0, r1, r2 = 1.0, -0.5, 0.5")
+        add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
+        add(1, "failures = 0")
+
+    def _saved(self, states: int, junctions: int) -> list[tuple[str, int]]:
+        """The groups of numbers in s after t and H: states, junction voltages, state peaks, watched ends and peaks."""
+        watched = len(self.watched)
+        return [("z", states), ("u", junctions), ("i", states), ("l", watched), ("j", watched)]
+
+    def _choose_size(self) -> None:
+        self._add(
+            2,
+            "left = t_end - now",
+            "if left <= 0.0:",
+            "    break",
+            f"if record > 0.0 and position + {1 + 2 * len(self.system.columns)} > room:",
+            f"    status = {FULL}",
+            "    break",
+            "size = min(wish, largest)",
+            "last = size >= left * 0.999999",
+            "if last:",
+            "    size = left",
+            "elif size > 0.5 * left:",
+            "    size = 0.5 * left",
+            "failed = False",
+            "division = 1",
+        )
+
+    def _extrapolation(self, states: int, junctions: int) -> None:
+        add = self._add
+        add(2, "while division <= order:")
+        add(3, "h = size / division", *self.emitter.lines["step"])
+        self._each(3, states, "y# = z#")
+        self._each(3, junctions, "n# = u#")
+        add(3, "part = 1", "while part <= division:")
+        add(4, "t = now + size if part == division else now + part * h")
+        add(4, *self.emitter.lines["time"])
+        self._newton(junctions)
+        add(4, *self.emitter.lines["after"])
+        for guard in self.system.guards:
+            pivot, start = self.emitter.name(guard.pivot), self.emitter.name(guard.start)
+            add(4, f"if not {pivot} > {_WEAK_PIVOT!r} * {start}:", "    weak += 1")
+        names = [self.emitter.name(state.new) for state in self.system.states]
+        if names:
+            add(4, f"{', '.join(f'y{i}' for i in range(states))} = {', '.join(names)}")
+        self._keep_inside()
+        add(4, "part += 1")
+        add(3, "if failed:", "    break")
+        for division in (1, 2, 3):
+            add(3, f"{'el' if division > 1 else ''}if division == {division}:")
+            self._each(4, states, f"e{division}_# = y#")
+            add(4, *(f"c{division}_{i} = {self.emitter.name(c.value)}" for i, c in enumerate(self.system.columns)))
+            if division == 1:
+                self._each(4, junctions, "a# = n# - u# if u# > g# and n# > g# else 0.0")
+            add(4, "pass")
+        add(3, "division += 1")
+
+    def _newton(self, junctions: int) -> None:
+        add = self._add
+        add(4, "solves += 1")
+        if not junctions:
+            add(4, *self.emitter.lines["iteration"])
+            return
+        add(4, "if division > 1:")
+        self._each(5, junctions, "n# += a# / division")
+        add(4, "count = 0", "while True:", "    count += 1")
+        self._each(5, junctions, "v# = n#")
+        add(5, *self.emitter.lines["iteration"], "good = True")
+        for index, junction in enumerate(self.system.junctions):
+            add(5, f"n{index} = {self.emitter.name(junction.new)}", f"d = n{index} - v{index}")
+            self._limit(index)
+        add(5, "if good or count >= limit:", "    break")
+        add(4, "iterations += count", "if not good:", "    failed = True", "    break")
+
+    def _limit(self, index: int) -> None:
+        """Convergence in units of the law's scale; an off branch is ignored; NaN passes neither test. A voltage that rises
+        past the critical one moves by the logarithm of the step (common practice, no source)."""
+        lines = (
+            "if not (-b# <= d <= b#) and not (n# < o# and v# < o#):",
+            "    good = False",
+            "    if n# > k# and d > 0.0:",
+            "        if v# > 0.0:",
+            "            n# = v# + w# * log(1.0 + d / w#)",
+            "        else:",
+            "            n# = w# * log(n# / w#)",
+        )
+        self._add(5, *(line.replace("#", str(index)) for line in lines))
+
+    def _keep_inside(self) -> None:
+        """Values inside the step: the middle from the halves, and the second third minus the first from the thirds."""
+        add = self._add
+        add(4, "if part == 1:", "    if division == 2:")
+        add(6, *(f"m_{i} = {self.emitter.name(c.value)}" for i, c in enumerate(self.system.columns)), "pass")
+        if not self.watched:
+            return
+        names = [self.emitter.name(self.system.columns[column].value) for column in self.watched]
+        add(5, "elif division == 3:")
+        add(6, *(f"d_{i} = {name}" for i, name in enumerate(names)))
+        add(4, "elif part == 2 and division == 3:")
+        add(5, *(f"d_{i} = {name} - d_{i}" for i, name in enumerate(names)))
+
+    def _on_failure(self, junctions: int) -> None:
+        add = self._add
+        add(2, "if failed:", "    rejected += 1", "    failures += 1", "    wish = size * 0.25")
+        self._each(3, junctions, "u# = min(u#, k#)")
+        add(3, "if failures > 20 or order == 1:", f"    status = {NO_CONVERGENCE}", "    break", "continue")
+
+    def _control(self, states: int) -> None:
+        add = self._add
+        add(2, "error = 0.0")
+        for index, state in enumerate(self.system.states):
+            floor = f"floor_{state.quantity}"
+            add(2, f"r = abs(q1 * e1_{index} + q2 * e2_{index} + q3 * e3_{index}) / max(i{index}, {floor})")
+            add(2, "if not r <= error:", "    error = r")
+        add(2, "error /= tolerance")
+        if self.watched:
+            add(2, "if order == 3:")
+        for index, column in enumerate(self.watched):
+            end = f"(f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column})"
+            bend = f"abs({end} - l{index} - 3.0 * d_{index} - 0.5 * (c3_{column} - c1_{column}))"
+            add(3, f"r = 0.216 * {bend} / (max(j{index}, floor_current) * watch_tolerance)")
+            add(3, "if not r <= error:", "    error = r")
+        add(2, "if order > 1:", "    if error < 1e-3:", "        factor = 2.0", "    else:")
+        add(4, "factor = 0.9 * error ** (-1.0 / order)")
+        add(3, "if not error <= 1.0 and size > smallest:", "    rejected += 1")
+        add(4, "wish = size * max(0.2, factor) if factor > 0.0 else size * 0.2", "continue")
+        add(3, "if not error < 1e30:", f"    status = {NO_CONVERGENCE}", "    break")
+        add(3, "wish = size if 0.9 <= factor <= 1.2 else size * min(2.0, max(0.2, factor))")
+
+    def _accept(self, states: int, junctions: int) -> None:
+        add = self._add
+        add(2, "failures = 0", "steps += 1", "now = t_end if last else now + size")
+        add(2, "weight = 1.0 - min(1.0, fade * size)")
+        self._each(
+            2,
+            states,
+            "z# = f1 * e1_# + f2 * e2_# + f3 * e3_#",
+            "i# = max(abs(z#), i# * weight)",
+        )
+        for index, column in enumerate(self.watched):
+            add(2, f"l{index} = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}")
+            add(2, f"j{index} = max(abs(l{index}), j{index} * weight)")
+        self._each(
+            2,
+            junctions,
+            "if n# < g# and n# > u#:",
+            "    r = (g# - n#) * size / (n# - u#) * 1.02",
+            "    if 0.05 * wish < r < wish:",
+            "        wish = r",
+            "u# = n#",
+        )
+        add(2, "if record > 0.0:", "    out[position] = now")
+        for index in range(len(self.system.columns)):
+            place = f"position + {1 + 2 * index}"
+            add(3, f"out[{place}] = r0 * m_{index} + r1 * c1_{index} + r2 * c2_{index}")
+            add(3, f"out[{place} + 1] = f1 * c1_{index} + f2 * c2_{index} + f3 * c3_{index}")
+        add(3, f"position += {1 + 2 * len(self.system.columns)}")
+
+    def _epilogue(self, states: int, junctions: int) -> None:
+        self._add(1, "s[0] = now", "s[1] = wish")
+        position = 2
+        for letter, count in self._saved(states, junctions):
+            self._add(1, *(f"s[{position + index}] = {letter}{index}" for index in range(count)))
+            position += count
+        self._add(1, "return status, position, steps, rejected, solves, iterations, weak")
+
+    def saved_count(self) -> int:
+        """Length of s."""
+        return 2 + sum(count for _, count in self._saved(len(self.system.states), len(self.system.junctions)))
+
