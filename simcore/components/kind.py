@@ -20,12 +20,14 @@ if TYPE_CHECKING:
 class Key:
     """One key of a kind.
 
-    form: scalar, point (a @ b), ratio (a : b : c), amplitude, list (plain values), series (key: value), curve (a @ b),
-          harmonics (order: share @ angle), text, word (one of `words`), expression (a signal)
+    form: scalar, timed (a scalar or a list over time), point (a @ b), ratio (a : b : c), amplitude, list (plain values),
+          series (key: value), curve (a @ b), harmonics (order: share @ angle), text, word (one of `words`), expression
+          (a signal)
     dimension: of the value; at: of what stands behind @ (point, curve) or of a series' key
     default: SI value where the key is left out; None means absent
     low, high: allowed range in SI units, ends included unless `open_low`
-    whole: the key may be a list over time (the loads)
+    whole: the value is a whole number; bare: a point's `@` may be left out, which then is None
+    alternatives: further dimensions that may be given; all such keys of an element agree, and Element.unit says which
     """
 
     name: str
@@ -40,6 +42,8 @@ class Key:
     words: tuple[str, ...] = ()
     required: bool = False
     rating: bool = False
+    whole: bool = False
+    bare: bool = False
     available: bool = True
     alternatives: tuple[Dimension, ...] = ()
 
@@ -52,6 +56,7 @@ class Kind:
     value_key: the key that the unnamed value stands for; sheet: whether a data sheet may (or must) stand there
     check: further rules over several keys; gets the given keys, returns (key at fault or None, what, cure) triples
     build: adds the component's equations to a frame; None while the kind is not available in this version
+    instants: from the given keys, the times of a study in s at which the component changes by itself
     """
 
     name: str
@@ -61,6 +66,7 @@ class Kind:
     value_key: str | None = None
     check: Callable[[dict[str, object]], list[tuple[str | None, str, str]]] | None = None
     build: Callable[[Frame, Part], None] | None = None
+    instants: Callable[[dict[str, object]], list[float]] | None = None
     key: dict[str, Key] = field(init=False, repr=False, compare=False)
 
     def __post_init__(self) -> None:

@@ -29,13 +29,16 @@ class Element:
     given: key -> value as the kind's declaration asks (data sheet merged in, defaults NOT filled in):
            scalar: float in SI; point: (value, at); ratio and list: tuple of floats; series: tuple of (key, value);
            curve: tuple of (value, at); harmonics: tuple of (order, share, angle in rad); amplitude: (tuple of values, measure, of);
-           text and word: str; expression: a resolved Expression whose names are full names of nodes and elements
+           text and word: str; expression: a resolved Expression whose names are full names of nodes and elements;
+           a diode's data_temperature is filled in, since its default is what was written beside its law
+    unit: "V" or "A" for a source, by what its values were given in
     """
 
     name: str
     kind: str
     ports: tuple[Port, ...]
     given: dict[str, Any]
+    unit: str = ""
     label: str | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
     key_spans: dict[str, Span] = field(default_factory=dict, compare=False, repr=False)

@@ -1,0 +1,111 @@
+"""A source: sine, harmonics, constant and points added up, in volts or in amperes, with its series impedance.
+
+Knows the keys and the rules between them, and nothing of text, graphs or solvers.
+"""
+
+from __future__ import annotations
+
+from itertools import pairwise
+
+from grammar.quantities import AMPERE, ANGLE, HENRY, HERTZ, NONE, OHM, SECOND, VOLT
+from simcore.components.kind import Key, Kind
+
+WAVEFORM_KEYS = (
+    Key(
+        "sine",
+        "amplitude of the sine, with `rms` or `peak` after the value",
+        VOLT,
+        form="amplitude",
+        low=0.0,
+        alternatives=(AMPERE,),
+    ),
+    Key("frequency", "frequency of the sine", HERTZ, low=0.0, open_low=True),
+    Key("phase", "phase of the sine at t = 0; 0 deg is its upward zero crossing", ANGLE, default=0.0),
+    Key(
+        "harmonics",
+        "harmonics as order: share of the sine @ angle, the angle in the harmonic's own degrees",
+        NONE,
+        form="harmonics",
+        at=ANGLE,
+        low=0.0,
+    ),
+    Key("constant", "constant part", VOLT, alternatives=(AMPERE,)),
+    Key(
+        "points",
+        "values over time, joined by straight lines; two at one time make a jump",
+        VOLT,
+        form="series",
+        at=SECOND,
+        alternatives=(AMPERE,),
+    ),
+    Key("period", "time after which the points repeat", SECOND, low=0.0, open_low=True),
+    Key("samples", "file with a recorded trace", NONE, form="text", available=False),
+    Key("column", "column of the recorded trace", NONE, form="text", available=False),
+    Key("scale", "factor on the recorded trace", NONE, default=1.0, available=False),
+)
+
+IMPEDANCE_KEYS = (
+    Key("series_resistance", "resistance in series", OHM, default=0.0, low=0.0),
+    Key("series_inductance", "inductance in series", HENRY, default=0.0, low=0.0),
+)
+
+
+def check_waveform(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    """The rules between the keys of a waveform, which a three-phase set shares."""
+    faults: list[tuple[str | None, str, str]] = []
+    if not any(key in given for key in ("sine", "constant", "points")):
+        faults.append((None, "it has no waveform", "Give `sine`, `constant` or `points`."))
+    if "sine" in given and "frequency" not in given:
+        faults.append(("sine", "its sine has no frequency", "Add `frequency = 50 Hz`, or the frequency you have."))
+    for key in ("frequency", "phase", "harmonics"):
+        if key in given and "sine" not in given:
+            faults.append((key, f"{key} is given without a sine", f"Add `sine`, or leave {key} out."))
+    if "period" in given and "points" not in given:
+        faults.append(("period", "a period is given without points", "It repeats `points`: add them or leave it out."))
+    return faults + _check_points(given) + _check_harmonics(given)
+
+
+def _check_points(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    points = given.get("points")
+    if not isinstance(points, tuple):
+        return []
+    times = [float(time) for time, _ in points]
+    if any(later < earlier for earlier, later in pairwise(times)):
+        return [("points", "the times of its points do not rise", "Write the points in the order of their times.")]
+    if any(first == third for first, third in zip(times, times[2:], strict=False)):
+        return [("points", "three of its points stand at one time", "Two at one time make a jump: leave one out.")]
+    period = given.get("period")
+    if isinstance(period, float) and (times[0] < 0.0 or times[-1] > period):
+        return [("points", "its points do not lie within one period", "Keep the times between 0 s and the period.")]
+    return []
+
+
+def _check_harmonics(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    harmonics = given.get("harmonics")
+    if not isinstance(harmonics, tuple):
+        return []
+    orders = [order for order, _, _ in harmonics]
+    if any(order < 2 or order != round(order) for order in orders):
+        cure = "Orders are whole numbers from 2 on: `[3: 2 %, 5: 1 % @ 170 deg]`."
+        return [("harmonics", "an order of a harmonic is no whole number above 1", cure)]
+    if len(dict.fromkeys(orders)) != len(orders):
+        return [("harmonics", "a harmonic is given twice", "Give each order once.")]
+    return []
+
+
+def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    faults = check_waveform(given)
+    sine = given.get("sine")
+    if isinstance(sine, tuple) and sine[2]:
+        cure = f"Write `rms` or `peak` alone; `{sine[2]}` is for a three_phase set."
+        faults.append(("sine", f"a single source has no {sine[2]} amplitude", cure))
+    return faults
+
+
+SOURCE = Kind(
+    "source",
+    "ideal source with a series impedance; what is given together adds",
+    "branch",
+    WAVEFORM_KEYS + IMPEDANCE_KEYS,
+    check=_check,
+)

@@ -1,0 +1,66 @@
+"""A three-phase set: three sources a third of a period apart between its phases and a star point.
+
+Knows the keys and the rules between them, and nothing of text, graphs or solvers.
+"""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from grammar.quantities import NONE, WATT
+from simcore.components.kind import Key, Kind
+from simcore.components.source import IMPEDANCE_KEYS, WAVEFORM_KEYS, check_waveform
+
+_IN_VOLTS = tuple(replace(key, alternatives=()) for key in WAVEFORM_KEYS)
+
+_SET_KEYS = (
+    Key(
+        "sequence",
+        "order in which the phases reach their peaks",
+        NONE,
+        form="word",
+        words=("positive", "negative"),
+        default="positive",
+    ),
+    Key("unbalance", "factor on each phase's amplitude", NONE, form="ratio", low=0.0),
+    Key(
+        "short_circuit_power",
+        "three-phase short-circuit power, from which the series impedance follows",
+        WATT,
+        low=0.0,
+        open_low=True,
+    ),
+    Key("reactance_ratio", "reactance over resistance of that impedance", NONE, low=0.0),
+)
+
+
+def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    faults = check_waveform(given)
+    sine = given.get("sine")
+    if isinstance(sine, tuple) and not sine[2]:
+        cure = "Write `line rms`, `phase rms`, `line peak` or `phase peak` after the value."
+        faults.append(("sine", "the amplitude does not say whether it is line or phase", cure))
+    if isinstance(sine, tuple) and sine[2] == "line" and len(sine[0]) != 1:
+        faults.append(("sine", "a line amplitude is one value for the set", "Give one value, and `unbalance`."))
+    if isinstance(sine, tuple) and len(sine[0]) not in (1, 3):
+        faults.append(("sine", "its sine has neither one value nor three", "Give one value, or one for each phase."))
+    for key, other in (("short_circuit_power", "reactance_ratio"), ("reactance_ratio", "short_circuit_power")):
+        if key in given and other not in given:
+            faults.append((key, f"{key} is given without {other}", f"Add `{other}`: the impedance follows from both."))
+    for key in ("series_resistance", "series_inductance"):
+        if key in given and "short_circuit_power" in given:
+            faults.append(
+                (key, f"{key} is given beside short_circuit_power", "Give the impedance once: leave one out.")
+            )
+    if "short_circuit_power" in given and "sine" not in given:
+        faults.append(("short_circuit_power", "short_circuit_power is given without a sine", "Add `sine`."))
+    return faults
+
+
+THREE_PHASE = Kind(
+    "three_phase",
+    "three-phase set, star connected; the star point is brought out where one is named",
+    "set",
+    _IN_VOLTS + IMPEDANCE_KEYS + _SET_KEYS,
+    check=_check,
+)
