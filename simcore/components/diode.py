@@ -5,8 +5,18 @@ Knows its keys and the rules between them, and nothing of text, graphs or solver
 
 from __future__ import annotations
 
+import math
+
 from grammar.quantities import AMPERE, COULOMB, FARAD, I2T, KELVIN, KELVIN_PER_WATT, NONE, OHM, SECOND, VOLT
+from simcore.components.frame import Frame, Part
 from simcore.components.kind import Key, Kind
+from simcore.equations.values import Value, exp, log
+
+BOLTZMANN_OVER_CHARGE = 1.380649e-23 / 1.602176634e-19
+"""k / q in V/K (SI, exact since 2019)."""
+
+LEAK = 1e-12
+"""Conductance in S across every junction, so that a node between blocked diodes stays defined."""
 
 _FORWARD = (
     Key(
@@ -105,6 +115,49 @@ def check_law(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
     return [(None, "it has no law", cure)]
 
 
+def saturation_current(frame: Frame, part: Part) -> Value:
+    """Saturation current at the temperature the diode runs at.
+
+    I_S(T) = I_S(T_0) (T/T_0)^(r/n) exp[(E_g/(n k)) (1/T_0 - 1/T)], from n_i^2 ~ T^3 exp(-E_g/kT).
+    Source: Sze, Ng, Physics of Semiconductor Devices, 2007 (from memory); the exponents are divided by the ideality factor.
+    """
+    hot, cold = part.temperature(), part.given("data_temperature")
+    current = part.value("saturation_current")
+    if hot == cold:
+        return current
+    ratio = frame.parameter(hot / cold, positive=True)
+    energy = frame.parameter(part.given("bandgap") / BOLTZMANN_OVER_CHARGE * (1.0 / cold - 1.0 / hot))
+    exponent = part.value("temperature_exponent") * log(ratio) + energy
+    return current * exp(exponent / part.value("ideality_factor"))
+
+
+def _build(frame: Frame, part: Part) -> None:
+    """i = I_S (exp(v/(n V_T)) - 1) at the junction, V_T = k T/q (Shockley, Bell System Technical Journal 28, 1949)."""
+    port = part.ports[0]
+    series, parallel = part.value("in_series"), part.value("in_parallel")
+    thermal = frame.parameter(BOLTZMANN_OVER_CHARGE * part.temperature(), positive=True)
+    scale = part.value("ideality_factor") * thermal * series
+    saturation = saturation_current(frame, part) * parallel
+    resistance = part.value("series_resistance") * series / parallel
+    junction = part.across(port)
+    if resistance.constant != 0.0:
+        inner = f"{part.name}.inner"
+        frame.series(part, {port.a: 1.0, inner: -1.0}, resistance=resistance)
+        junction = {inner: 1.0, port.b: -1.0}
+    frame.nonlinear(
+        part,
+        junction,
+        lambda voltage: saturation * (exp(voltage / scale) - 1.0) + LEAK * voltage,
+        scale=scale,
+        critical=scale * log(1.0 + scale / (math.sqrt(2.0) * saturation)),
+    )
+
+
 DIODE = Kind(
-    "diode", "junction diode, conducting from its first terminal to its second", "branch", DIODE_KEYS, check=check_law
+    "diode",
+    "junction diode, conducting from its first terminal to its second",
+    "branch",
+    DIODE_KEYS,
+    check=check_law,
+    build=_build,
 )

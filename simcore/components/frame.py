@@ -7,13 +7,14 @@ is a weighted sum of unknowns, which covers two nodes (+1, -1) as well as a wind
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Hashable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 from simcore.components.kind import Kind
 from simcore.design.circuit import Element, Port
-from simcore.equations.values import Graph, Level, Value
+from simcore.equations.values import Graph, Level, Value, sin
 
 Weights = tuple[tuple[Hashable, Value], ...]
 
@@ -82,9 +83,12 @@ class Waveform:
 class Frame:
     """Collects the branches of a circuit and the numbers they depend on."""
 
-    def __init__(self) -> None:
+    def __init__(self, moment: float = 0.0) -> None:
+        """moment: the time in the study, in s, from which the frame holds (a switch then stands as it does at that time)"""
+        self.moment = moment
         self.graph = Graph()
         self.time = self.graph.input("t", Level.TIME)
+        self.sines: list[tuple[float, float]] = []
         self.branches: list[Branch] = []
         self.numbers: list[float] = []
         self.waveforms: list[Waveform] = []
@@ -146,6 +150,11 @@ class Frame:
             NonlinearBranch(part.name, port, self._weights(weights), variable, law(variable), scale, critical)
         )
 
+    def sine(self, frequency: float, phase: float) -> Value:
+        """A sine of unit amplitude; frequency in Hz, phase at t = 0 in rad. The first one counts as the circuit's phase."""
+        self.sines.append((frequency, phase))
+        return sin(self.parameter(2.0 * math.pi * frequency) * self.time + self.parameter(phase))
+
     def waveform(self, points: Sequence[tuple[float, float]], period: float | None) -> Value:
         """The value over time of straight lines through points."""
         base = len(self.numbers)
@@ -195,9 +204,16 @@ class Part:
         value = self._element.given.get(key)
         return self._kind.key[key].default if value is None else value
 
-    def value(self, key: str) -> Value:
-        """A scalar key as a graph value; zero where it is neither given nor has a default."""
+    @property
+    def unit(self) -> str:
+        """"V" or "A": what a source is written in."""
+        return self._element.unit
+
+    def value(self, key: str, index: int | None = None) -> Value:
+        """A key as a graph value, or one of a ratio's; zero where it is neither given nor has a default."""
         number = self.given(key)
+        if index is not None and number is not None:
+            number = number[index]
         declared = self._kind.key[key]
         positive = declared.low is not None and declared.low >= 0.0
         return self._frame.parameter(0.0 if number is None else number, positive)
@@ -208,6 +224,11 @@ class Part:
             if key in self._kind.key and self._element.given.get(key) is not None:
                 return float(self._element.given[key])
         return self._ambient
+
+    @property
+    def moment(self) -> float:
+        """The time in the study, in s, from which the equations hold."""
+        return self._frame.moment
 
     def across(self, port: Port) -> dict[Hashable, float]:
         """The weights of a port's voltage, a minus b."""

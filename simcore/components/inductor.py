@@ -6,7 +6,20 @@ Knows its keys, and nothing of text, graphs or solvers.
 from __future__ import annotations
 
 from grammar.quantities import AMPERE, HENRY, OHM
+from simcore.components.frame import Frame, Part
 from simcore.components.kind import Key, Kind
+
+
+def _build(frame: Frame, part: Part) -> None:
+    frame.series(
+        part,
+        part.across(part.ports[0]),
+        resistance=part.value("series_resistance"),
+        inductance=part.value("inductance"),
+        initial_current=part.value("initial_current"),
+    )
+
+
 
 INDUCTOR = Kind(
     "inductor",
@@ -27,4 +40,5 @@ INDUCTOR = Kind(
         Key("rated_current", "rms current it stands", AMPERE, low=0.0, open_low=True, rating=True),
     ),
     value_key="inductance",
+    build=_build,
 )

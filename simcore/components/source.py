@@ -5,10 +5,13 @@ Knows the keys and the rules between them, and nothing of text, graphs or solver
 
 from __future__ import annotations
 
+import math
 from itertools import pairwise
 
 from grammar.quantities import AMPERE, ANGLE, HENRY, HERTZ, NONE, OHM, SECOND, VOLT
+from simcore.components.frame import Frame, Part
 from simcore.components.kind import Key, Kind
+from simcore.equations.values import Value
 
 WAVEFORM_KEYS = (
     Key(
@@ -93,6 +96,38 @@ def _check_harmonics(given: dict[str, object]) -> list[tuple[str | None, str, st
     return []
 
 
+def waveform(frame: Frame, part: Part, factor: float = 1.0, delay: float = 0.0, index: int = 0) -> Value:
+    """The source's value over time, in V or A.
+
+    factor: on the sine, its harmonics included; delay: in rad of the fundamental; index: which of several amplitudes
+    """
+    total = part.value("constant")
+    if part.given("sine") is not None:
+        values, measure, _ = part.given("sine")
+        peak = values[min(index, len(values) - 1)] * factor * (math.sqrt(2.0) if measure == "rms" else 1.0)
+        phase = part.given("phase") - delay
+        for order, share, angle in ((1.0, 1.0, 0.0), *(part.given("harmonics") or ())):
+            wave = frame.sine(order * part.given("frequency"), order * phase + angle)
+            total = total + frame.parameter(share * peak) * wave
+    if part.given("points") is not None:
+        total = total + frame.waveform(part.given("points"), part.given("period"))
+    return total
+
+
+def _build(frame: Frame, part: Part) -> None:
+    weights = part.across(part.ports[0])
+    if part.unit == "A":
+        frame.current(part, weights, waveform(frame, part))
+        return
+    frame.series(
+        part,
+        weights,
+        resistance=part.value("series_resistance"),
+        inductance=part.value("series_inductance"),
+        source=waveform(frame, part),
+    )
+
+
 def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
     faults = check_waveform(given)
     sine = given.get("sine")
@@ -108,4 +143,5 @@ SOURCE = Kind(
     "branch",
     WAVEFORM_KEYS + IMPEDANCE_KEYS,
     check=_check,
+    build=_build,
 )

@@ -5,11 +5,13 @@ Knows the keys and the rules between them, and nothing of text, graphs or solver
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 
 from grammar.quantities import NONE, WATT
+from simcore.components.frame import Frame, Part
 from simcore.components.kind import Key, Kind
-from simcore.components.source import IMPEDANCE_KEYS, WAVEFORM_KEYS, check_waveform
+from simcore.components.source import IMPEDANCE_KEYS, WAVEFORM_KEYS, check_waveform, waveform
 
 _IN_VOLTS = tuple(replace(key, alternatives=()) for key in WAVEFORM_KEYS)
 
@@ -57,10 +59,41 @@ def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
     return faults
 
 
+def _impedance(part: Part) -> tuple[float, float]:
+    """Resistance and inductance of a phase: as given, or from Z = U^2 / S and X / R (IEC 60909-0, from memory)."""
+    power = part.given("short_circuit_power")
+    if power is None:
+        return part.given("series_resistance"), part.given("series_inductance")
+    values, measure, of = part.given("sine")
+    line = values[0] * (1.0 if measure == "rms" else math.sqrt(0.5)) * (1.0 if of == "line" else math.sqrt(3.0))
+    impedance, ratio = line * line / power, part.given("reactance_ratio")
+    resistance = impedance / math.hypot(1.0, ratio)
+    return resistance, ratio * resistance / (2.0 * math.pi * part.given("frequency"))
+
+
+def _build(frame: Frame, part: Part) -> None:
+    """The second phase lags the first by a third of a period, in a negative sequence it leads."""
+    resistance, inductance = (frame.parameter(number, positive=True) for number in _impedance(part))
+    third = 2.0 * math.pi / 3.0 * (1.0 if part.given("sequence") == "positive" else -1.0)
+    unbalance = part.given("unbalance") or (1.0, 1.0, 1.0)
+    sine = part.given("sine")
+    factor = math.sqrt(1.0 / 3.0) if sine is not None and sine[2] == "line" else 1.0
+    for index, port in enumerate(part.ports):
+        frame.series(
+            part,
+            part.across(port),
+            port=port.name,
+            resistance=resistance,
+            inductance=inductance,
+            source=waveform(frame, part, factor * unbalance[index], index * third, index),
+        )
+
+
 THREE_PHASE = Kind(
     "three_phase",
     "three-phase set, star connected; the star point is brought out where one is named",
     "set",
     _IN_VOLTS + IMPEDANCE_KEYS + _SET_KEYS,
     check=_check,
+    build=_build,
 )

@@ -6,6 +6,7 @@ Knows its keys and the rules between them, and nothing of text, graphs or solver
 from __future__ import annotations
 
 from grammar.quantities import AMPERE, HENRY, NONE, OHM, VOLT, WATT
+from simcore.components.frame import Frame, Part
 from simcore.components.kind import Key, Kind
 
 
@@ -13,6 +14,23 @@ def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
     if "turns" in given:
         return []
     return [(None, "its turns are not given", "Add `turns = 230 : 12`, one number a winding; only ratios count.")]
+
+
+def _build(frame: Frame, part: Part) -> None:
+    """All windings share the core's volts per turn of the first winding; each has its own impedance in series."""
+    turns = part.given("turns")
+    core = (part.name, "core")
+    for index, port in enumerate(part.ports):
+        ratio = 1.0 if index == 0 else frame.parameter(turns[index] / turns[0], positive=True)
+        frame.series(
+            part,
+            {**part.across(port), core: -ratio},
+            port=port.name,
+            resistance=part.value("resistance", index),
+            inductance=part.value("leakage", index),
+        )
+    if part.given("magnetising") is not None:
+        frame.series(part, {core: 1.0}, port="core", inductance=part.value("magnetising"))
 
 
 TRANSFORMER = Kind(
@@ -53,4 +71,5 @@ TRANSFORMER = Kind(
         Key("copper_loss", "test sheet: loss in the windings at rated power", WATT, low=0.0, available=False),
     ),
     check=_check,
+    build=_build,
 )

@@ -127,6 +127,7 @@ class RunSource:
             "    size = left",
             "elif size > 0.5 * left:",
             "    size = 0.5 * left",
+            "stop = t_end if last else now + size",
             "failed = False",
             "division = 1",
         )
@@ -138,7 +139,7 @@ class RunSource:
         self._each(3, states, "y# = z#")
         self._each(3, junctions, "n# = u#")
         add(3, "part = 1", "while part <= division:")
-        add(4, "t = now + size if part == division else now + part * h")
+        add(4, "t = stop if part == division else now + part * h")
         add(4, *self.emitter.lines["time"])
         self._newton(junctions)
         add(4, *self.emitter.lines["after"])
@@ -234,7 +235,7 @@ class RunSource:
 
     def _accept(self, states: int, junctions: int) -> None:
         add = self._add
-        add(2, "failures = 0", "steps += 1", "now = t_end if last else now + size")
+        add(2, "failures = 0", "steps += 1", "now = stop")
         add(2, "weight = 1.0 - min(1.0, fade * size)")
         self._each(
             2,

@@ -1,0 +1,62 @@
+"""What solving a study gives: traces as quadratic pieces, the span to judge, and how it was reached."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from simcore.components import KINDS
+from simcore.components.frame import Part
+from simcore.design.circuit import Circuit, PlannedStudy
+from simcore.solve.stretch import Stretch
+
+
+@dataclass
+class Solution:
+    """The solved study of a circuit.
+
+    times: breakpoints in s of the study's own clock, shape (n + 1,)
+    period: of the sources in s, None where there is none; window: (start, end) in s of what is judged
+    first_event: time in s of the study's first event, None where it has none
+    notes: what a reader must know of how it was solved; statistics: steps, solves, iterations, rejected, periods
+    """
+
+    circuit: Circuit
+    study: PlannedStudy
+    times: np.ndarray
+    stretches: list[Stretch]
+    period: float | None
+    window: tuple[float, float]
+    first_event: float | None = None
+    notes: list[str] = field(default_factory=list)
+    statistics: dict[str, float] = field(default_factory=dict)
+
+    def voltage(self, a: str, b: str) -> np.ndarray:
+        """u of node a against node b in V, shape (n, 3): at start, middle and end of each step."""
+        return np.concatenate([stretch.node(a) - stretch.node(b) for stretch in self.stretches])
+
+    def current(self, element: str, port: str = "") -> np.ndarray:
+        """The current into an element's port at its first terminal, in A, shape (n, 3); zero while it is taken out."""
+        first = next(p.a for p in self.circuit.elements[element].ports if p.name == port)
+        return np.concatenate([self._port_current(stretch, element, port, first) for stretch in self.stretches])
+
+    @staticmethod
+    def _port_current(stretch: Stretch, element: str, port: str, first: str) -> np.ndarray:
+        total = np.zeros(stretch.shape)
+        for index, branch in enumerate(stretch.system.frame.branches):
+            if branch.element == element and branch.port == port:
+                weight = dict(branch.weights).get(first)
+                if weight is not None:
+                    total = total + weight.constant * stretch.current(index)
+        return total
+
+    def temperature(self, element: str) -> float:
+        """What an element runs at, in K."""
+        found = self.circuit.elements[element]
+        return Part(found, KINDS[found.kind], self.stretches[-1].system.frame, self.circuit.ambient).temperature()
+
+    @property
+    def kirchhoff(self) -> float:
+        """The worst relative sum of currents at any node and time."""
+        return max(stretch.kirchhoff() for stretch in self.stretches)

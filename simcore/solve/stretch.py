@@ -1,0 +1,121 @@
+"""A recorded stretch of a solution: one form of the equations, its numbers, and the values at start, middle and end of each step.
+
+Gives the voltage of any weighted sum of unknowns and the current of any branch; what was not recorded follows linearly or by
+Kirchhoff's current law. Knows no component kind.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Hashable, Iterable
+from functools import cached_property
+
+import numpy as np
+
+from simcore.components.frame import CurrentBranch, Weights
+from simcore.equations.assemble import System, is_resistor
+from simcore.equations.plain import evaluate
+from simcore.equations.reduce import forces_voltage
+from simcore.equations.values import Value
+
+
+class Stretch:
+    """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A."""
+
+    def __init__(self, system: System, numbers: list[float], times: np.ndarray, values: np.ndarray):
+        self.system = system
+        self.times = times
+        self._values = values
+        self._inputs = {f"p{index}": number for index, number in enumerate(numbers)}
+        middle = 0.5 * (times[:-1] + times[1:])
+        self._inputs["t"] = np.stack([times[:-1], middle, times[1:]], axis=1)
+        self._columns = {
+            (column.unknown if column.branch is None else column.branch): index
+            for index, column in enumerate(system.columns)
+        }
+        self._currents: dict[int, np.ndarray] = {}
+
+    @property
+    def shape(self) -> tuple[int, int]:
+        return (len(self.times) - 1, 3)
+
+    def _evaluate(self, value: Value) -> np.ndarray:
+        return np.broadcast_to(np.asarray(evaluate([value], self._inputs)[0], dtype=float), self.shape)
+
+    def voltage(self, weights: Weights) -> np.ndarray:
+        """The weighted sum of unknowns, shape (n, 3), in V."""
+        form = self.system.reduction.form(weights)
+        result = self._evaluate(form.known).copy()
+        for unknown, weight in form.weights.items():
+            result += self._evaluate(weight) * self._values[:, :, self._columns[unknown]]
+        return result
+
+    def node(self, name: Hashable) -> np.ndarray:
+        """A node's voltage to its reference, shape (n, 3); zero where the node is not part of the circuit."""
+        if name not in self.system.reduction.unknowns:
+            return np.zeros(self.shape)
+        return self.voltage(((name, self.system.frame.graph.one),))
+
+    def current(self, branch: int) -> np.ndarray:
+        """A branch's current, shape (n, 3), in A."""
+        if branch not in self._currents:
+            self._currents[branch] = self._branch_current(branch)
+        return self._currents[branch]
+
+    def _branch_current(self, index: int) -> np.ndarray:
+        if index in self._columns:
+            return self._values[:, :, self._columns[index]]
+        branch = self.system.frame.branches[index]
+        if isinstance(branch, CurrentBranch):
+            return self._evaluate(branch.current)
+        if is_resistor(branch):
+            return self.voltage(branch.weights) / self._evaluate(branch.resistance)
+        return self._forced[self.system.reduction.constraints.index(index)]
+
+    @cached_property
+    def _free_sums(self) -> dict[Hashable, np.ndarray]:
+        """What all branches with an impedance take out of each unknown, in A."""
+        sums = {unknown: np.zeros(self.shape) for unknown in self.system.reduction.unknowns}
+        for index, branch in enumerate(self.system.frame.branches):
+            if not forces_voltage(branch):
+                self._add(sums, branch.weights, self.current(index))
+        return sums
+
+    def _add(self, sums: dict[Hashable, np.ndarray], weights: Iterable[tuple[Hashable, Value]], current: np.ndarray) -> None:
+        for unknown, weight in weights:
+            if unknown in sums:
+                sums[unknown] = sums[unknown] + self._evaluate(weight) * current
+
+    @cached_property
+    def _forced(self) -> list[np.ndarray]:
+        """Currents of the branches that force a voltage, from Kirchhoff's current law at all unknowns."""
+        reduction = self.system.reduction
+        if not reduction.constraints:
+            return []
+        weights = [dict(self.system.frame.branches[index].weights) for index in reduction.constraints]
+        touched = [unknown for unknown in reduction.unknowns if any(unknown in row for row in weights)]
+        zero = self.system.frame.graph.zero
+        matrix = np.array([[self._number(row.get(unknown, zero)) for row in weights] for unknown in touched])
+        right = -np.stack([self._free_sums[unknown].ravel() for unknown in touched])
+        currents = np.linalg.lstsq(matrix, right, rcond=None)[0]
+        return [row.reshape(self.shape) for row in currents]
+
+    def _number(self, value: Value) -> float:
+        return float(evaluate([value], self._inputs)[0])
+
+    def kirchhoff(self) -> float:
+        """The worst sum of currents at an unknown, relative to the largest current there over the stretch."""
+        sums = dict(self._free_sums)
+        largest = {unknown: 0.0 for unknown in sums}
+        for index, branch in enumerate(self.system.frame.branches):
+            peak = float(np.max(np.abs(self.current(index)), initial=0.0))
+            for unknown, weight in branch.weights:
+                if unknown in largest:
+                    largest[unknown] = max(largest[unknown], peak * abs(self._number(weight)))
+        for position, index in enumerate(self.system.reduction.constraints):
+            self._add(sums, self.system.frame.branches[index].weights, self._forced[position])
+        residuals = [
+            float(np.max(np.abs(total), initial=0.0)) / largest[unknown]
+            for unknown, total in sums.items()
+            if largest[unknown] > 0.0
+        ]
+        return max(residuals, default=0.0)
