@@ -28,13 +28,15 @@ REST_STEP = 1e15
 
 @dataclass(frozen=True)
 class Stepping:
-    """How a run is stepped: relative tolerance of a step, extrapolation order, largest and smallest step in s, the span in
-    s over which the scale of a state is remembered, and the sources' largest voltage as the scale of what has none yet."""
+    """How a run is stepped: relative tolerance of a step, extrapolation order, largest and smallest step in s, the step that
+    gives a consistent start, the span in s over which the scale of a state is remembered, and the sources' largest voltage
+    as the scale of what has none yet."""
 
     tolerance: float
     order: int
     largest: float
     smallest: float
+    begin: float
     memory: float
     voltage: float
 
@@ -59,11 +61,11 @@ class Counts:
 
 
 class Interrupted(Exception):
-    """A run that could not go on, at a time on the sources' clock."""
+    """A run that could not go on, at a time on the sources' clock; detail says what more is known."""
 
-    def __init__(self, reason: Reason, time: float):
+    def __init__(self, reason: Reason, time: float, detail: str = ""):
         super().__init__(reason.value[0])
-        self.reason, self.time = reason, time
+        self.reason, self.time, self.detail = reason, time, detail
 
 
 Memory = dict[tuple[Hashable, ...], float]
@@ -167,7 +169,7 @@ class Engine:
         while self.saved[0] < end:
             time = self.saved[0]
             corner = min(end, self._next_corner(time))
-            first = self.begin(time, stepping.smallest)
+            first = self.begin(time, stepping.begin)
             self.saved[1] = min(stepping.largest, 1e-3 * stepping.memory, max(corner - time, stepping.smallest))
             chunks = self._to_corner(corner, stepping, record)
             if record:

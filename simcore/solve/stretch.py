@@ -113,9 +113,9 @@ class Stretch:
                     largest[unknown] = max(largest[unknown], peak * abs(self._number(weight)))
         for position, index in enumerate(self.system.reduction.constraints):
             self._add(sums, self.system.frame.branches[index].weights, self._forced[position])
+        overall = max(largest.values(), default=0.0)
         residuals = [
-            float(np.max(np.abs(total), initial=0.0)) / largest[unknown]
+            float(np.max(np.abs(total), initial=0.0)) / max(largest[unknown], 1e-9 * overall, 1e-15)
             for unknown, total in sums.items()
-            if largest[unknown] > 0.0
         ]
         return max(residuals, default=0.0)

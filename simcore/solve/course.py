@@ -1,0 +1,193 @@
+"""A study's course: operating point, transient with its events, or settled state, as pieces between changes of the circuit.
+
+Knows studies, circuits and the engine; circuits under changes come from a function, so that text stays out of here.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from simcore.components.build import build_frame, instants
+from simcore.components.frame import Frame
+from simcore.design.circuit import Change, Circuit, PlannedStudy
+from simcore.equations.grounding import grounded
+from simcore.equations.kernel import KernelCache
+from simcore.solve.engine import Counts, Engine, Interrupted, Memory, Stepping
+from simcore.solve.failure import NoSolution, Reason
+from simcore.solve.settle import settle
+from simcore.solve.solution import Solution
+from simcore.solve.sources import clock_at_phase, common_period, largest_voltage
+from simcore.solve.stretch import Stretch
+
+Variant = Callable[[tuple[Change, ...]], Circuit]
+EXTRAPOLATION_ORDER = 3
+_STEPS_A_PERIOD = 16
+_BEGIN = 1e-7
+
+
+@dataclass(frozen=True)
+class Reached:
+    """Where a study left the circuit: states by element, the sources' clock and the elements' own time in s, and the changes."""
+
+    memory: Memory
+    clock: float
+    moment: float
+    changes: tuple[Change, ...]
+
+
+@dataclass
+class Course:
+    """Solves one study at one tolerance.
+
+    variant: the circuit under changes; before: where the study starts, None for rest; tolerance: relative error of a step
+    Raises NoSolution.
+    """
+
+    study: PlannedStudy
+    variant: Variant
+    before: Reached | None
+    tolerance: float
+    kernels: KernelCache = field(default_factory=KernelCache)
+    counts: Counts = field(default_factory=Counts)
+
+    def solve(self) -> tuple[Solution, Reached]:
+        """The solution, and where it left the circuit."""
+        solvers = {"operating_point": self._rest, "transient": self._transient, "settled": self._settled}
+        changes = (self.before.changes if self.before else ()) + self.study.changes
+        return solvers[self.study.kind](changes)
+
+    # --- the three kinds ---
+
+    def _rest(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
+        circuit = self.variant(changes)
+        frame = build_frame(circuit)
+        engine = self._engine(circuit, frame, {})
+        clock = clock_at_phase(frame, self.study.angle)
+        stretch = self._guard(lambda: engine.rest(clock), clock)
+        memory: Memory = {}
+        engine.remember(memory)
+        return self._solution(changes, [stretch], clock, None, 1.0), Reached(memory, clock, 0.0, changes)
+
+    def _settled(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
+        circuit = self.variant(changes)
+        frame = build_frame(circuit, math.inf)
+        period = self.study.period or common_period(frame)
+        if period is None:
+            raise NoSolution(self.study.name, Reason.NO_PERIOD)
+        memory = dict(self.before.memory) if self.before else {}
+        engine = self._engine(circuit, frame, memory)
+        clock = clock_at_phase(frame, self.study.angle)
+        stepping = self._stepping(frame, period)
+        note, periods = self._guard(lambda: settle(engine, clock, period, stepping), clock)
+        stretches = self._guard(lambda: engine.advance(clock + period, stepping, record=True), clock)
+        engine.remember(memory)
+        solution = self._solution(changes, stretches, clock, period, period)
+        solution.notes.append(note)
+        solution.statistics["periods"] = periods
+        return solution, Reached(memory, clock, math.inf, changes)
+
+    def _transient(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
+        assert self.study.duration is not None
+        memory = dict(self.before.memory) if self.before else {}
+        moment = self.before.moment if self.before else 0.0
+        events = list(self.study.events)
+        clock, period, now = 0.0, None, 0.0
+        stretches: list[Stretch] = []
+        while now < self.study.duration or not stretches:
+            while events and events[0][0] <= now:
+                changes = (*changes, events.pop(0)[1])
+            circuit = self.variant(changes)
+            frame = build_frame(circuit, moment + now)
+            if not stretches:
+                clock = self._first_clock(circuit, frame, memory)
+                period = self.study.period or common_period(frame)
+            end = self._next_change(circuit, moment, now, events)
+            stretches += self._piece(circuit, frame, memory, clock + now, clock + end)
+            now = end
+        solution = self._solution(changes, stretches, clock, period, self.study.duration)
+        return solution, Reached(memory, clock + now, moment + now, changes)
+
+    # --- pieces ---
+
+    def _piece(self, circuit: Circuit, frame: Frame, memory: Memory, start: float, end: float) -> list[Stretch]:
+        engine = self._engine(circuit, frame, memory)
+        engine.saved[0] = start
+        stepping = self._stepping(frame, self.study.duration)
+        recorded = self._guard(lambda: engine.advance(end, stepping, record=True), start)
+        self._forget_currents(memory)
+        engine.remember(memory)
+        return recorded
+
+    @staticmethod
+    def _forget_currents(memory: Memory) -> None:
+        """An inductor that is taken out carries nothing when it is put back; a capacitor keeps its charge."""
+        for key in [key for key in memory if key[2] == "current"]:
+            del memory[key]
+
+    def _next_change(self, circuit: Circuit, moment: float, now: float, events: list[tuple[float, Change]]) -> float:
+        times = [self.study.duration, *(time for time, _ in events)]
+        times += [instant - moment for instant in instants(circuit) if instant - moment > now]
+        return min(time for time in times if time is not None and time > now)
+
+    def _first_clock(self, circuit: Circuit, frame: Frame, memory: Memory) -> float:
+        """The sources' clock at t = 0; after another study with an angle, the state is carried on to that instant."""
+        if self.before is None:
+            return clock_at_phase(frame, self.study.angle)
+        clock = self.before.clock
+        if self.study.angle is None:
+            return clock
+        wanted = clock_at_phase(frame, self.study.angle)
+        period = common_period(frame)
+        if period is None:
+            return clock
+        ahead = (wanted - clock) % period
+        earlier = self.variant(self.before.changes)
+        self._piece(earlier, build_frame(earlier, self.before.moment), memory, clock, clock + ahead)
+        return clock + ahead
+
+    def _engine(self, circuit: Circuit, frame: Frame, memory: Memory) -> Engine:
+        kernel = self.kernels.kernel(frame, grounded(frame, circuit.references))
+        engine = Engine(kernel, list(frame.numbers), frame.waveforms, self.counts)
+        engine.recall(memory)
+        return engine
+
+    def _stepping(self, frame: Frame, span: float | None) -> Stepping:
+        period = self.study.period or common_period(frame) or span
+        assert period is not None and span is not None
+        scale = min(period, span) if frame.sines or frame.waveforms else span
+        largest = scale / _STEPS_A_PERIOD * min(1.0, (self.tolerance / 1e-3) ** 0.25)
+        return Stepping(
+            self.tolerance, EXTRAPOLATION_ORDER, largest, 1e-9 * scale, _BEGIN * scale, scale, largest_voltage(frame, scale)
+        )
+
+    def _guard(self, action: Callable, clock: float):
+        try:
+            return action()
+        except Interrupted as stop:
+            raise NoSolution(self.study.name, stop.reason, stop.time - clock, stop.detail) from stop
+
+    # --- the result ---
+
+    def _solution(
+        self, changes: tuple[Change, ...], stretches: list[Stretch], clock: float, period: float | None, span: float
+    ) -> Solution:
+        times = np.concatenate([stretches[0].times[:1], *(stretch.times[1:] for stretch in stretches)]) - clock
+        times[-1] = span
+        window = (0.0, span)
+        if self.study.last is not None and period is not None:
+            window = (max(0.0, span - self.study.last * period), span)
+        first_event = self.study.events[0][0] if self.study.events else None
+        counts = self.counts
+        statistics = {
+            "steps": counts.steps,
+            "rejected": counts.rejected,
+            "solves": counts.solves,
+            "iterations": counts.iterations,
+            "weak pivots": counts.weak,
+        }
+        whole = self.variant(())
+        return Solution(whole, self.study, times, stretches, period, window, first_event, [], statistics)

@@ -1,0 +1,53 @@
+"""What the sources of a frame say about time: their common period, the phase at t = 0, the scale of their voltages."""
+
+from __future__ import annotations
+
+import math
+from fractions import Fraction
+
+import numpy as np
+
+from simcore.components.frame import Frame, SeriesBranch
+from simcore.equations.plain import evaluate
+
+_MOST_PERIODS = 1000
+_SAMPLES = 64
+
+
+def common_period(frame: Frame) -> float | None:
+    """The shortest time in s after which all sources repeat, from the ratios of their frequencies; None where there is no
+    periodic source or no common period within 1000 periods of the slowest."""
+    periods = [1.0 / frequency for frequency, _ in frame.sines]
+    periods += [waveform.period for waveform in frame.waveforms if waveform.period is not None]
+    if not periods:
+        return None
+    slowest = max(periods)
+    multiple = 1
+    for period in periods:
+        ratio = slowest / period
+        fraction = Fraction(ratio).limit_denominator(_MOST_PERIODS)
+        if abs(float(fraction) - ratio) > 1e-9 * ratio:
+            return None
+        multiple = math.lcm(multiple, fraction.denominator)
+    return multiple * slowest if multiple <= _MOST_PERIODS else None
+
+
+def clock_at_phase(frame: Frame, angle: float | None) -> float:
+    """The time in s on the sources' clock at which the first sine written stands at an angle (rad); 0 without either."""
+    if angle is None or not frame.sines:
+        return 0.0
+    frequency, phase = frame.sines[0]
+    return (angle - phase) / (2.0 * math.pi * frequency)
+
+
+def largest_voltage(frame: Frame, span: float) -> float:
+    """The largest source voltage over a span of time, in V, else the largest initial voltage, else 1 V."""
+    inputs = {f"p{index}": np.float64(number) for index, number in enumerate(frame.numbers)}
+    inputs["t"] = np.linspace(0.0, span, _SAMPLES)
+    series = [branch for branch in frame.branches if isinstance(branch, SeriesBranch)]
+    peaks = [abs(value) for waveform in frame.waveforms for _, value in waveform.points]
+    for value in evaluate([branch.source for branch in series], inputs):
+        peaks.append(float(np.max(np.abs(value))))
+    if not any(peaks):
+        peaks = [abs(float(value)) for value in evaluate([branch.initial_voltage for branch in series], inputs)]
+    return max(peaks, default=0.0) or 1.0
