@@ -60,7 +60,7 @@ FIGURES = _table(
     Measure("valley", ("signal",), _same, "lowest value"),
     Measure("ripple", ("signal",), _same, "highest value minus lowest"),
     Measure("ripple_factor", ("signal",), _fixed(NONE), "rms of the alternating part over the mean"),
-    Measure("form_factor", ("signal",), _fixed(NONE), "rms over the mean magnitude"),
+    Measure("form_factor", ("signal",), _fixed(NONE), "rms over the magnitude of the mean"),
     Measure("crest_factor", ("signal",), _fixed(NONE), "largest magnitude over rms"),
     Measure("harmonic", ("signal", "count"), _same, "rms of one harmonic"),
     Measure("distortion", ("signal",), _fixed(NONE), "total harmonic distortion"),

@@ -1,0 +1,191 @@
+"""Figures of elements, and the table that gives every figure of the catalogue its computation.
+
+Elements come by name, signals as they run over the whole study; each figure takes the window that its meaning asks for. The
+language is not known here.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+
+
+from grammar.quantities import ANGLE, JOULE, KELVIN, NONE, WATT, Dimension
+from simcore.figures import measure
+from simcore.figures.figure import Figure, undefined
+from simcore.figures.record import Part, Record
+from simcore.figures.signal import Signal
+from simcore.figures.stored import stored_energy, total_stored_energy
+
+
+def mean_power(record: Record, name: str) -> Figure:
+    """Mean of the power that an element takes, W; negative for one that delivers."""
+    return measure.mean(record.window(record.power(name)))
+
+
+def energy(record: Record, name: str) -> Figure:
+    """Energy that an element takes in the window, J."""
+    return measure.energy(record.window(record.power(name)))
+
+
+def apparent_power(record: Record, name: str) -> Figure:
+    """Rms voltage times rms current, added up over phases or windings (arithmetic apparent power), VA.
+
+    Source: IEEE 1459-2010, arithmetic apparent power, for three phases; common practice for windings.
+    """
+    return Figure(sum(_port_apparent(record, record.part(name))), WATT)
+
+
+def _port_apparent(record: Record, part: Part) -> list[float]:
+    pairs = [_port_signals(record, part, index) for index in range(len(part.ports))]
+    return [measure.rms(voltage).value * measure.rms(current).value for voltage, current in pairs]
+
+
+def _port_signals(record: Record, part: Part, index: int) -> tuple[Signal, Signal]:
+    port = part.ports[index]
+    voltage, current = record.between(port.a, port.b), record.port_current(part.element, port)
+    return record.window(voltage), record.window(current)
+
+
+def power_factor(record: Record, name: str) -> Figure:
+    """Mean power over apparent power, of a source what it delivers; no unit."""
+    apparent = apparent_power(record, name)
+    if apparent.value == 0.0:
+        return undefined(NONE, f"{name} has no apparent power")
+    taken = mean_power(record, name).value
+    value = (-taken if record.part(name).delivers else taken) / apparent.value
+    return Figure(value, NONE, scale=1.0)
+
+
+def displacement_factor(record: Record, name: str) -> Figure:
+    """Mean power of the fundamentals over their apparent power: the cosine of their angle, of a source as it delivers; no unit.
+
+    Of several phases or windings both are added up.
+    """
+    span = record.whole_periods()
+    if span is None:
+        return undefined(NONE, _no_period(record))
+    part = record.part(name)
+    power, apparent, total = 0.0, 0.0, 0.0
+    for port in part.ports:
+        voltage = record.between(port.a, port.b).restrict(*span)
+        current = record.port_current(part.element, port).restrict(*span)
+        first, second = (measure.phasor(signal, record.frequency) for signal in (voltage, current))
+        power += (first * second.conjugate()).real
+        apparent += abs(first) * abs(second)
+        total += 2.0 * measure.rms(voltage).value * measure.rms(current).value
+    if apparent <= measure.NEGLIGIBLE * total:
+        return undefined(NONE, f"{name} has no fundamental of voltage and current")
+    return Figure((-power if part.delivers else power) / apparent, NONE, scale=1.0)
+
+
+def conduction_angle(record: Record, name: str) -> Figure:
+    """Angle of a period in which a diode conducts, rad; see measure.conduction_angle."""
+    return _periodic(record, record.current(name), ANGLE, measure.conduction_angle)
+
+
+def reverse_peak(record: Record, name: str) -> Figure:
+    """Largest voltage of b against a, V; negative where it never is reversed."""
+    voltage = record.window(record.voltage(name))
+    return Figure(-voltage.lowest(), voltage.dimension, scale=voltage.largest_magnitude())
+
+
+def junction_temperature(record: Record, name: str) -> Figure:
+    """Temperature at which the element runs, K."""
+    return Figure(record.temperature(name).highest(), KELVIN)
+
+
+def largest_stored_energy(record: Record, name: str | None = None) -> Figure:
+    """Largest energy in the fields of an element, or of the whole circuit without a name, in the window, J."""
+    if name is None:
+        stored: Signal | None = total_stored_energy(record)
+    else:
+        stored = stored_energy(record, record.part(name).element)
+    if stored is None:
+        return Figure(0.0, JOULE, note=f"{name} stores no energy")
+    return Figure(record.window(stored).highest(), JOULE)
+
+
+def efficiency(record: Record, source: str, load: str) -> Figure:
+    """Mean power that a load takes over the mean power that a source delivers; no unit."""
+    delivered = -mean_power(record, source)
+    if delivered.value <= measure.NEGLIGIBLE * apparent_power(record, source).value:
+        return undefined(NONE, f"{source} delivers no power")
+    return mean_power(record, load) / delivered
+
+
+def utilisation(record: Record, winding: str, load: str) -> Figure:
+    """Mean power of a load over the apparent power of a winding (of several, their sum); no unit."""
+    apparent = apparent_power(record, winding)
+    if apparent.value == 0.0:
+        return undefined(NONE, f"{winding} has no apparent power")
+    return mean_power(record, load) / apparent
+
+
+def harmonic(record: Record, signal: Signal, order: int) -> Figure:
+    """Rms value of one harmonic over the whole periods that end with the window."""
+    return _periodic(
+        record, signal, signal.dimension, lambda cut, frequency: measure.harmonic(cut, order, frequency)
+    )
+
+
+def distortion(record: Record, signal: Signal) -> Figure:
+    """Total harmonic distortion over the whole periods that end with the window."""
+    return _periodic(record, signal, NONE, measure.distortion)
+
+
+def _periodic(
+    record: Record, signal: Signal, dimension: Dimension, figure: Callable[[Signal, float], Figure]
+) -> Figure:
+    span = record.whole_periods()
+    if span is None:
+        return undefined(dimension, _no_period(record))
+    return figure(signal.restrict(*span), record.frequency)
+
+
+def _no_period(record: Record) -> str:
+    if record.solution.period is None:
+        return "the study has no period"
+    return "the judged window is shorter than a period"
+
+
+def _time_until(record: Record, signal: Signal, level: float, below: bool) -> Figure:
+    begin = record.begin()
+    if not signal.start <= begin < signal.end:
+        return undefined(measure.SECOND, "the first event is not within the study")
+    return measure.time_until(signal, level, begin, below)
+
+
+def of_window(figure: Callable[[Signal], Figure]) -> Callable[[Record, Signal], Figure]:
+    """A figure of a signal over the judged window."""
+    return lambda record, signal: figure(record.window(signal))
+
+
+COMPUTE: dict[str, Callable[..., Figure]] = {
+    "mean": of_window(measure.mean),
+    "rms": of_window(measure.rms),
+    "peak": of_window(measure.peak),
+    "valley": of_window(measure.valley),
+    "ripple": of_window(measure.ripple),
+    "ripple_factor": of_window(measure.ripple_factor),
+    "form_factor": of_window(measure.form_factor),
+    "crest_factor": of_window(measure.crest_factor),
+    "harmonic": harmonic,
+    "distortion": distortion,
+    "i2t": of_window(measure.i2t),
+    "time_until_above": lambda record, signal, level: _time_until(record, signal, level, below=False),
+    "time_until_below": lambda record, signal, level: _time_until(record, signal, level, below=True),
+    "mean_power": mean_power,
+    "energy": energy,
+    "apparent_power": apparent_power,
+    "power_factor": power_factor,
+    "displacement_factor": displacement_factor,
+    "conduction_angle": conduction_angle,
+    "reverse_peak": reverse_peak,
+    "junction_temperature": junction_temperature,
+    "stored_energy": largest_stored_energy,
+    "efficiency": efficiency,
+    "utilisation": utilisation,
+}
+"""Figure name -> computation from a record and the arguments that the catalogue declares: a signal as Signal over the whole study,
+an element or part of one as its name, a level as a number in the signal's SI unit, a count as int."""

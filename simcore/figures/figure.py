@@ -1,0 +1,117 @@
+"""A figure: a number with its dimension and the bound of its numerical error, or the reason why there is none.
+
+It must not know where a number came from; arithmetic of figures is a figure.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+
+from grammar.quantities import NONE, Dimension
+
+ROUNDING = 1e-12
+"""Relative error granted to rounding, of the magnitude the figure was formed from (some thousand ulp: long sums)."""
+
+SAFETY = 2.0
+"""Bound over the difference of two solutions.
+
+With a tolerance ratio of r and errors that fall at least as fast as its square root, the coarse error is at most
+1 / (1 - r^-1/2) times the difference: 1.46 for r = 10. The rest is for the error of that rule itself.
+"""
+
+
+@dataclass(frozen=True)
+class Figure:
+    """A number judged or printed.
+
+    value: in the SI unit of dimension; nan where the figure is undefined (note says why); inf for an instant that does not
+           come (beyond then says how far the study saw)
+    bound: largest numerical error expected, same unit; None where it was not worked out
+    note: what the reader must know, "" where there is nothing
+    beyond: the value is known to be larger than this, where it is inf
+    scale: magnitude of what the figure was formed from, for rounding
+    """
+
+    value: float
+    dimension: Dimension
+    bound: float | None = None
+    note: str = ""
+    beyond: float | None = None
+    scale: float = 0.0
+
+    @property
+    def defined(self) -> bool:
+        """Whether there is a value at all."""
+        return not math.isnan(self.value)
+
+    @property
+    def rounding(self) -> float:
+        """What rounding alone may make of it, in its unit."""
+        if not math.isfinite(self.value):
+            return 0.0
+        return ROUNDING * max(abs(self.value), self.scale)
+
+    def __neg__(self) -> Figure:
+        return replace(self, value=-self.value, beyond=None)
+
+    def __add__(self, other: Figure) -> Figure:
+        return _formed(self.value + other.value, self.dimension, (self, other))
+
+    def __sub__(self, other: Figure) -> Figure:
+        return _formed(self.value - other.value, self.dimension, (self, other))
+
+    def __mul__(self, other: Figure) -> Figure:
+        scale = _size(self) * _size(other)
+        return _formed(self.value * other.value, self.dimension * other.dimension, (self, other), scale)
+
+    def __truediv__(self, other: Figure) -> Figure:
+        dimension = self.dimension / other.dimension
+        if not (self.defined and other.defined):
+            return _formed(math.nan, dimension, (self, other))
+        if abs(other.value) <= other.rounding:
+            return undefined(dimension, "it divides by zero")
+        scale = _size(self) * _size(other) / other.value**2
+        return _formed(self.value / other.value, dimension, (self, other), scale)
+
+
+def undefined(dimension: Dimension, reason: str) -> Figure:
+    """The figure that has no value, and why."""
+    return Figure(math.nan, dimension, note=f"undefined: {reason}")
+
+
+def plain(value: float, dimension: Dimension = NONE) -> Figure:
+    """A number without error, as written in a requirement."""
+    return Figure(value, dimension)
+
+
+def _size(figure: Figure) -> float:
+    return max(abs(figure.value), figure.scale)
+
+
+def _formed(value: float, dimension: Dimension, parts: tuple[Figure, ...], scale: float | None = None) -> Figure:
+    """A result of arithmetic. Notes go along; an instant that does not come stays one, without a known limit."""
+    notes = dict.fromkeys(part.note for part in parts if part.note)
+    if scale is None:
+        scale = max(_size(part) for part in parts)
+    return Figure(value, dimension, note="; ".join(notes), scale=scale if math.isfinite(scale) else 0.0)
+
+
+def bounded(coarse: Figure, fine: Figure) -> Figure:
+    """The fine figure with the bound that its difference from the coarse one and rounding leave.
+
+    coarse, fine: the same figure on solutions of the same study at a tolerance and at a tighter one
+    Returns the fine value with bound SAFETY |fine - coarse| + rounding. Where only one of the two has a finite value, the bound
+    is infinite: nothing is known. An instant that comes in neither keeps the smaller of both horizons.
+    Source: common practice, no source; the factor is reasoned at SAFETY.
+    """
+    if coarse.defined != fine.defined:
+        return replace(fine, bound=math.inf, note=fine.note or coarse.note)
+    if not fine.defined:
+        return fine
+    if math.isinf(fine.value) and fine.value == coarse.value:
+        return fine
+    if math.isinf(fine.value) or math.isinf(coarse.value):
+        note = "it comes in one of two solutions only"
+        return replace(fine, bound=math.inf, beyond=None, note=note)
+    return replace(fine, bound=SAFETY * abs(fine.value - coarse.value) + coarse.rounding + fine.rounding)

@@ -1,0 +1,75 @@
+"""A solution made of given functions of time, for tests of what is read from solutions."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from simcore.design.circuit import Circuit, Element, Observed, PlannedStudy, Port, Requirement
+
+Function = Callable[[np.ndarray], np.ndarray]
+
+
+def three_points(times: np.ndarray, function: Function) -> np.ndarray:
+    """Values of a function at start, middle and end of each piece, shape (n, 3)."""
+    middle = 0.5 * (times[1:] + times[:-1])
+    return np.stack([function(times[:-1]), function(middle), function(times[1:])], axis=1) + np.zeros((len(middle), 3))
+
+
+@dataclass
+class FakeSolution:
+    """Potentials by node and currents by (element, port), as functions of time."""
+
+    circuit: Circuit
+    times: np.ndarray
+    potentials: dict[str, Function]
+    currents: dict[tuple[str, str], Function]
+    period: float | None = None
+    window: tuple[float, float] | None = None  # type: ignore[assignment]
+    first_event: float | None = None
+    study: PlannedStudy = field(default_factory=lambda: PlannedStudy("run", "transient"))
+    temperatures: dict[str, float] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        if self.window is None:
+            self.window = (float(self.times[0]), float(self.times[-1]))
+
+    def voltage(self, a: str, b: str) -> np.ndarray:
+        return three_points(self.times, lambda t: self.potentials[a](t) - self.potentials[b](t))
+
+    def current(self, element: str, port: str = "") -> np.ndarray:
+        return three_points(self.times, self.currents[element, port])
+
+    def temperature(self, element: str) -> float:
+        return self.temperatures.get(element, 298.15)
+
+
+def circuit_of(
+    elements: list[Element],
+    observes: dict[str, Observed] | None = None,
+    requirements: tuple[Requirement, ...] = (),
+    studies: dict[str, PlannedStudy] | None = None,
+) -> Circuit:
+    """A circuit of elements with reference "0"."""
+    return Circuit(
+        name="test",
+        purpose="",
+        references=("0",),
+        ambient=298.15,
+        elements={element.name: element for element in elements},
+        lets={},
+        observes=observes or {},
+        studies=studies or {},
+        requirements=requirements,
+    )
+
+
+def branch(name: str, kind: str, a: str, b: str, **given: object) -> Element:
+    """An element of two terminals."""
+    return Element(name, kind, (Port("", a, b),), given)
+
+
+def zero(t: np.ndarray) -> np.ndarray:
+    return 0.0 * t
