@@ -1,0 +1,54 @@
+"""Files written whole or not at all: a temporary name beside the target, forced to disk, then renamed.
+
+Knows nothing of what is written.
+"""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager, suppress
+from pathlib import Path
+from typing import TextIO
+
+
+@contextmanager
+def whole_file(path: Path) -> Iterator[TextIO]:
+    """A UTF-8 text file that appears under its name, complete, when the block ends; line ends are written as given.
+
+    Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one.
+    """
+    path.parent.mkdir(parents=True, exist_ok=True)
+    handle, temporary = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=path.parent)
+    try:
+        with open(handle, "w", encoding="utf-8", newline="") as file:
+            yield file
+            file.flush()
+            os.fsync(file.fileno())
+        os.chmod(temporary, 0o666 & ~_umask())
+        os.replace(temporary, path)
+    except BaseException:
+        with suppress(FileNotFoundError):
+            os.unlink(temporary)
+        raise
+    _force_folder(path.parent)
+
+
+def _umask() -> int:
+    """The mask for new files; it can only be read by setting it."""
+    mask = os.umask(0)
+    os.umask(mask)
+    return mask
+
+
+def _force_folder(folder: Path) -> None:
+    """Force the new name to disk, where the system lets a folder be opened."""
+    try:
+        handle = os.open(folder, os.O_RDONLY)
+    except OSError:
+        return
+    try:
+        os.fsync(handle)
+    finally:
+        os.close(handle)
