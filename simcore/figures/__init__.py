@@ -1,1 +1,1 @@
-"""The solution as piecewise polynomials, and the figures read from them: exact integrals, extrema, crossings, harmonics."""
+"""The solution as piecewise polynomials, and the figures read from them: integrals, extrema, crossings, harmonics."""

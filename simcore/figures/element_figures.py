@@ -1,16 +1,15 @@
 """Figures of elements, and the table that gives every figure of the catalogue its computation.
 
-Elements come by name, signals as they run over the whole study; each figure takes the window that its meaning asks for. The
-language is not known here.
+Elements come by name, signals as they run over the whole study; each figure takes the window that its meaning asks for.
+The language is not known here.
 """
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable
 
 
-from grammar.quantities import ANGLE, JOULE, KELVIN, NONE, WATT, Dimension
+from grammar.quantities import ANGLE, JOULE, KELVIN, NONE, SECOND, WATT, Dimension
 from simcore.figures import measure
 from simcore.figures.figure import Figure, undefined
 from simcore.figures.record import Part, Record
@@ -58,9 +57,9 @@ def power_factor(record: Record, name: str) -> Figure:
 
 
 def displacement_factor(record: Record, name: str) -> Figure:
-    """Mean power of the fundamentals over their apparent power: the cosine of their angle, of a source as it delivers; no unit.
+    """Mean power of the fundamentals over their apparent power: the cosine of their angle; no unit.
 
-    Of several phases or windings both are added up.
+    Of a source it counts what that delivers; of several phases or windings both powers are added up.
     """
     span = record.whole_periods()
     if span is None:
@@ -152,7 +151,7 @@ def _no_period(record: Record) -> str:
 def _time_until(record: Record, signal: Signal, level: float, below: bool) -> Figure:
     begin = record.begin()
     if not signal.start <= begin < signal.end:
-        return undefined(measure.SECOND, "the first event is not within the study")
+        return undefined(SECOND, "the first event is not within the study")
     return measure.time_until(signal, level, begin, below)
 
 
@@ -187,5 +186,5 @@ COMPUTE: dict[str, Callable[..., Figure]] = {
     "efficiency": efficiency,
     "utilisation": utilisation,
 }
-"""Figure name -> computation from a record and the arguments that the catalogue declares: a signal as Signal over the whole study,
-an element or part of one as its name, a level as a number in the signal's SI unit, a count as int."""
+"""Figure name -> computation from a record and the arguments that the catalogue declares: a signal as Signal over the
+whole study, an element or part of one as its name, a level as a number in the signal's SI unit, a count as int."""

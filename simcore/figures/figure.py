@@ -25,8 +25,8 @@ With a tolerance ratio of r and errors that fall at least as fast as its square 
 class Figure:
     """A number judged or printed.
 
-    value: in the SI unit of dimension; nan where the figure is undefined (note says why); inf for an instant that does not
-           come (beyond then says how far the study saw)
+    value: in the SI unit of dimension; nan where the figure is undefined (note says why); inf for an instant that does
+           not come (beyond then says how far the study saw)
     bound: largest numerical error expected, same unit; None where it was not worked out
     note: what the reader must know, "" where there is nothing
     beyond: the value is known to be larger than this, where it is inf
@@ -101,8 +101,8 @@ def bounded(coarse: Figure, fine: Figure) -> Figure:
     """The fine figure with the bound that its difference from the coarse one and rounding leave.
 
     coarse, fine: the same figure on solutions of the same study at a tolerance and at a tighter one
-    Returns the fine value with bound SAFETY |fine - coarse| + rounding. Where only one of the two has a finite value, the bound
-    is infinite: nothing is known. An instant that comes in neither keeps the smaller of both horizons.
+    Returns the fine value with bound SAFETY |fine - coarse| + rounding. Where only one of the two has a finite value,
+    the bound is infinite: nothing is known. An instant that comes in neither is returned as it is.
     Source: common practice, no source; the factor is reasoned at SAFETY.
     """
     if coarse.defined != fine.defined:

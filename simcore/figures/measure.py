@@ -96,8 +96,8 @@ def energy(power: Signal) -> Figure:
 def phasor(signal: Signal, frequency: float) -> complex:
     """Amplitude and phase of the component at a frequency in Hz: (2/T) times the integral of x exp(-2 pi j f t).
 
-    The window must hold whole periods. Pieces are cut so that none turns through more than half a period; 24 Gauss points then
-    leave rounding only.
+    The window must hold whole periods. Pieces are cut so that none turns through more than half a period; 24 Gauss
+    points then leave rounding only.
     """
     fine = _cut_finely(signal, frequency)
     local, instants = _gauss(fine)
@@ -146,7 +146,7 @@ def time_until(signal: Signal, level: float, begin: float, below: bool) -> Figur
     """Time in s from `begin` until the signal is at a level or beyond it (below, else above).
 
     signal: over the whole study from begin on; level in its unit
-    Where that does not come: value inf, note "later than ...", beyond the time that was seen. A signal that is beyond the level at
+    Where that does not come the value is inf, and `beyond` the time that was seen. A signal that is beyond the level at
     the start has a time of zero, and the note says so.
     """
     seen = signal.restrict(begin, signal.end)
@@ -162,8 +162,8 @@ def time_until(signal: Signal, level: float, begin: float, below: bool) -> Figur
 def conduction_angle(current: Signal, frequency: float) -> Figure:
     """Angle of a supply period during which a diode conducts: 2 pi f times the mean time a period, rad.
 
-    Conducting means a current above CONDUCTING of its peak: an exponential diode has no instant at which it starts. A diode
-    that never conducts has angle zero. Source: common practice for the angle; the threshold has no source.
+    Conducting means a current above CONDUCTING of its peak: an exponential diode has no instant at which it starts. A
+    diode that never conducts has angle zero. Source: common practice for the angle; the threshold has no source.
     """
     highest = current.highest()
     if highest <= 0.0:

@@ -1,7 +1,7 @@
 """Rows of polynomials as numpy arrays: values, products, changes of variable, roots.
 
-A row holds the coefficients of one polynomial in ascending powers of s, with s from -1 to 1: an interval that is symmetric
-about zero keeps powers well conditioned. Nothing here knows time, units or circuits.
+A row holds the coefficients of one polynomial in ascending powers of s, with s from -1 to 1: an interval that is
+symmetric about zero keeps powers well conditioned. Nothing here knows time, units or circuits.
 """
 
 from __future__ import annotations
@@ -149,8 +149,8 @@ def roots(rows: Array) -> tuple[NDArray[np.int64], Array]:
     """All roots strictly inside (-1, 1): the row of each and its s, in order of both.
 
     Descartes' rule with halving (Lane and Riesenfeld, BIT 21, 1981): rows without a sign change among their Bernstein
-    coefficients are left at once, so the cost is that of the few rows which may have a root. A touching (double) root is
-    given once; a row that is zero throughout has none.
+    coefficients are left at once, so the cost is that of the few rows which may have a root. A touching (double) root
+    may be given twice, or not at all where rounding lifts it; a row that is zero throughout has none.
     """
     inside = np.flatnonzero(_has_both_signs(bernstein(rows)))
     coefficients = bernstein(rows[inside])

@@ -106,7 +106,7 @@ class Signal:
     # --- arithmetic ------------------------------------------------------------------------------------------------
 
     def on(self, times: Array) -> Signal:
-        """The same signal cut at further breakpoints: times holds all of its own within times' span, which it may cut."""
+        """The same signal on other breakpoints, which hold all of its own within their span."""
         if len(times) == len(self.times) and np.array_equal(times, self.times):
             return self
         middle = 0.5 * (times[1:] + times[:-1])
@@ -278,8 +278,8 @@ def fitted(
 ) -> Signal:
     """Any function of signals with equal breakpoints, interpolated at Chebyshev points of each piece.
 
-    Error: at points between, weighted by a piece's share of the span, it is at most FIT_ERROR of the mean magnitude; pieces
-    are halved until that holds. SignalError where it cannot be reached: the function grows without bound or is not defined.
+    Error: at points between, weighted by a piece's share of the span, it is at most FIT_ERROR of the mean magnitude;
+    pieces are halved until that holds. SignalError where it cannot be reached: the function has a pole or is undefined.
     """
     nodes = polynomials.lobatto_points(order)
     between = 0.5 * (nodes[1:] + nodes[:-1])

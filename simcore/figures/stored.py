@@ -1,6 +1,6 @@
-"""Energy stored in an element and lost in its own series resistance, from its terminal quantities and what is given of it.
+"""Energy stored in an element and lost in its own resistances, from its port signals and what is given of it.
 
-A winding's flux and a capacitor's inner voltage follow from port signals; solvers and the language are not known here.
+Solvers and the language are not known here.
 """
 
 from __future__ import annotations
@@ -37,18 +37,9 @@ def resistive_loss(record: Record, element: Element) -> Signal:
         total = total + (current * current).scaled(resistance, WATT)
     leakage = element.given.get("leakage_resistance")
     if element.kind == "capacitor" and leakage:
-        voltage = record.between(element.ports[0].a, element.ports[0].b)
-        total = total + _leakage_correction(record, element, voltage, leakage)
+        inner = _inner_voltage(record, element)
+        total = total + (inner * inner).scaled(1.0 / leakage, WATT)
     return total
-
-
-def _leakage_correction(record: Record, element: Element, voltage: Signal, leakage: float) -> Signal:
-    """Loss in the leakage path across the terminals, with its current taken out of the series resistance, W."""
-    current = record.port_current(element, element.ports[0])
-    inner = current - voltage.scaled(1.0 / leakage, current.dimension)
-    resistance = float(element.given.get("series_resistance", 0.0))
-    in_leakage = (voltage * voltage).scaled(1.0 / leakage, WATT)
-    return in_leakage + (inner * inner - current * current).scaled(resistance, WATT)
 
 
 def _resistances(element: Element) -> tuple[float, ...]:
@@ -60,19 +51,23 @@ def _resistances(element: Element) -> tuple[float, ...]:
     return (float(given.get("series_resistance", 0.0)),) * len(element.ports)
 
 
-def _capacitor(record: Record, element: Element) -> Signal:
+def _inner_voltage(record: Record, element: Element) -> Signal:
+    """Voltage across a capacitance and its leakage, behind the resistance and inductance of the leads, V."""
     given, port = element.given, element.ports[0]
-    inner = record.between(port.a, port.b)
-    current = record.port_current(element, port)
-    if given.get("leakage_resistance"):
-        current = current - inner.scaled(1.0 / given["leakage_resistance"], current.dimension)
+    inner, current = record.between(port.a, port.b), record.port_current(element, port)
     if given.get("series_resistance"):
         inner = inner - current.scaled(given["series_resistance"], VOLT)
     if given.get("series_inductance"):
         inner = inner - slope(current).scaled(given["series_inductance"], VOLT)
-    energy = (inner * inner).scaled(0.5 * given["capacitance"], JOULE)
-    if given.get("series_inductance"):
-        energy = energy + _half_square(current, given["series_inductance"])
+    return inner
+
+
+def _capacitor(record: Record, element: Element) -> Signal:
+    inner = _inner_voltage(record, element)
+    energy = (inner * inner).scaled(0.5 * element.given["capacitance"], JOULE)
+    inductance = element.given.get("series_inductance")
+    if inductance:
+        energy = energy + _half_square(record.port_current(element, element.ports[0]), inductance)
     return energy
 
 
