@@ -81,8 +81,8 @@ def test_extrema_of_a_power_against_dense_values(values: list) -> None:
     quartic = signal * signal - signal
     local = np.tile(np.linspace(-1.0, 1.0, 4001), (len(values), 1))
     dense = polynomials.values(quartic.coefficients, local)
-    # Between neighbours 1/2000 apart a polynomial rises by at most its second derivative over 8 * 2000^2: 1e5 is above
-    it here. spacing = 1e5 / (8.0 * 2000.0**2)
+    # Between neighbours 1/2000 apart a polynomial leaves its chord by at most |p''| / (8 * 2000^2); here |p''| < 1e5.
+    spacing = 1e5 / (8.0 * 2000.0**2)
     assert dense.max() - 1e-9 <= quartic.highest() <= dense.max() + spacing
     assert dense.min() - spacing <= quartic.lowest() <= dense.min() + 1e-9
 
