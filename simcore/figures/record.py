@@ -72,6 +72,7 @@ class Record:
         self.solution = solution
         self.circuit = solution.circuit
         self.times = np.asarray(solution.times, dtype=float)
+        self.nodes = dict.fromkeys((*self.circuit.nodes(), *self.circuit.references))
         self._kept: dict[object, Signal] = {}
 
     def keep(self, key: object, form: Callable[[], Signal]) -> Signal:

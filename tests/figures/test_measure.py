@@ -87,7 +87,8 @@ def test_rectifying_a_sine_signal_is_exact() -> None:
 
 def test_block_wave_of_a_six_pulse_bridge() -> None:
     # Mohan, Undeland and Robbins 2003, chapter 5 (from memory; computed): line current of a six-pulse bridge with
-    # smooth current, +1 for 120 deg, 0, -1 for 120 deg, 0. Distortion of all orders sqrt(pi^2/9 - 1), fundamental sqrt(6)/pi.
+    # smooth current, +1 for 120 deg, 0, -1 for 120 deg, 0. Distortion of all orders sqrt(pi^2/9 - 1),
+    # fundamental sqrt(6)/pi.
     block = steps([0.0, 1.0, 1.0, 0.0, -1.0, -1.0])
     assert measure.distortion(block, FREQUENCY).value == pytest.approx(0.3108419393, rel=1e-9)
     assert measure.harmonic(block, 1, FREQUENCY).value == pytest.approx(math.sqrt(6.0) / math.pi, rel=1e-12)

@@ -1,0 +1,144 @@
+"""Figure expressions worked out on the solutions of a file's studies, with bounds from a second, tighter solution.
+
+Names and units have been checked before; what has no value becomes an undefined figure that says why. How studies are
+solved is not known here.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Mapping
+from functools import reduce
+
+import numpy as np
+
+from grammar.description import Binary, Call, Expression, Name, Negative, Number
+from grammar.quantities import NONE
+from simcore.figures.catalogue import FIGURES
+from simcore.figures.element_figures import COMPUTE
+from simcore.figures.expressions import (
+    FUNCTIONS,
+    function_dimension,
+    guarded,
+    let_value,
+    name_text,
+    quantity_of,
+    signal_of,
+)
+from simcore.figures.figure import Figure, bounded, plain, undefined
+from simcore.figures.record import Record, UnknownName
+from simcore.figures.signal import Signal, SignalError
+
+Records = Mapping[str, Record]
+"""The record of each study that has been solved, by its name."""
+
+MOST_HARMONIC = 10_000
+
+
+def figure_of(expression: Expression, study: str, records: Records) -> Figure:
+    """A figure expression at a study, figures `at` other studies taken from theirs.
+
+    Returns the figure without a bound; an undefined one with its reason where a study was not solved, a name stands for
+    nothing or the mathematics has no result.
+    """
+    try:
+        return _figure(expression, study, records)
+    except (SignalError, UnknownName) as fault:
+        return undefined(NONE, str(fault))
+
+
+def figures_with_bounds(
+    asked: Iterable[tuple[str, Expression]], coarse: Records, fine: Records
+) -> list[Figure]:
+    """Each (study, figure expression) on the fine solutions, bounded by its difference from the coarse ones."""
+    return [
+        bounded(figure_of(expression, study, coarse), figure_of(expression, study, fine)) for study, expression in asked
+    ]
+
+
+def _figure(expression: Expression, study: str, records: Records) -> Figure:
+    if isinstance(expression, Number):
+        quantity = quantity_of(expression)
+        return plain(quantity.value, quantity.dimension)
+    if isinstance(expression, Name):
+        quantity = let_value(name_text(expression), _record(study, records))
+        return plain(quantity.value, quantity.dimension)
+    if isinstance(expression, Negative):
+        return -_figure(expression.operand, study, records)
+    if isinstance(expression, Binary):
+        left, right = _figure(expression.left, study, records), _figure(expression.right, study, records)
+        return _binary(expression.operator, left, right)
+    if isinstance(expression, Call):
+        if expression.name in FIGURES:
+            return _figure_call(expression, _record(expression.study or study, records))
+        if expression.name in FUNCTIONS:
+            return _function(expression.name, [_figure(part, study, records) for part in expression.arguments])
+        raise UnknownName(f"{expression.name} is no figure")
+    raise UnknownName("this is no figure")
+
+
+def _record(study: str, records: Records) -> Record:
+    if study not in records:
+        raise UnknownName(f"study {study} was not solved")
+    return records[study]
+
+
+def _figure_call(call: Call, record: Record) -> Figure:
+    declared = FIGURES[call.name].arguments
+    arguments = [
+        _argument(kind, argument, record) for kind, argument in zip(declared, call.arguments, strict=False)
+    ]
+    return COMPUTE[call.name](record, *arguments)
+
+
+def _argument(kind: str, argument: Expression, record: Record) -> Signal | str | float | int:
+    """One argument as the computation takes it; see COMPUTE."""
+    if kind == "signal":
+        return signal_of(argument, record)
+    if kind == "signal or branch":
+        if isinstance(argument, Name) and name_text(argument) not in record.circuit.observes:
+            return record.current(name_text(argument))
+        return signal_of(argument, record)
+    if kind in ("level", "count"):
+        figure = _figure(argument, record.solution.study.name, {record.solution.study.name: record})
+        return figure.value if kind == "level" else _order(figure)
+    if not isinstance(argument, Name):
+        raise UnknownName("this figure takes the name of an element")
+    return name_text(argument)
+
+
+def _order(figure: Figure) -> int:
+    if figure.dimension != NONE or not 1 <= figure.value <= MOST_HARMONIC or figure.value != round(figure.value):
+        raise SignalError(f"the order of a harmonic is a whole number from 1 to {MOST_HARMONIC}")
+    return int(figure.value)
+
+
+def _binary(operator: str, left: Figure, right: Figure) -> Figure:
+    if operator in "+-":
+        if left.dimension != right.dimension and left.defined and right.defined:
+            raise SignalError(f"the two sides of {operator} have different units")
+        return left + right if operator == "+" else left - right
+    if operator == "*":
+        return left * right
+    if operator == "/":
+        return left / right
+    if right.dimension != NONE:
+        raise SignalError("an exponent is a plain number")
+    if not (left.defined and right.defined):
+        return left * right
+    return Figure(guarded(lambda: left.value**right.value), left.dimension**right.value, note=left.note)
+
+
+def _function(name: str, figures: list[Figure]) -> Figure:
+    missing = next((figure for figure in figures if not figure.defined), None)
+    if missing is not None:
+        return missing
+    dimension = function_dimension(name, figures[0].dimension)
+    numbers = [np.asarray(figure.value) for figure in figures]
+    with np.errstate(all="ignore"):
+        value = float(reduce(FUNCTIONS[name], numbers) if name in ("min", "max") else FUNCTIONS[name](*numbers))
+    if math.isnan(value):
+        raise SignalError(f"{name} is not defined there")
+    notes = dict.fromkeys(figure.note for figure in figures if figure.note)
+    scale = max(figure.scale for figure in figures) if name in ("abs", "min", "max") else 0.0
+    return Figure(value, dimension, note="; ".join(notes), scale=scale)

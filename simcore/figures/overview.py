@@ -1,0 +1,162 @@
+"""What every study prints without being asked: its signals, its diodes, and whether the energy books close.
+
+It makes figures and no text; tables are laid out elsewhere.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+
+from grammar.quantities import JOULE, NONE
+from simcore.design.circuit import Element
+from simcore.figures import element_figures, measure
+from simcore.figures.expressions import observed
+from simcore.figures.figure import Figure, bounded, undefined
+from simcore.figures.record import DELIVERING, Record, UnknownName
+from simcore.figures.signal import Signal, SignalError
+from simcore.figures.stored import resistive_loss, stored_energy
+
+VALVES = ("diode", "thyristor")
+STORES = ("capacitor", "inductor", "transformer")
+
+SIGNAL_COLUMNS: dict[str, Callable[[Signal], Figure]] = {
+    "mean": measure.mean,
+    "rms": measure.rms,
+    "peak": measure.peak,
+    "valley": measure.valley,
+    "ripple": measure.ripple,
+}
+
+DIODE_COLUMNS: dict[str, Callable[[Record, str], Figure]] = {
+    "mean": lambda record, name: measure.mean(record.window(record.current(name))),
+    "rms": lambda record, name: measure.rms(record.window(record.current(name))),
+    "peak": lambda record, name: measure.peak(record.window(record.current(name))),
+    "reverse peak": element_figures.reverse_peak,
+    "dissipation": element_figures.mean_power,
+    "conduction angle": element_figures.conduction_angle,
+}
+
+
+@dataclass(frozen=True)
+class Row:
+    """One line of a table: the name as the language writes it, its wording if any, and its figures by column."""
+
+    name: str
+    label: str | None
+    figures: dict[str, Figure]
+
+
+def shown_signals(record: Record) -> dict[str, tuple[Callable[[Record], Signal], str | None]]:
+    """Name -> (how to form it, label): what is observed; where nothing is, all node voltages and element currents."""
+    shown: dict[str, tuple[Callable[[Record], Signal], str | None]] = {}
+    for name, observe in record.circuit.observes.items():
+        shown[name] = (lambda of, name=name: observed(name, of), observe.label)
+    if shown:
+        return shown
+    for node in record.circuit.nodes():
+        if node not in record.circuit.references:
+            shown[f"voltage({node})"] = (lambda of, node=node: of.between(node), None)
+    for element in record.circuit.elements.values():
+        for port in element.ports:
+            name = element.name if len(element.ports) == 1 else f"{element.name}.{port.name}"
+            shown[f"current({name})"] = (lambda of, name=name: of.current(name), None)
+    return shown
+
+
+def signal_rows(fine: Record, coarse: Record | None = None) -> list[Row]:
+    """Mean, rms, peak, valley and ripple of each shown signal over the window; coarse: the one that gives bounds."""
+    rows = []
+    for name, (form, label) in shown_signals(fine).items():
+        figures = {}
+        for column, figure in SIGNAL_COLUMNS.items():
+            figures[column] = _with_bound(_of_signal(figure, form), fine, coarse)
+        rows.append(Row(name, label, figures))
+    return rows
+
+
+def _of_signal(figure: Callable[[Signal], Figure], form: Callable[[Record], Signal]) -> Callable[[Record], Figure]:
+    return lambda record: figure(record.window(form(record)))
+
+
+def diode_rows(fine: Record, coarse: Record | None = None) -> list[Row]:
+    """Mean, rms and peak current (A), reverse peak (V), dissipation (W) and conduction angle (rad) of each diode."""
+    rows = []
+    for element in _of_kinds(fine, VALVES):
+        figures = {}
+        for column, figure in DIODE_COLUMNS.items():
+            name = element.name
+            figures[column] = _with_bound(lambda of, name=name, figure=figure: figure(of, name), fine, coarse)
+        rows.append(Row(element.name, element.label, figures))
+    return rows
+
+
+def _with_bound(figure: Callable[[Record], Figure], fine: Record, coarse: Record | None) -> Figure:
+    try:
+        value = figure(fine)
+        return value if coarse is None else bounded(figure(coarse), value)
+    except (SignalError, UnknownName) as fault:
+        return undefined(NONE, str(fault))
+
+
+def _of_kinds(record: Record, kinds: Iterable[str]) -> list[Element]:
+    return [element for element in record.circuit.elements.values() if element.kind in kinds]
+
+
+# --- energy ----------------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class Balance:
+    """The energy books of the judged window, J: delivered = loads + diodes + windings_and_leads + stored + imbalance.
+
+    loads: taken by all that is no source, diode or store; windings_and_leads: lost in the resistances of capacitors,
+    inductors and transformers; stored: rise of the energy in their fields and in those of the sources' inductances
+    imbalance: what is missing; share: its magnitude over the energy that flowed, no unit
+    """
+
+    delivered: Figure
+    loads: Figure
+    diodes: Figure
+    windings_and_leads: Figure
+    stored: Figure
+    imbalance: Figure
+    share: Figure
+
+
+def balance(record: Record) -> Balance:
+    """Close the books of a study over its window.
+
+    The energy that flowed is the integral of the magnitude of the sources' power, and the change of the stored energy.
+    What a source loses in its own series resistance is inside of it: its terminals count.
+    """
+    sources = _of_kinds(record, DELIVERING)
+    flowed = sum(abs(record.window(record.power(element.name))).integral() for element in sources)
+    delivered = -_taken(record, sources)
+    diodes = _taken(record, _of_kinds(record, VALVES))
+    stores = _of_kinds(record, STORES)
+    others = [
+        element for element in record.circuit.elements.values() if element.kind not in (*DELIVERING, *VALVES, *STORES)
+    ]
+    loads = _taken(record, others)
+    losses = [measure.energy(record.window(resistive_loss(record, element))) for element in stores]
+    lost = sum((figure.value for figure in losses), 0.0)
+    stored = sum((_rise(record, element) for element in stores), 0.0)
+    missing = delivered - loads - diodes - lost - stored
+    flowed += abs(stored)
+    share = Figure(abs(missing) / flowed, NONE) if flowed > 0.0 else undefined(NONE, "no energy flowed")
+    values = (delivered, loads, diodes, lost, stored, missing)
+    return Balance(*(Figure(value, JOULE, scale=flowed) for value in values), share)
+
+
+def _taken(record: Record, elements: list[Element]) -> float:
+    return sum((element_figures.energy(record, element.name).value for element in elements), 0.0)
+
+
+def _rise(record: Record, element: Element) -> float:
+    stored = stored_energy(record, element)
+    if stored is None:
+        return 0.0
+    part = record.window(stored)
+    starts, ends = part.piece_ends
+    return float(ends[-1] - starts[0])

@@ -1,0 +1,1 @@
+"""Requirements held against figures and their error bounds, and what the outcome means."""
