@@ -78,7 +78,8 @@ def _build(frame: Frame, part: Part) -> None:
     unbalance = part.given("unbalance") or (1.0, 1.0, 1.0)
     sine = part.given("sine")
     factor = math.sqrt(1.0 / 3.0) if sine is not None and sine[2] == "line" else 1.0
-    for index, port in enumerate(part.ports):
+    for port in part.ports:
+        index = port.index
         frame.series(
             part,
             part.across(port),

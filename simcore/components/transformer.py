@@ -20,7 +20,8 @@ def _build(frame: Frame, part: Part) -> None:
     """All windings share the core's volts per turn of the first winding; each has its own impedance in series."""
     turns = part.given("turns")
     core = (part.name, "core")
-    for index, port in enumerate(part.ports):
+    for port in part.ports:
+        index = port.index
         ratio = 1.0 if index == 0 else frame.parameter(turns[index] / turns[0], positive=True)
         frame.series(
             part,

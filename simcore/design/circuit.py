@@ -8,7 +8,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Any
 
-from grammar.description import Expression, Span
+from grammar.description import Expression, Span, Sweep
 from grammar.quantities import Quantity
 
 
@@ -20,6 +20,11 @@ class Port:
     name: str
     a: str
     b: str
+
+    @property
+    def index(self) -> int:
+        """Which of the values in a ratio is this winding's or phase's; a port keeps it where others are open."""
+        return int(self.name[1:]) - 1 if self.name else 0
 
 
 @dataclass(frozen=True)
@@ -131,6 +136,7 @@ class Circuit:
     observes: dict[str, Observed]
     studies: dict[str, PlannedStudy]
     requirements: tuple[Requirement, ...]
+    sweeps: tuple[Sweep, ...] = ()
 
     def nodes(self) -> list[str]:
         """Node names in order of first mention."""
