@@ -171,14 +171,8 @@ def guarded(work: Callable[[], float]) -> float:
     return result
 
 
-def _square_root(values: np.ndarray) -> np.ndarray:
-    """Root that takes what rounding left below zero for zero."""
-    below = (values < 0.0) & (values > -1e-12 * np.max(np.abs(values), initial=0.0))
-    return np.sqrt(np.where(below, 0.0, values))
-
-
 FUNCTIONS: dict[str, Callable[..., np.ndarray]] = {
-    "sqrt": _square_root,
+    "sqrt": np.sqrt,
     "exp": np.exp,
     "log": np.log,
     "sin": np.sin,
@@ -214,6 +208,8 @@ def _function(name: str, operands: list[Operand]) -> Operand:
     if name in ("min", "max"):
         return _chosen(smaller if name == "min" else larger, operands)
     (only,) = operands
+    if name == "sqrt":
+        return power(only, 0.5, dimension)  # type: ignore[arg-type]
     return fitted(FUNCTIONS[name], (only,), dimension)  # type: ignore[arg-type]
 
 

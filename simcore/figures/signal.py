@@ -264,13 +264,19 @@ def larger(left: Signal, right: Signal) -> Signal:
 
 
 def power(base: Signal, exponent: float, dimension: Dimension) -> Signal:
-    """base to a constant exponent: exact for small whole ones, else interpolated."""
+    """base to a constant exponent: exact for small whole ones, else interpolated.
+
+    What lies below zero by rounding only counts as zero, so that a magnitude has a root.
+    """
     if exponent in (1.0, 2.0, 3.0, 4.0):
         result = base
         for _ in range(int(exponent) - 1):
             result = result * base
         return result
-    return fitted(lambda a: a**exponent, (base,), dimension)
+    if exponent == round(exponent):
+        return fitted(lambda a: a**exponent, (base,), dimension)
+    rounding = 1e-12 * base.largest_magnitude()
+    return fitted(lambda a: np.where((a < 0.0) & (a > -rounding), 0.0, a) ** exponent, (base,), dimension)
 
 
 def fitted(
