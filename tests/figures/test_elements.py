@@ -81,8 +81,8 @@ def test_names_are_written_as_the_circuit_holds_them() -> None:
 
 def test_figures_of_a_half_wave_rectifier(records: dict[str, Record]) -> None:
     # Rows 2A1 and 2B1 of the published resistive-load figures (Millman and Halkias 1972, from memory; computed): mean
-    # V_m/pi, rms V_m/2, reverse peak V_m; the source's power factor is 1/sqrt(2), and so is its utilisation by the load's
-    # power (row 2B1 counts the DC power only, which is 4/pi^2 of that).
+    # V_m/pi, rms V_m/2, reverse peak V_m; the power factor of the source is 1/sqrt(2), and so is its utilisation by the
+    # load's whole power (row 2B1 counts the DC power only, 4/pi^2 of that).
     assert value(call("mean", "u_out"), records) == pytest.approx(10.0 / math.pi, rel=INTERPOLATION)
     assert value(call("reverse_peak", "D1"), records) == pytest.approx(10.0, rel=INTERPOLATION)
     assert value(call("mean_power", "R_L"), records) == pytest.approx(5.0, rel=INTERPOLATION)
