@@ -33,7 +33,8 @@ class Element:
 
     given: key -> value as the kind's declaration asks (data sheet merged in, defaults NOT filled in):
            scalar: float in SI; point: (value, at); ratio and list: tuple of floats; series: tuple of (key, value);
-           curve: tuple of (value, at); harmonics: tuple of (order, share, angle in rad); amplitude: (tuple of values, measure, of);
+           curve: tuple of (value, at); harmonics: tuple of (order, share, angle in rad); amplitude: (tuple of values,
+           measure, of);
            text and word: str; expression: a resolved Expression whose names are full names of nodes and elements;
            a diode's data_temperature is filled in, since its default is what was written beside its law
     unit: "V" or "A" for a source, by what its values were given in
@@ -94,8 +95,8 @@ class PlannedStudy:
 class Requirement:
     """One requirement on one study (repeats, `each study` and `each KIND` spread out).
 
-    relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at other
-    studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for reports
+    relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at
+    other studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for reports
     """
 
     study: str

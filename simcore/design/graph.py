@@ -1,0 +1,63 @@
+"""The circuit as a graph: nodes are circuit nodes, an edge is a port of an element. And which ports have no impedance.
+
+It knows elements and ports, and no equations.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from simcore.design.circuit import Circuit, Element, Port
+
+if TYPE_CHECKING:
+    import networkx
+
+
+def graph_of(circuit: Circuit) -> networkx.MultiDiGraph:
+    """The circuit as a directed multigraph, edges from a port's first end to its second.
+
+    Edge attributes: element and port, both names; kind. The edge's key is the port's full name, `T1.w2`.
+    """
+    import networkx
+
+    graph = networkx.MultiDiGraph()
+    graph.add_nodes_from(circuit.nodes())
+    for element in circuit.elements.values():
+        for port in element.ports:
+            name = port_name(element, port)
+            graph.add_edge(port.a, port.b, key=name, element=element.name, port=port.name, kind=element.kind)
+    return graph
+
+
+def port_name(element: Element, port: Port) -> str:
+    """The full name of a port: the element's, with the winding or phase behind a dot where it has several."""
+    return f"{element.name}.{port.name}" if port.name else element.name
+
+
+def is_current_source(element: Element) -> bool:
+    """Whether the element forces its current."""
+    return element.kind == "source" and element.unit == "A"
+
+
+def forces_voltage(element: Element, port: Port) -> bool:
+    """Whether a port fixes a voltage, or for a winding a ratio of voltages, whatever its current."""
+    given = element.given
+    if element.kind == "resistor":
+        return given.get("resistance") == 0.0
+    if element.kind in ("source", "three_phase"):
+        impedance = any(given.get(key) for key in ("series_resistance", "series_inductance", "short_circuit_power"))
+        return not is_current_source(element) and not impedance
+    if element.kind == "transformer":
+        return not any(_of(given.get(key), port.index) for key in ("leakage", "resistance"))
+    return False
+
+
+def is_inductive(element: Element, port: Port) -> bool:
+    """Whether a port's current can't jump because an inductance is in series with it."""
+    if element.kind == "transformer":
+        return bool(_of(element.given.get("leakage"), port.index))
+    return element.kind == "inductor"
+
+
+def _of(values: object, index: int) -> float:
+    return float(values[index]) if isinstance(values, tuple) and index < len(values) else 0.0

@@ -1,0 +1,181 @@
+"""Requirements as written, spread out: one for each study, copy of a repeat and element that `each` stands for.
+
+It knows the circuit's names and what figures are, and judges nothing.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import replace
+
+from grammar.description import Call, Comparison, Each, Expression, Name, Ratings, Require, Span, Study
+from grammar.expressions import nearest
+from grammar.quantities import NONE, Dimension, show, unit_of
+from grammar.writer import write_expression
+from simcore.components import KINDS
+from simcore.design.circuit import Requirement
+from simcore.design.measures import Measures, Resolved
+from simcore.design.rewrite import eaches, put_element, rename
+from simcore.design.scopes import Place, Poisoned, Scope, named, span_of
+from simcore.design.values import EXPRESSIONS
+
+
+class Requirements:
+    """Works out the requirements of a design."""
+
+    def __init__(self, scope: Scope, measures: Measures, studies: Mapping[str, Study]):
+        self.scope = scope
+        self.measures = measures
+        self.studies = studies
+        self.place = Place(scope.root)
+
+    def spread(self, require: Require, place: Place) -> list[Requirement]:
+        """The requirements that one statement makes; none where it is mistaken."""
+        names = require.studies or tuple(self.studies)
+        for name in require.studies:
+            if name not in self.studies:
+                self.scope.unknown(name, list(self.studies), require.span, "no study is named")
+        names = tuple(name for name in names if name in self.studies)
+        try:
+            if isinstance(require.claim, Ratings):
+                return self._ratings(require, require.claim, names)
+            return self._claims(require, require.claim, place, names)
+        except Poisoned:
+            return []
+
+    def _claims(self, require: Require, claim: Comparison, place: Place, names: tuple[str, ...]) -> list[Requirement]:
+        kinds = list(dict.fromkeys(each.kind for each in eaches(claim)))
+        if len(kinds) > 1:
+            self.scope.wrong("one requirement has several `each`", "Write one requirement for each kind.", require.span)
+            raise Poisoned
+        if not kinds:
+            return self._one(require, claim, place, names)
+        found: list[Requirement] = []
+        for element in self.each(kinds[0], eaches(claim)[0].span):
+            found += self._one(require, claim, place, names, named(element))
+        return found
+
+    def each(self, kind: str, span: Span | None) -> list[str]:
+        """Full names of all elements of a kind, blocks included."""
+        if kind not in KINDS:
+            close = nearest(kind, list(KINDS))
+            cure = f"Did you mean {close}?" if close else f"Known are {', '.join(KINDS)}."
+            self.scope.wrong(f"there is no kind {kind}", cure, span)
+            raise Poisoned
+        found = [name for name, element in self.measures.elements.items() if element.kind == kind]
+        if not found:
+            self.scope.wrong(f"the circuit has no {kind}", "Leave the requirement out, or name another kind.", span)
+            raise Poisoned
+        return found
+
+    def _one(
+        self, require: Require, claim: Comparison, place: Place, names: tuple[str, ...], element: Name | None = None
+    ) -> list[Requirement]:
+        def put(expression: Expression | None) -> Expression | None:
+            return expression if expression is None or element is None else put_element(expression, element)
+
+        figure, bound, upper = put(claim.figure), put(claim.bound), put(claim.upper)
+        assert figure is not None
+        wording = _wording(claim, *(self._indexed(each, place) for each in (figure, bound, upper)))
+        if claim.relation == "within":
+            resolved: list[Resolved | None] = [self._tabled(figure, place), None, None]
+        else:
+            resolved = self._compared(figure, bound, upper, place)
+        parts = [None if each is None else each.expression for each in resolved]
+        return [
+            Requirement(name, claim.relation, *parts, wording, require.label, table=claim.table, span=require.span)
+            for name in names
+        ]
+
+    def _compared(
+        self, figure: Expression, bound: Expression | None, upper: Expression | None, place: Place
+    ) -> list[Resolved | None]:
+        first = self.measures.resolve(figure, place)
+        if first.sort != "figure":
+            what = "a signal" if first.sort == "signal" else "a value"
+            cure = "Say which figure of it: `mean(...)`, `rms(...)`, `peak(...)` or `valley(...)`."
+            self.scope.wrong(f"this is {what}, and a requirement needs a figure", cure, span_of(figure))
+            raise Poisoned
+        found: list[Resolved | None] = [first]
+        for limit in (bound, upper):
+            resolved = None if limit is None else self.measures.resolve(limit, place)
+            found.append(resolved)
+            if resolved is None:
+                continue
+            if resolved.sort == "signal":
+                self.scope.wrong("a signal is no limit", "Give a value, or a figure of the signal.", span_of(limit))
+                raise Poisoned
+            if resolved.dimension != first.dimension:
+                self._limit_clash(first.dimension, resolved.dimension, span_of(limit))
+        ends = [each.quantity.value for each in found[1:] if each is not None and each.quantity is not None]
+        if len(ends) == 2 and ends[0] > ends[1]:
+            cure = "Write the lower limit first."
+            self.scope.wrong("the lower limit lies above the upper one", cure, span_of(bound))
+        return found
+
+    def _limit_clash(self, figure: Dimension, limit: Dimension, span: Span | None) -> None:
+        units = [unit_of(each) or "a number without a unit" for each in (figure, limit)]
+        cure = f"The figure is in {units[0]}, the limit in {units[1]}: give the limit in {units[0]}."
+        self.scope.wrong("figure and limit have different units", cure, span)
+        raise Poisoned
+
+    def _tabled(self, figure: Expression, place: Place) -> Resolved:
+        """`harmonics(ELEMENT)`, which is compared with a table of limits."""
+        if not isinstance(figure, Call) or figure.name != "harmonics" or len(figure.arguments) != 1:
+            cure = 'Write `harmonics(ELEMENT) within "..."`.'
+            self.scope.wrong("only the harmonics of an element are compared with a table", cure, span_of(figure))
+            raise Poisoned
+        argument = figure.arguments[0]
+        if not isinstance(argument, Name):
+            self.scope.wrong("harmonics takes an element", "Name one, as in `harmonics(mains)`.", span_of(argument))
+            raise Poisoned
+        full = self.measures.element(argument, place, "harmonics", "branch")
+        return Resolved(replace(figure, arguments=(named(full, argument.span),)), "figure", NONE)
+
+    def _ratings(self, require: Require, claim: Ratings, names: tuple[str, ...]) -> list[Requirement]:
+        elements: dict[str, None] = {}
+        for each in claim.of:
+            if isinstance(each, Each):
+                elements.update(dict.fromkeys(self.each(each.kind, each.span)))
+            else:
+                elements[self.measures.element(each, self.place, "ratings")] = None
+        margin = 0.0
+        for setting in claim.settings:
+            if setting.key != "margin" or not isinstance(setting.value, EXPRESSIONS):
+                self.scope.wrong(f"ratings has no key {setting.key}", "It takes `margin = 20 %`.", setting.span)
+                continue
+            quantity = self.scope.quantity(setting.value, self.place)
+            if quantity.dimension != NONE or not 0.0 <= quantity.value < 1.0:
+                self.scope.wrong("the margin is no share", "Give it between 0 % and 100 %.", span_of(setting.value))
+            margin = quantity.value
+        wording = "ratings" + (f" of {', '.join(elements)}" if claim.of else "")
+        wording += f", margin = {show(margin * 100.0, NONE)} %" if margin else ""
+        return [
+            Requirement(
+                name, "ratings", None, None, None, wording, require.label, tuple(elements), margin, span=require.span
+            )
+            for name in names
+        ]
+
+    def _indexed(self, expression: Expression | None, place: Place) -> Expression | None:
+        """The expression as written, with the repeat's index in numbers."""
+        if expression is None or not place.indices:
+            return expression
+
+        def name(found: Name) -> Name:
+            entry = self.scope.find(found, place)
+            local = str(entry) if isinstance(entry, int) else self.scope.local(found, place)
+            return named(local, found.span)
+
+        return rename(expression, name)
+
+
+def _wording(claim: Comparison, figure: Expression | None, bound: Expression | None, upper: Expression | None) -> str:
+    """The claim as the canonical text has it."""
+    text = write_expression(figure) if figure is not None else ""
+    if claim.relation == "within":
+        return f'{text} within "{claim.table}"'
+    low = write_expression(bound) if bound is not None else ""
+    if claim.relation == "between":
+        return f"{text} between {low} and {write_expression(upper) if upper is not None else ''}"
+    return f"{text} {claim.relation} {low}"

@@ -1,0 +1,288 @@
+"""Names and their values: lets, parameters, data sheets and index variables, each seen from where it stands.
+
+Values are worked out when first asked for, so statements may stand in any order; a let that needs itself is reported.
+It knows names and values, and nothing of elements, graphs or studies.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from grammar.description import Datasheet, Expression, Let, Name, Number, Observe, Parameter, Part, Range, Span
+from grammar.expressions import evaluate, names_in, nearest
+from grammar.mistakes import Mistake
+from grammar.quantities import NONE, Quantity
+from simcore.design.files import Project, Unit
+
+DEEPEST_VALUE = 100
+
+
+class Poisoned(Exception):
+    """A value that can't be had; its mistake is reported already."""
+
+
+@dataclass(frozen=True)
+class Sheet:
+    """A data sheet as a value, with the file whose lets it sees."""
+
+    unit: Unit = field(repr=False, compare=False)
+    node: Datasheet
+
+
+Value = Quantity | Sheet
+
+
+@dataclass(frozen=True, eq=False)
+class Space:
+    """The names of a file or of one copy of a block; prefix makes a local name a full one."""
+
+    unit: Unit
+    prefix: str
+    file: Space | None = None
+
+
+@dataclass(frozen=True, eq=False)
+class Place:
+    """Where a statement stands: its space and the index variables around it."""
+
+    space: Space
+    indices: Mapping[str, int] = field(default_factory=dict)
+
+    @property
+    def inward(self) -> bool:
+        """Whether it stands in a repeat, where every copy must have its own name."""
+        return bool(self.indices)
+
+
+@dataclass(eq=False)
+class Entry:
+    """A let, parameter or observe by its full name; value is None until it is asked for."""
+
+    node: Let | Parameter | Observe
+    full: str
+    place: Place
+    expression: Expression | None
+    value: Value | None = None
+    state: str = "new"
+
+
+def text_of(name: Name) -> str:
+    """A name whose indices are whole numbers, as text: `B[2].mid[1]`."""
+    return ".".join(part.name + "".join(f"[{_index_text(index)}]" for index in part.indices) for part in name.parts)
+
+
+def _index_text(index: Expression | Range) -> str:
+    if isinstance(index, Number):
+        return f"{index.value:.0f}"
+    raise ValueError("an index that is not worked out")
+
+
+def named(text: str, span: Span | None = None) -> Name:
+    """The name that a full name's text stands for."""
+    parts = []
+    for piece in text.split("."):
+        word, *indices = piece.split("[")
+        parts.append(Part(word, tuple(Number(float(index[:-1])) for index in indices)))
+    return Name(tuple(parts), span)
+
+
+class Scope:
+    """All names of a design, and the mistakes found while their values are worked out.
+
+    overrides: full names of lets and parameters with the value that replaces their own, an expression or a data sheet's
+    name as a resolved value
+    moved: full names of lets that a study or a sweep gives other values
+    """
+
+    def __init__(self, project: Project, overrides: Mapping[str, Value]):
+        self.overrides = overrides
+        self.mistakes: list[Mistake] = []
+        self.entries: dict[str, Entry] = {}
+        self.moved: dict[str, None] = {}
+        self.root = Space(project.top, "")
+        self._files: dict[Unit, Space] = {project.top: self.root}
+        self._depth = 0
+
+    def file_space(self, unit: Unit) -> Space:
+        """The names of a used file: those of its own lets, out of every other file's sight."""
+        if unit not in self._files:
+            space = Space(unit, f"{unit.name}|")
+            self._files[unit] = space
+            for statement in unit.description.statements:
+                if isinstance(statement, Let):
+                    self.declare(statement, Place(space))
+        return self._files[unit]
+
+    def wrong(self, what: str, cure: str, span: Span | None) -> None:
+        """Report a mistake."""
+        self.mistakes.append(Mistake(what, cure, span))
+
+    # --- names ---------------------------------------------------------------------------------------------------
+
+    def local(self, name: Name, place: Place) -> str:
+        """A name's text with its indices worked out, as seen from a place."""
+        if len(name.parts) == 1 and not name.parts[0].indices:
+            return name.parts[0].name
+        return ".".join(
+            part.name + "".join(f"[{self._index(index, name, place)}]" for index in part.indices) for part in name.parts
+        )
+
+    def _index(self, index: Expression | Range, name: Name, place: Place) -> int:
+        if isinstance(index, Range):
+            self.wrong("a range of indices stands where one name is wanted", "Give one index.", name.span)
+            raise Poisoned
+        if isinstance(index, Number) and not index.unit and index.value == int(index.value):
+            return int(index.value)
+        return self.whole(index, place, "an index")
+
+    def whole(self, expression: Expression, place: Place, what: str, low: int = -(10**6), high: int = 10**6) -> int:
+        """A whole number, such as an index or a bound of a repeat."""
+        value = self.quantity(expression, place)
+        number = value.value
+        if value.dimension != NONE or abs(number - round(number)) > 1e-9:
+            self.wrong(f"{what} must be a whole number without a unit", "Give a whole number.", span_of(expression))
+            raise Poisoned
+        if not low <= round(number) <= high:
+            cure = f"Keep it between {low} and {high}."
+            self.wrong(f"{what} is {round(number)}, which is out of range", cure, span_of(expression))
+            raise Poisoned
+        return round(number)
+
+    def declare(self, node: Let | Parameter | Observe, place: Place, expression: Expression | None = None) -> None:
+        """Enter a let, parameter or observe under its full name; each name stands for one thing."""
+        name = node.name if isinstance(node.name, Name) else named(node.name, node.span)
+        try:
+            local = self.local(name, place)
+        except Poisoned:
+            return
+        span = name.span or node.span
+        if len(name.parts) > 1:
+            self.wrong(f"{local} can't be declared from outside", "Declare it where it belongs, without the dot.", span)
+            return
+        full = place.space.prefix + local
+        if self._taken(full, local, place, span):
+            return
+        value = expression if isinstance(node, Parameter) else node.value
+        self.entries[full] = Entry(node, full, place, value)
+
+    def _taken(self, full: str, local: str, place: Place, span: Span | None) -> bool:
+        if full in self.entries:
+            cure = "Rename one of the two; in a repeat, carry the index in the name, as in `x[k]`."
+            self.wrong(f"{local} is declared twice", cure, span)
+            return True
+        own_file = place.space.file is None
+        if own_file and local in place.space.unit.sheets:
+            cure = "Rename one of the two: lets, parameters, data sheets and observes share their names."
+            self.wrong(f"{local} is a data sheet already", cure, span)
+            return True
+        if local in place.indices:
+            self.wrong(f"{local} is the index of the repeat around it", "Rename one of the two.", span)
+            return True
+        return False
+
+    def find(self, name: Name, place: Place) -> Entry | Sheet | int | None:
+        """What a name in an expression stands for: an index, an entry or a data sheet; None where nothing does."""
+        local = self.local(name, place)
+        if local in place.indices:
+            return place.indices[local]
+        space = place.space
+        for prefix in (space.prefix, space.file.prefix if space.file is not None else None):
+            if prefix is not None and prefix + local in self.entries:
+                return self.entries[prefix + local]
+        found = space.unit.sheets.get(local)
+        return None if found is None else Sheet(*found)
+
+    def names(self, place: Place) -> list[str]:
+        """Names an expression may hold, for suggesting the nearest."""
+        space = place.space
+        found = [*place.indices, *space.unit.sheets]
+        for full in self.entries:
+            for prefix in (space.prefix, space.file.prefix if space.file is not None else space.prefix):
+                if full.startswith(prefix) and "|" not in full[len(prefix) :]:
+                    found.append(full[len(prefix) :])
+        return list(dict.fromkeys(found))
+
+    # --- values --------------------------------------------------------------------------------------------------
+
+    def value(self, expression: Expression, place: Place) -> Value:
+        """The value of an expression: a quantity, or a data sheet where it only names one."""
+        if isinstance(expression, Name):
+            return self._named(expression, place)
+        return evaluate(expression, lambda name: self._quantity(name, place), self.mistakes)
+
+    def quantity(self, expression: Expression, place: Place) -> Quantity:
+        """The value of an expression that must be a quantity."""
+        value = self.value(expression, place)
+        if isinstance(value, Sheet):
+            cure = "Give a value with its unit."
+            self.wrong(f"{value.node.name} is a data sheet, not a value", cure, span_of(expression))
+            raise Poisoned
+        return value
+
+    def _quantity(self, name: Name, place: Place) -> Quantity:
+        value = self._named(name, place)
+        if isinstance(value, Sheet):
+            self.wrong(f"{value.node.name} is a data sheet, not a value", "Give a value with its unit.", name.span)
+            raise Poisoned
+        return value
+
+    def _named(self, name: Name, place: Place) -> Value:
+        found = self.find(name, place)
+        if found is None:
+            self.unknown(self.local(name, place), self.names(place), name.span)
+            raise Poisoned
+        if isinstance(found, int):
+            return Quantity(float(found), NONE)
+        return found if isinstance(found, Sheet) else self.entry_value(found, name.span)
+
+    def unknown(self, text: str, known: list[str], span: Span | None, what: str = "nothing is named") -> None:
+        """Report a name that stands for nothing, with the nearest that does."""
+        close = nearest(text, known)
+        cure = f"Did you mean {close}?" if close else "Check the name, or declare it."
+        self.wrong(f"{what} {text}", cure, span)
+
+    def entry_value(self, entry: Entry, span: Span | None) -> Value:
+        """The value of a let or parameter, worked out once."""
+        if entry.value is not None:
+            return entry.value
+        if entry.state == "failed":
+            raise Poisoned
+        if isinstance(entry.node, Observe):
+            cure = "Use it in a figure, such as `mean(...)`, or name a let."
+            self.wrong(f"{entry.full} is an observed signal, not a value", cure, span)
+            raise Poisoned
+        if entry.state == "busy" or self._depth > DEEPEST_VALUE:
+            self.wrong(f"{entry.full} depends on itself", "Break the circle: give one of them a value.", span)
+            raise Poisoned
+        entry.state, self._depth = "busy", self._depth + 1
+        try:
+            entry.value = self._worked_out(entry)
+        finally:
+            entry.state, self._depth = "failed" if entry.value is None else "known", self._depth - 1
+        return entry.value
+
+    def _worked_out(self, entry: Entry) -> Value:
+        if entry.full in self.overrides:
+            return self.overrides[entry.full]
+        if entry.expression is None:
+            raise Poisoned
+        return self.value(entry.expression, entry.place)
+
+    def varied(self, expression: Expression, place: Place, depth: int = 0) -> str | None:
+        """The name of a let with a spread, or set by a study or sweep, on which an expression depends."""
+        for name in names_in(expression):
+            found = self.find(name, place)
+            if not isinstance(found, Entry) or depth > DEEPEST_VALUE:
+                continue
+            if found.full in self.moved or (isinstance(found.node, Let) and found.node.spread is not None):
+                return found.full
+            inner = None if found.expression is None else self.varied(found.expression, found.place, depth + 1)
+            if inner is not None:
+                return inner
+        return None
+
+
+def span_of(node: object) -> Span | None:
+    """Where a piece of a description stood."""
+    return getattr(node, "span", None)

@@ -1,0 +1,240 @@
+"""Studies as written, with their values worked out and each name in their actions checked.
+
+It knows the circuit's names, and nothing of how a study is solved.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+from grammar.description import Action, Expression, Name, OverAxis, RangeAxis, Setting, Span, Study, Worst
+from grammar.expressions import nearest
+from grammar.quantities import ANGLE, NONE, SECOND, Quantity, show
+from simcore.design.circuit import Change, PlannedStudy
+from simcore.design.flatten import Flat
+from simcore.design.measures import Measures
+from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, span_of, text_of
+from simcore.design.values import EXPRESSIONS, clash
+
+STUDY_KINDS = {
+    "operating_point": ("angle", "accuracy"),
+    "settled": ("period", "angle", "accuracy", "record_every"),
+    "transient": ("after", "duration", "period", "angle", "last", "accuracy", "record_every"),
+}
+_AMOUNTS = {
+    "duration": SECOND,
+    "period": SECOND,
+    "angle": ANGLE,
+    "last": NONE,
+    "accuracy": NONE,
+    "record_every": SECOND,
+}
+
+
+def moved_lets(flat: Flat) -> dict[str, None]:
+    """Names of lets that studies or sweeps give other values, as far as they are written out."""
+    names: list[Name] = []
+    for study in flat.studies:
+        names += [
+            act.target for act in (*study.actions, *(event.action for event in study.events)) if act.verb == "set"
+        ]
+    for sweep in flat.sweeps:
+        names += [axis.let for axis in sweep.axes if isinstance(axis, RangeAxis | OverAxis)]
+    found = {}
+    for name in names:
+        try:
+            found[text_of(name)] = None
+        except ValueError:
+            continue
+    return found
+
+
+class Studies:
+    """Works out the studies of a design."""
+
+    def __init__(self, scope: Scope, measures: Measures, flat: Flat):
+        self.scope = scope
+        self.measures = measures
+        self.flat = flat
+        self.place = Place(scope.root)
+        self.studies: dict[str, Study] = {}
+
+    def planned(self) -> dict[str, PlannedStudy]:
+        """All studies, in the order written."""
+        for study in self.flat.studies:
+            if study.name in self.studies:
+                self.scope.wrong(f"study {study.name} is declared twice", "Rename one of the two.", study.span)
+            self.studies.setdefault(study.name, study)
+        found = {study.name: self._study(study) for study in self.studies.values()}
+        self._orders()
+        return found
+
+    def _study(self, study: Study) -> PlannedStudy:
+        allowed = STUDY_KINDS.get(study.kind)
+        if allowed is None:
+            close = nearest(study.kind, list(STUDY_KINDS))
+            cure = f"Did you mean {close}?" if close else f"Write {', '.join(STUDY_KINDS)}."
+            self.scope.wrong(f"there is no kind of study {study.kind}", cure, study.span)
+            return PlannedStudy(study.name, study.kind, label=study.label, span=study.span)
+        given: dict[str, Any] = {}
+        for setting in study.settings:
+            if setting.key in given:
+                self.scope.wrong(f"{setting.key} is given twice", "Give each key once.", setting.span)
+            elif setting.key not in allowed:
+                self._no_key(study, setting, allowed)
+            else:
+                given[setting.key] = self._setting(setting)
+        if study.kind == "transient" and "duration" not in given:
+            self.scope.wrong(
+                f"transient {study.name} has no duration", "Add `duration = 100 ms`, or yours.", study.span
+            )
+        changes = [self._change(action) for action in study.actions]
+        events = self._events(study, given.get("duration"))
+        values = {key: value for key, value in given.items() if value is not None}
+        return PlannedStudy(
+            study.name,
+            study.kind,
+            changes=tuple(change for change in changes if change is not None),
+            events=events,
+            label=study.label,
+            span=study.span,
+            **values,
+        )
+
+    def _no_key(self, study: Study, setting: Setting, allowed: tuple[str, ...]) -> None:
+        if setting.key in STUDY_KINDS["transient"]:
+            kinds = [kind for kind, keys in STUDY_KINDS.items() if setting.key in keys]
+            cure = f"It belongs to {' and '.join(kinds)}: leave it out."
+        else:
+            close = nearest(setting.key, list(allowed))
+            cure = f"Did you mean {close}?" if close else f"It takes {', '.join(allowed)}, and actions."
+        self.scope.wrong(f"a study of kind {study.kind} has no key {setting.key}", cure, setting.span)
+
+    def _setting(self, setting: Setting) -> Any:
+        key, value = setting.key, setting.value
+        if isinstance(value, Worst):
+            if key == "angle":
+                self.scope.wrong(
+                    "`worst for` is not available in this version",
+                    "Give the angle, as in `angle = 90 deg`.",
+                    value.span or setting.span,
+                )
+            else:
+                self.scope.wrong("`worst for` is for an angle", f"Give the value of {key}.", value.span or setting.span)
+            return None
+        if not isinstance(value, EXPRESSIONS):
+            self.scope.wrong(f"{key} takes one value", f"Write it as `{key} = ...`.", span_of(value) or setting.span)
+            return None
+        if key == "after":
+            return self._after(value)
+        return self._amount(key, value)
+
+    def _amount(self, key: str, value: Expression) -> float | None:
+        try:
+            quantity = self.scope.quantity(value, self.place)
+        except Poisoned:
+            return None
+        if quantity.dimension != _AMOUNTS[key]:
+            self.scope.wrong(*clash(key, _AMOUNTS[key], quantity.dimension), span_of(value))
+            return None
+        number = quantity.value
+        allowed = {
+            "angle": (-1e6, 1e6, "an angle of a few turns at most"),
+            "last": (1, 1e6, "a whole number of periods"),
+            "accuracy": (1e-9, 0.1, "between 1e-7 % and 10 %"),
+        }
+        low, high, words = allowed.get(key, (1e-15, 1e9, "a time above zero"))
+        if not low <= number <= high or (key == "last" and number != round(number)):
+            shown = show(number, quantity.dimension)
+            self.scope.wrong(f"{key} is {shown}, which it can't be", f"It must be {words}.", span_of(value))
+            return None
+        return number
+
+    def _after(self, value: Expression) -> str | None:
+        name = value.parts[0].name if isinstance(value, Name) and len(value.parts) == 1 else ""
+        study = next((study for study in self.flat.studies if study.name == name), None)
+        if study is None:
+            known = [other.name for other in self.flat.studies]
+            self.scope.unknown(name or "here", known, span_of(value), "no study is named")
+            return None
+        if study.kind == "operating_point":
+            cure = "Begin after a settled or transient study."
+            self.scope.wrong(f"{name} is an operating point, which has no end to go on from", cure, span_of(value))
+            return None
+        return name
+
+    def _orders(self) -> None:
+        """No study comes after itself, over however many others."""
+        after = {}
+        for study in self.studies.values():
+            for setting in study.settings:
+                if setting.key == "after" and isinstance(setting.value, Name):
+                    after[study.name] = setting.value.parts[0].name
+        for name in after:
+            walk, seen = after.get(name), 0
+            while walk is not None and walk != name and seen <= len(after):
+                walk, seen = after.get(walk), seen + 1
+            if walk == name:
+                span = self.studies[name].span
+                self.scope.wrong(f"study {name} comes after itself", "Let one of them start from rest.", span)
+
+    def _events(self, study: Study, duration: float | None) -> tuple[tuple[float, Change], ...]:
+        found = []
+        if study.events and study.kind != "transient":
+            cure = "Put the action among the study's keys, or make it a transient."
+            self.scope.wrong(f"a study of kind {study.kind} has no instants", cure, study.events[0].span)
+            return ()
+        for event in study.events:
+            change = self._change(event.action)
+            try:
+                time = self.scope.quantity(event.time, self.place)
+            except Poisoned:
+                continue
+            if time.dimension != SECOND:
+                self.scope.wrong(*clash("the time of an action", SECOND, time.dimension), span_of(event.time))
+            elif time.value < 0.0 or (duration is not None and time.value > duration):
+                cure = f"Keep it between 0 s and {show(duration or 0.0, SECOND)}, the study's duration."
+                self.scope.wrong("the action does not lie within the study", cure, span_of(event.time))
+            elif change is not None:
+                found.append((time.value, change))
+        return tuple(sorted(found, key=lambda pair: pair[0]))
+
+    def _change(self, action: Action) -> Change | None:
+        try:
+            if action.verb == "set":
+                return self._set(action)
+            full = self.measures.element(action.target, self.place, action.verb)
+        except Poisoned:
+            return None
+        return Change(action.verb, full, None, action.span)
+
+    def _set(self, action: Action) -> Change:
+        entry = self.let(action.target)
+        assert action.value is not None
+        now = self.scope.entry_value(entry, action.target.span)
+        value = self.scope.value(action.value, self.place)
+        self.alike(entry.full, now, value, span_of(action.value))
+        return Change("set", entry.full, value.node.name if isinstance(value, Sheet) else value, action.span)
+
+    def let(self, name: Name) -> Entry:
+        """The let or parameter that a name means."""
+        found = self.scope.find(name, self.place)
+        if isinstance(found, Entry) and found.expression is not None:
+            return found
+        local = self.scope.local(name, self.place)
+        if found is not None:
+            self.scope.wrong(f"{local} is no let", "Only a let can be set: declare one and use it.", name.span)
+        else:
+            self.scope.unknown(local, [*self.scope.entries], name.span, "no let is named")
+        raise Poisoned
+
+    def alike(self, full: str, now: Value, value: Value, span: Span | None) -> None:
+        """A let keeps its dimension, and a data sheet its kind."""
+        if isinstance(now, Quantity) and isinstance(value, Quantity):
+            if now.dimension != value.dimension:
+                self.scope.wrong(*clash(f"the new value of {full}", now.dimension, value.dimension), span)
+                raise Poisoned
+        elif isinstance(now, Quantity) or isinstance(value, Quantity) or now.node.kind != value.node.kind:
+            what = "a value" if isinstance(now, Quantity) else f"a data sheet of a {now.node.kind}"
+            self.scope.wrong(f"{full} is {what}, and this is something else", f"Give {what}.", span)
+            raise Poisoned

@@ -1,0 +1,45 @@
+"""Data sheets and blocks of the top file that nothing uses: checked all the same, so that no mistake sleeps there.
+
+It knows declarations and names, and no circuit.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from grammar.description import Block, Datasheet, Element, Repeat, Statement
+from grammar.expressions import nearest
+from simcore.components import KINDS
+from simcore.design.flatten import Flat
+from simcore.design.scopes import Scope, Sheet
+from simcore.design.values import Reader
+
+
+def check_unused(scope: Scope, reader: Reader, flat: Flat) -> None:
+    """Report what is wrong in data sheets and blocks of the top file, whether or not an element needs them."""
+    unit = scope.root.unit
+    for statement in unit.description.statements:
+        if isinstance(statement, Datasheet):
+            kind = KINDS.get(statement.kind)
+            if kind is None:
+                _no_kind(scope, statement, list(KINDS))
+            else:
+                reader.sheet(Sheet(unit, statement), kind)
+        elif isinstance(statement, Block) and statement.name not in flat.blocks_used:
+            _kinds(scope, statement.body)
+
+
+def _kinds(scope: Scope, statements: Sequence[Statement]) -> None:
+    for statement in statements:
+        if isinstance(statement, Repeat):
+            _kinds(scope, statement.body)
+        elif isinstance(statement, Element):
+            known = [*KINDS, *scope.root.unit.blocks]
+            if statement.kind not in known:
+                _no_kind(scope, statement, known)
+
+
+def _no_kind(scope: Scope, statement: Element | Datasheet, known: list[str]) -> None:
+    close = nearest(statement.kind, known)
+    cure = f"Did you mean {close}?" if close else f"Known are {', '.join(known)}."
+    scope.wrong(f"there is no kind {statement.kind}", cure, statement.span)
