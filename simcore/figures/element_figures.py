@@ -96,12 +96,7 @@ def junction_temperature(record: Record, name: str) -> Figure:
 
 def largest_stored_energy(record: Record, name: str | None = None) -> Figure:
     """Largest energy in the fields of an element, or of the whole circuit without a name, in the window, J."""
-    if name is None:
-        stored: Signal | None = total_stored_energy(record)
-    else:
-        stored = stored_energy(record, record.part(name).element)
-    if stored is None:
-        return Figure(0.0, JOULE, note=f"{name} stores no energy")
+    stored = total_stored_energy(record) if name is None else stored_energy(record, record.part(name).element.name)
     return Figure(record.window(stored).highest(), JOULE)
 
 

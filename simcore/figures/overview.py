@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
-from grammar.quantities import JOULE, NONE
+from grammar.quantities import JOULE, NONE, SECOND, show
 from simcore.design.circuit import Element
 from simcore.figures import element_figures, measure
 from simcore.figures.expressions import observed
@@ -113,6 +113,7 @@ class Balance:
     loads: taken by all that is no source, diode or store; windings_and_leads: lost in the resistances of capacitors,
     inductors and transformers; stored: rise of the energy in their fields and in those of the sources' inductances
     imbalance: what is missing; share: its magnitude over the energy that flowed, no unit
+    note: why the books cannot close, "" where they must
     """
 
     delivered: Figure
@@ -122,6 +123,7 @@ class Balance:
     stored: Figure
     imbalance: Figure
     share: Figure
+    note: str = ""
 
 
 def balance(record: Record) -> Balance:
@@ -139,14 +141,26 @@ def balance(record: Record) -> Balance:
         element for element in record.circuit.elements.values() if element.kind not in (*DELIVERING, *VALVES, *STORES)
     ]
     loads = _taken(record, others)
-    losses = [measure.energy(record.window(resistive_loss(record, element))) for element in stores]
-    lost = sum((figure.value for figure in losses), 0.0)
+    losses = [record.window(resistive_loss(record, element.name)) for element in stores]
+    lost = sum((loss.integral() for loss in losses), 0.0)
     stored = sum((_rise(record, element) for element in stores), 0.0)
     missing = delivered - loads - diodes - lost - stored
     flowed += abs(stored)
     share = Figure(abs(missing) / flowed, NONE) if flowed > 0.0 else undefined(NONE, "no energy flowed")
     values = (delivered, loads, diodes, lost, stored, missing)
-    return Balance(*(Figure(value, JOULE, scale=flowed) for value in values), share)
+    return Balance(*(Figure(value, JOULE, scale=flowed) for value in values), share, _disturbance(record))
+
+
+def _disturbance(record: Record) -> str:
+    """An event that changes what is stored: the jump it makes is in no element's power."""
+    start, end = record.solution.window
+    elements = record.circuit.elements
+    for time, change in record.solution.study.events:
+        owner = change.target if change.target in elements else change.target.rpartition(".")[0]
+        touches = change.verb == "set" or (owner in elements and elements[owner].kind in STORES)
+        if touches and start <= time < end:
+            return f"{change.verb} {change.target} at {show(time, SECOND)} may change what is stored without any power"
+    return ""
 
 
 def _taken(record: Record, elements: list[Element]) -> float:
@@ -154,9 +168,6 @@ def _taken(record: Record, elements: list[Element]) -> float:
 
 
 def _rise(record: Record, element: Element) -> float:
-    stored = stored_energy(record, element)
-    if stored is None:
-        return 0.0
-    part = record.window(stored)
+    part = record.window(stored_energy(record, element.name))
     starts, ends = part.piece_ends
     return float(ends[-1] - starts[0])

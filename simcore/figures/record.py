@@ -35,6 +35,10 @@ class Solved(Protocol):
 
     def current(self, element: str, port: str = "") -> Array: ...
 
+    def series(self, element: str) -> list[Array]:
+        """Each series branch of an element: resistance, inductance, capacitance, current, voltage; shape (5, n, 3)."""
+        ...
+
     def temperature(self, element: str) -> float: ...
 
 

@@ -1,121 +1,92 @@
-"""Energy stored in an element and lost in its own resistances, from its port signals and what is given of it.
+"""Energy stored in the fields of elements and lost in their resistances, from the series branches of a solution.
 
-Solvers and the language are not known here.
+Component kinds are not known here: a branch has a resistance, an inductance and a capacitance, whatever it belongs to.
 """
 
 from __future__ import annotations
 
+from typing import NamedTuple
 
-from grammar.quantities import JOULE, VOLT, WATT
-from simcore.design.circuit import Element
+import numpy as np
+
+from grammar.quantities import AMPERE, FARAD, HENRY, JOULE, OHM, VOLT, WATT, Dimension
 from simcore.figures import polynomials
+from simcore.figures.polynomials import Array
 from simcore.figures.record import Record
 from simcore.figures.signal import Signal
 
 
-def stored_energy(record: Record, element: Element) -> Signal | None:
-    """Energy in the fields of an element over the whole study, J; None for an element that stores none."""
-    former = _FORMERS.get(element.kind)
-    return None if former is None else former(record, element)
+class _Branch(NamedTuple):
+    """Constants may change from piece to piece; the voltage is that across all three."""
+
+    resistance: Signal
+    inductance: Signal
+    capacitance: Signal
+    current: Signal
+    voltage: Signal
+
+
+_DIMENSIONS: tuple[Dimension, ...] = (OHM, HENRY, FARAD, AMPERE, VOLT)
+
+
+def stored_energy(record: Record, element: str) -> Signal:
+    """Energy in the fields of an element over the whole study, J; zero for one that stores none."""
+    return record.keep(("stored", element), lambda: _stored(record, element))
 
 
 def total_stored_energy(record: Record) -> Signal:
     """Energy stored in all elements together, J."""
     total = Signal.constant(record.times, 0.0, JOULE)
-    for element in record.circuit.elements.values():
-        energy = stored_energy(record, element)
-        if energy is not None:
-            total = total + energy
+    for element in record.circuit.elements:
+        total = total + stored_energy(record, element)
     return total
 
 
-def resistive_loss(record: Record, element: Element) -> Signal:
-    """Power lost in the resistances of an element that stores energy, W."""
+def resistive_loss(record: Record, element: str) -> Signal:
+    """Power lost in the resistances of an element, W."""
     total = Signal.constant(record.times, 0.0, WATT)
-    for port, resistance in zip(element.ports, _resistances(element), strict=True):
-        current = record.port_current(element, port)
-        total = total + (current * current).scaled(resistance, WATT)
-    leakage = element.given.get("leakage_resistance")
-    if element.kind == "capacitor" and leakage:
-        inner = _inner_voltage(record, element)
-        total = total + (inner * inner).scaled(1.0 / leakage, WATT)
+    for branch in _branches(record, element):
+        if np.any(branch.resistance.coefficients):
+            total = total + (branch.resistance * branch.current * branch.current).scaled(1.0, WATT)
     return total
 
 
-def _resistances(element: Element) -> tuple[float, ...]:
-    given = element.given
-    if element.kind == "transformer":
-        return tuple(given.get("resistance", (0.0,) * len(element.ports)))
-    if element.kind in ("source", "three_phase"):
-        return (0.0,) * len(element.ports)
-    return (float(given.get("series_resistance", 0.0)),) * len(element.ports)
+def _stored(record: Record, element: str) -> Signal:
+    total = Signal.constant(record.times, 0.0, JOULE)
+    for branch in _branches(record, element):
+        if np.any(branch.inductance.coefficients):
+            total = total + (branch.inductance * branch.current * branch.current).scaled(0.5, JOULE)
+        if np.any(branch.capacitance.coefficients):
+            inner = _across_capacitance(branch)
+            total = total + (branch.capacitance * inner * inner).scaled(0.5, JOULE)
+    return total
 
 
-def _inner_voltage(record: Record, element: Element) -> Signal:
-    """Voltage across a capacitance and its leakage, behind the resistance and inductance of the leads, V."""
-    given, port = element.given, element.ports[0]
-    inner, current = record.between(port.a, port.b), record.port_current(element, port)
-    if given.get("series_resistance"):
-        inner = inner - current.scaled(given["series_resistance"], VOLT)
-    if given.get("series_inductance"):
-        inner = inner - slope(current).scaled(given["series_inductance"], VOLT)
+def _branches(record: Record, element: str) -> list[_Branch]:
+    found = []
+    for rows in record.solution.series(element):
+        pairs = zip(rows, _DIMENSIONS, strict=True)
+        found.append(_Branch(*(_signal(record.times, values, dimension) for values, dimension in pairs)))
+    return found
+
+
+def _signal(times: Array, values: Array, dimension: Dimension) -> Signal:
+    """Constants stay of order zero, so that products stay short."""
+    if np.all(values == values[:, :1]):
+        return Signal(times, values[:, :1].copy(), dimension)
+    return Signal.through(times, values, dimension)
+
+
+def _across_capacitance(branch: _Branch) -> Signal:
+    inner = branch.voltage
+    if np.any(branch.resistance.coefficients):
+        inner = inner - branch.resistance * branch.current
+    if np.any(branch.inductance.coefficients):
+        inner = inner - (branch.inductance * slope(branch.current)).scaled(1.0, VOLT)
     return inner
-
-
-def _capacitor(record: Record, element: Element) -> Signal:
-    inner = _inner_voltage(record, element)
-    energy = (inner * inner).scaled(0.5 * element.given["capacitance"], JOULE)
-    inductance = element.given.get("series_inductance")
-    if inductance:
-        energy = energy + _half_square(record.port_current(element, element.ports[0]), inductance)
-    return energy
-
-
-def _inductor(record: Record, element: Element) -> Signal:
-    return _half_square(record.port_current(element, element.ports[0]), element.given["inductance"])
-
-
-def _source(record: Record, element: Element) -> Signal | None:
-    inductance = element.given.get("series_inductance")
-    if not inductance:
-        return None
-    total = Signal.constant(record.times, 0.0, JOULE)
-    for port in element.ports:
-        total = total + _half_square(record.port_current(element, port), inductance)
-    return total
-
-
-def _transformer(record: Record, element: Element) -> Signal | None:
-    given = element.given
-    turns = given.get("turns")
-    if turns is None:
-        return None
-    currents = [record.port_current(element, port) for port in element.ports]
-    total = Signal.constant(record.times, 0.0, JOULE)
-    for current, leakage in zip(currents, given.get("leakage", (0.0,) * len(currents)), strict=True):
-        total = total + _half_square(current, leakage)
-    if given.get("magnetising"):
-        joint = currents[0]
-        for current, number in zip(currents[1:], turns[1:], strict=True):
-            joint = joint + current * (number / turns[0])
-        total = total + _half_square(joint, given["magnetising"])
-    return total
-
-
-def _half_square(current: Signal, inductance: float) -> Signal:
-    return (current * current).scaled(0.5 * inductance, JOULE)
 
 
 def slope(signal: Signal) -> Signal:
     """d/dt piece by piece, in the signal's unit a second; one order less accurate than the signal."""
     rows = polynomials.derivative(signal.coefficients) * (2.0 / signal.widths)[:, None]
     return Signal(signal.times, rows, signal.dimension)
-
-
-_FORMERS = {
-    "capacitor": _capacitor,
-    "inductor": _inductor,
-    "transformer": _transformer,
-    "source": _source,
-    "three_phase": _source,
-}

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from simcore.components import KINDS
-from simcore.components.frame import Part
+from simcore.components.frame import Part, SeriesBranch
 from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.solve.stretch import Stretch
 
@@ -50,6 +50,18 @@ class Solution:
                 if weight is not None:
                     total = total + weight.constant * stretch.current(index)
         return total
+
+    def series(self, element: str) -> list[np.ndarray]:
+        """An element's series branches as in Stretch.series, shape (5, n, 3) each; zero while it is taken out."""
+        found: dict[tuple[str, int], list[np.ndarray]] = {}
+        for place, stretch in enumerate(self.stretches):
+            seen: dict[str, int] = {}
+            for index, branch in enumerate(stretch.system.frame.branches):
+                if branch.element == element and isinstance(branch, SeriesBranch):
+                    seen[branch.port] = seen.get(branch.port, 0) + 1
+                    blank = [np.zeros((5, *other.shape)) for other in self.stretches]
+                    found.setdefault((branch.port, seen[branch.port]), blank)[place] = stretch.series(index)
+        return [np.concatenate(pieces, axis=1) for pieces in found.values()]
 
     def temperature(self, element: str) -> float:
         """What an element runs at, in K."""

@@ -11,7 +11,7 @@ from functools import cached_property
 
 import numpy as np
 
-from simcore.components.frame import CurrentBranch, Weights
+from simcore.components.frame import CurrentBranch, SeriesBranch, Weights
 from simcore.equations.assemble import System, is_resistor
 from simcore.equations.plain import evaluate
 from simcore.equations.reduce import forces_voltage
@@ -70,6 +70,17 @@ class Stretch:
         if is_resistor(branch):
             return self.voltage(branch.weights) / self._evaluate(branch.resistance)
         return self._forced[self.system.reduction.constraints.index(index)]
+
+    def series(self, branch: int) -> np.ndarray:
+        """Resistance, inductance, capacitance (zero where there is none), current, voltage less that of the source.
+
+        Of a series branch, in SI units; shape (5, n, 3).
+        """
+        part = self.system.frame.branches[branch]
+        assert isinstance(part, SeriesBranch)
+        capacitance = self.system.frame.graph.zero if part.capacitance is None else part.capacitance
+        numbers = [self._evaluate(value) for value in (part.resistance, part.inductance, capacitance, part.source)]
+        return np.stack([*numbers[:3], self.current(branch), self.voltage(part.weights) - numbers[3]])
 
     @cached_property
     def _free_sums(self) -> dict[Hashable, np.ndarray]:

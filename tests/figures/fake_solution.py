@@ -20,7 +20,8 @@ def three_points(times: np.ndarray, function: Function) -> np.ndarray:
 
 @dataclass
 class FakeSolution:
-    """Potentials by node and currents by (element, port), as functions of time."""
+    """Potentials by node, currents by (element, port), and by element its series branches (resistance, inductance,
+    capacitance, current, voltage), as functions of time."""
 
     circuit: Circuit
     times: np.ndarray
@@ -31,6 +32,7 @@ class FakeSolution:
     first_event: float | None = None
     study: PlannedStudy = field(default_factory=lambda: PlannedStudy("run", "transient"))
     temperatures: dict[str, float] = field(default_factory=dict)
+    branches: dict[str, list[tuple[Function, ...]]] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
         if self.window is None:
@@ -41,6 +43,12 @@ class FakeSolution:
 
     def current(self, element: str, port: str = "") -> np.ndarray:
         return three_points(self.times, self.currents[element, port])
+
+    def series(self, element: str) -> list[np.ndarray]:
+        return [
+            np.stack([three_points(self.times, function) for function in functions])
+            for functions in self.branches.get(element, [])
+        ]
 
     def temperature(self, element: str) -> float:
         return self.temperatures.get(element, 298.15)
@@ -69,6 +77,11 @@ def circuit_of(
 def branch(name: str, kind: str, a: str, b: str, **given: object) -> Element:
     """An element of two terminals."""
     return Element(name, kind, (Port("", a, b),), given)
+
+
+def steady(value: float) -> Function:
+    """The same value at any time."""
+    return lambda t: value + 0.0 * t
 
 
 def zero(t: np.ndarray) -> np.ndarray:

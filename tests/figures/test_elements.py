@@ -15,7 +15,7 @@ from simcore.figures.expressions import name_text, signal_of
 from simcore.figures.figure import SAFETY
 from simcore.figures.overview import balance, diode_rows, signal_rows
 from simcore.figures.record import Record, UnknownName
-from tests.figures.fake_solution import FakeSolution, branch, circuit_of, zero
+from tests.figures.fake_solution import FakeSolution, branch, circuit_of, steady, zero
 
 FREQUENCY, PERIOD = 50.0, 0.02
 OMEGA = 2.0 * math.pi * FREQUENCY
@@ -221,7 +221,11 @@ def oscillation() -> FakeSolution:
     )
     times = np.linspace(0.0, 2.0 * math.pi / rate * 0.8, 4001)
     currents = {("L1", ""): current, ("C1", ""): lambda t: -current(t)}
-    return FakeSolution(circuit, times, {"a": node, "0": zero}, currents)
+    branches = {
+        "L1": [(steady(-0.1), steady(1e-3), zero, current, node)],
+        "C1": [(steady(0.1), zero, steady(1e-3), lambda t: -current(t), node)],
+    }
+    return FakeSolution(circuit, times, {"a": node, "0": zero}, currents, branches=branches)
 
 
 def test_stored_energy_is_behind_the_series_resistance() -> None:
@@ -235,12 +239,41 @@ def test_stored_energy_is_behind_the_series_resistance() -> None:
 
 def test_a_transformer_stores_what_its_windings_magnetise_together() -> None:
     ports = (Port("w1", "a", "0"), Port("w2", "b", "0"))
-    given = {"turns": (100.0, 10.0), "magnetising": 2.0, "leakage": (0.5, 0.25)}
-    circuit = circuit_of([Element("T1", "transformer", ports, given)])
-    currents = {("T1", "w1"): lambda t: 3.0 + zero(t), ("T1", "w2"): lambda t: -20.0 + zero(t)}
-    solution = FakeSolution(circuit, np.linspace(0.0, 1.0, 3), dict.fromkeys(("a", "b", "0"), zero), currents)
-    expected = 0.5 * 2.0 * (3.0 - 20.0 * 0.1) ** 2 + 0.5 * 0.5 * 9.0 + 0.5 * 0.25 * 400.0
+    circuit = circuit_of([Element("T1", "transformer", ports, {})])
+    branches = [
+        (zero, steady(inductance), zero, steady(current), zero)
+        for inductance, current in [(0.5, 3.0), (0.25, -20.0), (2.0, 1.0)]
+    ]
+    times = np.linspace(0.0, 1.0, 3)
+    solution = FakeSolution(circuit, times, dict.fromkeys(("a", "b", "0"), zero), {}, branches={"T1": branches})
+    expected = 0.5 * 0.5 * 9.0 + 0.5 * 0.25 * 400.0 + 0.5 * 2.0 * 1.0
     assert value(call("stored_energy", "T1"), {"run": Record(solution)}) == pytest.approx(expected, rel=1e-12)
+
+
+def test_a_capacitance_that_changes_on_the_way_counts_as_it_is() -> None:
+    circuit = circuit_of([branch("C1", "capacitor", "a", "0")])
+
+    def capacitance(t: np.ndarray) -> np.ndarray:
+        return np.where(t < 0.5, 1.0, 3.0)
+
+    times = np.array([0.0, 0.49, 0.5, 1.0])
+    branches = {"C1": [(zero, zero, capacitance, zero, steady(2.0))]}
+    solution = FakeSolution(circuit, times, {"a": steady(2.0), "0": zero}, {}, branches=branches)
+    assert value(call("stored_energy", "C1"), {"run": Record(solution)}) == pytest.approx(6.0, rel=1e-12)
+
+
+def test_lead_inductance_is_taken_off_the_capacitors_voltage() -> None:
+    # u = L di/dt + R i + u_C with i = 2 t, L = 3, R = 5, u_C = 7: u = 6 + 10 t + 7.
+    circuit = circuit_of([branch("C1", "capacitor", "a", "0")])
+    solution = FakeSolution(
+        circuit,
+        np.linspace(0.0, 1.0, 5),
+        {"a": zero, "0": zero},
+        {},
+        branches={"C1": [(steady(5.0), steady(3.0), steady(0.2), lambda t: 2.0 * t, lambda t: 13.0 + 10.0 * t)]},
+    )
+    expected = 0.5 * 0.2 * 49.0 + 0.5 * 3.0 * 4.0
+    assert value(call("stored_energy", "C1"), {"run": Record(solution)}) == pytest.approx(expected, rel=1e-12)
 
 
 def test_the_books_close_where_energy_is_conserved_and_not_where_it_is_not() -> None:
