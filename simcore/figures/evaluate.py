@@ -13,14 +13,12 @@ from functools import reduce
 import numpy as np
 
 from grammar.description import Binary, Call, Expression, Name, Negative, Number
-from grammar.quantities import NONE
+from grammar.quantities import NONE, Quantity
 from simcore.figures.catalogue import FIGURES
 from simcore.figures.element_figures import COMPUTE
 from simcore.figures.expressions import (
     FUNCTIONS,
     function_dimension,
-    guarded,
-    let_value,
     name_text,
     quantity_of,
     signal_of,
@@ -31,8 +29,6 @@ from simcore.figures.signal import Signal, SignalError
 
 Records = Mapping[str, Record]
 """The record of each study that has been solved, by its name."""
-
-MOST_HARMONIC = 10_000
 
 
 def figure_of(expression: Expression, study: str, records: Records) -> Figure:
@@ -60,9 +56,6 @@ def _figure(expression: Expression, study: str, records: Records) -> Figure:
     if isinstance(expression, Number):
         quantity = quantity_of(expression)
         return plain(quantity.value, quantity.dimension)
-    if isinstance(expression, Name):
-        quantity = let_value(name_text(expression), _record(study, records))
-        return plain(quantity.value, quantity.dimension)
     if isinstance(expression, Negative):
         return -_figure(expression.operand, study, records)
     if isinstance(expression, Binary):
@@ -74,7 +67,7 @@ def _figure(expression: Expression, study: str, records: Records) -> Figure:
         if expression.name in FUNCTIONS:
             return _function(expression.name, [_figure(part, study, records) for part in expression.arguments])
         raise UnknownName(f"{expression.name} is no figure")
-    raise UnknownName("this is no figure")
+    raise UnknownName(f"{name_text(expression) if isinstance(expression, Name) else 'this'} is no figure")
 
 
 def _record(study: str, records: Records) -> Record:
@@ -93,24 +86,21 @@ def _figure_call(call: Call, record: Record) -> Figure:
 
 def _argument(kind: str, argument: Expression, record: Record) -> Signal | str | float | int:
     """One argument as the computation takes it; see COMPUTE."""
-    if kind == "signal":
-        return signal_of(argument, record)
-    if kind == "signal or branch":
-        if isinstance(argument, Name) and name_text(argument) not in record.circuit.observes:
-            return record.current(name_text(argument))
+    if kind in ("signal", "signal or branch"):
         return signal_of(argument, record)
     if kind in ("level", "count"):
-        figure = _figure(argument, record.solution.study.name, {record.solution.study.name: record})
-        return figure.value if kind == "level" else _order(figure)
+        if not isinstance(argument, Number):
+            raise UnknownName("this figure takes a number")
+        return quantity_of(argument).value if kind == "level" else _order(quantity_of(argument))
     if not isinstance(argument, Name):
         raise UnknownName("this figure takes the name of an element")
     return name_text(argument)
 
 
-def _order(figure: Figure) -> int:
-    if figure.dimension != NONE or not 1 <= figure.value <= MOST_HARMONIC or figure.value != round(figure.value):
-        raise SignalError(f"the order of a harmonic is a whole number from 1 to {MOST_HARMONIC}")
-    return int(figure.value)
+def _order(quantity: Quantity) -> int:
+    if quantity.dimension != NONE or quantity.value < 1.0 or quantity.value != round(quantity.value):
+        raise SignalError("the order of a harmonic is a whole number from 1 on")
+    return int(quantity.value)
 
 
 def _binary(operator: str, left: Figure, right: Figure) -> Figure:
@@ -126,14 +116,18 @@ def _binary(operator: str, left: Figure, right: Figure) -> Figure:
         raise SignalError("an exponent is a plain number")
     if not (left.defined and right.defined):
         return left * right
-    return Figure(guarded(lambda: left.value**right.value), left.dimension**right.value, note=left.note)
+    with np.errstate(all="ignore"):
+        value = float(np.float64(left.value) ** right.value)
+    if math.isnan(value):
+        raise SignalError("a power is not defined there")
+    return Figure(value, left.dimension**right.value, note=left.note)
 
 
 def _function(name: str, figures: list[Figure]) -> Figure:
     missing = next((figure for figure in figures if not figure.defined), None)
     if missing is not None:
         return missing
-    dimension = function_dimension(name, figures[0].dimension)
+    dimension = function_dimension(name, [figure.dimension for figure in figures])
     numbers = [np.asarray(figure.value) for figure in figures]
     with np.errstate(all="ignore"):
         value = float(reduce(FUNCTIONS[name], numbers) if name in ("min", "max") else FUNCTIONS[name](*numbers))

@@ -160,6 +160,10 @@ class Signal:
         return self * other
 
     def __truediv__(self, other: Signal | float) -> Signal:
+        if isinstance(other, Signal) and other.coefficients.size == 1:
+            if other.coefficients[0, 0] == 0.0:
+                raise SignalError("it divides by zero")
+            return self.scaled(1.0 / float(other.coefficients[0, 0]), self.dimension / other.dimension)
         if isinstance(other, Signal):
             return fitted(lambda a, b: a / b, aligned(self, other), self.dimension / other.dimension)
         return Signal(self.times, self.coefficients / other, self.dimension)

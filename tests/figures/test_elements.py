@@ -94,7 +94,7 @@ def test_figures_of_a_half_wave_rectifier(records: dict[str, Record]) -> None:
     assert value(call("displacement_factor", "R_L"), records) == pytest.approx(1.0, rel=INTERPOLATION)
     assert value(call("efficiency", "mains", "R_L"), records) == pytest.approx(1.0, rel=INTERPOLATION)
     assert value(call("utilisation", "mains", "R_L"), records) == pytest.approx(math.sqrt(0.5), rel=INTERPOLATION)
-    assert value(call("i2t", "D1"), records) == pytest.approx(PERIOD, rel=INTERPOLATION)
+    assert value(call("i2t", call("current", "D1")), records) == pytest.approx(PERIOD, rel=INTERPOLATION)
     assert value(call("conduction_angle", "D1"), records) == pytest.approx(math.pi - 2e-3, abs=1e-6)
     assert value(call("junction_temperature", "D1"), records) == 298.15
     assert value(call("harmonic", call("current", "D1"), Number(2.0)), records) == pytest.approx(
@@ -122,7 +122,7 @@ def test_what_has_no_value_says_why(records: dict[str, Record]) -> None:
         "no element is called R_X": call("mean_power", "R_X"),
         "whole number": call("harmonic", "u_out", Number(1.5)),
         "no figure": call("voltage", "u"),
-        "neither a signal nor a value": call("mean", "nowhere"),
+        "nothing observed is called nowhere": call("mean", "nowhere"),
     }
     for words, expression in cases.items():
         figure = figure_of(expression, "run", records)
