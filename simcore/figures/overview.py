@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
+from functools import partial
 
 from grammar.quantities import JOULE, NONE, SECOND, show
 from simcore.design.circuit import Element
@@ -51,17 +52,25 @@ def shown_signals(record: Record) -> dict[str, tuple[Callable[[Record], Signal],
     """Name -> (how to form it, label): what is observed; where nothing is, all node voltages and element currents."""
     shown: dict[str, tuple[Callable[[Record], Signal], str | None]] = {}
     for name, observe in record.circuit.observes.items():
-        shown[name] = (lambda of, name=name: observed(name, of), observe.label)
+        shown[name] = (partial(observed, name), observe.label)
     if shown:
         return shown
     for node in record.circuit.nodes():
         if node not in record.circuit.references:
-            shown[f"voltage({node})"] = (lambda of, node=node: of.between(node), None)
+            shown[f"voltage({node})"] = (partial(_node_voltage, node), None)
     for element in record.circuit.elements.values():
         for port in element.ports:
             name = element.name if len(element.ports) == 1 else f"{element.name}.{port.name}"
-            shown[f"current({name})"] = (lambda of, name=name: of.current(name), None)
+            shown[f"current({name})"] = (partial(_current, name), None)
     return shown
+
+
+def _node_voltage(node: str, record: Record) -> Signal:
+    return record.between(node)
+
+
+def _current(name: str, record: Record) -> Signal:
+    return record.current(name)
 
 
 def signal_rows(fine: Record, coarse: Record | None = None) -> list[Row]:
@@ -85,10 +94,13 @@ def diode_rows(fine: Record, coarse: Record | None = None) -> list[Row]:
     for element in _of_kinds(fine, VALVES):
         figures = {}
         for column, figure in DIODE_COLUMNS.items():
-            name = element.name
-            figures[column] = _with_bound(lambda of, name=name, figure=figure: figure(of, name), fine, coarse)
+            figures[column] = _with_bound(_of_element(figure, element.name), fine, coarse)
         rows.append(Row(element.name, element.label, figures))
     return rows
+
+
+def _of_element(figure: Callable[[Record, str], Figure], name: str) -> Callable[[Record], Figure]:
+    return lambda record: figure(record, name)
 
 
 def _with_bound(figure: Callable[[Record], Figure], fine: Record, coarse: Record | None) -> Figure:
@@ -111,7 +123,7 @@ class Balance:
     """The energy books of the judged window, J: delivered = loads + diodes + windings_and_leads + stored + imbalance.
 
     loads: taken by all that is no source, diode or store; windings_and_leads: lost in the resistances of capacitors,
-    inductors and transformers; stored: rise of the energy in their fields and in those of the sources' inductances
+    inductors and transformers; stored: rise of the energy in their fields
     imbalance: what is missing; share: its magnitude over the energy that flowed, no unit
     note: why the books cannot close, "" where they must
     """
@@ -147,8 +159,8 @@ def balance(record: Record) -> Balance:
     missing = delivered - loads - diodes - lost - stored
     flowed += abs(stored)
     share = Figure(abs(missing) / flowed, NONE) if flowed > 0.0 else undefined(NONE, "no energy flowed")
-    values = (delivered, loads, diodes, lost, stored, missing)
-    return Balance(*(Figure(value, JOULE, scale=flowed) for value in values), share, _disturbance(record))
+    sums = [Figure(value, JOULE, scale=flowed) for value in (delivered, loads, diodes, lost, stored, missing)]
+    return Balance(sums[0], sums[1], sums[2], sums[3], sums[4], sums[5], share, _disturbance(record))
 
 
 def _disturbance(record: Record) -> str:

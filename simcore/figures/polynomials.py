@@ -86,7 +86,7 @@ def lobatto_points(order: int) -> Array:
 
 @lru_cache(maxsize=64)
 def _from_points(order: int) -> Array:
-    return np.linalg.inv(np.vander(lobatto_points(order), order + 1, increasing=True))
+    return np.asarray(np.linalg.inv(np.vander(lobatto_points(order), order + 1, increasing=True)), dtype=np.float64)
 
 
 def through(samples: Array) -> Array:
