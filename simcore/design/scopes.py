@@ -6,20 +6,18 @@ It knows names and values, and nothing of elements, graphs or studies.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from grammar.description import Datasheet, Expression, Let, Name, Number, Observe, Parameter, Part, Range, Span
-from grammar.expressions import evaluate, names_in, nearest
+from grammar.expressions import Poisoned, evaluate, names_in, nearest
 from grammar.mistakes import Mistake
 from grammar.quantities import NONE, Quantity
 from simcore.design.files import Project, Unit
 
 DEEPEST_VALUE = 100
-
-
-class Poisoned(Exception):
-    """A value that can't be had; its mistake is reported already."""
+FEW = 8
 
 
 @dataclass(frozen=True)
@@ -168,8 +166,7 @@ class Scope:
 
     def _taken(self, full: str, local: str, place: Place, span: Span | None) -> bool:
         if full in self.entries:
-            cure = "Rename one of the two; in a repeat, carry the index in the name, as in `x[k]`."
-            self.wrong(f"{local} is declared twice", cure, span)
+            self.wrong(f"{local} is declared twice", rename_cure(place, "x"), span)
             return True
         own_file = place.space.file is None
         if own_file and local in place.space.unit.sheets:
@@ -238,9 +235,7 @@ class Scope:
 
     def unknown(self, text: str, known: list[str], span: Span | None, what: str = "nothing is named") -> None:
         """Report a name that stands for nothing, with the nearest that does."""
-        close = nearest(text, known)
-        cure = f"Did you mean {close}?" if close else "Check the name, or declare it."
-        self.wrong(f"{what} {text}", cure, span)
+        self.wrong(f"{what} {text}", suggest(text, known), span)
 
     def entry_value(self, entry: Entry, span: Span | None) -> Value:
         """The value of a let or parameter, worked out once."""
@@ -281,6 +276,31 @@ class Scope:
             if inner is not None:
                 return inner
         return None
+
+
+def suggest(text: str, known: list[str], otherwise: str = "Check the name, or declare it.") -> str:
+    """The cure for an unknown name: the nearest known one, else the known ones where they are few."""
+    close = nearest(text, known)
+    if close:
+        return f"Did you mean {close}?"
+    names = list(dict.fromkeys(known))
+    return f"Known here: {', '.join(names)}." if 0 < len(names) <= FEW else otherwise
+
+
+def rename_cure(place: Place, example: str) -> str:
+    """The cure for a name that is taken."""
+    if place.inward:
+        return f"Each copy of a repeat needs a name of its own: carry the index in it, as in `{example}[k]`."
+    return "Rename one of the two."
+
+
+def at_word(span: Span | None, word: str, after: Span | None = None) -> Span | None:
+    """Where a word stands in a statement, behind a piece of it."""
+    if span is None:
+        return None
+    start = span.start if after is None else after.end
+    found = re.compile(rf"\b{re.escape(word)}\b").search(span.source.text, start, span.end)
+    return span if found is None else Span(span.source, found.start(), found.end())
 
 
 def span_of(node: object) -> Span | None:
