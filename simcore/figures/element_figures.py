@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-
 from grammar.quantities import ANGLE, JOULE, KELVIN, NONE, SECOND, WATT, Dimension
 from simcore.figures import measure
 from simcore.figures.figure import Figure, undefined

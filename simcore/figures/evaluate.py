@@ -54,8 +54,8 @@ def figures_with_bounds(
 
 def _figure(expression: Expression, study: str, records: Records) -> Figure:
     if isinstance(expression, Number):
-        quantity = quantity_of(expression)
-        return plain(quantity.value, quantity.dimension)
+        number = quantity_of(expression)
+        return plain(number.value, number.dimension)
     if isinstance(expression, Negative):
         return -_figure(expression.operand, study, records)
     if isinstance(expression, Binary):
@@ -97,10 +97,10 @@ def _argument(kind: str, argument: Expression, record: Record) -> Signal | str |
     return name_text(argument)
 
 
-def _order(quantity: Quantity) -> int:
-    if quantity.dimension != NONE or quantity.value < 1.0 or quantity.value != round(quantity.value):
+def _order(number: Quantity) -> int:
+    if number.dimension != NONE or number.value < 1.0 or number.value != round(number.value):
         raise SignalError("the order of a harmonic is a whole number from 1 on")
-    return int(quantity.value)
+    return int(number.value)
 
 
 def _binary(operator: str, left: Figure, right: Figure) -> Figure:

@@ -12,8 +12,7 @@ from functools import reduce
 import numpy as np
 
 from grammar.description import Binary, Branch, Call, Expression, Name, Negative, Number, Part
-from grammar.expressions import evaluate
-from grammar.quantities import ANGLE, NONE, Dimension, Quantity
+from grammar.quantities import ANGLE, NONE, Dimension, Quantity, quantity
 from simcore.figures.catalogue import SIGNALS
 from simcore.figures.record import Record, UnknownName
 from simcore.figures.signal import Signal, SignalError, fitted, larger, power, smaller
@@ -36,11 +35,7 @@ def _index(index: object) -> int:
 
 def quantity_of(number: Number) -> Quantity:
     """A literal in SI units."""
-    return evaluate(number, _no_names)
-
-
-def _no_names(name: Name) -> Quantity:
-    raise UnknownName(f"{name_text(name)} is no number")
+    return quantity(number.value, number.unit)
 
 
 def signal_of(expression: Expression, record: Record) -> Signal:

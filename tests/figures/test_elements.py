@@ -7,7 +7,7 @@ import pytest
 
 from grammar.description import Binary, Branch, Call, Name, Negative, Number, Part
 from grammar.quantities import AMPERE, JOULE, NONE, VOLT, WATT
-from simcore.design.circuit import Circuit, Element, Observed, Port
+from simcore.design.circuit import Change, Circuit, Element, Observed, PlannedStudy, Port
 from simcore.figures.catalogue import FIGURES
 from simcore.figures.element_figures import COMPUTE
 from simcore.figures.evaluate import figure_of, figures_with_bounds
@@ -15,6 +15,7 @@ from simcore.figures.expressions import name_text, signal_of
 from simcore.figures.figure import SAFETY
 from simcore.figures.overview import balance, diode_rows, signal_rows
 from simcore.figures.record import Record, UnknownName
+from simcore.figures.signal import SignalError
 from tests.figures.fake_solution import FakeSolution, branch, circuit_of, steady, zero
 
 FREQUENCY, PERIOD = 50.0, 0.02
@@ -136,6 +137,15 @@ def test_harmonics_need_a_period() -> None:
     assert "shorter than a period" in figure_of(call("conduction_angle", "D1"), "run", short).note
 
 
+def test_periodic_figures_take_the_whole_periods_that_end_with_the_window() -> None:
+    solution = half_wave(period=PERIOD / 4.0, window=(0.0, 0.7 * PERIOD))
+    # Quarters from 0.2 to 0.7 of the sine's period: it conducts from 0.2 to 0.5, three fifths of what is seen.
+    record = Record(solution)
+    assert record.whole_periods() == pytest.approx((0.2 * PERIOD, 0.7 * PERIOD))
+    angle = figure_of(call("conduction_angle", "D1"), "run", {"run": record})
+    assert angle.value == pytest.approx(2.0 * math.pi * 0.6, abs=1e-2)
+
+
 def test_figures_of_a_cut_window_and_times_from_an_event() -> None:
     records = {"run": Record(half_wave(window=(PERIOD / 2.0, PERIOD), first_event=PERIOD / 4.0))}
     assert value(call("mean", "u_out"), records) == pytest.approx(0.0, abs=1e-9)
@@ -163,6 +173,8 @@ def test_signals_from_expressions(records: dict[str, Record]) -> None:
     turned = signal_of(Binary("/", Number(1.0, "V"), Binary("+", name("u_out"), Number(1.0, "V"))), record)
     assert turned.dimension == NONE
     assert turned.value(times) == pytest.approx(1.0 / (output + 1.0), abs=1e-7)
+    with pytest.raises(SignalError, match="different units"):
+        signal_of(Binary("+", name("u_out"), call("current", "R_L")), record)
     with pytest.raises(UnknownName, match="no signal"):
         signal_of(call("mean", "u_out"), record)
 
@@ -173,6 +185,8 @@ def test_bounds_come_from_the_difference_of_two_solutions() -> None:
     (figure,) = figures_with_bounds([("run", call("rms", "u_out"))], coarse, fine)
     assert figure.value == pytest.approx(5.0, rel=INTERPOLATION)
     assert figure.bound == pytest.approx(SAFETY * 0.005, rel=1e-4)
+    (half_known,) = figures_with_bounds([("run", call("rms", "u_out"))], {}, fine)
+    assert half_known.bound == math.inf
     (same,) = figures_with_bounds([("run", call("rms", "u_out"))], fine, fine)
     assert same.bound is not None and 0.0 < same.bound < 1e-10
 
@@ -286,6 +300,38 @@ def test_the_books_close_where_energy_is_conserved_and_not_where_it_is_not() -> 
     wrong = half_wave()
     wrong.currents["R_L", ""] = lambda t: 0.9 * np.maximum(10.0 * np.sin(OMEGA * t), 0.0) / 5.0
     assert balance(Record(wrong)).share.value == pytest.approx(0.1, rel=1e-6)
+
+
+def discharge(**changes: object) -> FakeSolution:
+    """1 mF from 10 V into 10 Ohm, no source."""
+
+    def output(t: np.ndarray) -> np.ndarray:
+        return 10.0 * np.exp(-t / 0.01)
+
+    circuit = circuit_of([branch("C1", "capacitor", "u", "0"), branch("R_L", "resistor", "u", "0")])
+    currents = {("C1", ""): lambda t: -output(t) / 10.0, ("R_L", ""): lambda t: output(t) / 10.0}
+    branches = {"C1": [(zero, zero, steady(1e-3), currents["C1", ""], output)]}
+    times = np.linspace(0.0, 0.03, 2001)
+    potentials = {"u": output, "0": zero}
+    return FakeSolution(circuit, times, potentials, currents, branches=branches, **changes)  # type: ignore[arg-type]
+
+
+def test_a_discharge_closes_its_books_without_a_source() -> None:
+    books = balance(Record(discharge()))
+    released = 0.05 * (1.0 - math.exp(-6.0))
+    assert books.stored.value == pytest.approx(-released, rel=INTERPOLATION)
+    assert books.loads.value == pytest.approx(released, rel=INTERPOLATION)
+    assert books.share.value < INTERPOLATION
+    assert books.note == ""
+
+
+def test_books_that_an_event_opens_say_so() -> None:
+    changed = PlannedStudy("run", "transient", events=((0.01, Change("short", "C1")),))
+    assert "short C1 at 10 ms" in balance(Record(discharge(study=changed))).note
+    elsewhere = PlannedStudy("run", "transient", events=((0.01, Change("open", "R_L")),))
+    assert balance(Record(discharge(study=elsewhere))).note == ""
+    before = discharge(study=changed, window=(0.02, 0.03))
+    assert balance(Record(before)).note == ""
 
 
 def test_tables_hold_signals_and_diodes_with_their_units(records: dict[str, Record]) -> None:

@@ -91,6 +91,7 @@ def test_block_wave_of_a_six_pulse_bridge() -> None:
     # fundamental sqrt(6)/pi.
     block = steps([0.0, 1.0, 1.0, 0.0, -1.0, -1.0])
     assert measure.distortion(block, FREQUENCY).value == pytest.approx(0.3108419393, rel=1e-9)
+    assert measure.distortion(block + 0.7, FREQUENCY).value == pytest.approx(0.3108419393, rel=1e-9)
     assert measure.harmonic(block, 1, FREQUENCY).value == pytest.approx(math.sqrt(6.0) / math.pi, rel=1e-12)
     assert measure.harmonic(block, 5, FREQUENCY).value == pytest.approx(math.sqrt(6.0) / math.pi / 5.0, rel=1e-11)
     assert measure.harmonic(block, 3, FREQUENCY).value == pytest.approx(0.0, abs=1e-12)
