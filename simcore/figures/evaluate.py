@@ -6,7 +6,6 @@ solved is not known here.
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterable, Mapping
 from functools import reduce
 
@@ -23,7 +22,7 @@ from simcore.figures.expressions import (
     quantity_of,
     signal_of,
 )
-from simcore.figures.figure import Figure, bounded, plain, undefined
+from simcore.figures.figure import Figure, bounded, formed, plain, undefined
 from simcore.figures.record import Record, UnknownName
 from simcore.figures.signal import Signal, SignalError
 
@@ -114,25 +113,15 @@ def _binary(operator: str, left: Figure, right: Figure) -> Figure:
         return left / right
     if right.dimension != NONE:
         raise SignalError("an exponent is a plain number")
-    if not (left.defined and right.defined):
-        return left * right
+    dimension = left.dimension ** (right.value if right.defined else 1.0)
     with np.errstate(all="ignore"):
         value = float(np.float64(left.value) ** right.value)
-    if math.isnan(value):
-        raise SignalError("a power is not defined there")
-    return Figure(value, left.dimension**right.value, note=left.note)
+    return formed(value, dimension, (left, right), abs(value))
 
 
 def _function(name: str, figures: list[Figure]) -> Figure:
-    missing = next((figure for figure in figures if not figure.defined), None)
-    if missing is not None:
-        return missing
     dimension = function_dimension(name, [figure.dimension for figure in figures])
     numbers = [np.asarray(figure.value) for figure in figures]
     with np.errstate(all="ignore"):
         value = float(reduce(FUNCTIONS[name], numbers) if name in ("min", "max") else FUNCTIONS[name](*numbers))
-    if math.isnan(value):
-        raise SignalError(f"{name} is not defined there")
-    notes = dict.fromkeys(figure.note for figure in figures if figure.note)
-    scale = max(figure.scale for figure in figures) if name in ("abs", "min", "max") else 0.0
-    return Figure(value, dimension, note="; ".join(notes), scale=scale)
+    return formed(value, dimension, figures, None if name in ("abs", "min", "max") else abs(value))

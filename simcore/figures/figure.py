@@ -6,6 +6,7 @@ It must not know where a number came from; arithmetic of figures is a figure.
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 from grammar.quantities import NONE, Dimension
@@ -53,26 +54,24 @@ class Figure:
         return ROUNDING * max(abs(self.value), self.scale)
 
     def __neg__(self) -> Figure:
-        return replace(self, value=-self.value, beyond=None)
+        return formed(-self.value, self.dimension, (self,))
 
     def __add__(self, other: Figure) -> Figure:
-        return _formed(self.value + other.value, self.dimension, (self, other))
+        return formed(self.value + other.value, self.dimension, (self, other))
 
     def __sub__(self, other: Figure) -> Figure:
-        return _formed(self.value - other.value, self.dimension, (self, other))
+        return formed(self.value - other.value, self.dimension, (self, other))
 
     def __mul__(self, other: Figure) -> Figure:
         scale = _size(self) * _size(other)
-        return _formed(self.value * other.value, self.dimension * other.dimension, (self, other), scale)
+        return formed(self.value * other.value, self.dimension * other.dimension, (self, other), scale)
 
     def __truediv__(self, other: Figure) -> Figure:
         dimension = self.dimension / other.dimension
-        if not (self.defined and other.defined):
-            return _formed(math.nan, dimension, (self, other))
-        if abs(other.value) <= other.rounding:
+        if other.defined and abs(other.value) <= other.rounding:
             return undefined(dimension, "it divides by zero")
         scale = _size(self) * _size(other) / other.value**2
-        return _formed(self.value / other.value, dimension, (self, other), scale)
+        return formed(self.value / other.value, dimension, (self, other), scale)
 
 
 def undefined(dimension: Dimension, reason: str) -> Figure:
@@ -89,12 +88,18 @@ def _size(figure: Figure) -> float:
     return max(abs(figure.value), figure.scale)
 
 
-def _formed(value: float, dimension: Dimension, parts: tuple[Figure, ...], scale: float | None = None) -> Figure:
-    """A result of arithmetic. Notes go along; an instant that does not come stays one, without a known limit."""
+def formed(value: float, dimension: Dimension, parts: Sequence[Figure], scale: float | None = None) -> Figure:
+    """A result of arithmetic on parts: undefined where one of them is, or where it is an instant that does not come."""
     notes = dict.fromkeys(part.note for part in parts if part.note)
+    if any(not part.defined for part in parts):
+        return Figure(math.nan, dimension, note="; ".join(notes))
+    if any(math.isinf(part.value) for part in parts):
+        return undefined(dimension, "it is made of an instant that does not come within the study")
+    if not math.isfinite(value):
+        return undefined(dimension, "a function or power has no finite value there")
     if scale is None:
         scale = max(_size(part) for part in parts)
-    return Figure(value, dimension, note="; ".join(notes), scale=scale if math.isfinite(scale) else 0.0)
+    return Figure(value, dimension, note="; ".join(notes), scale=scale)
 
 
 def bounded(coarse: Figure, fine: Figure) -> Figure:

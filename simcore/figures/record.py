@@ -59,11 +59,6 @@ class Part:
         return self.element.ports if self.port is None else (self.port,)
 
     @property
-    def name(self) -> str:
-        """As the user writes it."""
-        return self.element.name if self.port is None or not self.port.name else f"{self.element.name}.{self.port.name}"
-
-    @property
     def delivers(self) -> bool:
         """Whether factors count what it delivers."""
         return self.element.kind in DELIVERING
@@ -177,4 +172,4 @@ class Record:
     def begin(self) -> float:
         """The instant from which `time_until` counts, s: the first event, else the start of the study."""
         event = self.solution.first_event
-        return self.times[0] if event is None else event
+        return float(self.times[0]) if event is None else event

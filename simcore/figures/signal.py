@@ -47,6 +47,8 @@ class Signal:
             raise ValueError("a signal needs one row of coefficients for each of its pieces, and one piece at least")
         if not np.all(np.diff(self.times) > 0.0):
             raise ValueError("the breakpoints of a signal rise")
+        if not np.all(np.isfinite(self.coefficients)):
+            raise ValueError("the values of a signal are finite")
 
     @classmethod
     def through(cls, times: Array, values: Array, dimension: Dimension) -> Signal:

@@ -123,11 +123,10 @@ def _side_of_an_instant_that_does_not_come(
     figure: _Pair, limit: _Pair, sign: float
 ) -> tuple[State, Figure | None, str]:
     """It is later than what the study saw: enough to be late enough, enough to be too late, or too little to tell."""
-    seen = [part.beyond for part in (figure.fine, figure.coarse)]
-    if any(part is None for part in seen):
+    seen = [part.beyond for part in (figure.fine, figure.coarse) if part.beyond is not None]
+    if len(seen) < 2:
         return State.UNDECIDED, None, "it comes in one of two solutions only"
-    highest = max(limit.fine.value, limit.coarse.value)
-    if min(part for part in seen if part is not None) >= highest:
+    if min(seen) >= max(limit.fine.value, limit.coarse.value):
         return (State.FAILS if sign > 0.0 else State.HOLDS), None, ""
     return State.UNDECIDED, None, "the study ends before the limit: make its duration longer"
 

@@ -41,6 +41,8 @@ def test_wrong_shapes_are_refused() -> None:
         Signal(np.array([0.0, 1.0]), np.zeros((2, 3)), VOLT)
     with pytest.raises(ValueError, match="rise"):
         Signal(np.array([0.0, 1.0, 1.0]), np.zeros((2, 3)), VOLT)
+    with pytest.raises(ValueError, match="finite"):
+        Signal(np.array([0.0, 1.0]), np.array([[np.nan]]), VOLT)
     with pytest.raises(ValueError, match="runs from"):
         signal_of([[1.0, 1.0, 1.0]]).value(-1.0)
 
@@ -162,6 +164,15 @@ def test_quotients_and_roots_are_interpolated_to_the_stated_error() -> None:
     from_zero = Signal.through(np.array([0.0, 1.0]), np.array([[0.0, 0.5, 1.0]]), VOLT)
     # The integral of sqrt(t) from 0 to 1 is 2/3; a square root has no polynomial at its zero.
     assert power(from_zero, 0.5, VOLT).integral() == pytest.approx(2.0 / 3.0, rel=1e-8)
+
+
+def test_a_magnitude_has_a_root_although_rounding_leaves_it_below_zero() -> None:
+    magnitude = abs(Signal.through(np.array([0.0, 1.0]), np.array([[-0.1, 0.2, 0.7]]), VOLT))
+    start, end = magnitude.piece_ends
+    below = Signal(magnitude.times, magnitude.coefficients - np.array([[1e-15, 0.0, 0.0]]), VOLT)
+    assert min(below.piece_ends[0].min(), below.piece_ends[1].min()) < 0.0 <= min(start.max(), end.max())
+    root = power(below, 0.5, VOLT)
+    assert (root * root).integral() == pytest.approx(magnitude.integral(), rel=1e-8)
 
 
 def test_division_by_zero_and_undefined_functions_are_said() -> None:

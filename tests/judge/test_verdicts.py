@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from grammar.description import Binary, Call, Expression, Name, Number, Part
+from grammar.description import Binary, Call, Expression, Name, Negative, Number, Part
 from simcore.design.circuit import Observed, Requirement
 from simcore.figures.record import Record
 from simcore.judge.outcome import Outcome, State, outcome_of, worst
@@ -125,7 +125,23 @@ def test_an_instant_that_does_not_come_is_judged_by_what_the_study_saw() -> None
 def test_an_instant_that_comes_in_one_solution_only_is_undecided() -> None:
     until = Call("time_until_below", (name("u"), volts(1.0)))
     found = judge_one(requirement(">=", Number(0.001, "s"), figure=until), {"run": flat(0.9)}, {"run": flat(1.1)})
-    assert found.state is State.UNDECIDED
+    assert found.state is State.UNDECIDED and "one of two" in found.reason
+
+
+def test_nothing_made_of_an_instant_that_does_not_come_is_decided() -> None:
+    until = Call("time_until_below", (name("u"), volts(1.0)))
+    records = ({"run": flat(5.0)}, {"run": flat(5.0)})
+    for figure, limit in [
+        (Binary("*", until, Number(2.0)), Number(1.0, "s")),
+        (Binary("/", Number(1.0), until), Number(1.0, "Hz")),
+        (Binary("^", until, Number(-1.0)), Number(1.0, "Hz")),
+        (Call("min", (until, Number(1.0, "s"))), Number(1.0, "s")),
+        (Negative(until), Number(1.0, "s")),
+        (Binary("-", until, until), Number(1.0, "s")),
+    ]:
+        for relation in ("<=", ">="):
+            found = judge_one(requirement(relation, limit, figure=figure), *records)
+            assert found.state is State.UNDECIDED and "made of an instant" in found.reason, figure
 
 
 def test_undefined_figures_and_unsolved_studies_are_undecided_with_their_reason() -> None:
