@@ -17,6 +17,8 @@ Array = NDArray[np.float64]
 HALVINGS = 44
 """A root is given up on as a touching one when halving has gone this far (a piece's length over 2^44)."""
 
+_MOST_REFINEMENTS, _REFINED = 100, 2e-16
+
 
 def values(rows: Array, s: Array) -> Array:
     """The value of each row at its own s; s of shape (n,) or (n, k), and the result likewise."""
@@ -135,14 +137,25 @@ def _halves(coefficients: Array) -> tuple[Array, Array]:
     return left, right
 
 
-def _bisected(rows: Array, low: Array, high: Array, sign: Array) -> Array:
-    """The one root of each row between low and high; sign is that of the row just above low."""
-    for _ in range(60):
-        middle = 0.5 * (low + high)
-        same = values(rows, middle) * sign > 0.0
-        low = np.where(same, middle, low)
-        high = np.where(same, high, middle)
-    return 0.5 * (low + high)
+def _refined(rows: Array, low: Array, high: Array, sign: Array) -> Array:
+    """The one root of each row between low and high; sign is that of the row just above low.
+
+    Newton's method, and halving wherever that would leave the bracket or not halve the last step.
+    """
+    slopes = derivative(rows)
+    found, last = 0.5 * (low + high), high - low
+    for _ in range(_MOST_REFINEMENTS):
+        value, slope = values(rows, found), values(slopes, found)
+        same = value * sign > 0.0
+        low, high = np.where(same, found, low), np.where(same, high, found)
+        with np.errstate(all="ignore"):
+            step = -value / slope
+        newton = (np.abs(step) <= 0.5 * np.abs(last)) & (found + step > low) & (found + step < high)
+        step = np.where(value == 0.0, 0.0, np.where(newton, step, 0.5 * (low + high) - found))
+        found, last = found + step, step
+        if np.all(np.abs(step) <= _REFINED):
+            break
+    return found
 
 
 def roots(rows: Array) -> tuple[NDArray[np.int64], Array]:
@@ -163,7 +176,7 @@ def roots(rows: Array) -> tuple[NDArray[np.int64], Array]:
             first = coefficients[single]
             sign = np.sign(first[np.arange(len(first)), np.argmax(first != 0.0, axis=1)])
             found_rows.append(inside[single])
-            found.append(_bisected(rows[inside[single]], low[single], low[single] + width, sign))
+            found.append(_refined(rows[inside[single]], low[single], low[single] + width, sign))
         many = changes > 1
         inside, coefficients, low = inside[many], coefficients[many], low[many]
         if len(inside) == 0:
