@@ -17,9 +17,10 @@ ROUNDING = 1e-12
 SAFETY = 2.0
 """Bound over the difference of two solutions.
 
-Where errors fall at least as fast as the square root of the tolerance, a ratio of ten leaves a fine error of at most 0.46
-of the difference. Measured against published figures of a bridge with reservoir (17 figures, six pairs of tolerances from
-3e-3 to 1e-6): mostly 0.14, at most 1.15 (a ripple whose two errors were alike by chance). Two covers that chance.
+Where errors fall at least as fast as the square root of the tolerance, a ratio of ten leaves a fine error of at most
+0.46 of the difference. Measured against published figures of a bridge with reservoir (17 figures, six pairs of
+tolerances from 3e-3 to 1e-6): mostly 0.14, at most 1.15 (a ripple whose two errors were alike by chance). Two covers
+that chance.
 """
 
 
