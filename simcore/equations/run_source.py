@@ -6,7 +6,7 @@ with order 1 it is one backward-Euler step without error control, which gives th
 the operating point. Kept within floats, math functions, lists and tuples, so that it can be compiled as it stands.
 
 Interface of the emitted function `run(p, s, out, c)`:
-p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states, ends and peaks of the watched currents; read and
+p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends of the columns; read and
 written back. out: records of 1 + 2 * columns numbers: time at the end of a step, then each column's middle and end value.
 c: the controls, in the order of CONTROLS. Returns (status, numbers written, steps, rejected, solves, iterations, weak pivots).
 """
@@ -30,6 +30,7 @@ CONTROLS = (
     "floor_voltage",
     "floor_current",
     "watch_tolerance",
+    "agreement",
 )
 DONE, FULL, NO_CONVERGENCE = 0, 1, 2
 _WEAK_PIVOT = 1e-10
@@ -88,8 +89,8 @@ class RunSource:
         add(1, *self.emitter.lines["variant"])
         for index, junction in enumerate(self.system.junctions):
             scale, critical = self.emitter.name(junction.scale), self.emitter.name(junction.critical)
-            add(1, f"w{index} = {scale}", f"k{index} = {critical}", f"b{index} = {scale} * 0.001")
-            add(1, f"o{index} = {scale} * -6.0", f"g{index} = {scale} * 7.0")
+            add(1, f"w{index} = {scale}", f"k{index} = {critical}", f"b{index} = {scale} * agreement")
+            add(1, f"o{index} = {scale} * -6.0", f"g{index} = {critical} - 3.0 * {scale}")
         add(1, "now = s[0]", "wish = s[1]")
         position = 2
         for letter, count in self._saved(states, junctions):
@@ -97,20 +98,19 @@ class RunSource:
             position += count
         columns = len(self.system.columns)
         self._each(1, states, "e1_# = 0.0", "e2_# = 0.0", "e3_# = 0.0")
-        self._each(1, columns, "c1_# = 0.0", "c2_# = 0.0", "c3_# = 0.0", "m_# = 0.0")
+        self._each(1, columns, "c1_# = 0.0", "c2_# = 0.0", "c3_# = 0.0", "m2_# = 0.0", "m3_# = 0.0")
         self._each(1, len(self.watched), "d_# = 0.0")
         self._each(1, junctions, "n# = u#", "a# = 0.0")
-        add(1, "f1, f2, f3, q1, q2, q3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0", "r0, r1, r2 = 0.0, 1.0, 0.0")
+        add(1, "f1, f2, f3, q1, q2, q3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0")
         add(1, "if order == 2:", "    f1, f2, f3, q1, q2, q3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
         add(1, "if order == 3:", "    f1, f2, f3, q1, q2, q3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
-        add(1, "if order > 1:", "    r0, r1, r2 = 1.0, -0.5, 0.5")
+        add(1, "g1, g2, g3 = 1.5 * f1, 0.75 * f2, 0.5 * f3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
         add(1, "failures = 0")
 
     def _saved(self, states: int, junctions: int) -> list[tuple[str, int]]:
-        """The groups of numbers in s after t and H: states, junction voltages, state peaks, watched ends and peaks."""
-        watched = len(self.watched)
-        return [("z", states), ("u", junctions), ("i", states), ("l", watched), ("j", watched)]
+        """The groups of numbers in s after t and H: states, junction voltages, state peaks, watched peaks, column ends."""
+        return [("z", states), ("u", junctions), ("i", states), ("j", len(self.watched)), ("l", len(self.system.columns))]
 
     def _choose_size(self) -> None:
         self._add(
@@ -193,17 +193,18 @@ class RunSource:
         self._add(5, *(line.replace("#", str(index)) for line in lines))
 
     def _keep_inside(self) -> None:
-        """Values inside the step: the middle from the halves, and the second third minus the first from the thirds."""
+        """Values inside the step: their sums over the halves and thirds, and the watched currents' third difference."""
         add = self._add
-        add(4, "if part == 1:", "    if division == 2:")
-        add(6, *(f"m_{i} = {self.emitter.name(c.value)}" for i, c in enumerate(self.system.columns)), "pass")
-        if not self.watched:
-            return
-        names = [self.emitter.name(self.system.columns[column].value) for column in self.watched]
-        add(5, "elif division == 3:")
-        add(6, *(f"d_{i} = {name}" for i, name in enumerate(names)))
-        add(4, "elif part == 2 and division == 3:")
-        add(5, *(f"d_{i} = {name} - d_{i}" for i, name in enumerate(names)))
+        names = [self.emitter.name(column.value) for column in self.system.columns]
+        watched = [names[column] for column in self.watched]
+        add(4, "if part < division:", "    if division == 2:")
+        add(6, *(f"m2_{i} = {name}" for i, name in enumerate(names)), "pass")
+        add(5, "elif part == 1:")
+        add(6, *(f"m3_{i} = {name}" for i, name in enumerate(names)))
+        add(6, *(f"d_{i} = -27.0 * {name}" for i, name in enumerate(watched)), "pass")
+        add(5, "else:")
+        add(6, *(f"m3_{i} += {name}" for i, name in enumerate(names)))
+        add(6, *(f"d_{i} -= 54.0 * {name}" for i, name in enumerate(watched)), "pass")
 
     def _on_failure(self, junctions: int) -> None:
         add = self._add
@@ -222,16 +223,22 @@ class RunSource:
         if self.watched:
             add(2, "if order == 3:")
         for index, column in enumerate(self.watched):
-            end = f"(f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column})"
-            bend = f"abs({end} - l{index} - 3.0 * d_{index} - 0.5 * (c3_{column} - c1_{column}))"
-            add(3, f"r = 0.216 * {bend} / (max(j{index}, floor_current) * watch_tolerance)")
-            add(3, "if not r <= error:", "    error = r")
+            add(3, self._bend(index, column), "if not r <= error:", "    error = r")
         add(2, "if order > 1:", "    if error < 1e-3:", "        factor = 2.0", "    else:")
         add(4, "factor = 0.9 * error ** (-1.0 / order)")
         add(3, "if not error <= 1.0 and size > smallest:", "    rejected += 1")
         add(4, "wish = size * max(0.2, factor) if factor > 0.0 else size * 0.2", "continue")
         add(3, "if not error < 1e30:", f"    status = {NO_CONVERGENCE}", "    break")
-        add(3, "wish = size if 0.9 <= factor <= 1.2 else size * min(2.0, max(0.2, factor))")
+        add(3, "wish = size if 0.9 <= factor <= 1.2 else max(smallest, size * min(2.0, max(0.2, factor)))")
+
+    @staticmethod
+    def _bend(index: int, column: int) -> str:
+        """What a quadratic misses of a watched current, over its tolerance: 0.0481 of the third difference, which is taken
+        over 1/3, 1/2, 2/3 and 1 of the step, each moved to second order by the differences of the divisions."""
+        first, second, third = (f"c{division}_{column}" for division in (1, 2, 3))
+        end = f"9.0 * (f1 * {first} + f2 * {second} + f3 * {third})"
+        inside = f"d_{index} + 72.0 * m2_{column} - 22.5 * ({third} - {first}) + 36.0 * ({second} - {first})"
+        return f"r = 0.0481 * abs({end} + {inside}) / (max(j{index}, floor_current) * watch_tolerance)"
 
     def _accept(self, states: int, junctions: int) -> None:
         add = self._add
@@ -244,23 +251,28 @@ class RunSource:
             "i# = max(abs(z#), i# * weight)",
         )
         for index, column in enumerate(self.watched):
-            add(2, f"l{index} = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}")
-            add(2, f"j{index} = max(abs(l{index}), j{index} * weight)")
+            add(2, f"r = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}", f"j{index} = max(abs(r), j{index} * weight)")
         self._each(
             2,
             junctions,
-            "if n# < g# and n# > u#:",
-            "    r = (g# - n#) * size / (n# - u#) * 1.02",
-            "    if 0.05 * wish < r < wish:",
-            "        wish = r",
+            "if n# < g# - w# and n# > u#:",
+            "    d = (g# - n#) * size / (n# - u#) * 1.02",
+            "    if max(0.05 * wish, smallest) < d < wish:",
+            "        wish = d",
             "u# = n#",
         )
+        self._record()
+
+    def _record(self) -> None:
+        """Each column's end, and a middle that gives the quadratic the extrapolated integral of the step: charges add up."""
+        add = self._add
+        columns = range(len(self.system.columns))
         add(2, "if record > 0.0:", "    out[position] = now")
-        for index in range(len(self.system.columns)):
-            place = f"position + {1 + 2 * index}"
-            add(3, f"out[{place}] = r0 * m_{index} + r1 * c1_{index} + r2 * c2_{index}")
-            add(3, f"out[{place} + 1] = f1 * c1_{index} + f2 * c2_{index} + f3 * c3_{index}")
-        add(3, f"position += {1 + 2 * len(self.system.columns)}")
+        for i in columns:
+            mean = f"g1 * c1_{i} + g2 * (m2_{i} + c2_{i}) + g3 * (m3_{i} + c3_{i})"
+            add(3, f"r = f1 * c1_{i} + f2 * c2_{i} + f3 * c3_{i}", f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)")
+            add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")
+        add(3, f"position += {1 + 2 * len(columns)}")
 
     def _epilogue(self, states: int, junctions: int) -> None:
         self._add(1, "s[0] = now", "s[1] = wish")

@@ -156,7 +156,7 @@ class Engine:
     def _single(self, time: float, step: float) -> np.ndarray:
         """One backward-Euler step of a given length that ends at a time."""
         self.saved[0], self.saved[1] = time - step, step
-        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, 1.0, 1.0, 1.0)
+        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, 1.0, 1.0, 1.0, 1e-6)
         if self.saved[0] == time:
             raise Interrupted(Reason.NO_CONVERGENCE, time)
         written = self._call(controls)
@@ -190,7 +190,8 @@ class Engine:
             _ROOM,
             0.01 * stepping.voltage,
             self._current_floor(),
-            10.0 * stepping.tolerance,
+            30.0 * stepping.tolerance,
+            min(1e-2, math.sqrt(0.3 * stepping.tolerance)),
         )
         chunks = []
         while True:
@@ -210,7 +211,8 @@ class Engine:
             for index, state in enumerate(self.kernel.system.states)
             if state.quantity == "current"
         ]
-        peaks += self.saved[first + self._states + len(self.kernel.watched) :]
+        watched = first + self._states
+        peaks += self.saved[watched : watched + len(self.kernel.watched)]
         return max(1e-9, 0.01 * max(peaks, default=0.0))
 
     def _call(self, controls: tuple[float, ...]) -> int:
