@@ -65,18 +65,14 @@ class _Proof:
         if study.after is not None:
             self.solve(study.after)
         tolerance = min(_LOOSEST, START * study.accuracy)
-        coarse = self._level(study, tolerance, 0, None)
-        for _ in range(ROUNDS):
+        levels = [self._level(study, tolerance, 0, None)]
+        reached = False
+        while not reached and len(levels) <= ROUNDS and tolerance > _TIGHTEST:
             tolerance = max(tolerance / RATIO, _TIGHTEST)
-            fine = self._level(study, tolerance, 1, coarse)
-            reached = self._accurate(study, coarse.solution, fine.solution)
-            if reached or tolerance <= _TIGHTEST or study.kind == "operating_point":
-                break
-            self.pairs[name] = (coarse, fine)
-            coarse = fine
-        coarse_level = coarse if coarse is not fine else self.pairs[name][0]
-        self.pairs[name] = (coarse_level, fine)
-        self.results[name] = StudyResult(fine.solution, coarse_level.solution, reached)
+            levels.append(self._level(study, tolerance, 1, levels[-1]))
+            reached = self._accurate(study, levels[-2].solution, levels[-1].solution)
+        self.pairs[name] = (levels[-2], levels[-1])
+        self.results[name] = StudyResult(levels[-1].solution, levels[-2].solution, reached)
 
     def _level(self, study: PlannedStudy, tolerance: float, which: int, earlier: _Level | None) -> _Level:
         """One solution; a settled state is looked for from where the looser solution found it."""

@@ -55,10 +55,11 @@ class System:
     junctions: list[Junction] = field(default_factory=list)
     columns: list[Column] = field(default_factory=list)
     guards: list[Guard] = field(default_factory=list)
+    companions: list[Companion] = field(default_factory=list)
 
 
 @dataclass(frozen=True)
-class _Companion:
+class Companion:
     """i = conductance * v + offset, v without the known part of its form."""
 
     form: Form
@@ -66,13 +67,16 @@ class _Companion:
     offset: Value
 
 
-def assemble(frame: Frame, references: Sequence[Hashable]) -> System:
-    """The equations of one step. Raises reduce.ContradictoryLoop where ideal voltages close a loop."""
-    return _Assembly(frame, references).system
+def assemble(frame: Frame, references: Sequence[Hashable], eliminate: bool = True) -> System:
+    """The equations of one step; without elimination the free unknowns are inputs s0, s1 ... of what follows from them.
+
+    Raises reduce.ContradictoryLoop where ideal voltages close a loop.
+    """
+    return _Assembly(frame, references, eliminate).system
 
 
 class _Assembly:
-    def __init__(self, frame: Frame, references: Sequence[Hashable]):
+    def __init__(self, frame: Frame, references: Sequence[Hashable], eliminate: bool):
         self.graph = frame.graph
         self.step = self.graph.input("h", Level.STEP, positive=True)
         self.rate = 1.0 / self.step
@@ -80,30 +84,38 @@ class _Assembly:
         self.system = System(frame, reduction)
         self._histories: dict[tuple[int, str], Value] = {}
         companions = [self._companion(index, branch) for index, branch in enumerate(frame.branches)]
-        elimination = Elimination(self.graph, list(reduction.free))
-        for companion in companions:
-            if companion is not None:
-                elimination.stamp(companion.form.weights, companion.conductance, companion.offset)
-        solution = elimination.solve()
-        self.system.guards = elimination.guards
+        self.system.companions = [companion for companion in companions if companion is not None]
+        solution = self._eliminated() if eliminate else self._inputs()
         self.system.columns = [Column(unknown, None, solution[unknown]) for unknown in reduction.free]
         for index, branch in enumerate(frame.branches):
             companion = companions[index]
             if companion is not None and not isinstance(branch, CurrentBranch):
                 self._results(index, branch, companion, solution)
 
-    def _companion(self, index: int, branch: Branch) -> _Companion | None:
+    def _eliminated(self) -> dict[Hashable, Value]:
+        elimination = Elimination(self.graph, list(self.system.reduction.free))
+        for companion in self.system.companions:
+            elimination.stamp(companion.form.weights, companion.conductance, companion.offset)
+        solution = elimination.solve()
+        self.system.guards = elimination.guards
+        return solution
+
+    def _inputs(self) -> dict[Hashable, Value]:
+        free = self.system.reduction.free
+        return {unknown: self.graph.input(f"s{index}", Level.ITERATION) for index, unknown in enumerate(free)}
+
+    def _companion(self, index: int, branch: Branch) -> Companion | None:
         if forces_voltage(branch):
             return None
         form = self.system.reduction.form(branch.weights)
         if isinstance(branch, CurrentBranch):
-            return _Companion(form, self.graph.zero, branch.current)
+            return Companion(form, self.graph.zero, branch.current)
         if isinstance(branch, NonlinearBranch):
             slope = derivative(branch.current, branch.variable)
-            return _Companion(form, slope, branch.current - slope * branch.variable + slope * form.known)
+            return Companion(form, slope, branch.current - slope * branch.variable + slope * form.known)
         return self._series(index, branch, form)
 
-    def _series(self, index: int, branch: SeriesBranch, form: Form) -> _Companion:
+    def _series(self, index: int, branch: SeriesBranch, form: Form) -> Companion:
         impedance, behind = branch.resistance, branch.source - form.known
         if branch.inductance.constant != 0.0:
             reactance = branch.inductance * self.rate
@@ -114,7 +126,7 @@ class _Assembly:
             conductance = self._with_capacitance(impedance, branch.capacitance)
         else:
             conductance = 1.0 / impedance
-        return _Companion(form, conductance, -(conductance * behind))
+        return Companion(form, conductance, -(conductance * behind))
 
     def _with_capacitance(self, impedance: Value, capacitance: Value) -> Value:
         """The conductance of an impedance in series with h / C, written so that no part of it may vanish."""
@@ -128,7 +140,7 @@ class _Assembly:
             self._histories[key] = self.graph.input(f"y{len(self._histories)}", Level.TIME)
         return self._histories[key]
 
-    def _results(self, index: int, branch: Branch, companion: _Companion, solution: dict[Hashable, Value]) -> None:
+    def _results(self, index: int, branch: Branch, companion: Companion, solution: dict[Hashable, Value]) -> None:
         terms = [weight * solution[unknown] for unknown, weight in companion.form.weights.items()]
         voltage = self.graph.total(terms)
         current = companion.conductance * voltage + companion.offset

@@ -6,32 +6,49 @@ import math
 from collections.abc import Callable, Hashable, Sequence
 
 from simcore.components.frame import Frame
-from simcore.equations.assemble import System, assemble
-from simcore.equations.run_source import RunSource
+from simcore.equations.assemble import assemble
+from simcore.equations.run_source import RunSource, saved_count, watched_columns
 
 Run = Callable[[list[float], list[float], list[float], tuple[float, ...]], tuple[int, ...]]
+
+
+EMITTED_AT_MOST = 60_000
+"""Operations up to which a run is emitted; beyond, source and compilation outweigh the sparse LU's overhead."""
 
 
 class Kernel:
     """A circuit's run, for any numbers its parameters may take.
 
-    system: the equations; source: the emitted text; run: the function (see run_source); watched: columns it watches
+    system: the equations; run: the function (see run_source); source: the emitted text, "" where the run is on arrays;
+    watched: columns it watches
     """
 
-    def __init__(self, system: System):
-        written = RunSource(system)
-        self.system = system
-        self.source = written.source
-        self.watched = written.watched
-        self.saved_count = written.saved_count()
-        self.run = compile_run(self.source)
+    def __init__(self, frame: Frame, references: Sequence[Hashable]):
+        self._frame, self._references = frame, references
+        self.system = assemble(frame, references)
+        self.source = ""
+        if len(frame.graph.values) > EMITTED_AT_MOST:
+            self.use_sparse()
+            return
+        self.watched, self.saved_count = watched_columns(self.system), saved_count(self.system)
+        self.source = RunSource(self.system).source
+        self.run: Run = compile_function(self.source, "run")
+
+    def use_sparse(self) -> None:
+        """From here on solve with the sparse LU, which may pivot; the columns and saved numbers stay as they are."""
+        from simcore.equations.sparse_run import SparseRun
+
+        self.system = assemble(self._frame, self._references, eliminate=False)
+        self.watched = watched_columns(self.system)
+        self.saved_count = saved_count(self.system)
+        self.run = SparseRun(self.system, compile_function, self.watched)
 
 
-def compile_run(source: str) -> Run:
-    """The function that an emitted source defines. The source is made of our own names and numbers only."""
+def compile_function(source: str, name: str) -> Callable:
+    """A function that an emitted source defines. The source is made of our own names and numbers only."""
     names: dict = {function.__name__: function for function in (math.exp, math.log, math.sqrt, math.sin, math.cos)}
-    exec(compile(source, "<emitted run>", "exec"), names)  # noqa: S102
-    return names["run"]
+    exec(compile(source, "<emitted>", "exec"), names)  # noqa: S102
+    return names[name]
 
 
 class KernelCache:
@@ -43,5 +60,5 @@ class KernelCache:
     def kernel(self, frame: Frame, references: Sequence[Hashable]) -> Kernel:
         key = (frame.signature(), tuple(references))
         if key not in self._kernels:
-            self._kernels[key] = Kernel(assemble(frame, references))
+            self._kernels[key] = Kernel(frame, references)
         return self._kernels[key]

@@ -36,14 +36,29 @@ DONE, FULL, NO_CONVERGENCE = 0, 1, 2
 _WEAK_PIVOT = 1e-10
 
 
+def watched_columns(system: System) -> list[int]:
+    """Positions of the columns whose curvature bounds the step, besides the states: the nonlinear branches' currents."""
+    branches = [junction.branch for junction in system.junctions]
+    return [index for index, column in enumerate(system.columns) if column.branch in branches]
+
+
+def saved_groups(system: System) -> list[tuple[str, int]]:
+    """The groups of numbers in s after t and H: states, junction voltages, state peaks, watched peaks, column ends."""
+    states, watched = len(system.states), len(watched_columns(system))
+    return [("z", states), ("u", len(system.junctions)), ("i", states), ("j", watched), ("l", len(system.columns))]
+
+
+def saved_count(system: System) -> int:
+    """Length of s."""
+    return 2 + sum(count for _, count in saved_groups(system))
+
+
 class RunSource:
-    """Writes the source of a system's run. `source` is the text; `watched` the positions of the columns whose curvature
-    bounds the step, besides the states."""
+    """Writes the source of a system's run, `source`."""
 
     def __init__(self, system: System):
         self.system = system
-        junction_branches = {junction.branch for junction in system.junctions}
-        self.watched = [i for i, column in enumerate(system.columns) if column.branch in junction_branches]
+        self.watched = watched_columns(system)
         self.emitter = Emitter(self._stages())
         self._lines: list[str] = []
         self._build()
@@ -93,7 +108,7 @@ class RunSource:
             add(1, f"o{index} = {scale} * -6.0", f"g{index} = {critical} - 3.0 * {scale}")
         add(1, "now = s[0]", "wish = s[1]")
         position = 2
-        for letter, count in self._saved(states, junctions):
+        for letter, count in saved_groups(self.system):
             add(1, *(f"{letter}{index} = s[{position + index}]" for index in range(count)))
             position += count
         columns = len(self.system.columns)
@@ -107,10 +122,6 @@ class RunSource:
         add(1, "g1, g2, g3 = 1.5 * f1, 0.75 * f2, 0.5 * f3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
         add(1, "failures = 0")
-
-    def _saved(self, states: int, junctions: int) -> list[tuple[str, int]]:
-        """The groups of numbers in s after t and H: states, junction voltages, state peaks, watched peaks, column ends."""
-        return [("z", states), ("u", junctions), ("i", states), ("j", len(self.watched)), ("l", len(self.system.columns))]
 
     def _choose_size(self) -> None:
         self._add(
@@ -277,12 +288,7 @@ class RunSource:
     def _epilogue(self, states: int, junctions: int) -> None:
         self._add(1, "s[0] = now", "s[1] = wish")
         position = 2
-        for letter, count in self._saved(states, junctions):
+        for letter, count in saved_groups(self.system):
             self._add(1, *(f"s[{position + index}] = {letter}{index}" for index in range(count)))
             position += count
         self._add(1, "return status, position, steps, rejected, solves, iterations, weak")
-
-    def saved_count(self) -> int:
-        """Length of s."""
-        return 2 + sum(count for _, count in self._saved(len(self.system.states), len(self.system.junctions)))
-

@@ -134,7 +134,8 @@ class Engine:
                     record = self._single(time, step)
             except Interrupted:
                 continue
-            return self._stretch(np.array([time, time + 1.0]), np.stack([record, record, record])[None])
+            values = np.stack([record, record, record])[None]
+            return Stretch(self.kernel.system, list(self.numbers), np.array([time, time + 1.0]), values, 1, held=True)
         raise Interrupted(Reason.NO_CONVERGENCE, time)
 
     def begin(self, time: float, step: float) -> np.ndarray:
@@ -173,7 +174,7 @@ class Engine:
             self.saved[1] = min(stepping.largest, 1e-3 * stepping.memory, max(corner - time, stepping.smallest))
             chunks = self._to_corner(corner, stepping, record)
             if record:
-                stretches.append(self._recorded(time, first, chunks))
+                stretches.append(self._recorded(time, first, chunks, stepping.order))
         return stretches
 
     def _to_corner(self, corner: float, stepping: Stepping, record: bool) -> list[np.ndarray]:
@@ -216,17 +217,26 @@ class Engine:
         return max(1e-9, 0.01 * max(peaks, default=0.0))
 
     def _call(self, controls: tuple[float, ...]) -> int:
-        """Run the kernel once; returns how many numbers it recorded."""
+        """Run the kernel once; returns how many numbers it recorded. A pivot that shrank to rounding is answered by going back
+        and on with the sparse LU, which may pivot."""
         if not self._record:
             self._record = [0.0] * (_ROOM + 2 * len(self.kernel.system.columns) + 1)
-        try:
-            result = self.kernel.run(self.numbers, self.saved, self._record, controls)
-        except ArithmeticError as error:
-            raise Interrupted(Reason.SINGULAR, self.saved[0]) from error
+        before = list(self.saved)
+        result = self._run(controls)
         self.counts.add(result)
+        if result[-1] and self.kernel.source:
+            self.kernel.use_sparse()
+            self.saved[:] = before
+            result = self._run(controls)
         if result[0] not in (DONE, FULL):
             raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0])
         return result[1]
+
+    def _run(self, controls: tuple[float, ...]) -> tuple[int, ...]:
+        try:
+            return self.kernel.run(self.numbers, self.saved, self._record, controls)
+        except ArithmeticError as error:
+            raise Interrupted(Reason.SINGULAR, self.saved[0]) from error
 
     # --- corners of the sources ---
 
@@ -240,16 +250,14 @@ class Engine:
 
     # --- records ---
 
-    def _recorded(self, start: float, first: np.ndarray, chunks: list[np.ndarray]) -> Stretch:
+    def _recorded(self, start: float, first: np.ndarray, chunks: list[np.ndarray], order: int) -> Stretch:
         rows = np.concatenate(chunks)
         columns = len(self.kernel.system.columns)
         pairs = rows[:, 1:].reshape(len(rows), columns, 2)
         begins = np.concatenate([first[None], pairs[:-1, :, 1]])
         values = np.stack([begins, pairs[:, :, 0], pairs[:, :, 1]], axis=1)
-        return self._stretch(np.concatenate([[start], rows[:, 0]]), values)
-
-    def _stretch(self, times: np.ndarray, values: np.ndarray) -> Stretch:
-        return Stretch(self.kernel.system, list(self.numbers), times, values)
+        times = np.concatenate([[start], rows[:, 0]])
+        return Stretch(self.kernel.system, list(self.numbers), times, values, order)
 
 
 def _line(waveform: Waveform, time: float) -> tuple[float, float]:

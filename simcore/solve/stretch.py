@@ -15,19 +15,35 @@ from simcore.components.frame import CurrentBranch, SeriesBranch, Weights
 from simcore.equations.assemble import System, is_resistor
 from simcore.equations.plain import evaluate
 from simcore.equations.reduce import forces_voltage
-from simcore.equations.values import Value
+from simcore.equations.values import Level, Value
+
+
+_INSTANTS = np.array([0.0, 1.0 / 3.0, 0.5, 2.0 / 3.0, 1.0])
+"""Where in a step known functions of time are evaluated, as shares of it."""
+
+_MEANS = {
+    1: np.array([0.0, 0.0, 0.0, 0.0, 1.0]),
+    2: np.array([0.0, 0.0, 1.0, 0.0, 0.0]),
+    3: np.array([0.0, 1.5, -2.0, 1.5, 0.0]),
+}
+"""By extrapolation order, the weights at these instants of the mean that the run's extrapolated sums give."""
 
 
 class Stretch:
-    """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A."""
+    """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A; order: of
+    the extrapolation that gave them; held: the sources stood still at the first time."""
 
-    def __init__(self, system: System, numbers: list[float], times: np.ndarray, values: np.ndarray):
+    def __init__(
+        self, system: System, numbers: list[float], times: np.ndarray, values: np.ndarray, order: int, held: bool = False
+    ):
         self.system = system
         self.times = times
         self._values = values
+        self._mean = _MEANS[order]
         self._inputs = {f"p{index}": number for index, number in enumerate(numbers)}
-        middle = 0.5 * (times[:-1] + times[1:])
-        self._inputs["t"] = np.stack([times[:-1], middle, times[1:]], axis=1)
+        spans = np.zeros(len(times) - 1) if held else np.diff(times)
+        self._inputs["t"] = times[:1] if held else times[:-1]
+        self._inputs["t"] = self._inputs["t"][:, None] + spans[:, None] * _INSTANTS
         self._columns = {
             (column.unknown if column.branch is None else column.branch): index
             for index, column in enumerate(system.columns)
@@ -39,7 +55,13 @@ class Stretch:
         return (len(self.times) - 1, 3)
 
     def _evaluate(self, value: Value) -> np.ndarray:
-        return np.broadcast_to(np.asarray(evaluate([value], self._inputs)[0], dtype=float), self.shape)
+        """A known function of time at start, middle and end, the middle formed as the run forms that of its columns: sums of
+        what is known and what was solved then stay exact."""
+        known = np.asarray(evaluate([value], self._inputs)[0], dtype=float)
+        if value.level < Level.TIME:
+            return np.broadcast_to(known, self.shape)
+        ends = known[:, 0] + known[:, -1]
+        return np.stack([known[:, 0], 1.5 * known @ self._mean - 0.25 * ends, known[:, -1]], axis=1)
 
     def voltage(self, weights: Weights) -> np.ndarray:
         """The weighted sum of unknowns, shape (n, 3), in V."""

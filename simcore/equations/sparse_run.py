@@ -1,0 +1,238 @@
+"""The run of a circuit that is too large to be emitted, or whose elimination without pivoting lost a pivot.
+
+The same algorithm and the same face as the emitted run (see run_source), on arrays, with scipy's sparse LU in place of the emitted
+elimination. Device laws and results are still emitted, their size being linear in the circuit.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from simcore.equations.assemble import System
+from simcore.equations.emit import Emitter
+from simcore.equations.plain import evaluate
+from simcore.equations.run_source import CONTROLS, DONE, FULL, NO_CONVERGENCE
+from simcore.equations.values import Value
+
+_WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
+_ERRORS = {1: (0.0, 0.0, 0.0), 2: (-1.0, 1.0, 0.0), 3: (0.5, -2.0, 1.5)}
+
+
+def function_source(name: str, arguments: dict[str, int], targets: list[Value]) -> str:
+    """A function of arrays (argument letter -> length) and the scalars h and t that returns the targets as a tuple."""
+    emitter = Emitter({"variant": [], "step": [], "time": [], "iteration": targets})
+    lines = [f"def {name}({', '.join(arguments)}, h, t):"]
+    for letter, count in arguments.items():
+        if count:
+            lines.append(f"    {', '.join(f'{letter}{index}' for index in range(count))}, = {letter}")
+    for stage in ("variant", "step", "time", "iteration"):
+        lines += [f"    {line}" for line in emitter.lines[stage]]
+    values = "".join(f"{emitter.name(target)}, " for target in targets)
+    return "\n".join([*lines, f"    return ({values})", ""])
+
+
+class SparseRun:
+    """A system's run on arrays; assembled without elimination. Call it like the emitted function."""
+
+    def __init__(self, system: System, compile_source: Any, watched: list[int]):
+        self._system = system
+        self._watched = np.array(watched, dtype=int)
+        numbers, states, junctions = len(system.frame.numbers), len(system.states), len(system.junctions)
+        self._counts = (states, junctions, len(watched), len(system.columns))
+        arguments = {"p": numbers, "y": states, "v": junctions}
+        stamps = [value for companion in system.companions for value in (companion.conductance, companion.offset)]
+        self._stamps = compile_source(function_source("stamps", arguments, stamps), "stamps")
+        results = [junction.new for junction in system.junctions]
+        results += [state.new for state in system.states] + [column.value for column in system.columns]
+        arguments["s"] = len(system.reduction.free)
+        self._results = compile_source(function_source("results", arguments, results), "results")
+        self._currents = np.array([state.quantity == "current" for state in system.states], dtype=bool)
+
+    def __call__(self, p: list[float], s: list[float], out: list[float], c: tuple[float, ...]) -> tuple[int, ...]:
+        return _Attempt(self, p, s, out, dict(zip(CONTROLS, c, strict=True))).go()
+
+
+class _Attempt:
+    """One call of a run: its numbers as arrays, and its counts."""
+
+    def __init__(self, run: SparseRun, p: list[float], s: list[float], out: list[float], control: dict[str, float]):
+        self.run, self.p, self.saved, self.out, self.c = run, p, s, out, control
+        states, junctions, watched, columns = run._counts
+        cuts = np.cumsum([2, states, junctions, states, watched, columns])
+        parts = [np.array(s[start:end]) for start, end in zip(cuts[:-1], cuts[1:], strict=True)]
+        self.z, self.u, self.peaks, self.watched_peaks, self.ends = parts
+        inputs = {f"p{index}": number for index, number in enumerate(p)}
+        fixed = [value for junction in run._system.junctions for value in (junction.scale, junction.critical)]
+        numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 2)
+        self.scale, self.critical = numbers[:, 0], numbers[:, 1]
+        self.on = self.critical - 3.0 * self.scale
+        self.incidence = self._incidence(inputs)
+        self.position = self.steps = self.rejected = self.solves = self.iterations = self.failures = 0
+        self.now, self.wish = s[0], s[1]
+
+    def _incidence(self, inputs: dict[str, float]) -> Any:
+        """Weights of the free unknowns in each companion's voltage, shape (unknowns, companions), sparse."""
+        from scipy.sparse import csc_matrix
+
+        free = {unknown: index for index, unknown in enumerate(self.run._system.reduction.free)}
+        rows, columns, values = [], [], []
+        for column, companion in enumerate(self.run._system.companions):
+            for unknown, weight in companion.form.weights.items():
+                rows.append(free[unknown])
+                columns.append(column)
+                values.append(float(evaluate([weight], inputs)[0]))
+        return csc_matrix((values, (rows, columns)), shape=(len(free), len(self.run._system.companions)))
+
+    def go(self) -> tuple[int, ...]:
+        """The time loop."""
+        c, width = self.c, 1 + 2 * len(self.ends)
+        status = DONE
+        while (left := c["t_end"] - self.now) > 0.0:
+            if c["record"] > 0.0 and self.position + width > c["room"]:
+                status = FULL
+                break
+            size = min(self.wish, c["largest"])
+            last = size >= left * 0.999999
+            size = left if last else (0.5 * left if size > 0.5 * left else size)
+            stop = c["t_end"] if last else self.now + size
+            found = self._extrapolated(size, stop)
+            if found is None:
+                if self._failed(size):
+                    status = NO_CONVERGENCE
+                    break
+            elif self._controlled(size, found):
+                self._accept(size, stop, found)
+            elif not np.isfinite(self._error) and size <= c["smallest"]:
+                status = NO_CONVERGENCE
+                break
+        self.saved[:] = [self.now, self.wish, *self.z, *self.u, *self.peaks, *self.watched_peaks, *self.ends]
+        self.saved[:] = [float(number) for number in self.saved]
+        return status, self.position, self.steps, self.rejected, self.solves, self.iterations, 0
+
+    def _extrapolated(self, size: float, stop: float) -> list[tuple[np.ndarray, list[np.ndarray], np.ndarray]] | None:
+        """States, columns at each part and junction voltages, for each division; None where Newton fails."""
+        found: list[tuple[np.ndarray, list[np.ndarray], np.ndarray]] = []
+        ahead = np.zeros_like(self.u)
+        for division in range(1, int(self.c["order"]) + 1):
+            h, y, n, parts = size / division, self.z, self.u, []
+            for part in range(1, division + 1):
+                t = stop if part == division else self.now + part * h
+                guess = n + ahead / division if division > 1 else n
+                solved = self._newton(guess, y, h, t)
+                if solved is None:
+                    return None
+                n, y, columns = solved
+                parts.append(columns)
+            if division == 1:
+                ahead = np.where((self.u > self.on) & (n > self.on), n - self.u, 0.0)
+            found.append((y, parts, n))
+        return found
+
+    def _newton(self, n: np.ndarray, y: np.ndarray, h: float, t: float) -> Any:
+        from scipy.sparse.linalg import splu
+
+        states, junctions, _, _ = self.run._counts
+        self.solves += 1
+        history = tuple(y.tolist())
+        for count in range(1, int(self.c["limit"]) + 1):
+            v = n
+            stamps = np.array(self.run._stamps(self.p, history, tuple(v.tolist()), h, t)).reshape(-1, 2)
+            matrix = (self.incidence.multiply(stamps[:, 0]) @ self.incidence.T).tocsc()
+            right = -(self.incidence @ stamps[:, 1])
+            try:
+                factors = splu(matrix)
+            except RuntimeError:
+                return None
+            x = factors.solve(right)
+            x += factors.solve(right - matrix @ x)
+            results = np.array(self.run._results(self.p, history, tuple(v.tolist()), tuple(x.tolist()), h, t))
+            n, good = self._limited(v, results[:junctions])
+            if good:
+                self.iterations += count
+                return n, results[junctions : junctions + states], results[junctions + states :]
+        self.iterations += int(self.c["limit"])
+        return None
+
+    def _limited(self, v: np.ndarray, n: np.ndarray) -> tuple[np.ndarray, bool]:
+        """The convergence test and the limiting of run_source, on arrays."""
+        step, off = n - v, -6.0 * self.scale
+        close = np.abs(step) <= self.c["agreement"] * self.scale
+        moving = ~(close | ((n < off) & (v < off)))
+        limit = moving & (n > self.critical) & (step > 0.0)
+        with np.errstate(all="ignore"):
+            inside = v + self.scale * np.log1p(step / self.scale)
+            entering = self.scale * np.log(n / self.scale)
+        limited = np.where(limit, np.where(v > 0.0, inside, entering), n)
+        return limited, not bool(np.any(moving))
+
+    def _failed(self, size: float) -> bool:
+        self.rejected += 1
+        self.failures += 1
+        self.wish = size * 0.25
+        self.u = np.minimum(self.u, self.critical)
+        return self.failures > 20 or self.c["order"] == 1
+
+    def _controlled(self, size: float, found: list) -> bool:
+        """Whether a step is accurate enough; sets the next one's size."""
+        order = int(self.c["order"])
+        if order == 1:
+            self._error = 0.0
+            return True
+        floors = np.where(self.run._currents, self.c["floor_current"], self.c["floor_voltage"])
+        difference = _combine(_ERRORS[order], [states for states, _, _ in found])
+        errors = np.abs(difference) / np.maximum(self.peaks, floors) / self.c["tolerance"]
+        if order == 3:
+            scale = np.maximum(self.watched_peaks, self.c["floor_current"]) * self.c["watch_tolerance"]
+            errors = np.concatenate([errors, self._bend(found) / scale])
+        self._error = error = float(np.max(errors, initial=0.0))
+        factor = 2.0 if error < 1e-3 else 0.9 * error ** (-1.0 / order)
+        if not error <= 1.0 and size > self.c["smallest"]:
+            self.rejected += 1
+            self.wish = size * max(0.2, factor) if factor > 0.0 else size * 0.2
+            return False
+        if not error < 1e30:
+            return False
+        self.wish = size if 0.9 <= factor <= 1.2 else max(self.c["smallest"], size * min(2.0, max(0.2, factor)))
+        return True
+
+    def _bend(self, found: list) -> np.ndarray:
+        """What a quadratic misses of the watched currents, from the third difference (see run_source)."""
+        one, two, three = ([part[self.run._watched] for part in parts] for _, parts, _ in found)
+        end = _combine(_WEIGHTS[3], [one[-1], two[-1], three[-1]])
+        moved = 36.0 * (two[-1] - one[-1]) - 22.5 * (three[-1] - one[-1])
+        return 0.0481 * np.abs(9.0 * end + 72.0 * two[0] - 27.0 * three[0] - 54.0 * three[1] + moved)
+
+    def _accept(self, size: float, stop: float, found: list) -> None:
+        weights = _WEIGHTS[int(self.c["order"])]
+        self.failures, self.steps, self.now = 0, self.steps + 1, stop
+        fade = 1.0 - min(1.0, self.c["fade"] * size)
+        self.z = _combine(weights, [states for states, _, _ in found])
+        self.peaks = np.maximum(np.abs(self.z), self.peaks * fade)
+        ends = _combine(weights, [parts[-1] for _, parts, _ in found])
+        mean = _combine(weights, [sum(parts) / len(parts) for _, parts, _ in found])
+        self.watched_peaks = np.maximum(np.abs(ends[self.run._watched]), self.watched_peaks * fade)
+        self._cut(size, found[-1][2])
+        if self.c["record"] > 0.0:
+            middle = 1.5 * mean - 0.25 * (self.ends + ends)
+            width = 1 + 2 * len(ends)
+            self.out[self.position : self.position + width] = [stop, *np.stack([middle, ends], axis=1).ravel().tolist()]
+            self.position += width
+            self.ends = ends
+
+    def _cut(self, size: float, n: np.ndarray) -> None:
+        """Shorten the next step to end where a blocked junction is about to conduct."""
+        rising = (n < self.on - self.scale) & (n > self.u)
+        for index in np.flatnonzero(rising):
+            ahead = (self.on[index] - n[index]) * size / (n[index] - self.u[index]) * 1.02
+            if max(0.05 * self.wish, self.c["smallest"]) < ahead < self.wish:
+                self.wish = float(ahead)
+        self.u = n
+
+
+def _combine(weights: tuple[float, float, float], values: list[np.ndarray]) -> np.ndarray:
+    result = np.zeros_like(values[0])
+    for weight, value in zip(weights, values, strict=False):
+        result = result + weight * value
+    return result
