@@ -57,6 +57,8 @@ class Elimination:
         for unknown, weight in pairs:
             row = self._rows[unknown]
             row.right.append(-(weight * injected))
+            if conductance.constant == 0.0:
+                continue
             row.diagonal.append(conductance * weight * weight)
             row.ground.append(conductance * weight * whole)
             row.sums = row.sums and plain

@@ -114,7 +114,7 @@ class RunSource:
         columns = len(self.system.columns)
         self._each(1, states, "e1_# = 0.0", "e2_# = 0.0", "e3_# = 0.0")
         self._each(1, columns, "c1_# = 0.0", "c2_# = 0.0", "c3_# = 0.0", "m2_# = 0.0", "m3_# = 0.0")
-        self._each(1, len(self.watched), "d_# = 0.0")
+        self._each(1, len(self.watched), "d_# = 0.0", "h# = 0.0")
         self._each(1, junctions, "n# = u#", "a# = 0.0")
         add(1, "f1, f2, f3, q1, q2, q3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0")
         add(1, "if order == 2:", "    f1, f2, f3, q1, q2, q3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
@@ -262,7 +262,7 @@ class RunSource:
             "i# = max(abs(z#), i# * weight)",
         )
         for index, column in enumerate(self.watched):
-            add(2, f"r = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}", f"j{index} = max(abs(r), j{index} * weight)")
+            self._watch(index, column)
         self._each(
             2,
             junctions,
@@ -273,6 +273,19 @@ class RunSource:
             "u# = n#",
         )
         self._record()
+
+    def _watch(self, index: int, column: int) -> None:
+        """A watched current's end and peak; where it falls, the next step ends where the chord meets zero: turn-off cut."""
+        lines = (
+            f"r = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}",
+            "if 0.0 < r < h# and u# > g#:",
+            "    d = r * size / (h# - r)",
+            "    if max(0.2 * wish, smallest) < d < wish:",
+            "        wish = d",
+            "h# = r",
+            "j# = max(abs(r), j# * weight)",
+        )
+        self._add(2, *(line.replace("#", str(index)) for line in lines))
 
     def _record(self) -> None:
         """Each column's end, and a middle that gives the quadratic the extrapolated integral of the step: charges add up."""

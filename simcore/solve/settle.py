@@ -14,6 +14,7 @@ from simcore.solve.failure import Reason
 _AGREEMENT = 1e-6
 _MOST_PERIODS = 20_000
 _SPAN = 4
+_STANDING = 100
 
 
 def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> tuple[str, int]:
@@ -33,7 +34,20 @@ def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> t
         if max(changes[-1], distance) <= goal:
             engine.saved[0] = clock
             return f"settled by following {count} periods; from one to the next the rest shrinks to {ratio:.3g}", count
+        if _stands_still(changes, stepping.tolerance):
+            engine.saved[0] = clock
+            note = f"after {count} periods a state that nothing in the circuit fixes still moves by {changes[-1]:.1g} a period"
+            return f"{note}; it is as reached from rest", count
     raise Interrupted(Reason.NOT_SETTLED, clock, f"after {_MOST_PERIODS} periods {changes[-1]:.2g} of change a period is left")
+
+
+def _stands_still(changes: list[float], tolerance: float) -> bool:
+    """Whether what is left does not shrink at all over many periods and lies within the steps' own error: then it belongs to a
+    state without any restoring loss (a multiplier of 1), whose value is as good as any."""
+    if len(changes) <= _STANDING or max(changes[-_STANDING:]) > 3.0 * tolerance:
+        return False
+    half = _STANDING // 2
+    return sum(changes[-half:]) > 0.95 * sum(changes[-2 * half : -half])
 
 
 def largest_change(before: Sequence[float], after: Sequence[float], quantities: Sequence[str]) -> float:
