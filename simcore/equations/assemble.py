@@ -8,20 +8,22 @@ from __future__ import annotations
 
 from collections.abc import Hashable, Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 
 from simcore.components.frame import Branch, CurrentBranch, Frame, NonlinearBranch, SeriesBranch
 from simcore.equations.eliminate import Elimination, Guard
 from simcore.equations.reduce import Form, Reduction, forces_voltage
-from simcore.equations.values import Level, Value, derivative
+from simcore.equations.values import Level, Value, changes, derivative
 
 
 @dataclass(frozen=True)
 class State:
-    """What a branch carries from step to step: its "current" or its "voltage"."""
+    """What a branch carries from step to step: its "current" or its "voltage". before: the input of its value before."""
 
     branch: int
     quantity: str
     initial: Value
+    before: Value
     new: Value
 
 
@@ -56,6 +58,14 @@ class System:
     columns: list[Column] = field(default_factory=list)
     guards: list[Guard] = field(default_factory=list)
     companions: list[Companion] = field(default_factory=list)
+
+    @cached_property
+    def responses(self) -> list[Value]:
+        """How the states after a step change with those before it, along a direction given by the inputs e0, e1 ...; the
+        nonlinear branches' slopes are those of the last iteration, so this is exact once Newton has converged."""
+        graph = self.frame.graph
+        seeds = {state.before.index: graph.input(f"e{i}", Level.RESPONSE) for i, state in enumerate(self.states)}
+        return changes([state.new for state in self.states], seeds)
 
 
 @dataclass(frozen=True)
@@ -154,12 +164,13 @@ class _Assembly:
 
     def _states(self, index: int, branch: SeriesBranch, voltage: Value, current: Value) -> None:
         if (index, "current") in self._histories:
-            self.system.states.append(State(index, "current", branch.initial_current, current))
+            before = self._history(index, "current")
+            self.system.states.append(State(index, "current", branch.initial_current, before, current))
         if branch.capacitance is not None:
             alone = branch.resistance.constant == 0.0 and branch.inductance.constant == 0.0
-            charged = self._history(index, "voltage") + self.step / branch.capacitance * current
-            new = voltage - branch.source if alone else charged
-            self.system.states.append(State(index, "voltage", branch.initial_voltage, new))
+            before = self._history(index, "voltage")
+            new = voltage - branch.source if alone else before + self.step / branch.capacitance * current
+            self.system.states.append(State(index, "voltage", branch.initial_voltage, before, new))
 
 
 def is_resistor(branch: Branch) -> bool:

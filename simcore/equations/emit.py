@@ -15,18 +15,20 @@ class Emitter:
     """Assigns values to stages and writes each stage's lines; a value used once, by its own stage, is written in place."""
 
     def __init__(self, stages: dict[str, list[Value]]):
-        """stages: name -> targets that must be known after it. The names "variant", "step" and "time" take the values of
-        those levels; a value that changes at every iteration belongs to the first stage that needs it."""
+        """stages: name -> targets that must be known after it. The names "variant", "step", "time" and "response" take the
+        values of those levels; one that changes at every iteration belongs to the first other stage that needs it, else to
+        "after"."""
         self._stage: dict[int, str] = {}
         self._depth: dict[int, int] = {}
         self._text: dict[int, str] = {}
         self._kept = {target.index for targets in stages.values() for target in targets}
         self.lines: dict[str, list[str]] = {name: [] for name in stages}
-        levels = {Level.VARIANT: "variant", Level.STEP: "step", Level.TIME: "time"}
+        fixed = {level: level.name.lower() for level in (Level.VARIANT, Level.STEP, Level.TIME, Level.RESPONSE)}
         for name, targets in stages.items():
+            other = "after" if name == "response" else name
             for value in ancestors(targets):
                 if value.operation not in ("constant", "input") and value.index not in self._stage:
-                    self._stage[value.index] = levels.get(value.level, name)
+                    self._stage[value.index] = fixed.get(value.level, other)
         self._write(stages)
 
     def _write(self, stages: dict[str, list[Value]]) -> None:

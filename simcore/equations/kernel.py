@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Hashable, Sequence
+from functools import cached_property
 
 from simcore.components.frame import Frame
 from simcore.equations.assemble import assemble
@@ -34,10 +35,16 @@ class Kernel:
         self.source = RunSource(self.system).source
         self.run: Run = compile_function(self.source, "run")
 
+    @cached_property
+    def responding_run(self) -> Callable | None:
+        """The run that also carries the derivative of the states (see run_source); None where the run is on arrays."""
+        return compile_function(RunSource(self.system, responses=True).source, "run") if self.source else None
+
     def use_sparse(self) -> None:
         """From here on solve with the sparse LU, which may pivot; the columns and saved numbers stay as they are."""
         from simcore.equations.sparse_run import SparseRun
 
+        self.source = ""
         self.system = assemble(self._frame, self._references, eliminate=False)
         self.watched = watched_columns(self.system)
         self.saved_count = saved_count(self.system)

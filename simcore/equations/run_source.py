@@ -8,7 +8,8 @@ the operating point. Kept within floats, math functions, lists and tuples, so th
 Interface of the emitted function `run(p, s, out, c)`:
 p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends of the columns; read and
 written back. out: records of 1 + 2 * columns numbers: time at the end of a step, then each column's middle and end value.
-c: the controls, in the order of CONTROLS. Returns (status, numbers written, steps, rejected, solves, iterations, weak pivots).
+c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of states: the
+derivative of the states by those at the start, direction by direction, and room for three more. Returns (status, numbers written, steps, rejected, solves, iterations, weak pivots).
 """
 
 from __future__ import annotations
@@ -54,10 +55,11 @@ def saved_count(system: System) -> int:
 
 
 class RunSource:
-    """Writes the source of a system's run, `source`."""
+    """Writes the source of a system's run, `source`; with responses it also carries the derivative of the states."""
 
-    def __init__(self, system: System):
+    def __init__(self, system: System, responses: bool = False):
         self.system = system
+        self._responses = responses
         self.watched = watched_columns(system)
         self.emitter = Emitter(self._stages())
         self._lines: list[str] = []
@@ -75,6 +77,7 @@ class RunSource:
             "time": [],
             "iteration": [junction.new for junction in system.junctions],
             "after": after,
+            "response": system.responses if self._responses else [],
         }
 
     def _add(self, indent: int, *lines: str) -> None:
@@ -98,7 +101,7 @@ class RunSource:
 
     def _prologue(self, states: int, junctions: int) -> None:
         add = self._add
-        add(0, "def run(p, s, out, c):")
+        add(0, "def run(p, s, out, c, m):" if self._responses else "def run(p, s, out, c):")
         self._each(1, len(self.system.frame.numbers), "p# = p[#]")
         add(1, *(f"{name} = c[{index}]" for index, name in enumerate(CONTROLS)))
         add(1, *self.emitter.lines["variant"])
@@ -149,6 +152,8 @@ class RunSource:
         add(3, "h = size / division", *self.emitter.lines["step"])
         self._each(3, states, "y# = z#")
         self._each(3, junctions, "n# = u#")
+        if self._responses:
+            add(3, f"base = division * {states * states}", f"for k in range({states * states}):", "    m[base + k] = m[k]")
         add(3, "part = 1", "while part <= division:")
         add(4, "t = stop if part == division else now + part * h")
         add(4, *self.emitter.lines["time"])
@@ -157,6 +162,8 @@ class RunSource:
         for guard in self.system.guards:
             pivot, start = self.emitter.name(guard.pivot), self.emitter.name(guard.start)
             add(4, f"if not {pivot} > {_WEAK_PIVOT!r} * {start}:", "    weak += 1")
+        if self._responses:
+            self._respond(states)
         names = [self.emitter.name(state.new) for state in self.system.states]
         if names:
             add(4, f"{', '.join(f'y{i}' for i in range(states))} = {', '.join(names)}")
@@ -171,6 +178,14 @@ class RunSource:
                 self._each(4, junctions, "a# = n# - u# if u# > g# and n# > g# else 0.0")
             add(4, "pass")
         add(3, "division += 1")
+
+    def _respond(self, states: int) -> None:
+        """Carry each direction's change of the states over the solve just made, with its factors."""
+        add = self._add
+        add(4, f"for k in range(base, base + {states * states}, {states}):")
+        self._each(5, states, "e# = m[k + #]")
+        add(5, *self.emitter.lines["response"])
+        add(5, *(f"m[k + {i}] = {self.emitter.name(value)}" for i, value in enumerate(self.system.responses)))
 
     def _newton(self, junctions: int) -> None:
         add = self._add
@@ -261,6 +276,10 @@ class RunSource:
             "z# = f1 * e1_# + f2 * e2_# + f3 * e3_#",
             "i# = max(abs(z#), i# * weight)",
         )
+        if self._responses:
+            size = states * states
+            sums = " + ".join(f"f{division} * m[{division * size} + k]" for division in (1, 2, 3))
+            add(2, f"for k in range({size}):", f"    m[k] = {sums}")
         for index, column in enumerate(self.watched):
             self._watch(index, column)
         self._each(

@@ -11,13 +11,14 @@ from enum import IntEnum
 
 
 class Level(IntEnum):
-    """How often an input changes, from never to at every Newton iteration."""
+    """How often an input changes, from never to at every Newton iteration, and to every direction of a response."""
 
     DESIGN = 0
     VARIANT = 1
     STEP = 2
     TIME = 3
     ITERATION = 4
+    RESPONSE = 5
 
 
 _FOLD = {
@@ -200,12 +201,17 @@ def cos(a: Value) -> Value:
 
 
 def derivative(value: Value, variable: Value) -> Value:
-    """d value / d variable by forward accumulation over the graph (Wengert, Comm. ACM 7, 1964)."""
-    graph = value.graph
+    """d value / d variable."""
+    return changes([value], {variable.index: value.graph.one})[0]
+
+
+def changes(values: list[Value], directions: dict[int, Value]) -> list[Value]:
+    """How values change along a direction in their inputs, given as input's index -> its change, by forward accumulation over
+    the graph (Wengert, Comm. ACM 7, 1964). Inputs that are not named stand still."""
     slopes: dict[int, Value] = {}
-    for node in ancestors([value]):
-        slopes[node.index] = graph.one if node is variable else _slope(node, slopes)
-    return slopes[value.index]
+    for node in ancestors(values):
+        slopes[node.index] = directions.get(node.index) or _slope(node, slopes)
+    return [slopes[value.index] for value in values]
 
 
 def _slope(node: Value, slopes: dict[int, Value]) -> Value:

@@ -82,12 +82,12 @@ class Course:
         engine = self._engine(circuit, frame, memory)
         clock = clock_at_phase(frame, self.study.angle)
         stepping = self._stepping(frame, period)
-        note, periods = self._guard(lambda: settle(engine, clock, period, stepping), clock)
+        found = self._guard(lambda: settle(engine, clock, period, stepping), clock)
         stretches = self._guard(lambda: engine.advance(clock + period, stepping, record=True), clock)
         engine.remember(memory)
         solution = self._solution(changes, stretches, clock, period, period)
-        solution.notes.append(note)
-        solution.statistics["periods"] = periods
+        solution.notes.append(found.how)
+        solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
         return solution, Reached(memory, clock, math.inf, changes)
 
     def _transient(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import bisect
 import math
-from collections.abc import Hashable
+from collections.abc import Hashable, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -88,6 +88,7 @@ class Engine:
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
         self._record: list[float] = []
+        self._response: list[float] | None = None
 
     # --- state by name, so that it can move between forms of the equations ---
 
@@ -119,6 +120,15 @@ class Engine:
     def states(self) -> list[float]:
         """The states' values, in the kernel's order."""
         return self.saved[2 : 2 + self._states]
+
+    def peaks(self) -> list[float]:
+        """The states' peaks of late, in the kernel's order."""
+        first = 2 + self._states + self._junctions
+        return self.saved[first : first + self._states]
+
+    def set_states(self, values: Sequence[float]) -> None:
+        """Put the states at given values."""
+        self.saved[2 : 2 + self._states] = [float(value) for value in values]
 
     # --- running ---
 
@@ -177,6 +187,19 @@ class Engine:
                 stretches.append(self._recorded(time, first, chunks, stepping.order))
         return stretches
 
+    def respond(self, end: float, stepping: Stepping) -> np.ndarray | None:
+        """Run to a time and give the derivative of the states there by those at the start, shape (states, states), a row a
+        state; None, and nothing is run, where the kernel cannot carry it."""
+        if self.kernel.responding_run is None:
+            return None
+        size = self._states * self._states
+        self._response = [*np.eye(self._states).ravel().tolist(), *([0.0] * (3 * size))]
+        try:
+            self.advance(end, stepping, record=False)
+            return np.array(self._response[:size]).reshape(self._states, self._states).T
+        finally:
+            self._response = None
+
     def _to_corner(self, corner: float, stepping: Stepping, record: bool) -> list[np.ndarray]:
         width = 1 + 2 * len(self.kernel.system.columns)
         controls = (
@@ -234,6 +257,8 @@ class Engine:
 
     def _run(self, controls: tuple[float, ...]) -> tuple[int, ...]:
         try:
+            if self._response is not None and controls[4] > 1 and self.kernel.responding_run is not None:
+                return self.kernel.responding_run(self.numbers, self.saved, self._record, controls, self._response)
             return self.kernel.run(self.numbers, self.saved, self._record, controls)
         except ArithmeticError as error:
             raise Interrupted(Reason.SINGULAR, self.saved[0]) from error

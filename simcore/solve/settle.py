@@ -1,75 +1,179 @@
-"""The periodic steady state by following periods until the distance to it, not only the change from one to the next, is small.
+"""The periodic steady state as the solution of an equation: the states a period later equal those now.
 
-The distance is estimated from the change d and its ratio r to the change before: d r / (1 - r), the rest of a geometric series
-(Aitken, Proc. Royal Society of Edinburgh 46, 1926).
+Newton on the period map (shooting; Aprille and Trick, Proc. IEEE 60, 1972) by pseudo-transient continuation (Kelley and Keyes, SIAM
+J. Numer. Anal. 35, 1998) counted in periods, with one plain period after each update: it begins as following the circuit and ends
+as Newton. Where it stalls, periods are followed until the estimated distance to the settled state is small (Aitken 1926).
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
 
 from simcore.solve.engine import Engine, Interrupted, Stepping
 from simcore.solve.failure import Reason
 
 _AGREEMENT = 1e-6
+_ROUNDS = 30
+_FIRST = 4.0
+_GROWTH = 4.0
+_LARGEST_GROWTH = 100.0
+_FREE = 1e-9
+_SMALL_SHARE = 0.01
 _MOST_PERIODS = 20_000
 _SPAN = 4
-_STANDING = 100
+_STANDING = 4
 
 
-def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> tuple[str, int]:
+@dataclass(frozen=True)
+class Settled:
+    """How a settled state was reached: words for the report, periods followed (those that carry derivatives counted
+    apart), and the largest multiplier, the share of a disturbance that is left after a period (None where not known)."""
+
+    how: str
+    periods: int
+    responding: int
+    multiplier: float | None
+
+
+class _Map:
+    """The period map of an engine, from a phase of the sources (clock, in s) on."""
+
+    def __init__(self, engine: Engine, clock: float, period: float, stepping: Stepping):
+        self.engine, self.clock, self.period, self.stepping = engine, clock, period, stepping
+        self.quantities = [state.quantity for state in engine.kernel.system.states]
+        self.plain = self.responding = 0
+
+    def follow(self, states: np.ndarray) -> np.ndarray:
+        """The states a period later."""
+        self._start(states)
+        self.engine.advance(self.clock + self.period, self.stepping, record=False)
+        self.plain += 1
+        return np.array(self.engine.states())
+
+    def respond(self, states: np.ndarray) -> tuple[np.ndarray, np.ndarray] | None:
+        """The states a period later and their derivative by those now; None where the engine has no derivative."""
+        self._start(states)
+        derivative = self.engine.respond(self.clock + self.period, self.stepping)
+        if derivative is None:
+            return None
+        self.responding += 1
+        return np.array(self.engine.states()), derivative
+
+    def _start(self, states: np.ndarray) -> None:
+        self.engine.set_states(states.tolist())
+        self.engine.saved[0] = self.clock
+
+    def finish(self, states: np.ndarray) -> None:
+        """Leave the engine in the settled state, at the start of a period."""
+        self._start(states)
+
+    def scale(self, states: np.ndarray) -> np.ndarray:
+        """The size of each state: its peak of late, at least a hundredth of the largest of its quantity."""
+        sizes = np.maximum(np.abs(states), self.engine.peaks())
+        for quantity in dict.fromkeys(self.quantities):
+            own = np.array([each == quantity for each in self.quantities])
+            sizes[own] = np.maximum(sizes[own], _SMALL_SHARE * np.max(sizes[own], initial=0.0))
+        return np.where(sizes > 0.0, sizes, 1.0)
+
+
+def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> Settled:
     """Bring an engine to its periodic state at a phase of the sources (clock, in s).
 
-    Returns how it was reached, in words, and the periods it took. Raises Interrupted where it is not reached.
+    Raises Interrupted where it is not reached.
     """
-    quantities = [state.quantity for state in engine.kernel.system.states]
-    goal = max(_AGREEMENT, 0.05 * stepping.tolerance)
-    changes: list[float] = []
-    for count in range(1, _MOST_PERIODS + 1):
-        before = engine.states()
-        engine.saved[0] = clock
-        engine.advance(clock + period, stepping, record=False)
-        changes.append(largest_change(before, engine.states(), quantities))
+    way = _Map(engine, clock, period, stepping)
+    start = np.array(engine.states())
+    if len(start) == 0:
+        way.follow(start)
+        way.finish(start)
+        return Settled("settled at once, since it has no states", 1, 0, 0.0)
+    return _by_newton(way, start) or _by_following(way, start)
+
+
+def _goal(stepping: Stepping) -> float:
+    return max(_AGREEMENT, 0.3 * stepping.tolerance)
+
+
+def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
+    """Pseudo-transient continuation; None where it stalls.
+
+    The steps of a run make its map rough by about their tolerance: where corrections of that size no longer shrink, the best
+    state found is as good as this tolerance can tell.
+    """
+    states = way.follow(start)
+    pseudo, before, since = _FIRST, np.inf, 0
+    best, best_states, best_scaled = np.inf, states, np.eye(len(states))
+    for _ in range(_ROUNDS):
+        answer = way.respond(states)
+        if answer is None:
+            return None
+        after, derivative = answer
+        scale = way.scale(after)
+        residual = (after - states) / scale
+        scaled = derivative * scale / scale[:, None]
+        rest = _solved(np.eye(len(states)) - scaled, residual)
+        left, size = float(np.max(np.abs(rest))), float(np.max(np.abs(residual)))
+        since += 1
+        if left < best:
+            since = since if left > 0.5 * best else 0
+            best, best_states, best_scaled = left, states + rest * scale, scaled
+        if best <= _goal(way.stepping) or (since >= _STANDING and best <= 3.0 * way.stepping.tolerance):
+            way.finish(best_states)
+            return _described(way, best_scaled)
+        pseudo *= _growth(before, size)
+        step = _solved((1.0 + 1.0 / pseudo) * np.eye(len(states)) - scaled, residual)
+        states, before = way.follow(states + step * scale), size
+    return None
+
+
+def _growth(before: float, size: float) -> float:
+    """What the pseudo time grows by: with the residual's fall, and back where it rose."""
+    if not np.isfinite(before):
+        return 1.0
+    if size > 1.5 * before:
+        return 0.125
+    return min(max(_GROWTH, _GROWTH * before / max(size, 1e-300)), _LARGEST_GROWTH)
+
+
+def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
+    """The least-squares solution of least size: what no equation fixes stays as it is."""
+    return np.linalg.lstsq(matrix, right, rcond=1e-10)[0]
+
+
+def _described(way: _Map, scaled: np.ndarray) -> Settled:
+    multipliers = np.linalg.eigvals(scaled)
+    largest = float(np.max(np.abs(multipliers)))
+    how = f"settled by Newton on the period map; of a disturbance {largest:.3g} is left after a period"
+    if 1.0 - largest < _FREE:
+        how += "; what nothing in the circuit fixes (a multiplier of 1) is as reached from rest"
+    return Settled(how, way.plain, way.responding, largest)
+
+
+def _by_following(way: _Map, start: np.ndarray) -> Settled:
+    """Period after period until the distance, the rest of a geometric series, is small."""
+    goal = _goal(way.stepping)
+    states, changes = start, []
+    while way.plain < _MOST_PERIODS:
+        after = way.follow(states)
+        changes.append(float(np.max(np.abs(after - states) / way.scale(after))))
+        states = after
         distance, ratio = _distance(changes)
         if max(changes[-1], distance) <= goal:
-            engine.saved[0] = clock
-            return f"settled by following {count} periods; from one to the next the rest shrinks to {ratio:.3g}", count
-        if _stands_still(changes, stepping.tolerance):
-            engine.saved[0] = clock
-            note = f"after {count} periods a state that nothing in the circuit fixes still moves by {changes[-1]:.1g} a period"
-            return f"{note}; it is as reached from rest", count
-    raise Interrupted(Reason.NOT_SETTLED, clock, f"after {_MOST_PERIODS} periods {changes[-1]:.2g} of change a period is left")
+            way.finish(states)
+            how = f"settled by following {way.plain} periods; of a disturbance {ratio:.3g} is left after a period"
+            return Settled(how, way.plain, way.responding, ratio)
+    detail = f"after {way.plain} periods a state still changes by {changes[-1]:.2g} of its size a period"
+    raise Interrupted(Reason.NOT_SETTLED, way.clock, detail)
 
 
-def _stands_still(changes: list[float], tolerance: float) -> bool:
-    """Whether what is left does not shrink at all over many periods and lies within the steps' own error: then it belongs to a
-    state without any restoring loss (a multiplier of 1), whose value is as good as any."""
-    if len(changes) <= _STANDING or max(changes[-_STANDING:]) > 3.0 * tolerance:
-        return False
-    half = _STANDING // 2
-    return sum(changes[-half:]) > 0.95 * sum(changes[-2 * half : -half])
-
-
-def largest_change(before: Sequence[float], after: Sequence[float], quantities: Sequence[str]) -> float:
-    """The largest change of a state relative to its size, or to a hundredth of the largest of its quantity."""
-    largest = {quantity: 0.0 for quantity in quantities}
-    for value, quantity in zip(after, quantities, strict=True):
-        largest[quantity] = max(largest[quantity], abs(value))
-    result = 0.0
-    for old, new, quantity in zip(before, after, quantities, strict=True):
-        size = max(abs(new), 0.01 * largest[quantity])
-        if size > 0.0:
-            result = max(result, abs(new - old) / size)
-    return result
-
-
-def _distance(changes: list[float]) -> tuple[float, float]:
+def _distance(changes: Sequence[float]) -> tuple[float, float]:
     """The distance still to go and the ratio of successive changes, both from the last few periods."""
     if changes[-1] == 0.0:
         return 0.0, 0.0
     if len(changes) <= _SPAN:
-        return changes[-1] if len(changes) > 1 else 1.0, 1.0
+        return changes[-1] if len(changes) > 1 else np.inf, 1.0
     ratio = (changes[-1] / changes[-1 - _SPAN]) ** (1.0 / _SPAN) if changes[-1 - _SPAN] > 0.0 else 0.0
-    if ratio >= 1.0:
-        return changes[-1] * _MOST_PERIODS, ratio
-    return changes[-1] * ratio / (1.0 - ratio), ratio
+    return (np.inf if ratio >= 1.0 else changes[-1] * ratio / (1.0 - ratio)), ratio
