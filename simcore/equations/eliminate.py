@@ -2,9 +2,10 @@
 
 A row keeps its conductances to other unknowns and its conductance to the reference instead of the diagonal, which is their sum.
 Eliminating an unknown then only adds products of positive numbers: no pivoting, no growth, no cancellation (the star-mesh
-transformation; Grassmann, Taksar and Heyman, Operations Research 33, 1985). Rows touched by windings or other weights keep an
-explicit diagonal and are guarded: the run checks that their pivot did not shrink to rounding.
-Order: unknowns whose row changes seldom first, then fewest neighbours (Markowitz, Management Science 3, 1957).
+transformation; Grassmann, Taksar and Heyman, Operations Research 33, 1985). What is no node (a core's voltage a turn) couples to
+nodes with either sign: it stands aside of the nodes' sums, is eliminated last, keeps an explicit diagonal and is guarded: the run
+checks that its pivot did not shrink to rounding. So is a node that other weights than +1 and -1 touch.
+Order: nodes first, then unknowns whose row changes seldom, then fewest neighbours (Markowitz, Management Science 3, 1957).
 """
 
 from __future__ import annotations
@@ -46,14 +47,15 @@ class Elimination:
 
     def __init__(self, graph: Graph, unknowns: list[Hashable]):
         self._graph = graph
-        self._rows: dict[Hashable, _Row] = {unknown: _Row() for unknown in unknowns}
+        self._rows: dict[Hashable, _Row] = {unknown: _Row(sums=_is_node(unknown)) for unknown in unknowns}
         self.guards: list[Guard] = []
 
     def stamp(self, weights: dict[Hashable, Value], conductance: Value, injected: Value) -> None:
         """Add i = conductance * (sum of weights * unknowns) + injected, flowing out of the unknowns by their weights."""
         pairs = list(weights.items())
-        whole = self._graph.total([weight for _, weight in pairs])
-        plain = conductance.positive and _is_plain(pairs)
+        nodes = [weight for unknown, weight in pairs if _is_node(unknown)]
+        whole = self._graph.total(nodes)
+        plain = conductance.positive and _is_plain(nodes)
         for unknown, weight in pairs:
             row = self._rows[unknown]
             row.right.append(-(weight * injected))
@@ -84,17 +86,19 @@ class Elimination:
             solution[step.unknown] = self._graph.total([step.right, *terms])
         return solution
 
-    def _rank(self, unknown: Hashable) -> tuple[Level, int]:
+    def _rank(self, unknown: Hashable) -> tuple[bool, Level, int]:
         row = self._rows[unknown]
         entries = [*row.diagonal, *row.ground, *(term for terms in row.mutual.values() for term in terms)]
-        return (max((entry.level for entry in entries), default=Level.DESIGN), len(row.mutual))
+        level = max((entry.level for entry in entries), default=Level.DESIGN)
+        return (not _is_node(unknown), level, len(row.mutual))
 
     def _eliminate(self, pivot: Hashable) -> _Step:
         total = self._graph.total
         row = self._rows.pop(pivot)
         mutual = {other: total(terms) for other, terms in row.mutual.items()}
         ground = total(row.ground)
-        diagonal = total([ground, *mutual.values()]) if row.sums else total(row.diagonal)
+        between = [conductance for other, conductance in mutual.items() if _is_node(other)]
+        diagonal = total([ground, *between]) if row.sums else total(row.diagonal)
         if not row.sums:
             self.guards.append(Guard(diagonal, total([term for term in row.diagonal if term.operation != "neg"])))
         right = total(row.right)
@@ -123,12 +127,17 @@ class Elimination:
     def _use_diagonal(self, row: _Row, lost: Value) -> None:
         """From here on the row's diagonal stands by itself: it starts from its sum, the pivot's share included."""
         row.sums = False
-        row.diagonal = [*row.ground, *(term for terms in row.mutual.values() for term in terms), lost]
+        between = [term for other, terms in row.mutual.items() if _is_node(other) for term in terms]
+        row.diagonal = [*row.ground, *between, lost]
 
 
-def _is_plain(pairs: list[tuple[Hashable, Value]]) -> bool:
-    """A conductance between two unknowns, or from one to the reference."""
-    constants = [weight.constant for _, weight in pairs]
-    if len(constants) == 1:
-        return constants[0] in (1.0, -1.0)
-    return sorted(constants, key=lambda number: (number is None, number or 0.0)) == [-1.0, 1.0]
+def _is_node(unknown: Hashable) -> bool:
+    return isinstance(unknown, str)
+
+
+def _is_plain(weights: list[Value]) -> bool:
+    """Of nodes: a conductance between two, from one to the reference, or none."""
+    constants = [weight.constant for weight in weights]
+    if any(constant not in (1.0, -1.0) for constant in constants):
+        return False
+    return len(constants) < 2 or (len(constants) == 2 and constants[0] != constants[1])

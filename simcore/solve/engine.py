@@ -246,22 +246,25 @@ class Engine:
             self._record = [0.0] * (_ROOM + 2 * len(self.kernel.system.columns) + 1)
         before = list(self.saved)
         result = self._run(controls)
-        self.counts.add(result)
-        if result[-1] and self.kernel.source:
+        if (result is None or result[-1]) and self.kernel.source:
             self.kernel.use_sparse()
             self.saved[:] = before
             result = self._run(controls)
+        if result is None:
+            raise Interrupted(Reason.SINGULAR, self.saved[0])
+        self.counts.add(result)
         if result[0] not in (DONE, FULL):
             raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0])
         return result[1]
 
-    def _run(self, controls: tuple[float, ...]) -> tuple[int, ...]:
+    def _run(self, controls: tuple[float, ...]) -> tuple[int, ...] | None:
+        """The kernel's answer; None where a pivot vanished altogether."""
         try:
             if self._response is not None and controls[4] > 1 and self.kernel.responding_run is not None:
                 return self.kernel.responding_run(self.numbers, self.saved, self._record, controls, self._response)
             return self.kernel.run(self.numbers, self.saved, self._record, controls)
-        except ArithmeticError as error:
-            raise Interrupted(Reason.SINGULAR, self.saved[0]) from error
+        except ArithmeticError:
+            return None
 
     # --- corners of the sources ---
 

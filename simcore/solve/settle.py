@@ -90,7 +90,11 @@ def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> S
         way.follow(start)
         way.finish(start)
         return Settled("settled at once, since it has no states", 1, 0, 0.0)
-    return _by_newton(way, start) or _by_following(way, start)
+    try:
+        found = _by_newton(way, start)
+    except Interrupted:
+        found = None
+    return found or _by_following(way, start)
 
 
 def _goal(stepping: Stepping) -> float:
