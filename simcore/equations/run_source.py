@@ -7,7 +7,8 @@ the operating point. Kept within floats, math functions, lists and tuples, so th
 
 Interface of the emitted function `run(p, s, out, c)`:
 p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends of the columns; read and
-written back. out: records of 1 + 2 * columns numbers: time at the end of a step, then each column's middle and end value.
+written back. out: records of 2 + 2 * columns numbers: time at the end of a step, each column's middle and end value, 1 where a nonlinear branch
+began or ceased to conduct within it (a kink or jump lies inside), else 0.
 c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of states: the
 derivative of the states by those at the start, direction by direction, and room for three more. Returns (status, numbers written, steps, rejected, solves, iterations, weak pivots).
 """
@@ -52,6 +53,11 @@ def saved_groups(system: System) -> list[tuple[str, int]]:
 def saved_count(system: System) -> int:
     """Length of s."""
     return 2 + sum(count for _, count in saved_groups(system))
+
+
+def record_width(system: System) -> int:
+    """Numbers that a step records."""
+    return 2 + 2 * len(system.columns)
 
 
 class RunSource:
@@ -132,7 +138,7 @@ class RunSource:
             "left = t_end - now",
             "if left <= 0.0:",
             "    break",
-            f"if record > 0.0 and position + {1 + 2 * len(self.system.columns)} > room:",
+            f"if record > 0.0 and position + {record_width(self.system)} > room:",
             f"    status = {FULL}",
             "    break",
             "size = min(wish, largest)",
@@ -269,7 +275,7 @@ class RunSource:
     def _accept(self, states: int, junctions: int) -> None:
         add = self._add
         add(2, "failures = 0", "steps += 1", "now = stop")
-        add(2, "weight = 1.0 - min(1.0, fade * size)")
+        add(2, "weight = 1.0 - min(1.0, fade * size)", "kink = 0.0")
         self._each(
             2,
             states,
@@ -285,6 +291,8 @@ class RunSource:
         self._each(
             2,
             junctions,
+            "if (u# > g#) != (n# > g#):",
+            "    kink = 1.0",
             "if n# < g# - w# and n# > u#:",
             "    d = (g# - n#) * size / (n# - u#) * 1.02",
             "    if max(0.05 * wish, smallest) < d < wish:",
@@ -315,7 +323,7 @@ class RunSource:
             mean = f"g1 * c1_{i} + g2 * (m2_{i} + c2_{i}) + g3 * (m3_{i} + c3_{i})"
             add(3, f"r = f1 * c1_{i} + f2 * c2_{i} + f3 * c3_{i}", f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)")
             add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")
-        add(3, f"position += {1 + 2 * len(columns)}")
+        add(3, f"out[position + {1 + 2 * len(columns)}] = kink", f"position += {record_width(self.system)}")
 
     def _epilogue(self, states: int, junctions: int) -> None:
         self._add(1, "s[0] = now", "s[1] = wish")

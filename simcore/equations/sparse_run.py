@@ -13,7 +13,7 @@ import numpy as np
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
 from simcore.equations.plain import evaluate
-from simcore.equations.run_source import CONTROLS, DONE, FULL, NO_CONVERGENCE
+from simcore.equations.run_source import CONTROLS, DONE, FULL, NO_CONVERGENCE, record_width
 from simcore.equations.values import Value
 
 _WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
@@ -87,7 +87,7 @@ class _Attempt:
 
     def go(self) -> tuple[int, ...]:
         """The time loop."""
-        c, width = self.c, 1 + 2 * len(self.ends)
+        c, width = self.c, record_width(self.run._system)
         status = DONE
         while (left := c["t_end"] - self.now) > 0.0:
             if c["record"] > 0.0 and self.position + width > c["room"]:
@@ -213,12 +213,13 @@ class _Attempt:
         ends = _combine(weights, [parts[-1] for _, parts, _ in found])
         mean = _combine(weights, [sum(parts) / len(parts) for _, parts, _ in found])
         self.watched_peaks = np.maximum(np.abs(ends[self.run._watched]), self.watched_peaks * fade)
+        kink = float(np.any((self.u > self.on) != (found[-1][2] > self.on)))
         self._cut(size, found[-1][2])
         if self.c["record"] > 0.0:
             middle = 1.5 * mean - 0.25 * (self.ends + ends)
-            width = 1 + 2 * len(ends)
-            self.out[self.position : self.position + width] = [stop, *np.stack([middle, ends], axis=1).ravel().tolist()]
-            self.position += width
+            row = [stop, *np.stack([middle, ends], axis=1).ravel().tolist(), kink]
+            self.out[self.position : self.position + len(row)] = row
+            self.position += len(row)
             self.ends = ends
 
     def _cut(self, size: float, n: np.ndarray) -> None:

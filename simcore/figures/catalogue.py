@@ -48,7 +48,9 @@ def _table(*measures: Measure) -> dict[str, Measure]:
 
 SIGNALS = _table(
     Measure("voltage", ("place",), _fixed(VOLT), "voltage of a node, between two nodes, or across an element"),
-    Measure("current", ("branch",), _fixed(AMPERE), "current through an element, from its first terminal to its second"),
+    Measure(
+        "current", ("branch",), _fixed(AMPERE), "current through an element, from its first terminal to its second"
+    ),
     Measure("power", ("element",), _fixed(WATT), "power that an element takes"),
     Measure("temperature", ("element",), _fixed(KELVIN), "temperature at which an element runs"),
 )

@@ -31,6 +31,9 @@ class Solved(Protocol):
     window: tuple[float, float]
     first_event: float | None
 
+    @property
+    def smooth(self) -> Array: ...
+
     def voltage(self, a: str, b: str) -> Array: ...
 
     def current(self, element: str, port: str = "") -> Array: ...
@@ -71,6 +74,8 @@ class Record:
         self.solution = solution
         self.circuit = solution.circuit
         self.times = np.asarray(solution.times, dtype=float)
+        rough = ~np.asarray(solution.smooth, dtype=bool)
+        self.rough = np.stack([self.times[:-1][rough], self.times[1:][rough]], axis=1)
         self.nodes = dict.fromkeys((*self.circuit.nodes(), *self.circuit.references))
         self._kept: dict[object, Signal] = {}
 
@@ -111,14 +116,16 @@ class Record:
         """Voltage of node a against node b, or against the reference of its part of the circuit, V."""
         end = self.circuit.references[0] if b is None else b
         return self.keep(
-            ("voltage", a, end), lambda: Signal.through(self.times, self.solution.voltage(a, end), VOLT)
+            ("voltage", a, end), lambda: Signal.through(self.times, self.solution.voltage(a, end), VOLT, self.rough)
         )
 
     def port_current(self, element: Element, port: Port) -> Signal:
         """Current through a port from a to b, A."""
         return self.keep(
             ("current", element.name, port.name),
-            lambda: Signal.through(self.times, self.solution.current(element.name, port.name), AMPERE),
+            lambda: Signal.through(
+                self.times, self.solution.current(element.name, port.name), AMPERE, self.rough
+            ),
         )
 
     def voltage(self, name: str) -> Signal:

@@ -7,7 +7,7 @@ polynomial (a quotient, a square root) it is interpolated, and the pieces are ha
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -24,6 +24,9 @@ FIT_ERROR = 1e-11
 FIT_HALVINGS = 40
 
 
+_NOWHERE: Array = np.empty((0, 2))
+
+
 class SignalError(Exception):
     """A signal cannot be formed; the text says why in the trade's words."""
 
@@ -36,11 +39,13 @@ class Signal:
     coefficients: shape (n, order + 1), ascending powers of s = (2 t - t_k - t_k+1) / (t_k+1 - t_k), -1 to 1 in piece k;
                   in the SI unit of the dimension
     dimension: of the values
+    rough: spans in s, shape (m, 2), with a kink or jump inside: what a piece there reaches between its ends is no extremum
     """
 
     times: Array
     coefficients: Array
     dimension: Dimension
+    rough: Array = field(default_factory=lambda: _NOWHERE)
 
     def __post_init__(self) -> None:
         if self.coefficients.ndim != 2 or len(self.times) != len(self.coefficients) + 1 or len(self.times) < 2:
@@ -51,14 +56,14 @@ class Signal:
             raise ValueError("the values of a signal are finite")
 
     @classmethod
-    def through(cls, times: Array, values: Array, dimension: Dimension) -> Signal:
+    def through(cls, times: Array, values: Array, dimension: Dimension, rough: Array = _NOWHERE) -> Signal:
         """The signal through values at evenly spaced points of each piece, ends included.
 
-        times: shape (n + 1,), s; values: shape (n, 3), at start, middle and end, in the SI unit
+        times: shape (n + 1,), s; values: shape (n, 3), at start, middle and end, in the SI unit; rough: see Signal
         """
         start, middle, end = np.asarray(values, dtype=float).T
         rows = np.stack([middle, 0.5 * (end - start), 0.5 * (start + end) - middle], axis=1)
-        return cls(np.asarray(times, dtype=float), rows, dimension)
+        return cls(np.asarray(times, dtype=float), rows, dimension, rough)
 
     @classmethod
     def constant(cls, times: Array, value: float, dimension: Dimension) -> Signal:
@@ -116,7 +121,7 @@ class Signal:
         width = self.widths[piece]
         scale = np.diff(times) / width
         offset = (2.0 * middle - self.times[piece] - self.times[piece + 1]) / width
-        return Signal(times, polynomials.substituted(self.coefficients[piece], scale, offset), self.dimension)
+        return Signal(times, polynomials.substituted(self.coefficients[piece], scale, offset), self.dimension, self.rough)
 
     def restrict(self, start: float, end: float) -> Signal:
         """The part from start to end in s; both within the span up to rounding, else ValueError."""
@@ -128,17 +133,17 @@ class Signal:
         return self.on(np.concatenate([[start], inside, [end]]))
 
     def __neg__(self) -> Signal:
-        return Signal(self.times, -self.coefficients, self.dimension)
+        return Signal(self.times, -self.coefficients, self.dimension, self.rough)
 
     def __add__(self, other: Signal | float) -> Signal:
         if not isinstance(other, Signal):
             rows = self.coefficients.copy()
             rows[:, 0] += other
-            return Signal(self.times, rows, self.dimension)
+            return Signal(self.times, rows, self.dimension, self.rough)
         left, right = aligned(self, other)
         columns = max(left.coefficients.shape[1], right.coefficients.shape[1])
         rows = polynomials.padded(left.coefficients, columns) + polynomials.padded(right.coefficients, columns)
-        return Signal(left.times, rows, self.dimension)
+        return Signal(left.times, rows, self.dimension, _either(left, right))
 
     def __radd__(self, other: float) -> Signal:
         return self + other
@@ -151,12 +156,13 @@ class Signal:
 
     def __mul__(self, other: Signal | float) -> Signal:
         if not isinstance(other, Signal):
-            return Signal(self.times, self.coefficients * other, self.dimension)
+            return Signal(self.times, self.coefficients * other, self.dimension, self.rough)
         left, right = aligned(self, other)
         dimension = self.dimension * other.dimension
         if left.coefficients.shape[1] + right.coefficients.shape[1] - 2 > MAX_ORDER:
             return fitted(lambda a, b: a * b, (left, right), dimension, MAX_ORDER)
-        return Signal(left.times, polynomials.product(left.coefficients, right.coefficients), dimension)
+        rows = polynomials.product(left.coefficients, right.coefficients)
+        return Signal(left.times, rows, dimension, _either(left, right))
 
     def __rmul__(self, other: float) -> Signal:
         return self * other
@@ -168,7 +174,7 @@ class Signal:
             return self.scaled(1.0 / float(other.coefficients[0, 0]), self.dimension / other.dimension)
         if isinstance(other, Signal):
             return fitted(lambda a, b: a / b, aligned(self, other), self.dimension / other.dimension)
-        return Signal(self.times, self.coefficients / other, self.dimension)
+        return Signal(self.times, self.coefficients / other, self.dimension, self.rough)
 
     def __rtruediv__(self, other: float) -> Signal:
         return fitted(lambda a: other / a, (self,), NONE / self.dimension)
@@ -179,7 +185,7 @@ class Signal:
 
     def scaled(self, factor: float, dimension: Dimension) -> Signal:
         """The signal times a number that has a unit; dimension is that of the result."""
-        return Signal(self.times, self.coefficients * factor, dimension)
+        return Signal(self.times, self.coefficients * factor, dimension, self.rough)
 
     def _cut_at_zeros(self) -> Signal:
         piece, local = polynomials.roots(self.coefficients)
@@ -189,7 +195,7 @@ class Signal:
     @staticmethod
     def _signed(cut: Signal) -> Signal:
         sign = np.where(polynomials.means(cut.coefficients) < 0.0, -1.0, 1.0)
-        return Signal(cut.times, cut.coefficients * sign[:, None], cut.dimension)
+        return Signal(cut.times, cut.coefficients * sign[:, None], cut.dimension, cut.rough)
 
     # --- integrals and extrema -------------------------------------------------------------------------------------
 
@@ -206,12 +212,20 @@ class Signal:
         """The largest value; only pieces whose Bernstein form leaves room for more than the ends show are searched."""
         start, end = self.piece_ends
         best = max(float(start.max()), float(end.max()))
-        room = polynomials.bernstein(self.coefficients).max(axis=1) > best
+        room = (polynomials.bernstein(self.coefficients).max(axis=1) > best) & self._smooth_pieces()
         rows = self.coefficients[room]
         piece, local = polynomials.roots(polynomials.derivative(rows))
         if len(piece) == 0:
             return best
         return max(best, float(polynomials.values(rows[piece], local).max()))
+
+    def _smooth_pieces(self) -> Array:
+        """Which pieces lie in no rough span, shape (n,)."""
+        if len(self.rough) == 0:
+            return np.ones(len(self.widths), dtype=bool)
+        middle = 0.5 * (self.times[1:] + self.times[:-1])
+        before = np.searchsorted(self.rough[:, 0], middle, side="right") - 1
+        return (before < 0) | (middle > self.rough[np.maximum(before, 0), 1])
 
     def lowest(self) -> float:
         """The smallest value."""
@@ -240,6 +254,11 @@ class Signal:
         return float(np.sum(cut.widths[polynomials.means(cut.coefficients) > 0.0]))
 
 
+def _either(left: Signal, right: Signal) -> Array:
+    """The rough spans of a result of both: signals of one solution share theirs, constants have none."""
+    return left.rough if len(left.rough) >= len(right.rough) else right.rough
+
+
 def aligned(left: Signal, right: Signal) -> tuple[Signal, Signal]:
     """Both on the breakpoints of both, over the span they share; ValueError where they share none."""
     if left.times is right.times or np.array_equal(left.times, right.times):
@@ -266,7 +285,7 @@ def larger(left: Signal, right: Signal) -> Signal:
     rows = np.where(
         take, polynomials.padded(first.coefficients, columns), polynomials.padded(second.coefficients, columns)
     )
-    return Signal(difference.times, rows, left.dimension)
+    return Signal(difference.times, rows, left.dimension, _either(left, right))
 
 
 def power(base: Signal, exponent: float, dimension: Dimension) -> Signal:
@@ -315,7 +334,8 @@ def fitted(
         done_starts.append(edges[0][good])
         done_rows.append(candidate[good])
         if good.all():
-            return _joined(signals[0].end, np.concatenate(done_starts), np.concatenate(done_rows), dimension)
+            rough = max((signal.rough for signal in signals), key=len)
+            return _joined(signals[0].end, np.concatenate(done_starts), np.concatenate(done_rows), dimension, rough)
         bad = ~good
         edges, rows = edges[:, bad], [row[bad] for row in rows]
         middle = 0.5 * (edges[0] + edges[1])
@@ -337,6 +357,6 @@ def _halved(edges: Array, rows: list[Array], middle: Array) -> tuple[Array, list
     return new_edges, new_rows
 
 
-def _joined(end: float, starts: Array, rows: Array, dimension: Dimension) -> Signal:
+def _joined(end: float, starts: Array, rows: Array, dimension: Dimension, rough: Array) -> Signal:
     order = np.argsort(starts)
-    return Signal(np.append(starts[order], end), rows[order], dimension)
+    return Signal(np.append(starts[order], end), rows[order], dimension, rough)

@@ -15,7 +15,7 @@ import numpy as np
 from simcore.components.frame import Waveform
 from simcore.equations.kernel import Kernel
 from simcore.equations.plain import evaluate
-from simcore.equations.run_source import DONE, FULL
+from simcore.equations.run_source import DONE, FULL, record_width
 from simcore.solve.failure import Reason
 from simcore.solve.stretch import Stretch
 
@@ -145,7 +145,7 @@ class Engine:
             except Interrupted:
                 continue
             values = np.stack([record, record, record])[None]
-            return Stretch(self.kernel.system, list(self.numbers), np.array([time, time + 1.0]), values, 1, held=True)
+            return Stretch(self.kernel.system, list(self.numbers), np.array([time, time + 1.0]), values, 1, np.array([True]), held=True)
         raise Interrupted(Reason.NO_CONVERGENCE, time)
 
     def begin(self, time: float, step: float) -> np.ndarray:
@@ -172,7 +172,7 @@ class Engine:
             raise Interrupted(Reason.NO_CONVERGENCE, time)
         written = self._call(controls)
         columns = len(self.kernel.system.columns)
-        return np.array(self._record[written - 2 * columns : written]).reshape(columns, 2)[:, 1]
+        return np.array(self._record[written - 2 * columns - 1 : written - 1]).reshape(columns, 2)[:, 1]
 
     def advance(self, end: float, stepping: Stepping, record: bool) -> list[Stretch]:
         """Run to a time, corner by corner; returns what was recorded (nothing where not asked)."""
@@ -201,7 +201,7 @@ class Engine:
             self._response = None
 
     def _to_corner(self, corner: float, stepping: Stepping, record: bool) -> list[np.ndarray]:
-        width = 1 + 2 * len(self.kernel.system.columns)
+        width = record_width(self.kernel.system)
         controls = (
             corner,
             stepping.largest,
@@ -243,7 +243,7 @@ class Engine:
         """Run the kernel once; returns how many numbers it recorded. A pivot that shrank to rounding is answered by going back
         and on with the sparse LU, which may pivot."""
         if not self._record:
-            self._record = [0.0] * (_ROOM + 2 * len(self.kernel.system.columns) + 1)
+            self._record = [0.0] * (_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
         result = self._run(controls)
         if (result is None or result[-1]) and self.kernel.source:
@@ -281,11 +281,11 @@ class Engine:
     def _recorded(self, start: float, first: np.ndarray, chunks: list[np.ndarray], order: int) -> Stretch:
         rows = np.concatenate(chunks)
         columns = len(self.kernel.system.columns)
-        pairs = rows[:, 1:].reshape(len(rows), columns, 2)
+        pairs = rows[:, 1:-1].reshape(len(rows), columns, 2)
         begins = np.concatenate([first[None], pairs[:-1, :, 1]])
         values = np.stack([begins, pairs[:, :, 0], pairs[:, :, 1]], axis=1)
         times = np.concatenate([[start], rows[:, 0]])
-        return Stretch(self.kernel.system, list(self.numbers), times, values, order)
+        return Stretch(self.kernel.system, list(self.numbers), times, values, order, rows[:, -1] == 0.0)
 
 
 def _line(waveform: Waveform, time: float) -> tuple[float, float]:

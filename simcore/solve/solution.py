@@ -63,6 +63,12 @@ class Solution:
                     found.setdefault((branch.port, seen[branch.port]), blank)[place] = stretch.series(index)
         return [np.concatenate(pieces, axis=1) for pieces in found.values()]
 
+    @property
+    def smooth(self) -> np.ndarray:
+        """Whether no kink or jump lies inside a step, shape (n,). Where one does, the middle value gives the quadratic the right
+        integral, and what it reaches between its ends is no extremum."""
+        return np.concatenate([stretch.smooth for stretch in self.stretches])
+
     def temperature(self, element: str) -> float:
         """What an element runs at, in K."""
         found = self.circuit.elements[element]

@@ -31,13 +31,22 @@ _MEANS = {
 
 class Stretch:
     """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A; order: of
-    the extrapolation that gave them; held: the sources stood still at the first time."""
+    the extrapolation that gave them; smooth: shape (n,), whether no kink or jump lies inside a step; held: the sources stood
+    still at the first time."""
 
     def __init__(
-        self, system: System, numbers: list[float], times: np.ndarray, values: np.ndarray, order: int, held: bool = False
+        self,
+        system: System,
+        numbers: list[float],
+        times: np.ndarray,
+        values: np.ndarray,
+        order: int,
+        smooth: np.ndarray,
+        held: bool = False,
     ):
         self.system = system
         self.times = times
+        self.smooth = smooth
         self._values = values
         self._mean = _MEANS[order]
         self._inputs = {f"p{index}": number for index, number in enumerate(numbers)}

@@ -38,6 +38,10 @@ class FakeSolution:
         if self.window is None:
             self.window = (float(self.times[0]), float(self.times[-1]))
 
+    @property
+    def smooth(self) -> np.ndarray:
+        return np.ones(len(self.times) - 1, dtype=bool)
+
     def voltage(self, a: str, b: str) -> np.ndarray:
         return three_points(self.times, lambda t: self.potentials[a](t) - self.potentials[b](t))
 
