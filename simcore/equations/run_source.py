@@ -128,7 +128,7 @@ class RunSource:
         add(1, "f1, f2, f3, q1, q2, q3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0")
         add(1, "if order == 2:", "    f1, f2, f3, q1, q2, q3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
         add(1, "if order == 3:", "    f1, f2, f3, q1, q2, q3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
-        add(1, "g1, g2, g3 = 1.5 * f1, 0.75 * f2, 0.5 * f3")
+        add(1, "mean1, mean2, mean3 = 1.5 * f1, 0.75 * f2, 0.5 * f3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
         add(1, "failures = 0")
 
@@ -320,7 +320,7 @@ class RunSource:
         columns = range(len(self.system.columns))
         add(2, "if record > 0.0:", "    out[position] = now")
         for i in columns:
-            mean = f"g1 * c1_{i} + g2 * (m2_{i} + c2_{i}) + g3 * (m3_{i} + c3_{i})"
+            mean = f"mean1 * c1_{i} + mean2 * (m2_{i} + c2_{i}) + mean3 * (m3_{i} + c3_{i})"
             add(3, f"r = f1 * c1_{i} + f2 * c2_{i} + f3 * c3_{i}", f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)")
             add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")
         add(3, f"out[position + {1 + 2 * len(columns)}] = kink", f"position += {record_width(self.system)}")
