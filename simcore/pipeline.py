@@ -24,9 +24,13 @@ from simcore.solve.solution import Solution
 START = 1.0
 """First tolerance of a step over the accuracy asked for."""
 RATIO = 8.0
-"""Tolerance over the next tighter one; with errors that fall at least as its square root, what is left is below the difference."""
-ROUNDS = 4
+"""Tolerance over the next tighter one, at least; with errors that fall as its square root or faster, what is left after the
+tighter one is less than the difference of both."""
+LARGEST_RATIO = 64.0
+ROUNDS = 5
 """Tighter solutions at most, after the first."""
+NOTHING = 1e-3
+"""A figure below this share of what it was formed from counts as near nothing, and is judged by that share."""
 _LOOSEST, _TIGHTEST = 1e-2, 1e-8
 
 
@@ -66,13 +70,13 @@ class _Proof:
             self.solve(study.after)
         tolerance = min(_LOOSEST, START * study.accuracy)
         levels = [self._level(study, tolerance, 0, None)]
-        reached = False
-        while not reached and len(levels) <= ROUNDS and tolerance > _TIGHTEST:
-            tolerance = max(tolerance / RATIO, _TIGHTEST)
+        excess = RATIO
+        while excess > 1.0 and len(levels) <= ROUNDS and tolerance > _TIGHTEST:
+            tolerance = max(tolerance / min(max(RATIO, 2.0 * excess), LARGEST_RATIO), _TIGHTEST)
             levels.append(self._level(study, tolerance, 1, levels[-1]))
-            reached = self._accurate(study, levels[-2].solution, levels[-1].solution)
+            excess = self._excess(study, levels[-2].solution, levels[-1].solution)
         self.pairs[name] = (levels[-2], levels[-1])
-        self.results[name] = StudyResult(levels[-1].solution, levels[-2].solution, reached)
+        self.results[name] = StudyResult(levels[-1].solution, levels[-2].solution, excess <= 1.0)
 
     def _level(self, study: PlannedStudy, tolerance: float, which: int, earlier: _Level | None) -> _Level:
         """One solution; a settled state is looked for from where the looser solution found it."""
@@ -81,15 +85,16 @@ class _Proof:
             before = earlier.left if before is None else before
         return _Level(*Course(study, self.variant, before, tolerance, self.kernels).solve())
 
-    def _accurate(self, study: PlannedStudy, coarse: Solution, fine: Solution) -> bool:
-        """Whether every figure that counts is within the accuracy: those required of the study, else those of its signals."""
+    def _excess(self, study: PlannedStudy, coarse: Solution, fine: Solution) -> float:
+        """The worst bound over what the accuracy allows, of the figures required of the study, else of its signals'."""
         records = ({study.name: Record(coarse)}, {study.name: Record(fine)})
         asked = [part for requirement in self.circuit.requirements for part in _figures(requirement, study.name)]
         if asked:
-            pairs = [bounded(*(figure_of(part, study.name, record) for record in records)) for part in asked]
-            return all(_within(figure, study.accuracy) for figure in pairs)
-        rows = signal_rows(records[1][study.name], records[0][study.name])
-        return all(_within(figure, study.accuracy) for row in rows for figure in row.figures.values())
+            figures = [bounded(*(figure_of(part, study.name, record) for record in records)) for part in asked]
+        else:
+            rows = signal_rows(records[1][study.name], records[0][study.name])
+            figures = [figure for row in rows for figure in row.figures.values()]
+        return max((_share(figure, study.accuracy) for figure in figures), default=0.0)
 
 
 def _figures(requirement: Requirement, study: str) -> Iterable:
@@ -98,11 +103,11 @@ def _figures(requirement: Requirement, study: str) -> Iterable:
         yield requirement.figure
 
 
-def _within(figure: Figure, accuracy: float) -> bool:
-    """A figure near nothing is judged by what it was formed from."""
-    if figure.bound is None or not figure.defined:
-        return True
-    return figure.bound <= accuracy * max(abs(figure.value), figure.scale) + figure.rounding
+def _share(figure: Figure, accuracy: float) -> float:
+    """A figure's bound over the one allowed."""
+    if figure.bound is None or not figure.defined or figure.bound <= figure.rounding:
+        return 0.0
+    return figure.bound / (accuracy * max(abs(figure.value), NOTHING * figure.scale) + figure.rounding)
 
 
 def solve_studies(
