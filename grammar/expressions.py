@@ -99,7 +99,9 @@ class _Evaluation:
         try:
             result = quantity(value, number.unit)
         except ValueError:
-            raise self._wrong(f"{number.unit} is no unit", "See the list of units in the README.", number.span) from None
+            raise self._wrong(
+                f"{number.unit} is no unit", "See the list of units in the README.", number.span
+            ) from None
         return self._finite(result, number.span)
 
     def _name(self, name: Name) -> Quantity:
@@ -115,11 +117,17 @@ class _Evaluation:
                 value = left.value + right.value if expression.operator == "+" else left.value - right.value
                 return self._finite(Quantity(value, left.dimension), expression.span)
             case "*":
-                return self._finite(Quantity(left.value * right.value, left.dimension * right.dimension), expression.span)
+                return self._finite(
+                    Quantity(left.value * right.value, left.dimension * right.dimension), expression.span
+                )
             case "/":
                 if right.value == 0.0:
-                    raise self._wrong("it divides by zero", "Give a divisor above or below zero.", _operator(expression))
-                return self._finite(Quantity(left.value / right.value, left.dimension / right.dimension), expression.span)
+                    raise self._wrong(
+                        "it divides by zero", "Give a divisor above or below zero.", _operator(expression)
+                    )
+                return self._finite(
+                    Quantity(left.value / right.value, left.dimension / right.dimension), expression.span
+                )
         return self._power(expression, left, right)
 
     def _both(self, expression: Binary) -> tuple[Quantity, Quantity]:
@@ -163,7 +171,9 @@ class _Evaluation:
         if call.name in ("min", "max"):
             return self._extreme(call, arguments)
         if len(arguments) != 1:
-            raise self._wrong(f"{call.name} takes one value, not {len(arguments)}", f"Write `{call.name}(x)`.", call.span)
+            raise self._wrong(
+                f"{call.name} takes one value, not {len(arguments)}", f"Write `{call.name}(x)`.", call.span
+            )
         return self._finite(self._function(call, arguments[0]), call.span)
 
     def _extreme(self, call: Call, arguments: list[Quantity]) -> Quantity:
@@ -182,7 +192,9 @@ class _Evaluation:
         allowed = (NONE, ANGLE) if call.name in ("sin", "cos") else (NONE,)
         if call.name != "sqrt" and argument.dimension not in allowed:
             what = f"{call.name} takes a {'number or an angle' if len(allowed) == 2 else 'plain number'}"
-            raise self._wrong(f"{what}, not {_unit_words(argument)}", "Divide by a value of that unit first.", call.span)
+            raise self._wrong(
+                f"{what}, not {_unit_words(argument)}", "Divide by a value of that unit first.", call.span
+            )
         try:
             return Quantity(_PLAIN[call.name](argument.value), dimension)
         except OverflowError:

@@ -1,5 +1,5 @@
-"""A mistake is a value: where it stands, what is wrong and the likely cure. Functions return lists of them; `render` prints.
-"""
+"""A mistake is a value: where it stands, what is wrong and the likely cure. Functions return lists of them; `render`
+prints."""
 
 from __future__ import annotations
 

@@ -108,7 +108,8 @@ def quantity(number: float, unit: str = "") -> Quantity:
 
 
 def _scaled(number: float, scale: float) -> float:
-    """number * scale, dividing where the scale is a negative power of ten, so that 4.7 m is the double nearest 0.0047."""
+    """number * scale, dividing where the scale is a negative power of ten, so that 4.7 m is the double nearest
+    0.0047."""
     inverse = 1.0 / scale
     exact = scale < 1.0 and inverse == round(inverse) and inverse <= 1e15
     return number / round(inverse) if exact else number * scale

@@ -1,17 +1,20 @@
 """Studies solved to the accuracy they ask for: each twice, the difference telling how far a figure can be off.
 
-A study is solved at a tolerance and at a tighter one; where the figures that count still differ by more than the accuracy asked
-for, the tighter one becomes the looser and a still tighter one is solved. It knows studies, solutions and figures, and no text.
+A study is solved at a tolerance and at a tighter one; where the figures that count still differ by more than the
+accuracy asked for, the tighter one becomes the looser and a still tighter one is solved. It knows studies, solutions
+and figures, and no text.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass
+import math
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, replace
 
-from grammar.quantities import Quantity
+from grammar.description import Expression
+from grammar.quantities import ANGLE, Quantity, show
 from simcore.design.changes import Variants
-from simcore.design.circuit import Circuit, PlannedStudy, Requirement
+from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.design.files import Project
 from simcore.equations.kernel import KernelCache
 from simcore.figures.evaluate import figure_of
@@ -20,12 +23,13 @@ from simcore.figures.overview import signal_rows
 from simcore.figures.record import Record
 from simcore.solve.course import Course, Reached
 from simcore.solve.solution import Solution
+from simcore.solve.worst import worst_angle
 
 START = 1.0
 """First tolerance of a step over the accuracy asked for."""
 RATIO = 8.0
-"""Tolerance over the next tighter one, at least; with errors that fall as its square root or faster, what is left after the
-tighter one is less than the difference of both."""
+"""Tolerance over the next tighter one, at least; with errors that fall as its square root or faster, what is left after
+the tighter one is less than the difference of both."""
 LARGEST_RATIO = 64.0
 ROUNDS = 5
 """Tighter solutions at most, after the first."""
@@ -36,7 +40,8 @@ _LOOSEST, _TIGHTEST = 1e-2, 1e-8
 
 @dataclass(frozen=True)
 class StudyResult:
-    """A study's solution and the one at the looser tolerance before it; reached: whether the accuracy asked for was met."""
+    """A study's solution and the one at the looser tolerance before it; reached: whether the accuracy asked for was
+    met."""
 
     solution: Solution
     coarse: Solution
@@ -69,14 +74,30 @@ class _Proof:
         if study.after is not None:
             self.solve(study.after)
         tolerance = min(_LOOSEST, START * study.accuracy)
+        note = None
+        if study.worst is not None:
+            study = self._at_worst(study, study.worst, tolerance)
+            note = f"worst phase: {show(study.angle or 0.0, ANGLE)} of the first sine"
         levels = [self._level(study, tolerance, 0, None)]
         excess = RATIO
         while excess > 1.0 and len(levels) <= ROUNDS and tolerance > _TIGHTEST:
             tolerance = max(tolerance / min(max(RATIO, 2.0 * excess), LARGEST_RATIO), _TIGHTEST)
             levels.append(self._level(study, tolerance, 1, levels[-1]))
             excess = self._excess(study, levels[-2].solution, levels[-1].solution)
+        if note is not None:
+            levels[-1].solution.notes.append(note)
         self.pairs[name] = (levels[-2], levels[-1])
         self.results[name] = StudyResult(levels[-1].solution, levels[-2].solution, excess <= 1.0)
+
+    def _at_worst(self, study: PlannedStudy, figure: Expression, tolerance: float) -> PlannedStudy:
+        """The study at the phase that makes a figure highest."""
+
+        def at(angle: float) -> float:
+            level = self._level(replace(study, angle=angle, worst=None), tolerance, 0, None)
+            value = figure_of(figure, study.name, {study.name: Record(level.solution)}).value
+            return value if not math.isnan(value) else -math.inf
+
+        return replace(study, angle=worst_angle(at), worst=None)
 
     def _level(self, study: PlannedStudy, tolerance: float, which: int, earlier: _Level | None) -> _Level:
         """One solution; a settled state is looked for from where the looser solution found it."""
@@ -88,19 +109,14 @@ class _Proof:
     def _excess(self, study: PlannedStudy, coarse: Solution, fine: Solution) -> float:
         """The worst bound over what the accuracy allows, of the figures required of the study, else of its signals'."""
         records = ({study.name: Record(coarse)}, {study.name: Record(fine)})
-        asked = [part for requirement in self.circuit.requirements for part in _figures(requirement, study.name)]
+        mine = [requirement for requirement in self.circuit.requirements if requirement.study == study.name]
+        asked = [requirement.figure for requirement in mine if requirement.figure is not None]
         if asked:
             figures = [bounded(*(figure_of(part, study.name, record) for record in records)) for part in asked]
         else:
             rows = signal_rows(records[1][study.name], records[0][study.name])
             figures = [figure for row in rows for figure in row.figures.values()]
         return max((_share(figure, study.accuracy) for figure in figures), default=0.0)
-
-
-def _figures(requirement: Requirement, study: str) -> Iterable:
-    """The figure of a requirement on a study, where it is of that study alone."""
-    if requirement.study == study and requirement.figure is not None:
-        yield requirement.figure
 
 
 def _share(figure: Figure, accuracy: float) -> float:

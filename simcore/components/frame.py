@@ -1,8 +1,9 @@
 """Where components put their equations: branches between nodes, written with graph values.
 
-A frame knows three forms and no component kind: a series branch (resistance, inductance, capacitance and source voltage in
-series, any of them absent), a current source, and a nonlinear branch whose current is a law of its voltage. A branch's voltage
-is a weighted sum of unknowns, which covers two nodes (+1, -1) as well as a winding (+1, -1, -turns of its core).
+A frame knows three forms and no component kind: a series branch (resistance, inductance, capacitance and source voltage
+in series, any of them absent), a current source, and a nonlinear branch whose current is a law of its voltage. A
+branch's voltage is a weighted sum of unknowns, which covers two nodes (+1, -1) as well as a winding (+1, -1, -turns of
+its core).
 """
 
 from __future__ import annotations
@@ -70,7 +71,8 @@ Branch = SeriesBranch | CurrentBranch | NonlinearBranch
 class Waveform:
     """A piecewise linear function of time whose present straight line the run is given as two numbers.
 
-    points: (time in s, value) in rising time, a repeated time being a jump; period in s repeats them, else the ends hold
+    points: (time in s, value) in rising time, a repeated time being a jump; period in s repeats them, else the ends
+    hold
     base, slope: positions in the parameter list of the line's value at t = 0 and its slope
     """
 
@@ -84,7 +86,8 @@ class Frame:
     """Collects the branches of a circuit and the numbers they depend on."""
 
     def __init__(self, moment: float = 0.0) -> None:
-        """moment: the time in the study, in s, from which the frame holds (a switch then stands as it does at that time)"""
+        """moment: the time in the study, in s, from which the frame holds (a switch then stands as it does at that
+        time)"""
         self.moment = moment
         self.graph = Graph()
         self.time = self.graph.input("t", Level.TIME)
@@ -151,7 +154,8 @@ class Frame:
         )
 
     def sine(self, frequency: float, phase: float) -> Value:
-        """A sine of unit amplitude; frequency in Hz, phase at t = 0 in rad. The first one counts as the circuit's phase."""
+        """A sine of unit amplitude; frequency in Hz, phase at t = 0 in rad. The first one counts as the circuit's
+        phase."""
         self.sines.append((frequency, phase))
         return sin(self.parameter(2.0 * math.pi * frequency) * self.time + self.parameter(phase))
 
@@ -206,7 +210,7 @@ class Part:
 
     @property
     def unit(self) -> str:
-        """"V" or "A": what a source is written in."""
+        """ "V" or "A": what a source is written in."""
         return self._element.unit
 
     def value(self, key: str, index: int | None = None) -> Value:

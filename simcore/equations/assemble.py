@@ -1,7 +1,7 @@
 """One backward-Euler step of a circuit as a graph of scalars: companion conductances, elimination, new states.
 
-Modified nodal analysis with companion models. Inputs of the graph: p0, p1 ... parameters; h the step; t the time at its end;
-y0, y1 ... the states before it; v0, v1 ... the nonlinear branches' voltages at the last Newton iterate.
+Modified nodal analysis with companion models. Inputs of the graph: p0, p1 ... parameters; h the step; t the time at its
+end; y0, y1 ... the states before it; v0, v1 ... the nonlinear branches' voltages at the last Newton iterate.
 """
 
 from __future__ import annotations
@@ -18,7 +18,8 @@ from simcore.equations.values import Level, Value, changes, derivative
 
 @dataclass(frozen=True)
 class State:
-    """What a branch carries from step to step: its "current" or its "voltage". before: the input of its value before."""
+    """What a branch carries from step to step: its "current" or its "voltage". before: the input of its value
+    before."""
 
     branch: int
     quantity: str
@@ -61,8 +62,8 @@ class System:
 
     @cached_property
     def responses(self) -> list[Value]:
-        """How the states after a step change with those before it, along a direction given by the inputs e0, e1 ...; the
-        nonlinear branches' slopes are those of the last iteration, so this is exact once Newton has converged."""
+        """How the states after a step change with those before it, along a direction given by the inputs e0, e1 ...;
+        the nonlinear branches' slopes are those of the last iteration, so this is exact once Newton has converged."""
         graph = self.frame.graph
         seeds = {state.before.index: graph.input(f"e{i}", Level.RESPONSE) for i, state in enumerate(self.states)}
         return changes([state.new for state in self.states], seeds)

@@ -1,11 +1,13 @@
 """Sparse symbolic elimination that does not subtract where physics gives positive conductances.
 
-A row keeps its conductances to other unknowns and its conductance to the reference instead of the diagonal, which is their sum.
-Eliminating an unknown then only adds products of positive numbers: no pivoting, no growth, no cancellation (the star-mesh
-transformation; Grassmann, Taksar and Heyman, Operations Research 33, 1985). What is no node (a core's voltage a turn) couples to
-nodes with either sign: it stands aside of the nodes' sums, is eliminated last, keeps an explicit diagonal and is guarded: the run
-checks that its pivot did not shrink to rounding. So is a node that other weights than +1 and -1 touch.
-Order: nodes first, then unknowns whose row changes seldom, then fewest neighbours (Markowitz, Management Science 3, 1957).
+A row keeps its conductances to other unknowns and its conductance to the reference instead of the diagonal, which is
+their sum. Eliminating an unknown then only adds products of positive numbers: no pivoting, no growth, no cancellation
+(the star-mesh transformation; Grassmann, Taksar and Heyman, Operations Research 33, 1985). What is no node (a core's
+voltage a turn) couples to
+nodes with either sign: it stands aside of the nodes' sums, is eliminated last, keeps an explicit diagonal and is
+guarded: the run checks that its pivot did not shrink to rounding. So is a node that other weights than +1 and -1 touch.
+Order: nodes first, then unknowns whose row changes seldom, then fewest neighbours (Markowitz, Management Science 3,
+1957).
 """
 
 from __future__ import annotations
@@ -51,7 +53,8 @@ class Elimination:
         self.guards: list[Guard] = []
 
     def stamp(self, weights: dict[Hashable, Value], conductance: Value, injected: Value) -> None:
-        """Add i = conductance * (sum of weights * unknowns) + injected, flowing out of the unknowns by their weights."""
+        """Add i = conductance * (sum of weights * unknowns) + injected, flowing out of the unknowns by their
+        weights."""
         pairs = list(weights.items())
         nodes = [weight for unknown, weight in pairs if _is_node(unknown)]
         whole = self._graph.total(nodes)

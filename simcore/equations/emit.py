@@ -1,7 +1,7 @@
 """Graph values as lines of straight-line Python over local floats, grouped by how often they must be computed.
 
-Emission is exact and repeatable: numbers by repr, values in the order of their making, names that are our own indices. No text of a
-description reaches the source.
+Emission is exact and repeatable: numbers by repr, values in the order of their making, names that are our own indices.
+No text of a description reaches the source.
 """
 
 from __future__ import annotations
@@ -12,12 +12,13 @@ _INLINE_DEPTH = 6
 
 
 class Emitter:
-    """Assigns values to stages and writes each stage's lines; a value used once, by its own stage, is written in place."""
+    """Assigns values to stages and writes each stage's lines; a value used once, by its own stage, is written in
+    place."""
 
     def __init__(self, stages: dict[str, list[Value]]):
-        """stages: name -> targets that must be known after it. The names "variant", "step", "time" and "response" take the
-        values of those levels; one that changes at every iteration belongs to the first other stage that needs it, else to
-        "after"."""
+        """stages: name -> targets that must be known after it. The names "variant", "step", "time" and "response" take
+        the values of those levels; one that changes at every iteration belongs to the first other stage that needs it,
+        else to "after"."""
         self._stage: dict[int, str] = {}
         self._depth: dict[int, int] = {}
         self._text: dict[int, str] = {}

@@ -1,7 +1,7 @@
 """Which nodes count as 0 V: the references, and one node of each part of the circuit that nothing ties to them.
 
-Opening an element may cut a part off. Its voltages to one another are still defined, and no current flows into the node that is
-grounded, so this changes nothing that can be measured.
+Opening an element may cut a part off. Its voltages to one another are still defined, and no current flows into the node
+that is grounded, so this changes nothing that can be measured.
 """
 
 from __future__ import annotations

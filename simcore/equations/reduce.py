@@ -1,8 +1,10 @@
-"""Branches that force a voltage go first: they express unknowns by others, so that only conductances are left to eliminate.
+"""Branches that force a voltage go first: they express unknowns by others, so that only conductances are left to
+eliminate.
 
-In the terms of modified nodal analysis (Ho, Ruehli and Brennan, IEEE Trans. Circuits and Systems 22, 1975) these are its branch
-rows: sources without impedance merge nodes to supernodes, ideal windings tie them by their turns. Their currents do no work on the
-reduced equations and follow from Kirchhoff's current law afterwards.
+In the terms of modified nodal analysis (Ho, Ruehli and Brennan, IEEE Trans. Circuits and Systems 22, 1975) these are
+its branch
+rows: sources without impedance merge nodes to supernodes, ideal windings tie them by their turns. Their currents do no
+work on the reduced equations and follow from Kirchhoff's current law afterwards.
 """
 
 from __future__ import annotations

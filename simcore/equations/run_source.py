@@ -1,16 +1,19 @@
 """The whole run of a circuit as the source of one function: time loop, extrapolation, Newton iteration, step control.
 
-Every solve is a backward-Euler step. A basic step of size H is taken once with H, twice with H/2 and three times with H/3, and the
-results are extrapolated (Deuflhard, SIAM Review 27, 1985; Hairer and Wanner, Solving Ordinary Differential Equations II, 1996, IV.9);
-with order 1 it is one backward-Euler step without error control, which gives the consistent start of a segment and, with a huge H,
-the operating point. Kept within floats, math functions, lists and tuples, so that it can be compiled as it stands.
+Every solve is a backward-Euler step. A basic step of size H is taken once with H, twice with H/2 and three times with
+H/3, and the results are extrapolated (Deuflhard, SIAM Review 27, 1985; Hairer and Wanner, Solving Ordinary Differential
+Equations II, 1996, IV.9); with order 1 it is one backward-Euler step without error control, which gives the consistent
+start of a segment and, with a huge H, the operating point. Kept within floats, math functions, lists and tuples, so
+that it can be compiled as it stands.
 
 Interface of the emitted function `run(p, s, out, c)`:
-p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends of the columns; read and
-written back. out: records of 2 + 2 * columns numbers: time at the end of a step, each column's middle and end value, 1 where a nonlinear branch
-began or ceased to conduct within it (a kink or jump lies inside), else 0.
-c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of states: the
-derivative of the states by those at the start, direction by direction, and room for three more. Returns (status, numbers written, steps, rejected, solves, iterations, weak pivots).
+p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends
+of the columns; read and written back. out: records of 2 + 2 * columns numbers: time at the end of a step, each column's
+middle and end value, 1 where a nonlinear branch began or ceased to conduct within it (a kink or jump lies inside), else
+0.
+c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of
+states: the derivative of the states by those at the start, direction by direction, and room for three more. Returns
+(status, numbers written, steps, rejected, solves, iterations, weak pivots).
 """
 
 from __future__ import annotations
@@ -39,7 +42,8 @@ _WEAK_PIVOT = 1e-10
 
 
 def watched_columns(system: System) -> list[int]:
-    """Positions of the columns whose curvature bounds the step, besides the states: the nonlinear branches' currents."""
+    """Positions of the columns whose curvature bounds the step, besides the states: the nonlinear branches'
+    currents."""
     branches = [junction.branch for junction in system.junctions]
     return [index for index, column in enumerate(system.columns) if column.branch in branches]
 
@@ -159,7 +163,12 @@ class RunSource:
         self._each(3, states, "y# = z#")
         self._each(3, junctions, "n# = u#")
         if self._responses:
-            add(3, f"base = division * {states * states}", f"for k in range({states * states}):", "    m[base + k] = m[k]")
+            add(
+                3,
+                f"base = division * {states * states}",
+                f"for k in range({states * states}):",
+                "    m[base + k] = m[k]",
+            )
         add(3, "part = 1", "while part <= division:")
         add(4, "t = stop if part == division else now + part * h")
         add(4, *self.emitter.lines["time"])
@@ -211,8 +220,8 @@ class RunSource:
         add(4, "iterations += count", "if not good:", "    failed = True", "    break")
 
     def _limit(self, index: int) -> None:
-        """Convergence in units of the law's scale; an off branch is ignored; NaN passes neither test. A voltage that rises
-        past the critical one moves by the logarithm of the step (common practice, no source)."""
+        """Convergence in units of the law's scale; an off branch is ignored; NaN passes neither test. A voltage that
+        rises past the critical one moves by the logarithm of the step (common practice, no source)."""
         lines = (
             "if not (-b# <= d <= b#) and not (n# < o# and v# < o#):",
             "    good = False",
@@ -265,8 +274,8 @@ class RunSource:
 
     @staticmethod
     def _bend(index: int, column: int) -> str:
-        """What a quadratic misses of a watched current, over its tolerance: 0.0481 of the third difference, which is taken
-        over 1/3, 1/2, 2/3 and 1 of the step, each moved to second order by the differences of the divisions."""
+        """What a quadratic misses of a watched current, over its tolerance: 0.0481 of the third difference, which is
+        taken over 1/3, 1/2, 2/3 and 1 of the step, each moved to second order by the differences of the divisions."""
         first, second, third = (f"c{division}_{column}" for division in (1, 2, 3))
         end = f"9.0 * (f1 * {first} + f2 * {second} + f3 * {third})"
         inside = f"d_{index} + 72.0 * m2_{column} - 22.5 * ({third} - {first}) + 36.0 * ({second} - {first})"
@@ -302,7 +311,8 @@ class RunSource:
         self._record()
 
     def _watch(self, index: int, column: int) -> None:
-        """A watched current's end and peak; where it falls, the next step ends where the chord meets zero: turn-off cut."""
+        """A watched current's end and peak; where it falls, the next step ends where the chord meets zero: turn-off
+        cut."""
         lines = (
             f"r = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}",
             "if 0.0 < r < h# and u# > g#:",
@@ -315,13 +325,18 @@ class RunSource:
         self._add(2, *(line.replace("#", str(index)) for line in lines))
 
     def _record(self) -> None:
-        """Each column's end, and a middle that gives the quadratic the extrapolated integral of the step: charges add up."""
+        """Each column's end, and a middle that gives the quadratic the extrapolated integral of the step: charges add
+        up."""
         add = self._add
         columns = range(len(self.system.columns))
         add(2, "if record > 0.0:", "    out[position] = now")
         for i in columns:
             mean = f"mean1 * c1_{i} + mean2 * (m2_{i} + c2_{i}) + mean3 * (m3_{i} + c3_{i})"
-            add(3, f"r = f1 * c1_{i} + f2 * c2_{i} + f3 * c3_{i}", f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)")
+            add(
+                3,
+                f"r = f1 * c1_{i} + f2 * c2_{i} + f3 * c3_{i}",
+                f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)",
+            )
             add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")
         add(3, f"out[position + {1 + 2 * len(columns)}] = kink", f"position += {record_width(self.system)}")
 

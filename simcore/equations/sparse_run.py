@@ -1,7 +1,7 @@
 """The run of a circuit that is too large to be emitted, or whose elimination without pivoting lost a pivot.
 
-The same algorithm and the same face as the emitted run (see run_source), on arrays, with scipy's sparse LU in place of the emitted
-elimination. Device laws and results are still emitted, their size being linear in the circuit.
+The same algorithm and the same face as the emitted run (see run_source), on arrays, with scipy's sparse LU in place of
+the emitted elimination. Device laws and results are still emitted, their size being linear in the circuit.
 """
 
 from __future__ import annotations

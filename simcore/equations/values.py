@@ -1,7 +1,7 @@
 """Scalar operations as a graph: what component physics and elimination write down instead of computing.
 
-Ordinary operators on `Value` build the graph; equal expressions are shared, constants are folded, and every value knows the
-slowest level at which its inputs change. Nothing here knows components, matrices or how the graph is run.
+Ordinary operators on `Value` build the graph; equal expressions are shared, constants are folded, and every value knows
+the slowest level at which its inputs change. Nothing here knows components, matrices or how the graph is run.
 """
 
 from __future__ import annotations
@@ -206,8 +206,8 @@ def derivative(value: Value, variable: Value) -> Value:
 
 
 def changes(values: list[Value], directions: dict[int, Value]) -> list[Value]:
-    """How values change along a direction in their inputs, given as input's index -> its change, by forward accumulation over
-    the graph (Wengert, Comm. ACM 7, 1964). Inputs that are not named stand still."""
+    """How values change along a direction in their inputs, given as input's index -> its change, by forward
+    accumulation over the graph (Wengert, Comm. ACM 7, 1964). Inputs that are not named stand still."""
     slopes: dict[int, Value] = {}
     for node in ancestors(values):
         slopes[node.index] = directions.get(node.index) or _slope(node, slopes)

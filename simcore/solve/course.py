@@ -1,4 +1,5 @@
-"""A study's course: operating point, transient with its events, or settled state, as pieces between changes of the circuit.
+"""A study's course: operating point, transient with its events, or settled state, as pieces between changes of the
+circuit.
 
 Knows studies, circuits and the engine; circuits under changes come from a function, so that text stays out of here.
 """
@@ -31,7 +32,8 @@ _BEGIN = 1e-7
 
 @dataclass(frozen=True)
 class Reached:
-    """Where a study left the circuit: states by element, the sources' clock and the elements' own time in s, and the changes."""
+    """Where a study left the circuit: states by element, the sources' clock and the elements' own time in s, and the
+    changes."""
 
     memory: Memory
     clock: float
@@ -43,8 +45,8 @@ class Reached:
 class Course:
     """Solves one study at one tolerance.
 
-    variant: the circuit under changes; before: where the study starts, None for rest; tolerance: relative error of a step
-    Raises NoSolution.
+    variant: the circuit under changes; before: where the study starts, None for rest; tolerance: relative error of a
+    step Raises NoSolution.
     """
 
     study: PlannedStudy
@@ -161,7 +163,13 @@ class Course:
         scale = min(period, span) if frame.sines or frame.waveforms else span
         largest = scale / _STEPS_A_PERIOD * min(1.0, (self.tolerance / 1e-3) ** 0.25)
         return Stepping(
-            self.tolerance, EXTRAPOLATION_ORDER, largest, 1e-9 * scale, _BEGIN * scale, scale, largest_voltage(frame, scale)
+            self.tolerance,
+            EXTRAPOLATION_ORDER,
+            largest,
+            1e-9 * scale,
+            _BEGIN * scale,
+            scale,
+            largest_voltage(frame, scale),
         )
 
     def _guard(self, action: Callable, clock: float):

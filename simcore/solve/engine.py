@@ -1,4 +1,5 @@
-"""Runs a kernel over a stretch of time: starts it consistently, meets the sources' corners, records, and handles failures.
+"""Runs a kernel over a stretch of time: starts it consistently, meets the sources' corners, records, and handles
+failures.
 
 Times here are on the sources' clock. Knows kernels and their controls, and nothing of studies, kinds or figures.
 """
@@ -28,9 +29,9 @@ REST_STEP = 1e15
 
 @dataclass(frozen=True)
 class Stepping:
-    """How a run is stepped: relative tolerance of a step, extrapolation order, largest and smallest step in s, the step that
-    gives a consistent start, the span in s over which the scale of a state is remembered, and the sources' largest voltage
-    as the scale of what has none yet."""
+    """How a run is stepped: relative tolerance of a step, extrapolation order, largest and smallest step in s, the step
+    that gives a consistent start, the span in s over which the scale of a state is remembered, and the sources' largest
+    voltage as the scale of what has none yet."""
 
     tolerance: float
     order: int
@@ -133,8 +134,9 @@ class Engine:
     # --- running ---
 
     def rest(self, time: float) -> Stretch:
-        """The operating point with the sources at their value at a time: one step long enough for every state to settle,
-        and where that does not converge, steps from short to long (pseudo-transient continuation; Kelley and Keyes, 1998)."""
+        """The operating point with the sources at their value at a time: one step long enough for every state to
+        settle, and where that does not converge, steps from short to long (pseudo-transient continuation; Kelley and
+        Keyes, 1998)."""
         self._follow(time)
         start = list(self.saved)
         for steps in ([REST_STEP], [10.0**exponent for exponent in range(-12, 16)]):
@@ -145,7 +147,15 @@ class Engine:
             except Interrupted:
                 continue
             values = np.stack([record, record, record])[None]
-            return Stretch(self.kernel.system, list(self.numbers), np.array([time, time + 1.0]), values, 1, np.array([True]), held=True)
+            return Stretch(
+                self.kernel.system,
+                list(self.numbers),
+                np.array([time, time + 1.0]),
+                values,
+                1,
+                np.array([True]),
+                held=True,
+            )
         raise Interrupted(Reason.NO_CONVERGENCE, time)
 
     def begin(self, time: float, step: float) -> np.ndarray:
@@ -188,8 +198,8 @@ class Engine:
         return stretches
 
     def respond(self, end: float, stepping: Stepping) -> np.ndarray | None:
-        """Run to a time and give the derivative of the states there by those at the start, shape (states, states), a row a
-        state; None, and nothing is run, where the kernel cannot carry it."""
+        """Run to a time and give the derivative of the states there by those at the start, shape (states, states), a
+        row a state; None, and nothing is run, where the kernel cannot carry it."""
         if self.kernel.responding_run is None:
             return None
         size = self._states * self._states
@@ -240,8 +250,8 @@ class Engine:
         return max(1e-9, 0.01 * max(peaks, default=0.0))
 
     def _call(self, controls: tuple[float, ...]) -> int:
-        """Run the kernel once; returns how many numbers it recorded. A pivot that shrank to rounding is answered by going back
-        and on with the sparse LU, which may pivot."""
+        """Run the kernel once; returns how many numbers it recorded. A pivot that shrank to rounding is answered by
+        going back and on with the sparse LU, which may pivot."""
         if not self._record:
             self._record = [0.0] * (_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
@@ -306,7 +316,8 @@ def _line(waveform: Waveform, time: float) -> tuple[float, float]:
 
 
 def _local(waveform: Waveform, time: float) -> tuple[float, float]:
-    """A time within the period and the count of periods before it; a time a rounding before a period's end is its end."""
+    """A time within the period and the count of periods before it; a time a rounding before a period's end is its
+    end."""
     assert waveform.period is not None
     cycles = time / waveform.period
     nearest = round(cycles)

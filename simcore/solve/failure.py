@@ -33,7 +33,8 @@ class Reason(Enum):
 class NoSolution(Exception):
     """A study that cannot be solved.
 
-    study: its name; reason; time: of the study in s, None where it has no meaning; detail: what more is known, "" for none
+    study: its name; reason; time: of the study in s, None where it has no meaning; detail: what more is known, "" for
+    none
     """
 
     def __init__(self, study: str, reason: Reason, time: float | None = None, detail: str = ""):

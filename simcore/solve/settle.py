@@ -1,8 +1,9 @@
 """The periodic steady state as the solution of an equation: the states a period later equal those now.
 
-Newton on the period map (shooting; Aprille and Trick, Proc. IEEE 60, 1972) by pseudo-transient continuation (Kelley and Keyes, SIAM
-J. Numer. Anal. 35, 1998) counted in periods, with one plain period after each update: it begins as following the circuit and ends
-as Newton. Where it stalls, periods are followed until the estimated distance to the settled state is small (Aitken 1926).
+Newton on the period map (shooting; Aprille and Trick, Proc. IEEE 60, 1972) by pseudo-transient continuation (Kelley and
+Keyes, SIAM J. Numer. Anal. 35, 1998) counted in periods, with one plain period after each update: it begins as
+following the circuit and ends as Newton. Where it stalls, periods are followed until the estimated distance to the
+settled state is small (Aitken 1926).
 """
 
 from __future__ import annotations
@@ -30,7 +31,8 @@ _STANDING = 4
 @dataclass(frozen=True)
 class Settled:
     """How a settled state was reached: words for the report, periods followed (those that carry derivatives counted
-    apart), and the largest multiplier, the share of a disturbance that is left after a period (None where not known)."""
+    apart), and the largest multiplier, the share of a disturbance that is left after a period (None where not
+    known)."""
 
     how: str
     periods: int
@@ -104,8 +106,8 @@ def _goal(stepping: Stepping) -> float:
 def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
     """Pseudo-transient continuation; None where it stalls.
 
-    The steps of a run make its map rough by about their tolerance: where corrections of that size no longer shrink, the best
-    state found is as good as this tolerance can tell.
+    The steps of a run make its map rough by about their tolerance: where corrections of that size no longer shrink, the
+    best state found is as good as this tolerance can tell.
     """
     states = way.follow(start)
     pseudo, before, since = _FIRST, np.inf, 0

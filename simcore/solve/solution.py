@@ -65,8 +65,8 @@ class Solution:
 
     @property
     def smooth(self) -> np.ndarray:
-        """Whether no kink or jump lies inside a step, shape (n,). Where one does, the middle value gives the quadratic the right
-        integral, and what it reaches between its ends is no extremum."""
+        """Whether no kink or jump lies inside a step, shape (n,). Where one does, the middle value gives the quadratic
+        the right integral, and what it reaches between its ends is no extremum."""
         return np.concatenate([stretch.smooth for stretch in self.stretches])
 
     def temperature(self, element: str) -> float:

@@ -15,8 +15,8 @@ _SAMPLES = 64
 
 
 def common_period(frame: Frame) -> float | None:
-    """The shortest time in s after which all sources repeat, from the ratios of their frequencies; None where there is no
-    periodic source or no common period within 1000 periods of the slowest."""
+    """The shortest time in s after which all sources repeat, from the ratios of their frequencies; None where there is
+    no periodic source or no common period within 1000 periods of the slowest."""
     periods = [1.0 / frequency for frequency, _ in frame.sines]
     periods += [waveform.period for waveform in frame.waveforms if waveform.period is not None]
     if not periods:
@@ -33,7 +33,8 @@ def common_period(frame: Frame) -> float | None:
 
 
 def clock_at_phase(frame: Frame, angle: float | None) -> float:
-    """The time in s on the sources' clock at which the first sine written stands at an angle (rad); 0 without either."""
+    """The time in s on the sources' clock at which the first sine written stands at an angle (rad); 0 without
+    either."""
     if angle is None or not frame.sines:
         return 0.0
     frequency, phase = frame.sines[0]

@@ -1,7 +1,8 @@
-"""A recorded stretch of a solution: one form of the equations, its numbers, and the values at start, middle and end of each step.
+"""A recorded stretch of a solution: one form of the equations, its numbers, and the values at start, middle and end of
+each step.
 
-Gives the voltage of any weighted sum of unknowns and the current of any branch; what was not recorded follows linearly or by
-Kirchhoff's current law. Knows no component kind.
+Gives the voltage of any weighted sum of unknowns and the current of any branch; what was not recorded follows linearly
+or by Kirchhoff's current law. Knows no component kind.
 """
 
 from __future__ import annotations
@@ -17,7 +18,6 @@ from simcore.equations.plain import evaluate
 from simcore.equations.reduce import forces_voltage
 from simcore.equations.values import Level, Value
 
-
 _INSTANTS = np.array([0.0, 1.0 / 3.0, 0.5, 2.0 / 3.0, 1.0])
 """Where in a step known functions of time are evaluated, as shares of it."""
 
@@ -30,9 +30,9 @@ _MEANS = {
 
 
 class Stretch:
-    """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A; order: of
-    the extrapolation that gave them; smooth: shape (n,), whether no kink or jump lies inside a step; held: the sources stood
-    still at the first time."""
+    """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A; order:
+    of the extrapolation that gave them; smooth: shape (n,), whether no kink or jump lies inside a step; held: the
+    sources stood still at the first time."""
 
     def __init__(
         self,
@@ -64,8 +64,8 @@ class Stretch:
         return (len(self.times) - 1, 3)
 
     def _evaluate(self, value: Value) -> np.ndarray:
-        """A known function of time at start, middle and end, the middle formed as the run forms that of its columns: sums of
-        what is known and what was solved then stay exact."""
+        """A known function of time at start, middle and end, the middle formed as the run forms that of its columns:
+        sums of what is known and what was solved then stay exact."""
         known = np.asarray(evaluate([value], self._inputs)[0], dtype=float)
         if value.level < Level.TIME:
             return np.broadcast_to(known, self.shape)
@@ -122,7 +122,9 @@ class Stretch:
                 self._add(sums, branch.weights, self.current(index))
         return sums
 
-    def _add(self, sums: dict[Hashable, np.ndarray], weights: Iterable[tuple[Hashable, Value]], current: np.ndarray) -> None:
+    def _add(
+        self, sums: dict[Hashable, np.ndarray], weights: Iterable[tuple[Hashable, Value]], current: np.ndarray
+    ) -> None:
         for unknown, weight in weights:
             if unknown in sums:
                 sums[unknown] = sums[unknown] + self._evaluate(weight) * current
@@ -145,7 +147,8 @@ class Stretch:
         return float(evaluate([value], self._inputs)[0])
 
     def kirchhoff(self) -> float:
-        """The worst sum of currents at an unknown, relative to the largest current there over the stretch."""
+        """The worst sum of currents at an unknown, relative to the largest current there over the stretch, or to a
+        millionth of the circuit's where an unknown carries less."""
         sums = dict(self._free_sums)
         largest = {unknown: 0.0 for unknown in sums}
         for index, branch in enumerate(self.system.frame.branches):
@@ -157,7 +160,7 @@ class Stretch:
             self._add(sums, self.system.frame.branches[index].weights, self._forced[position])
         overall = max(largest.values(), default=0.0)
         residuals = [
-            float(np.max(np.abs(total), initial=0.0)) / max(largest[unknown], 1e-9 * overall, 1e-15)
+            float(np.max(np.abs(total), initial=0.0)) / max(largest[unknown], 1e-6 * overall, 1e-15)
             for unknown, total in sums.items()
         ]
         return max(residuals, default=0.0)
