@@ -25,6 +25,9 @@ _FREE = 1e-9
 _SMALL_SHARE = 0.01
 _MOST_PERIODS = 20_000
 _SPAN = 4
+_LEAVES = 1.0 + 1e-3
+_LONGEST_REPEAT = 8
+_LOOK_EVERY = 50
 _STANDING = 4
 
 
@@ -149,9 +152,11 @@ def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
     return np.linalg.lstsq(matrix, right, rcond=1e-10)[0]
 
 
-def _described(way: _Map, scaled: np.ndarray) -> Settled:
-    multipliers = np.linalg.eigvals(scaled)
-    largest = float(np.max(np.abs(multipliers)))
+def _described(way: _Map, scaled: np.ndarray) -> Settled | None:
+    """The words for a state found by Newton; None where it is one that the circuit leaves by itself."""
+    largest = float(np.max(np.abs(np.linalg.eigvals(scaled))))
+    if largest > _LEAVES:
+        return None
     how = f"settled by Newton on the period map; of a disturbance {largest:.3g} is left after a period"
     if 1.0 - largest < _FREE:
         how += "; what nothing in the circuit fixes (a multiplier of 1) is as reached from rest"
@@ -162,17 +167,34 @@ def _by_following(way: _Map, start: np.ndarray) -> Settled:
     """Period after period until the distance, the rest of a geometric series, is small."""
     goal = _goal(way.stepping)
     states, changes = start, []
+    kept: list[np.ndarray] = []
     while way.plain < _MOST_PERIODS:
         after = way.follow(states)
-        changes.append(float(np.max(np.abs(after - states) / way.scale(after))))
+        scale = way.scale(after)
+        changes.append(float(np.max(np.abs(after - states) / scale)))
         states = after
         distance, ratio = _distance(changes)
         if max(changes[-1], distance) <= goal:
             way.finish(states)
             how = f"settled by following {way.plain} periods; of a disturbance {ratio:.3g} is left after a period"
             return Settled(how, way.plain, way.responding, ratio)
-    detail = f"after {way.plain} periods a state still changes by {changes[-1]:.2g} of its size a period"
+        kept = [*kept[-_LONGEST_REPEAT:], after]
+        repeat = _repeat(kept, scale, goal) if way.plain % _LOOK_EVERY == 0 else None
+        if repeat is not None:
+            longer = repeat * way.period
+            detail = f"it repeats only every {repeat} periods of the sources; give it `period = {longer:g} s`"
+            raise Interrupted(Reason.NOT_SETTLED, way.clock, detail)
+    drift = "drifts by" if _distance(changes)[1] >= 1.0 else "still changes by"
+    detail = f"after {way.plain} periods a state {drift} {changes[-1]:.2g} of its size a period"
     raise Interrupted(Reason.NOT_SETTLED, way.clock, detail)
+
+
+def _repeat(kept: Sequence[np.ndarray], scale: np.ndarray, goal: float) -> int | None:
+    """After how many periods, from two on, the last states stood as they stand now; None where they did not."""
+    for count in range(2, len(kept)):
+        if float(np.max(np.abs(kept[-1] - kept[-1 - count]) / scale)) <= goal:
+            return count
+    return None
 
 
 def _distance(changes: Sequence[float]) -> tuple[float, float]:
