@@ -171,7 +171,7 @@ def show(value: float, dimension: Dimension, digits: int = _SHOWN_DIGITS) -> str
         return f"{math.degrees(value):.{digits}g} deg"
     unit = unit_of(dimension)
     if not unit:
-        return f"{value:.{digits}g}"
+        return _plain(value, digits)
     prefix = _prefix(value, dimension, digits) if unit in UNITS else ""
     return f"{_plain(value / PREFIXES[prefix], digits)} {prefix}{unit}"
 
@@ -179,7 +179,8 @@ def show(value: float, dimension: Dimension, digits: int = _SHOWN_DIGITS) -> str
 def _plain(value: float, digits: int) -> str:
     """Rounded to digits, without an exponent for the sizes that a prefix leaves."""
     rounded = float(f"{value:.{digits}g}")
-    return f"{rounded:.0f}" if 10.0**digits > abs(rounded) >= 10.0 ** (digits - 1) else f"{rounded:.{digits}g}"
+    whole = 10.0 ** (digits - 1) <= abs(rounded) < 1e6
+    return f"{rounded:.0f}" if whole else f"{rounded:.{digits}g}"
 
 
 def _prefix(value: float, dimension: Dimension, digits: int) -> str:

@@ -127,7 +127,10 @@ def _share(figure: Figure, accuracy: float) -> float:
 
 
 def solve_studies(
-    project: Project, circuit: Circuit, names: Sequence[str], overrides: Mapping[str, Quantity | str] | None = None
+    project: Project,
+    circuit: Circuit,
+    names: Sequence[str],
+    overrides: Mapping[str, Quantity | Expression | str] | None = None,
 ) -> dict[str, StudyResult]:
     """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside.
 

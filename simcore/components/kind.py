@@ -21,8 +21,8 @@ class Key:
     """One key of a kind.
 
     form: scalar, timed (a scalar or a list over time), point (a @ b), ratio (a : b : c), amplitude, list (plain
-          values), series (key: value), curve (a @ b), harmonics (order: share @ angle), text, word (one of `words`), expression
-          (a signal)
+          values), series (key: value), curve (a @ b), harmonics (order: share @ angle), text, word (one of `words`),
+          expression (a signal)
     dimension: of the value; at: of what stands behind @ (point, curve) or of a series' key
     default: SI value where the key is left out; None means absent
     low, high: allowed range in SI units, ends included unless `open_low`

@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
+from grammar.description import Expression
 from grammar.mistakes import DescriptionError
 from grammar.quantities import Quantity
 from simcore.design.circuit import Change, Circuit, Element, Port
@@ -24,7 +25,9 @@ class Variants:
     project, circuit: the design, and the circuit elaborated from it with the overrides
     """
 
-    def __init__(self, project: Project, circuit: Circuit, overrides: Mapping[str, Quantity | str] | None = None):
+    def __init__(
+        self, project: Project, circuit: Circuit, overrides: Mapping[str, Quantity | Expression | str] | None = None
+    ):
         self.project = project
         self.circuit = circuit
         self.overrides = dict(overrides or {})
@@ -63,7 +66,10 @@ class Variants:
 
 
 def with_changes(
-    project: Project, circuit: Circuit, changes: Sequence[Change], overrides: Mapping[str, Quantity | str] | None = None
+    project: Project,
+    circuit: Circuit,
+    changes: Sequence[Change],
+    overrides: Mapping[str, Quantity | Expression | str] | None = None,
 ) -> Circuit:
     """The circuit of a design after changes; see Variants, which keeps what it made."""
     return Variants(project, circuit, overrides)(changes)

@@ -38,6 +38,7 @@ class Element:
            text and word: str; expression: a resolved Expression whose names are full names of nodes and elements;
            a diode's data_temperature is filled in, since its default is what was written beside its law
     unit: "V" or "A" for a source, by what its values were given in
+    sheet: the name of its data sheet, "" where it has none
     """
 
     name: str
@@ -45,6 +46,7 @@ class Element:
     ports: tuple[Port, ...]
     given: dict[str, Any]
     unit: str = ""
+    sheet: str = ""
     label: str | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
     key_spans: dict[str, Span] = field(default_factory=dict, compare=False, repr=False)
@@ -126,7 +128,7 @@ class LetValue:
 
 @dataclass(frozen=True)
 class Circuit:
-    """A flat circuit. Elements, observes, studies and requirements in the order written."""
+    """A flat circuit. Elements, observes, studies and requirements in the order written; blocks: copy -> block."""
 
     name: str
     purpose: str
@@ -138,6 +140,7 @@ class Circuit:
     studies: dict[str, PlannedStudy]
     requirements: tuple[Requirement, ...]
     sweeps: tuple[Sweep, ...] = ()
+    blocks: dict[str, str] = field(default_factory=dict)
 
     def nodes(self) -> list[str]:
         """Node names in order of first mention."""

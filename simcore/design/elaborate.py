@@ -19,7 +19,7 @@ from simcore.design.files import Project
 from simcore.design.flatten import Flat, Flattener, is_dotted
 from simcore.design.measures import Measures
 from simcore.design.requirements import Requirements
-from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, span_of
+from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, at_word, rename_cure, span_of
 from simcore.design.soundness import unsound
 from simcore.design.studies import Studies, moved_lets
 from simcore.design.sweeps import check_sweeps
@@ -64,6 +64,7 @@ class _Builder:
         self.elements: dict[str, Component] = {}
         self.nodes: dict[str, Span | None] = {}
         self.mentions: dict[str, Name] = {}
+        self.reference_spans: dict[str, Span | None] = {}
 
     def overridden(self, overrides: Mapping[str, Quantity | Expression | str]) -> dict[str, Value]:
         """Overrides as values; expressions and data sheets are seen from the top file."""
@@ -104,13 +105,14 @@ class _Builder:
             self._observes(flat, measures),
             {},
             (),
+            blocks={name: node.kind for name, node in flat.copies.items()},
         )
         if self.again:
             return circuit
         circuit = self._asked(circuit, measures, flat)
         check_unused(self.scope, self.reader, flat)
         if not self.scope.mistakes and self.elements:
-            self.scope.mistakes += unsound(circuit, self.nodes)
+            self.scope.mistakes += unsound(circuit, self.nodes, self.reference_spans)
         return circuit
 
     def _asked(self, circuit: Circuit, measures: Measures, flat: Flat) -> Circuit:
@@ -132,7 +134,8 @@ class _Builder:
         except Poisoned:
             return
         if kind.build is None:
-            self.scope.wrong(f"{kind.name} is not available in this version", LATER, node.span)
+            where = at_word(node.span, node.kind, node.terminals.span)
+            self.scope.wrong(f"{kind.name} is not available in this version", LATER, where)
             self._enter(full, node, ports, Values())
             return
         values = self.reader.element(node, kind, place)
@@ -150,6 +153,7 @@ class _Builder:
             ports,
             values.given,
             unit=unit,
+            sheet=values.sheet,
             label=node.label,
             span=node.name.span or node.span,
             key_spans=spans,
@@ -162,8 +166,7 @@ class _Builder:
             self.scope.wrong(f"{local} can't be put in from outside", "Give it a name without a dot.", node.name.span)
             raise Poisoned
         if full in self.elements or full in self.flattener.flat.copies:
-            cure = "Rename one of the two; in a repeat, carry the index in the name, as in `D[k]`."
-            self.scope.wrong(f"{full} is named twice", cure, node.name.span or node.span)
+            self.scope.wrong(f"{full} is named twice", rename_cure(place, "D"), node.name.span or node.span)
             raise Poisoned
         return full
 
@@ -232,6 +235,7 @@ class _Builder:
                 elif full in found:
                     self.scope.wrong(f"{local} is the reference twice", "Leave one out.", name.span)
                 found[full] = None
+                self.reference_spans[full] = name.span
         return tuple(found)
 
     def _ambient(self, flat: Flat) -> float:

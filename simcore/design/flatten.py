@@ -28,7 +28,7 @@ from grammar.description import (
 )
 from grammar.expressions import nearest
 from simcore.components import KINDS
-from simcore.design.scopes import Place, Poisoned, Scope, Space, span_of
+from simcore.design.scopes import Place, Poisoned, Scope, Space, at_word, rename_cure, span_of, suggest
 from simcore.design.values import EXPRESSIONS
 
 MOST_ELEMENTS = 20_000
@@ -154,9 +154,8 @@ class Flattener:
                 self.scope.wrong("the design has too many elements", cure, node.span)
         elif found is None:
             kinds = [*KINDS, *place.space.unit.blocks]
-            close = nearest(node.kind, kinds)
-            cure = f"Did you mean {close}?" if close else f"Known are {', '.join(kinds)}."
-            self.scope.wrong(f"there is no kind {node.kind}", cure, node.span)
+            where = at_word(node.span, node.kind, node.terminals.span)
+            self.scope.wrong(f"there is no kind {node.kind}", suggest(node.kind, kinds, all_kinds(kinds)), where)
         else:
             unit, block = found
             try:
@@ -167,8 +166,7 @@ class Flattener:
     def _prefix(self, node: Element, place: Place) -> str:
         full = place.space.prefix + self.scope.local(node.name, place)
         if full in self.flat.copies:
-            cure = "Rename one of the two; in a repeat, carry the index in the name, as in `S[k]`."
-            self.scope.wrong(f"{full} is named twice", cure, node.name.span)
+            self.scope.wrong(f"{full} is named twice", rename_cure(place, "S"), node.name.span)
             raise Poisoned
         self.flat.copies[full] = node
         return full + "."
@@ -249,6 +247,11 @@ class Flattener:
                 return full
             full = self.flat.joins[full]
         return full
+
+
+def all_kinds(kinds: Sequence[str]) -> str:
+    """The cure for a kind that is like no known one."""
+    return f"Known are {', '.join(kinds)}."
 
 
 def is_dotted(name: Name) -> bool:

@@ -10,10 +10,10 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 
 from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Observe, Span
-from grammar.expressions import FUNCTIONS, nearest
+from grammar.expressions import FUNCTIONS
 from grammar.quantities import NONE, Dimension, Quantity, unit_of
 from simcore.design.circuit import Element
-from simcore.design.scopes import Entry, Place, Poisoned, Scope, named, span_of
+from simcore.design.scopes import Entry, Place, Poisoned, Scope, named, span_of, suggest
 from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure
 
 JUNCTIONS = ("diode", "thyristor")
@@ -118,8 +118,8 @@ class Measures:
             return Resolved(named(found.full, name.span), inner.sort, inner.dimension)
         if found is None:
             local = self.scope.local(name, place)
-            if self._is_element(local, place) or self._node(local, place) is not None:
-                what = "an element" if self._is_element(local, place) else "a node"
+            if self.is_element(local, place) or self._node(local, place) is not None:
+                what = "an element" if self.is_element(local, place) else "a node"
                 cure = f"Say what of it: `voltage({local})`" + (f", `current({local})`." if "element" in what else ".")
                 self._wrong(f"{local} is {what}, not a signal", cure, name.span)
                 raise Poisoned
@@ -127,8 +127,8 @@ class Measures:
 
     def _function(self, call: Call, place: Place) -> Resolved:
         if call.name not in FUNCTIONS:
-            close = nearest(call.name, [*FUNCTIONS, *SIGNALS, *FIGURES])
-            cure = f"Did you mean {close}?" if close else "See the figures and functions of the language."
+            known = [*FUNCTIONS, *SIGNALS, *FIGURES]
+            cure = suggest(call.name, known, f"Known are {', '.join(known)}.")
             self._wrong(f"there is no figure, signal or function {call.name}", cure, call.span)
             raise Poisoned
         inner = [self.resolve(argument, place) for argument in call.arguments]
@@ -333,7 +333,8 @@ class Measures:
         full = self.canonical(place.space.prefix + local)
         return full if full in self.nodes else None
 
-    def _is_element(self, local: str, place: Place) -> bool:
+    def is_element(self, local: str, place: Place) -> bool:
+        """Whether a name means an element, winding or phase."""
         full = place.space.prefix + local
         return full in self.elements or full in self.ports
 

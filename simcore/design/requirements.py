@@ -9,14 +9,14 @@ from collections.abc import Mapping
 from dataclasses import replace
 
 from grammar.description import Call, Comparison, Each, Expression, Name, Ratings, Require, Span, Study
-from grammar.expressions import nearest
 from grammar.quantities import NONE, Dimension, show, unit_of
 from grammar.writer import write_expression
 from simcore.components import KINDS
 from simcore.design.circuit import Requirement
+from simcore.design.flatten import all_kinds
 from simcore.design.measures import Measures, Resolved
 from simcore.design.rewrite import eaches, put_element, rename
-from simcore.design.scopes import Place, Poisoned, Scope, named, span_of
+from simcore.design.scopes import Place, Poisoned, Scope, at_word, named, span_of, suggest
 from simcore.design.values import EXPRESSIONS
 
 
@@ -34,7 +34,7 @@ class Requirements:
         names = require.studies or tuple(self.studies)
         for name in require.studies:
             if name not in self.studies:
-                self.scope.unknown(name, list(self.studies), require.span, "no study is named")
+                self.scope.unknown(name, list(self.studies), at_word(require.span, name), "no study is named")
         names = tuple(name for name in names if name in self.studies)
         try:
             if isinstance(require.claim, Ratings):
@@ -58,9 +58,7 @@ class Requirements:
     def each(self, kind: str, span: Span | None) -> list[str]:
         """Full names of all elements of a kind, blocks included."""
         if kind not in KINDS:
-            close = nearest(kind, list(KINDS))
-            cure = f"Did you mean {close}?" if close else f"Known are {', '.join(KINDS)}."
-            self.scope.wrong(f"there is no kind {kind}", cure, span)
+            self.scope.wrong(f"there is no kind {kind}", suggest(kind, list(KINDS), all_kinds(list(KINDS))), span)
             raise Poisoned
         found = [name for name, element in self.measures.elements.items() if element.kind == kind]
         if not found:

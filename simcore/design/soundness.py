@@ -17,9 +17,11 @@ SHOWN = 6
 LARGEST_RANK = 150
 
 
-def unsound(circuit: Circuit, spans: Mapping[str, Span | None]) -> list[Mistake]:
-    """The mistakes of a circuit's graph. spans: where each node is first named."""
-    mistakes = _shorted(circuit) + _used_once(circuit, spans) + _references(circuit, spans)
+def unsound(
+    circuit: Circuit, spans: Mapping[str, Span | None], reference_spans: Mapping[str, Span | None]
+) -> list[Mistake]:
+    """The mistakes of a circuit's graph. spans: where each node is first named; reference_spans: where as a reference."""
+    mistakes = _shorted(circuit) + _used_once(circuit, spans) + _references(circuit, spans, reference_spans)
     if not mistakes:
         mistakes = _voltage_loops(circuit) + _current_cuts(circuit, spans)
     if not mistakes:
@@ -71,28 +73,28 @@ def _used_once(circuit: Circuit, spans: Mapping[str, Span | None]) -> list[Mista
     ]
 
 
-def _references(circuit: Circuit, spans: Mapping[str, Span | None]) -> list[Mistake]:
+def _references(
+    circuit: Circuit, spans: Mapping[str, Span | None], reference_spans: Mapping[str, Span | None]
+) -> list[Mistake]:
     """Each part of the circuit has one reference."""
     found = []
     for part in parts_of(circuit):
         inside = [node for node in circuit.references if node in part]
         if len(inside) > 1:
             what = f"nodes {' and '.join(inside)} are both references of one part of the circuit"
-            found.append(Mistake(what, "Keep one: a part has one node that counts as 0 V.", _span(inside[1], spans)))
+            found.append(
+                Mistake(what, "Keep one: a part has one node that counts as 0 V.", reference_spans.get(inside[1]))
+            )
         if not inside and not circuit.references:
             what = "no node counts as 0 V"
             cure = f"Add `reference {part[-1]}`, or the node you measure from."
-            found.append(Mistake(what, cure, _span(part[0], spans)))
+            found.append(Mistake(what, cure, spans.get(part[0])))
         elif not inside:
             what = f"{_nodes(part)} {'have' if len(part) > 1 else 'has'} no path to a reference"
             names = ", ".join([*circuit.references, part[-1]])
             cure = f"Join this part to the rest, or give it its own, as in `reference {names}`."
-            found.append(Mistake(what, cure, _span(part[0], spans)))
+            found.append(Mistake(what, cure, spans.get(part[0])))
     return found if circuit.references else found[:1]
-
-
-def _span(node: str, spans: Mapping[str, Span | None]) -> Span | None:
-    return spans.get(node)
 
 
 def _nodes(names: Sequence[str]) -> str:
@@ -218,7 +220,7 @@ def _cuts(
     return found
 
 
-# --- the rest ----------------------------------------------------------------------------------------------------------
+# --- the rest -----------------------------------------------------------------------------------------------
 
 
 def _singular(circuit: Circuit) -> list[Mistake]:
@@ -242,7 +244,7 @@ def _singular(circuit: Circuit) -> list[Mistake]:
     holders = [name.split(".w")[0] for name in known]
     first = next((circuit.elements[name] for name in holders if name in circuit.elements), None)
     what = f"ideal elements leave voltages or currents undetermined at {_list(known)}"
-    cure = "Give the windings there a resistance, or the transformer a magnetising inductance."
+    cure = "Give the transformer a magnetising inductance or its windings a resistance, or join a resistor across them."
     span = first.span if first is not None else next(iter(circuit.elements.values())).span
     return [Mistake(what, cure, span)]
 

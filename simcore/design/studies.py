@@ -8,12 +8,11 @@ from __future__ import annotations
 from typing import Any
 
 from grammar.description import Action, Expression, Name, OverAxis, RangeAxis, Setting, Span, Study, Worst
-from grammar.expressions import nearest
 from grammar.quantities import ANGLE, NONE, SECOND, Quantity, show
 from simcore.design.circuit import Change, PlannedStudy
 from simcore.design.flatten import Flat
 from simcore.design.measures import Measures
-from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, span_of, text_of
+from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, at_word, span_of, suggest, text_of
 from simcore.design.values import EXPRESSIONS, clash
 
 STUDY_KINDS = {
@@ -63,7 +62,9 @@ class Studies:
         """All studies, in the order written."""
         for study in self.flat.studies:
             if study.name in self.studies:
-                self.scope.wrong(f"study {study.name} is declared twice", "Rename one of the two.", study.span)
+                self.scope.wrong(
+                    f"study {study.name} is declared twice", "Rename one of the two.", at_word(study.span, study.name)
+                )
             self.studies.setdefault(study.name, study)
         found = {study.name: self._study(study) for study in self.studies.values()}
         self._orders()
@@ -72,9 +73,8 @@ class Studies:
     def _study(self, study: Study) -> PlannedStudy:
         allowed = STUDY_KINDS.get(study.kind)
         if allowed is None:
-            close = nearest(study.kind, list(STUDY_KINDS))
-            cure = f"Did you mean {close}?" if close else f"Write {', '.join(STUDY_KINDS)}."
-            self.scope.wrong(f"there is no kind of study {study.kind}", cure, study.span)
+            where = at_word(study.span, study.kind)
+            self.scope.wrong(f"there is no kind of study {study.kind}", suggest(study.kind, list(STUDY_KINDS)), where)
             return PlannedStudy(study.name, study.kind, label=study.label, span=study.span)
         given: dict[str, Any] = {}
         for setting in study.settings:
@@ -106,8 +106,7 @@ class Studies:
             kinds = [kind for kind, keys in STUDY_KINDS.items() if setting.key in keys]
             cure = f"It belongs to {' and '.join(kinds)}: leave it out."
         else:
-            close = nearest(setting.key, list(allowed))
-            cure = f"Did you mean {close}?" if close else f"It takes {', '.join(allowed)}, and actions."
+            cure = suggest(setting.key, list(allowed))
         self.scope.wrong(f"a study of kind {study.kind} has no key {setting.key}", cure, setting.span)
 
     def _setting(self, setting: Setting) -> Any:
@@ -175,8 +174,9 @@ class Studies:
             while walk is not None and walk != name and seen <= len(after):
                 walk, seen = after.get(walk), seen + 1
             if walk == name:
-                span = self.studies[name].span
+                span = at_word(self.studies[name].span, name)
                 self.scope.wrong(f"study {name} comes after itself", "Let one of them start from rest.", span)
+                return
 
     def _events(self, study: Study, duration: float | None) -> tuple[tuple[float, Change], ...]:
         found = []
@@ -222,8 +222,8 @@ class Studies:
         if isinstance(found, Entry) and found.expression is not None:
             return found
         local = self.scope.local(name, self.place)
-        if found is not None:
-            self.scope.wrong(f"{local} is no let", "Only a let can be set: declare one and use it.", name.span)
+        if found is not None or self.measures.is_element(local, self.place):
+            self.scope.wrong(f"{local} is no let", "Declare a let, use it there, and name it here.", name.span)
         else:
             self.scope.unknown(local, [*self.scope.entries], name.span, "no let is named")
         raise Poisoned

@@ -19,12 +19,11 @@ from grammar.description import (
     Span,
     Sweep,
 )
-from grammar.expressions import nearest
 from simcore.components import KINDS
 from simcore.design.circuit import Circuit
-from simcore.design.flatten import Flat
+from simcore.design.flatten import Flat, all_kinds
 from simcore.design.measures import Measures
-from simcore.design.scopes import Place, Poisoned, Scope, named, span_of
+from simcore.design.scopes import Place, Poisoned, Scope, at_word, named, span_of, suggest
 from simcore.design.studies import Studies
 from simcore.design.values import EXPRESSIONS
 
@@ -148,9 +147,9 @@ class _Sweeps:
     def _faults(self, axis: FaultsAxis, span: Span | None) -> None:
         if axis.each is not None and axis.each != "element":
             if axis.each not in KINDS:
-                close = nearest(axis.each, [*KINDS, "element"])
-                cure = f"Did you mean {close}?" if close else f"Known are element, {', '.join(KINDS)}."
-                self.scope.wrong(f"there is no kind {axis.each}", cure, span)
+                known = ["element", *KINDS]
+                where = at_word(span, axis.each)
+                self.scope.wrong(f"there is no kind {axis.each}", suggest(axis.each, known, all_kinds(known)), where)
             elif not any(element.kind == axis.each for element in self.circuit.elements.values()):
                 self.scope.wrong(f"the circuit has no {axis.each}", "Name another kind.", span)
         for name in spread_names(self.scope, axis.names, self.place):

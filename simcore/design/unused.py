@@ -8,10 +8,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from grammar.description import Block, Datasheet, Element, Repeat, Statement
-from grammar.expressions import nearest
 from simcore.components import KINDS
-from simcore.design.flatten import Flat
-from simcore.design.scopes import Scope, Sheet
+from simcore.design.flatten import Flat, all_kinds
+from simcore.design.scopes import Scope, Sheet, at_word, suggest
 from simcore.design.values import Reader
 
 
@@ -40,6 +39,6 @@ def _kinds(scope: Scope, statements: Sequence[Statement]) -> None:
 
 
 def _no_kind(scope: Scope, statement: Element | Datasheet, known: list[str]) -> None:
-    close = nearest(statement.kind, known)
-    cure = f"Did you mean {close}?" if close else f"Known are {', '.join(known)}."
-    scope.wrong(f"there is no kind {statement.kind}", cure, statement.span)
+    after = statement.terminals.span if isinstance(statement, Element) else None
+    where = at_word(statement.span, statement.kind, after)
+    scope.wrong(f"there is no kind {statement.kind}", suggest(statement.kind, known, all_kinds(known)), where)

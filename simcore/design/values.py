@@ -30,10 +30,9 @@ from grammar.description import (
     Span,
     Text,
 )
-from grammar.expressions import nearest
-from grammar.quantities import AMPERE, Dimension, Quantity, show, unit_of
+from grammar.quantities import AMPERE, ANGLE, Dimension, Quantity, show, unit_of
 from simcore.components.kind import Key, Kind
-from simcore.design.scopes import Place, Poisoned, Scope, Sheet, span_of
+from simcore.design.scopes import Place, Poisoned, Scope, Sheet, span_of, suggest
 
 EXPRESSIONS = (Number, Name, Negative, Binary, Branch, Each, Call)
 
@@ -42,11 +41,15 @@ LATER = "Leave it out: a later version will have it."
 
 @dataclass
 class Values:
-    """The keys of an element or data sheet as worked out; spans: where each was written."""
+    """The keys of an element or data sheet as worked out.
+
+    spans: where each was written; units: the dimension of those that may have several; sheet: the data sheet's name
+    """
 
     given: dict[str, Any] = field(default_factory=dict)
     spans: dict[str, Span | None] = field(default_factory=dict)
     units: dict[str, Dimension] = field(default_factory=dict)
+    sheet: str = ""
     failed: bool = False
 
 
@@ -97,6 +100,7 @@ class Reader:
             self._wrong(what, f"Name a data sheet of a {kind.name}.", span_of(node.value), found)
             return []
         sheet = self.sheet(value, kind)
+        found.sheet = value.node.name
         found.given.update(sheet.given)
         found.units.update(sheet.units)
         found.spans.update(dict.fromkeys(sheet.given, span_of(node.value)))
@@ -108,8 +112,7 @@ class Reader:
         for setting in settings:
             key = kind.key.get(setting.key)
             if key is None:
-                close = nearest(setting.key, list(kind.key))
-                cure = f"Did you mean {close}?" if close else f"A {kind.name} takes {', '.join(kind.key)}."
+                cure = suggest(setting.key, list(kind.key), f"A {kind.name} takes {', '.join(kind.key)}.")
                 self._wrong(f"a {kind.name} has no key {setting.key}", cure, setting.span, found)
                 continue
             if setting.key in written:
@@ -336,8 +339,8 @@ class Reader:
 
 def clash(what: str, wanted: Dimension, got: Dimension) -> tuple[str, str]:
     """The words for a value of a wrong dimension."""
-    given, due = unit_of(got), unit_of(wanted)
-    has = f"is in {given}" if given else "has no unit"
+    given, due = unit_of(got), "deg" if wanted == ANGLE else unit_of(wanted)
+    has = f"is given in {given}" if given else "has no unit"
     return f"{what} {has}", f"Give it in {due}." if due else "Give a number without a unit."
 
 

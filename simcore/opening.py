@@ -1,0 +1,61 @@
+"""A description opened: read, its lets replaced where asked, and understood as a circuit, or all that is wrong with it.
+
+The one way in, for the command and for Python alike. It solves nothing.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TypeGuard
+
+from grammar.description import Expression, Name
+from grammar.expressions import nearest
+from grammar.mistakes import Mistake
+from grammar.reader import read_expression
+from simcore.design.circuit import Circuit
+from simcore.design.elaborate import elaborate
+from simcore.design.files import Project, load
+
+
+@dataclass(frozen=True)
+class Opened:
+    """A design as read and the circuit that it describes with some lets replaced by overrides."""
+
+    project: Project
+    circuit: Circuit
+    overrides: dict[str, Expression | str]
+
+
+def open_design(file: str | Path, settings: Mapping[str, str]) -> tuple[Opened, list[Mistake]]:
+    """Open a description file; settings: let -> its new value as text, an expression or a data sheet's name."""
+    project, mistakes = load(file)
+    opened, more = open_project(project, settings)
+    return opened, mistakes + more if not mistakes else mistakes
+
+
+def open_project(project: Project, settings: Mapping[str, str]) -> tuple[Opened, list[Mistake]]:
+    """Understand a design that is read, some of its lets replaced; see open_design."""
+    overrides: dict[str, Expression | str] = {}
+    mistakes: list[Mistake] = []
+    for name, text in settings.items():
+        expression, wrong = read_expression(text, f"{name}={text}")
+        mistakes += wrong
+        if expression is not None:
+            overrides[name] = expression.parts[0].name if _names_sheet(expression) else expression
+    circuit, more = elaborate(project, overrides)
+    mistakes += more
+    mistakes += [_unknown(name, circuit, project.name) for name in overrides if name not in circuit.lets]
+    return Opened(project, circuit, overrides), mistakes
+
+
+def _names_sheet(expression: Expression) -> TypeGuard[Name]:
+    """Whether a setting is the bare name of a data sheet."""
+    return isinstance(expression, Name) and len(expression.parts) == 1 and not expression.parts[0].indices
+
+
+def _unknown(name: str, circuit: Circuit, file: str) -> Mistake:
+    near = nearest(name, circuit.lets)
+    cure = f"Did you mean {near}?" if near else f"Its lets: {', '.join(circuit.lets) or 'none'}."
+    return Mistake(f"no let is called {name}", cure, file=file)

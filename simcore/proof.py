@@ -1,0 +1,123 @@
+"""A design proved: its studies solved, its requirements judged, and what every study shows without being asked.
+
+The one way from a design to its result, for the command and for Python alike. It writes nothing and prints nothing.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
+
+from grammar.description import Binary, Call, Expression, Negative
+from grammar.expressions import nearest
+from grammar.mistakes import Mistake
+from simcore.design.circuit import Circuit, PlannedStudy
+from simcore.figures.overview import Balance, Row, balance, diode_rows, signal_rows
+from simcore.figures.record import Record
+from simcore.judge.outcome import Outcome, outcome_of
+from simcore.judge.verdict import Verdict, judge
+from simcore.opening import Opened
+from simcore.pipeline import solve_studies
+from simcore.solve.solution import Solution
+
+TAKEN = ("figures", "verdicts")
+"""Names of result files that a study's trace would take the place of."""
+
+
+@dataclass(frozen=True)
+class ProvedStudy:
+    """A solved study and its tables, with bounds from a second solution at a looser tolerance."""
+
+    study: PlannedStudy
+    record: Record
+    signals: list[Row]
+    diodes: list[Row]
+    balance: Balance
+    kirchhoff: float
+    statistics: Mapping[str, float]
+    notes: Sequence[str]
+
+
+@dataclass(frozen=True)
+class Proof:
+    """What a design came to.
+
+    studies: in the order solved; verdicts: of the requirements on them, in the order written; seconds: wall-clock time
+    """
+
+    circuit: Circuit
+    studies: dict[str, ProvedStudy]
+    verdicts: list[Verdict]
+    seconds: float
+
+    @property
+    def outcome(self) -> Outcome:
+        """What the verdicts come to together."""
+        return outcome_of(verdict.state for verdict in self.verdicts)
+
+
+def chosen_studies(circuit: Circuit, wanted: Sequence[str], file: str) -> tuple[list[str], list[Mistake]]:
+    """The studies to prove, in the order written: those wanted, or all; and what is wrong with the choice."""
+    mistakes = [_unknown(name, circuit, file) for name in wanted if name not in circuit.studies]
+    if not circuit.studies:
+        cure = "Add one, such as `study full_load: settled`; `bulkrail look` shows a circuit without one."
+        mistakes.append(Mistake("there is no study, so there is nothing to solve", cure, file=file))
+    for name, study in circuit.studies.items():
+        if name in TAKEN:
+            cure = "Give the study another name."
+            mistakes.append(Mistake(f"the trace of {name} would take the place of {name}.csv", cure, study.span, file))
+    return [name for name in circuit.studies if not wanted or name in wanted], mistakes
+
+
+def _unknown(name: str, circuit: Circuit, file: str) -> Mistake:
+    near = nearest(name, circuit.studies)
+    known = ", ".join(circuit.studies) or "none"
+    cure = f"Did you mean {near}?" if near else f"Its studies: {known}."
+    return Mistake(f"no study is called {name}", cure, file=file)
+
+
+def prove(opened: Opened, names: Sequence[str]) -> Proof:
+    """Solve the named studies and judge the requirements on them. Raises NoSolution where one can't be solved."""
+    start = time.perf_counter()
+    circuit = opened.circuit
+    requirements = [requirement for requirement in circuit.requirements if requirement.study in names]
+    others = dict.fromkeys(
+        study
+        for requirement in requirements
+        for part in (requirement.figure, requirement.bound, requirement.upper)
+        for study in _studies_named(part)
+    )
+    needed = [name for name in circuit.studies if name in names or name in others]
+    solved = solve_studies(opened.project, circuit, needed, opened.overrides)
+    fine = {name: Record(result.solution) for name, result in solved.items()}
+    coarse = {name: Record(result.coarse) for name, result in solved.items()}
+    studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name].solution) for name in names}
+    return Proof(circuit, studies, judge(requirements, coarse, fine), time.perf_counter() - start)
+
+
+def _studies_named(expression: Expression | None) -> Iterator[str]:
+    """The studies whose figures an expression takes with `at`."""
+    if isinstance(expression, Call):
+        if expression.study is not None:
+            yield expression.study
+        for argument in expression.arguments:
+            yield from _studies_named(argument)
+    elif isinstance(expression, Binary):
+        yield from _studies_named(expression.left)
+        yield from _studies_named(expression.right)
+    elif isinstance(expression, Negative):
+        yield from _studies_named(expression.operand)
+
+
+def _proved(study: PlannedStudy, fine: Record, coarse: Record, solution: Solution) -> ProvedStudy:
+    return ProvedStudy(
+        study,
+        fine,
+        signal_rows(fine, coarse),
+        diode_rows(fine, coarse),
+        balance(fine),
+        solution.kirchhoff,
+        solution.statistics,
+        solution.notes,
+    )

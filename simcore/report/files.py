@@ -1,0 +1,153 @@
+"""The files of a run: traces, figures and verdicts as CSV by RFC 4180, and a summary for programs.
+
+Knows proofs and how they are laid out in columns; works nothing out.
+"""
+
+from __future__ import annotations
+
+import csv
+import json
+import math
+from collections.abc import Iterable, Iterator, Sequence
+from pathlib import Path
+
+from grammar.quantities import Quantity, unit_of
+from simcore.figures.figure import Figure
+from simcore.judge.verdict import Verdict
+from simcore.proof import Proof, ProvedStudy
+from simcore.report.traces import TIME, recorded, traces
+from simcore.report.writing import whole_file
+
+FIGURE_COLUMNS = ("study", "subject", "figure", "value", "unit", "bound", "note")
+VERDICT_COLUMNS = (
+    "study",
+    "requirement",
+    "label",
+    "verdict",
+    "value",
+    "unit",
+    "bound",
+    "limit",
+    "upper limit",
+    "margin",
+    "margin bound",
+    "reason",
+)
+
+
+def write_results(proof: Proof, folder: Path, description: str) -> list[Path]:
+    """Write all files of a proof to a folder, made where it is missing; description: the file that was proved."""
+    written = []
+    for name, study in proof.studies.items():
+        written.append(folder / f"{name}.csv")
+        _write_table(written[-1], *_trace(study))
+    written += [folder / "figures.csv", folder / "verdicts.csv", folder / "summary.json"]
+    _write_table(written[-3], FIGURE_COLUMNS, _figure_rows(proof))
+    _write_table(written[-2], VERDICT_COLUMNS, [_verdict_row(verdict) for verdict in proof.verdicts])
+    with whole_file(written[-1]) as file:
+        json.dump(_summary(proof, description), file, indent=2, ensure_ascii=False, allow_nan=False)
+        file.write("\n")
+    return written
+
+
+def _write_table(path: Path, columns: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
+    with whole_file(path) as file:
+        writer = csv.writer(file)
+        writer.writerow(columns)
+        writer.writerows([_cell(value) for value in row] for row in rows)
+
+
+def _cell(value: object) -> str:
+    """A number in full double precision; nothing where there is none (a note or reason says why)."""
+    if value is None:
+        return ""
+    return repr(value) if isinstance(value, float) else str(value)
+
+
+def _trace(study: ProvedStudy) -> tuple[list[str], Iterator[Sequence[float]]]:
+    sampled = traces(recorded(study.record), study.study.record_every)
+    columns = [values.tolist() for values in (sampled.times, *sampled.columns.values())]
+    return [TIME, *sampled.columns], zip(*columns, strict=True)
+
+
+# --- figures and verdicts --------------------------------------------------------------------------------------------
+
+
+def named_figures(study: ProvedStudy) -> Iterator[tuple[str, str, Figure]]:
+    """What a study shows without being asked, as subject, name of the figure, and figure."""
+    for row in study.signals:
+        for name, figure in row.figures.items():
+            yield row.name, name, figure
+    for row in study.diodes:
+        for name, figure in row.figures.items():
+            yield row.name, name, figure
+    for name, figure in vars(study.balance).items():
+        if isinstance(figure, Figure):
+            yield "energy", name.replace("_", " "), figure
+
+
+def _figure_rows(proof: Proof) -> Iterator[Sequence[object]]:
+    for name, study in proof.studies.items():
+        for subject, title, figure in named_figures(study):
+            yield (name, subject, title, *_numbers(figure), figure.note)
+
+
+def _numbers(figure: Figure | None) -> tuple[float | None, str | None, float | None]:
+    """Value, unit and bound, each None where there is none."""
+    if figure is None:
+        return None, None, None
+    return _finite(figure.value), unit_of(figure.dimension), _finite(figure.bound)
+
+
+def _finite(number: float | None) -> float | None:
+    return None if number is None or not math.isfinite(number) else float(number)
+
+
+def _verdict_row(verdict: Verdict) -> Sequence[object]:
+    requirement = verdict.requirement
+    margin, _, margin_bound = _numbers(verdict.margin)
+    return (
+        requirement.study,
+        requirement.wording,
+        requirement.label,
+        str(verdict.state),
+        *_numbers(verdict.figure),
+        _numbers(verdict.limit)[0],
+        _numbers(verdict.upper)[0],
+        margin,
+        margin_bound,
+        verdict.reason,
+    )
+
+
+# --- the summary -----------------------------------------------------------------------------------------------------
+
+
+def _summary(proof: Proof, description: str) -> dict[str, object]:
+    circuit = proof.circuit
+    return {
+        "description": description,
+        "purpose": circuit.purpose,
+        "outcome": {"status": proof.outcome.status, "sentence": proof.outcome.sentence},
+        "lets": {name: _value(let.value) for name, let in circuit.lets.items()},
+        "studies": {name: _study_summary(study) for name, study in proof.studies.items()},
+        "verdicts": [dict(zip(VERDICT_COLUMNS, _verdict_row(verdict), strict=True)) for verdict in proof.verdicts],
+    }
+
+
+def _value(value: Quantity | str) -> object:
+    return value if isinstance(value, str) else {"value": value.value, "unit": unit_of(value.dimension)}
+
+
+def _study_summary(study: ProvedStudy) -> dict[str, object]:
+    figures: dict[str, dict[str, object]] = {}
+    for subject, title, figure in named_figures(study):
+        value, unit, bound = _numbers(figure)
+        figures.setdefault(subject, {})[title] = {"value": value, "unit": unit, "bound": bound, "note": figure.note}
+    return {
+        "kind": study.study.kind,
+        "worst Kirchhoff sum": study.kirchhoff,
+        "statistics": dict(study.statistics),
+        "notes": list(study.notes),
+        "figures": figures,
+    }
