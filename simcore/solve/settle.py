@@ -19,6 +19,7 @@ from simcore.solve.failure import Reason
 _AGREEMENT = 1e-6
 _ROUNDS = 30
 _FIRST = 4.0
+_SHORTEST = 0.25
 _GROWTH = 4.0
 _LARGEST_GROWTH = 100.0
 _FREE = 1e-9
@@ -106,45 +107,70 @@ def _goal(stepping: Stepping) -> float:
     return max(_AGREEMENT, 0.3 * stepping.tolerance)
 
 
+@dataclass(frozen=True)
+class _Point:
+    """States, what a period adds to them (residual), its derivative (slope) and what Newton would add (rest), all but the
+    states over their scale."""
+
+    states: np.ndarray
+    scale: np.ndarray
+    residual: np.ndarray
+    slope: np.ndarray
+    rest: np.ndarray
+
+    @property
+    def size(self) -> float:
+        """The largest residual."""
+        return float(np.max(np.abs(self.residual)))
+
+    @property
+    def distance(self) -> float:
+        """How far Newton takes the settled state to be."""
+        return float(np.max(np.abs(self.rest)))
+
+    def corrected(self, pseudo: float = np.inf) -> np.ndarray:
+        """The states after a correction with a pseudo time in periods; without one, Newton's."""
+        damped = (1.0 + 1.0 / pseudo) * np.eye(len(self.states)) - self.slope
+        return self.states + _solved(damped, self.residual) * self.scale
+
+
+def _point(way: _Map, states: np.ndarray) -> _Point | None:
+    answer = way.respond(states)
+    if answer is None:
+        return None
+    after, derivative = answer
+    scale = way.scale(after)
+    residual, slope = (after - states) / scale, derivative * scale / scale[:, None]
+    return _Point(states, scale, residual, slope, _solved(np.eye(len(states)) - slope, residual))
+
+
 def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
     """Pseudo-transient continuation; None where it stalls.
 
-    The steps of a run make its map rough by about their tolerance: where corrections of that size no longer shrink, the
-    best state found is as good as this tolerance can tell.
+    A correction that makes the residual grow is taken back and made shorter. The steps of a run make its map rough by
+    about their tolerance: where residuals of that size no longer shrink, the best state is as good as can be told.
     """
     states = way.follow(start)
-    pseudo, before, since = _FIRST, np.inf, 0
-    best, best_states, best_scaled = np.inf, states, np.eye(len(states))
+    pseudo, since = _FIRST, 0
+    base = best = _point(way, states)
     for _ in range(_ROUNDS):
-        answer = way.respond(states)
-        if answer is None:
+        if base is None or best is None:
             return None
-        after, derivative = answer
-        scale = way.scale(after)
-        residual = (after - states) / scale
-        scaled = derivative * scale / scale[:, None]
-        rest = _solved(np.eye(len(states)) - scaled, residual)
-        left, size = float(np.max(np.abs(rest))), float(np.max(np.abs(residual)))
-        since += 1
-        if left < best:
-            since = since if left > 0.5 * best else 0
-            best, best_states, best_scaled = left, states + rest * scale, scaled
-        if best <= _goal(way.stepping) or (since >= _STANDING and best <= 3.0 * way.stepping.tolerance):
-            way.finish(best_states)
-            return _described(way, best_scaled)
-        pseudo *= _growth(before, size)
-        step = _solved((1.0 + 1.0 / pseudo) * np.eye(len(states)) - scaled, residual)
-        states, before = way.follow(states + step * scale), size
+        rough = since >= _STANDING and best.size <= 3.0 * way.stepping.tolerance
+        if best.distance <= _goal(way.stepping) or rough:
+            way.finish(best.corrected())
+            return _described(way, best.slope)
+        point = _point(way, way.follow(base.corrected(pseudo)))
+        if point is None:
+            return None
+        if point.size > 1.5 * base.size and pseudo > _SHORTEST:
+            pseudo /= 8.0
+        else:
+            pseudo *= min(_GROWTH * max(base.size / max(point.size, 1e-300), 1.0), _LARGEST_GROWTH)
+            base = point
+        since = since + 1 if point.distance > 0.5 * best.distance else 0
+        best = point if point.distance < best.distance else best
     return None
-
-
-def _growth(before: float, size: float) -> float:
-    """What the pseudo time grows by: with the residual's fall, and back where it rose."""
-    if not np.isfinite(before):
-        return 1.0
-    if size > 1.5 * before:
-        return 0.125
-    return min(max(_GROWTH, _GROWTH * before / max(size, 1e-300)), _LARGEST_GROWTH)
 
 
 def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
@@ -179,7 +205,8 @@ def _by_following(way: _Map, start: np.ndarray) -> Settled:
             how = f"settled by following {way.plain} periods; of a disturbance {ratio:.3g} is left after a period"
             return Settled(how, way.plain, way.responding, ratio)
         kept = [*kept[-_LONGEST_REPEAT:], after]
-        repeat = _repeat(kept, scale, goal) if way.plain % _LOOK_EVERY == 0 else None
+        moves = changes[-1] > 10.0 * goal
+        repeat = _repeat(kept, scale, goal) if moves and way.plain % _LOOK_EVERY == 0 else None
         if repeat is not None:
             longer = repeat * way.period
             detail = f"it repeats only every {repeat} periods of the sources; give it `period = {longer:g} s`"
