@@ -11,8 +11,10 @@ import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 
+import numpy as np
+
 from grammar.description import Expression
-from grammar.quantities import ANGLE, Quantity, show
+from grammar.quantities import AMPERE, ANGLE, JOULE, VOLT, WATT, Dimension, Quantity, show
 from simcore.design.changes import Variants
 from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.design.files import Project
@@ -35,6 +37,10 @@ ROUNDS = 5
 """Tighter solutions at most, after the first."""
 NOTHING = 1e-3
 """A figure below this share of what it was formed from counts as near nothing, and is judged by that share."""
+ABSENT = 1e-6
+"""Share of the circuit's largest voltage, current or power below which one of them counts as none."""
+WORK = 1e7
+"""Solves times recorded columns of a solution after which none tighter is tried."""
 _LOOSEST, _TIGHTEST = 1e-2, 1e-8
 
 
@@ -54,6 +60,11 @@ class _Level:
 
     solution: Solution
     left: Reached
+
+    @property
+    def heavy(self) -> bool:
+        """Whether it took so much work that a tighter one would take too long."""
+        return self.solution.statistics["solves"] * len(self.solution.stretches[0].system.columns) > WORK
 
 
 class _Proof:
@@ -80,7 +91,9 @@ class _Proof:
             note = f"worst phase: {show(study.angle or 0.0, ANGLE)} of the first sine"
         levels = [self._level(study, tolerance, 0, None)]
         excess = RATIO
-        while excess > 1.0 and len(levels) <= ROUNDS and tolerance > _TIGHTEST:
+        while (
+            excess > 1.0 and len(levels) <= ROUNDS and tolerance > _TIGHTEST and not (levels[1:] and levels[-1].heavy)
+        ):
             tolerance = max(tolerance / min(max(RATIO, 2.0 * excess), LARGEST_RATIO), _TIGHTEST)
             levels.append(self._level(study, tolerance, 1, levels[-1]))
             excess = self._excess(study, levels[-2].solution, levels[-1].solution)
@@ -116,14 +129,25 @@ class _Proof:
         else:
             rows = signal_rows(records[1][study.name], records[0][study.name])
             figures = [figure for row in rows for figure in row.figures.values()]
-        return max((_share(figure, study.accuracy) for figure in figures), default=0.0)
+        floors = _floors(fine)
+        return max((_share(figure, study.accuracy, floors) for figure in figures), default=0.0)
 
 
-def _share(figure: Figure, accuracy: float) -> float:
+def _floors(solution: Solution) -> dict[Dimension, float]:
+    """What counts as nothing in a circuit, by dimension: a share of its largest voltage, current and power."""
+    ports = [(element, port) for element in solution.circuit.elements.values() for port in element.ports]
+    voltage = max((float(np.max(np.abs(solution.voltage(port.a, port.b)))) for _, port in ports), default=0.0)
+    current = max((float(np.max(np.abs(solution.current(each.name, port.name)))) for each, port in ports), default=0.0)
+    sizes = {VOLT: voltage, AMPERE: current, WATT: voltage * current, JOULE: voltage * current * solution.times[-1]}
+    return {dimension: ABSENT * size for dimension, size in sizes.items()}
+
+
+def _share(figure: Figure, accuracy: float, floors: Mapping[Dimension, float]) -> float:
     """A figure's bound over the one allowed."""
     if figure.bound is None or not figure.defined or figure.bound <= figure.rounding:
         return 0.0
-    return figure.bound / (accuracy * max(abs(figure.value), NOTHING * figure.scale) + figure.rounding)
+    size = max(abs(figure.value), NOTHING * figure.scale, floors.get(figure.dimension, 0.0))
+    return figure.bound / (accuracy * size + figure.rounding)
 
 
 def solve_studies(

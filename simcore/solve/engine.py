@@ -23,7 +23,7 @@ from simcore.solve.stretch import Stretch
 _ROOM = 40_000
 _COLD_LIMIT = 100
 _LIMIT = 25
-_STEPS_AT_MOST = 20_000_000
+_STEPS_AT_MOST = 2_000_000
 REST_STEP = 1e15
 
 
