@@ -27,7 +27,7 @@ class Span:
 
 
 def _span() -> Span | None:
-    return field(default=None, compare=False, repr=False)  # type: ignore[return-value]
+    return field(default=None, compare=False, repr=False)
 
 
 # --- expressions ---------------------------------------------------------------------------------------------------

@@ -89,7 +89,7 @@ def _run(options: argparse.Namespace) -> Outcome:
 
     folders = _folders(options.files, options.out)
     if folders is None:
-        return Outcome.WRONG_INPUT
+        return Outcome.INPUT_WRONG
     return run_files(folders, options.study, dict(options.settings), say, complain)
 
 

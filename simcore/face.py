@@ -5,7 +5,8 @@ It holds what a caller sees and works nothing out itself.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+import math
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
 from pathlib import Path
@@ -13,17 +14,22 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from grammar.description import Description
+from grammar.description import Expression
 from grammar.mistakes import DescriptionError
-from grammar.quantities import show, unit_of
+from grammar.quantities import ANGLE, show, unit_of
+from grammar.reader import read_expression
 from grammar.writer import write
-from simcore.design.circuit import Circuit, PlannedStudy
+from simcore.design.circuit import Circuit
 from simcore.design.files import Project, load, load_text
 from simcore.design.graph import graph_of
-from simcore.figures.figure import Figure
+from simcore.figures.evaluate import figure_of
+from simcore.figures.expressions import signal_of
+from simcore.figures.figure import bounded
+from simcore.judge.outcome import State
 from simcore.judge.verdict import Verdict
 from simcore.opening import Opened, open_project
 from simcore.proof import Proof, ProvedStudy, prove
+from simcore.report.traces import traces
 
 if TYPE_CHECKING:
     import networkx
@@ -45,7 +51,7 @@ def read_text(text: str, name: str = "text", folder: str | Path | None = None) -
     ... study rest: operating_point
     ... ''')
     >>> print(divider.run("rest").figure("mean(voltage(mid))"))
-    3 V ± 5 pV
+    3 V ± 6 pV
     """
     return _sound(*load_text(text, name, folder))
 
@@ -65,3 +71,127 @@ class Design:
 
     project: Project
     settings: Mapping[str, str] = field(default_factory=dict)
+
+    @cached_property
+    def _opened(self) -> Opened:
+        opened, mistakes = open_project(self.project, self.settings)
+        if mistakes:
+            raise DescriptionError(mistakes)
+        return opened
+
+    @property
+    def circuit(self) -> Circuit:
+        """The circuit as understood: flat elements with SI values."""
+        return self._opened.circuit
+
+    @property
+    def studies(self) -> list[str]:
+        """Names of its studies, in the order written."""
+        return list(self.circuit.studies)
+
+    @property
+    def graph(self) -> networkx.MultiDiGraph:
+        """The circuit as a graph: nodes are its nodes, an edge is a port of an element; see simcore.design.graph."""
+        return graph_of(self.circuit)
+
+    @property
+    def text(self) -> str:
+        """The description as canonical text, as it was read: the values of a variant are not in it."""
+        return write(self.project.top.description)
+
+    def variant(self, **values: str | float) -> Design:
+        """The same design with other values of lets: `variant(C_res="2200 uF")`, or a data sheet's name.
+
+        >>> import simcore
+        >>> bridge = simcore.read(simcore.library_folder() / "bench_supply.rect")
+        >>> small = bridge.variant(C_res="2200 uF").run("full_load").figure("ripple(u_out)")
+        >>> float(small) > float(bridge.run("full_load").figure("ripple(u_out)"))
+        True
+        """
+        return Design(self.project, {**self.settings, **{name: str(value) for name, value in values.items()}})
+
+    def run(self, study: str) -> Result:
+        """Solve a study, and those it starts from. KeyError for a name it does not have, NoSolution where it has
+        none."""
+        if study not in self.circuit.studies:
+            raise KeyError(f"no study is called {study}; there are {', '.join(self.studies) or 'none'}")
+        return Result(prove(self._opened, [study]), study)
+
+    def prove(self) -> Proof:
+        """Solve all studies and judge all requirements."""
+        return prove(self._opened, self.studies)
+
+
+@dataclass(frozen=True)
+class Trace:
+    """A signal over time: time in s and values in `unit`, one array each; a jump has its instant twice."""
+
+    time: np.ndarray
+    value: np.ndarray
+    unit: str
+
+
+@dataclass(frozen=True)
+class Measured:
+    """A figure: value and error bound in `unit` (an SI unit), nan with a note where it is undefined."""
+
+    value: float
+    bound: float
+    unit: str
+    note: str
+    shown: str
+
+    def __float__(self) -> float:
+        return self.value
+
+    def __str__(self) -> str:
+        return self.shown
+
+
+@dataclass(frozen=True)
+class Result:
+    """A solved study: traces, figures and the verdicts of the requirements on it."""
+
+    proof: Proof
+    study: str
+
+    @property
+    def solved(self) -> ProvedStudy:
+        """All that is known of the study."""
+        return self.proof.studies[self.study]
+
+    @property
+    def verdicts(self) -> list[Verdict]:
+        """Of the requirements on this study."""
+        return self.proof.verdicts
+
+    @property
+    def holds(self) -> bool:
+        """Whether every requirement on this study holds."""
+        return all(verdict.state is State.HOLDS for verdict in self.verdicts)
+
+    def trace(self, signal: str) -> Trace:
+        """A signal over the whole study: an observed name, or what an observe may hold, such as `current(D1)`."""
+        record = self.solved.record
+        formed = signal_of(_expression(signal), record)
+        sampled = traces({signal: formed})
+        return Trace(sampled.times, next(iter(sampled.columns.values())), unit_of(formed.dimension))
+
+    def figure(self, text: str) -> Measured:
+        """A figure of this study, such as `mean(u_out)` or `ripple(u_out) / mean(u_out)`, with its error bound."""
+        expression = _expression(text)
+        coarse, fine = self.proof.coarse, {name: study.record for name, study in self.proof.studies.items()}
+        found = bounded(figure_of(expression, self.study, coarse), figure_of(expression, self.study, fine))
+        bound = 0.0 if found.bound is None else found.bound
+        shown = (
+            f"{show(found.value, found.dimension)} ± {show(bound, found.dimension, 2)}" if found.defined else found.note
+        )
+        scale = math.degrees(1.0) if found.dimension == ANGLE else 1.0
+        return Measured(found.value * scale, bound * scale, unit_of(found.dimension), found.note, shown)
+
+
+def _expression(text: str) -> Expression:
+    expression, mistakes = read_expression(text, text)
+    if mistakes or expression is None:
+        raise DescriptionError(mistakes)
+    return expression

@@ -32,7 +32,7 @@ def open_design(file: str | Path, settings: Mapping[str, str]) -> tuple[Opened, 
     """Open a description file; settings: let -> its new value as text, an expression or a data sheet's name."""
     project, mistakes = load(file)
     opened, more = open_project(project, settings)
-    return opened, mistakes + more if not mistakes else mistakes
+    return opened, mistakes or more
 
 
 def open_project(project: Project, settings: Mapping[str, str]) -> tuple[Opened, list[Mistake]]:

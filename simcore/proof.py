@@ -43,11 +43,13 @@ class ProvedStudy:
 class Proof:
     """What a design came to.
 
-    studies: in the order solved; verdicts: of the requirements on them, in the order written; seconds: wall-clock time
+    studies: in the order solved; coarse: all solved studies at the looser tolerance that the bounds come from;
+    verdicts: of the requirements on them, in the order written; seconds: wall-clock time
     """
 
     circuit: Circuit
     studies: dict[str, ProvedStudy]
+    coarse: Mapping[str, Record]
     verdicts: list[Verdict]
     seconds: float
 
@@ -93,7 +95,7 @@ def prove(opened: Opened, names: Sequence[str]) -> Proof:
     fine = {name: Record(result.solution) for name, result in solved.items()}
     coarse = {name: Record(result.coarse) for name, result in solved.items()}
     studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name].solution) for name in names}
-    return Proof(circuit, studies, judge(requirements, coarse, fine), time.perf_counter() - start)
+    return Proof(circuit, studies, coarse, judge(requirements, coarse, fine), time.perf_counter() - start)
 
 
 def _studies_named(expression: Expression | None) -> Iterator[str]:

@@ -119,7 +119,8 @@ def saturation_current(frame: Frame, part: Part) -> Value:
     """Saturation current at the temperature the diode runs at.
 
     I_S(T) = I_S(T_0) (T/T_0)^(r/n) exp[(E_g/(n k)) (1/T_0 - 1/T)], from n_i^2 ~ T^3 exp(-E_g/kT).
-    Source: Sze, Ng, Physics of Semiconductor Devices, 2007 (from memory); the exponents are divided by the ideality factor.
+    Source: Sze, Ng, Physics of Semiconductor Devices, 2007 (from memory); the exponents are divided by the ideality
+    factor.
     """
     hot, cold = part.temperature(), part.given("data_temperature")
     current = part.value("saturation_current")

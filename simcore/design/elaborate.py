@@ -273,11 +273,11 @@ class _Builder:
             if node.spread is not None:
                 self.scope.wrong(f"{full} is a data sheet, which has no tolerance", "Leave it out.", node.span)
             return LetValue(full, value.node.name, label=node.label)
-        if node.spread is None or full in self.scope.overrides:
+        if node.spread is None:
             return LetValue(full, value, label=node.label)
         low = self._limit(full, node.spread.low, value, place, node.spread.high is None, -1.0)
         high = self._limit(full, node.spread.high or node.spread.low, value, place, node.spread.high is None, 1.0)
-        if not low <= value.value <= high:
+        if not low <= value.value <= high and full not in self.scope.overrides:
             cure = "Write it from the lower to the upper limit, as in `tolerance -10 % .. +10 %`."
             self.scope.wrong(f"the value of {full} does not lie within its tolerance", cure, span_of(node.spread.low))
         return LetValue(full, value, low, high, node.spread.distribution or "uniform", node.label)

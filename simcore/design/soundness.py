@@ -20,7 +20,8 @@ LARGEST_RANK = 150
 def unsound(
     circuit: Circuit, spans: Mapping[str, Span | None], reference_spans: Mapping[str, Span | None]
 ) -> list[Mistake]:
-    """The mistakes of a circuit's graph. spans: where each node is first named; reference_spans: where as a reference."""
+    """The mistakes of a circuit's graph. spans: where each node is first named; reference_spans: where as a
+    reference."""
     mistakes = _shorted(circuit) + _used_once(circuit, spans) + _references(circuit, spans, reference_spans)
     if not mistakes:
         mistakes = _voltage_loops(circuit) + _current_cuts(circuit, spans)

@@ -1,7 +1,7 @@
 """The signals and figures of the language: names, arguments, dimensions and meanings, declared once.
 
-Checking, help text and the language reference come from this table; the computing functions are keyed by the same names.
-It knows nothing of solutions or circuits.
+Checking, help text and the language reference come from this table; the computing functions are keyed by the same
+names. It knows nothing of solutions or circuits.
 """
 
 from __future__ import annotations
@@ -25,9 +25,9 @@ class Measure:
     """A signal of the circuit, or a figure of a signal or of elements.
 
     arguments: what each stands for:
-        place (a node, `a -> b` or an element), branch (an element, a winding or a phase), element (any element, winding or
-        phase), junction (a diode or thyristor), source (a source, a three_phase set or a phase of one), signal, level (a
-        value in the signal's unit), count (a whole number from 1 on)
+        place (a node, `a -> b` or an element), branch (an element, a winding or a phase), element (any element, winding
+        or phase), junction (a diode or thyristor), source (a source, a three_phase set or a phase of one), signal,
+        level (a value in the signal's unit), count (a whole number from 1 on)
     result: the dimension of the result, from that of the signal (NONE where there is none)
     wants: the dimension that the signal must have, None for any
     optional: with no argument at all it is of the whole circuit

@@ -39,7 +39,8 @@ class Signal:
     coefficients: shape (n, order + 1), ascending powers of s = (2 t - t_k - t_k+1) / (t_k+1 - t_k), -1 to 1 in piece k;
                   in the SI unit of the dimension
     dimension: of the values
-    rough: spans in s, shape (m, 2), with a kink or jump inside: what a piece there reaches between its ends is no extremum
+    rough: spans in s, shape (m, 2), with a kink or jump inside: what a piece there reaches between its ends is no
+    extremum
     """
 
     times: Array
@@ -121,7 +122,8 @@ class Signal:
         width = self.widths[piece]
         scale = np.diff(times) / width
         offset = (2.0 * middle - self.times[piece] - self.times[piece + 1]) / width
-        return Signal(times, polynomials.substituted(self.coefficients[piece], scale, offset), self.dimension, self.rough)
+        rows = polynomials.substituted(self.coefficients[piece], scale, offset)
+        return Signal(times, rows, self.dimension, self.rough)
 
     def restrict(self, start: float, end: float) -> Signal:
         """The part from start to end in s; both within the span up to rounding, else ValueError."""

@@ -20,8 +20,8 @@ from simcore.proof import Proof, ProvedStudy
 from simcore.report.tables import INDENT, table
 
 CAUTION = (
-    "Caution: this speaks of the description, not of what is built. Mains voltage and charged capacitors kill; keep to local codes"
-    " and licensed practice."
+    "Caution: this speaks of the description, not of what is built. Mains voltage and charged capacitors kill; keep to"
+    " local codes and licensed practice."
 )
 
 DIODE_HEADINGS = {"mean": "mean current", "rms": "rms current", "peak": "peak current"}

@@ -1,7 +1,7 @@
 """Traces as columns of numbers: where a study's signals are sampled, and how the columns are headed.
 
-A trace holds each breakpoint and the middle of each step; where a signal jumps the instant stands twice. It knows signals and
-circuits, and nothing of files.
+A trace holds each breakpoint and the middle of each step; where a signal jumps the instant stands twice. It knows
+signals and circuits, and nothing of files.
 """
 
 from __future__ import annotations
@@ -42,7 +42,8 @@ TIME = heading("time", SECOND)
 
 
 def recorded(record: Record) -> dict[str, Signal]:
-    """The signals a study records: the observed ones, or all node voltages and element currents where none is observed."""
+    """The signals a study records: the observed ones, or all node voltages and element currents where none is
+    observed."""
     return {name: form(record) for name, (form, _) in shown_signals(record).items()}
 
 
@@ -59,7 +60,16 @@ def traces(signals: dict[str, Signal], every: float | None = None) -> Traces:
     middles = 0.5 * (breakpoints[1:] + breakpoints[:-1])
     times = np.stack([breakpoints[:-1], middles, breakpoints[1:]], axis=1).ravel()
     keep = _needed(list(columns.values()))
+    keep[1::3] &= ~_rough(list(signals.values()), middles)
     return Traces(times[keep], {name: column[keep] for name, column in columns.items()})
+
+
+def _rough(signals: list[Signal], middles: Array) -> np.ndarray:
+    """Which steps have a kink or jump inside: their middle is made for the right integral, not to be looked at."""
+    result = np.zeros(len(middles), dtype=bool)
+    for start, end in max((signal.rough for signal in signals), key=len):
+        result |= (middles > start) & (middles < end)
+    return result
 
 
 def _breakpoints(signals: list[Signal]) -> Array:
@@ -76,7 +86,7 @@ def _samples(signal: Signal) -> Array:
     return np.stack([start, signal.coefficients[:, 0], end], axis=1).ravel()
 
 
-def _needed(columns: list[Array]) -> Array:
+def _needed(columns: list[Array]) -> np.ndarray:
     """Which samples a trace needs: a piece's start only where some column jumps there, and the very first."""
     keep = np.ones(len(columns[0]), dtype=bool)
     keep[3::3] = False

@@ -9,6 +9,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from typing import TypeVar
 
 import numpy as np
 
@@ -24,6 +25,7 @@ from simcore.solve.solution import Solution
 from simcore.solve.sources import clock_at_phase, common_period, largest_voltage
 from simcore.solve.stretch import Stretch
 
+Answer = TypeVar("Answer")
 Variant = Callable[[tuple[Change, ...]], Circuit]
 EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
@@ -172,7 +174,8 @@ class Course:
             largest_voltage(frame, scale),
         )
 
-    def _guard(self, action: Callable, clock: float):
+    def _guard(self, action: Callable[[], Answer], clock: float) -> Answer:
+        """An action's answer; what stops it is told in the study's own time."""
         try:
             return action()
         except Interrupted as stop:

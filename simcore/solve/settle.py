@@ -109,8 +109,8 @@ def _goal(stepping: Stepping) -> float:
 
 @dataclass(frozen=True)
 class _Point:
-    """States, what a period adds to them (residual), its derivative (slope) and what Newton would add (rest), all but the
-    states over their scale."""
+    """States, what a period adds to them (residual), its derivative (slope) and what Newton would add (rest), all but
+    the states over their scale."""
 
     states: np.ndarray
     scale: np.ndarray
