@@ -39,6 +39,9 @@ CONTROLS = (
 )
 DONE, FULL, NO_CONVERGENCE = 0, 1, 2
 _WEAK_PIVOT = 1e-10
+BLOCKED = 0.01
+"""Agreement, over the law's scale, of a branch that blocks: rounding of the large voltages around it is all that is left to
+its own, and the current it errs by is a ten-thousandth of a leakage."""
 
 
 def watched_columns(system: System) -> list[int]:
@@ -117,7 +120,13 @@ class RunSource:
         add(1, *self.emitter.lines["variant"])
         for index, junction in enumerate(self.system.junctions):
             scale, critical = self.emitter.name(junction.scale), self.emitter.name(junction.critical)
-            add(1, f"w{index} = {scale}", f"k{index} = {critical}", f"b{index} = {scale} * agreement")
+            add(
+                1,
+                f"w{index} = {scale}",
+                f"k{index} = {critical}",
+                f"b{index} = {scale} * agreement",
+                f"q{index} = {scale} * {BLOCKED!r}",
+            )
             add(1, f"o{index} = {scale} * -6.0", f"g{index} = {critical} - 3.0 * {scale}")
         add(1, "now = s[0]", "wish = s[1]")
         position = 2
@@ -129,10 +138,10 @@ class RunSource:
         self._each(1, columns, "c1_# = 0.0", "c2_# = 0.0", "c3_# = 0.0", "m2_# = 0.0", "m3_# = 0.0")
         self._each(1, len(self.watched), "d_# = 0.0", "h# = 0.0")
         self._each(1, junctions, "n# = u#", "a# = 0.0")
-        add(1, "f1, f2, f3, q1, q2, q3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0")
-        add(1, "if order == 2:", "    f1, f2, f3, q1, q2, q3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
-        add(1, "if order == 3:", "    f1, f2, f3, q1, q2, q3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
-        add(1, "mean1, mean2, mean3 = 1.5 * f1, 0.75 * f2, 0.5 * f3")
+        add(1, "take1, take2, take3, miss1, miss2, miss3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0")
+        add(1, "if order == 2:", "    take1, take2, take3, miss1, miss2, miss3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
+        add(1, "if order == 3:", "    take1, take2, take3, miss1, miss2, miss3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
+        add(1, "mean1, mean2, mean3 = 1.5 * take1, 0.75 * take2, 0.5 * take3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
         add(1, "failures = 0")
 
@@ -223,7 +232,7 @@ class RunSource:
         """Convergence in units of the law's scale; an off branch is ignored; NaN passes neither test. A voltage that
         rises past the critical one moves by the logarithm of the step (common practice, no source)."""
         lines = (
-            "if not (-b# <= d <= b#) and not (n# < o# and v# < o#):",
+            "if not (-b# <= d <= b# or (n# < o# and v# < o#) or (n# < 0.0 and v# < 0.0 and -q# <= d <= q#)):",
             "    good = False",
             "    if n# > k# and d > 0.0:",
             "        if v# > 0.0:",
@@ -258,7 +267,7 @@ class RunSource:
         add(2, "error = 0.0")
         for index, state in enumerate(self.system.states):
             floor = f"floor_{state.quantity}"
-            add(2, f"r = abs(q1 * e1_{index} + q2 * e2_{index} + q3 * e3_{index}) / max(i{index}, {floor})")
+            add(2, f"r = abs(miss1 * e1_{index} + miss2 * e2_{index} + miss3 * e3_{index}) / max(i{index}, {floor})")
             add(2, "if not r <= error:", "    error = r")
         add(2, "error /= tolerance")
         if self.watched:
@@ -277,7 +286,7 @@ class RunSource:
         """What a quadratic misses of a watched current, over its tolerance: 0.0481 of the third difference, which is
         taken over 1/3, 1/2, 2/3 and 1 of the step, each moved to second order by the differences of the divisions."""
         first, second, third = (f"c{division}_{column}" for division in (1, 2, 3))
-        end = f"9.0 * (f1 * {first} + f2 * {second} + f3 * {third})"
+        end = f"9.0 * (take1 * {first} + take2 * {second} + take3 * {third})"
         inside = f"d_{index} + 72.0 * m2_{column} - 22.5 * ({third} - {first}) + 36.0 * ({second} - {first})"
         return f"r = 0.0481 * abs({end} + {inside}) / (max(j{index}, floor_current) * watch_tolerance)"
 
@@ -288,12 +297,12 @@ class RunSource:
         self._each(
             2,
             states,
-            "z# = f1 * e1_# + f2 * e2_# + f3 * e3_#",
+            "z# = take1 * e1_# + take2 * e2_# + take3 * e3_#",
             "i# = max(abs(z#), i# * weight)",
         )
         if self._responses:
             size = states * states
-            sums = " + ".join(f"f{division} * m[{division * size} + k]" for division in (1, 2, 3))
+            sums = " + ".join(f"take{division} * m[{division * size} + k]" for division in (1, 2, 3))
             add(2, f"for k in range({size}):", f"    m[k] = {sums}")
         for index, column in enumerate(self.watched):
             self._watch(index, column)
@@ -314,7 +323,7 @@ class RunSource:
         """A watched current's end and peak; where it falls, the next step ends where the chord meets zero: turn-off
         cut."""
         lines = (
-            f"r = f1 * c1_{column} + f2 * c2_{column} + f3 * c3_{column}",
+            f"r = take1 * c1_{column} + take2 * c2_{column} + take3 * c3_{column}",
             "if 0.0 < r < h# and u# > g#:",
             "    d = r * size / (h# - r)",
             "    if max(0.2 * wish, smallest) < d < wish:",
@@ -334,7 +343,7 @@ class RunSource:
             mean = f"mean1 * c1_{i} + mean2 * (m2_{i} + c2_{i}) + mean3 * (m3_{i} + c3_{i})"
             add(
                 3,
-                f"r = f1 * c1_{i} + f2 * c2_{i} + f3 * c3_{i}",
+                f"r = take1 * c1_{i} + take2 * c2_{i} + take3 * c3_{i}",
                 f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)",
             )
             add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")

@@ -13,7 +13,7 @@ import numpy as np
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
 from simcore.equations.plain import evaluate
-from simcore.equations.run_source import CONTROLS, DONE, FULL, NO_CONVERGENCE, record_width
+from simcore.equations.run_source import BLOCKED, CONTROLS, DONE, FULL, NO_CONVERGENCE, record_width
 from simcore.equations.values import Value
 
 _WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
@@ -159,7 +159,8 @@ class _Attempt:
         """The convergence test and the limiting of run_source, on arrays."""
         step, off = n - v, -6.0 * self.scale
         close = np.abs(step) <= self.c["agreement"] * self.scale
-        moving = ~(close | ((n < off) & (v < off)))
+        blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= BLOCKED * self.scale)
+        moving = ~(close | ((n < off) & (v < off)) | blocked)
         limit = moving & (n > self.critical) & (step > 0.0)
         with np.errstate(all="ignore"):
             inside = v + self.scale * np.log1p(step / self.scale)

@@ -144,13 +144,13 @@ class Course:
         clock = self.before.clock
         if self.study.angle is None:
             return clock
-        wanted = clock_at_phase(frame, self.study.angle)
+        earlier = self.variant(self.before.changes)
+        frame = build_frame(earlier, self.before.moment)
         period = common_period(frame)
         if period is None:
             return clock
-        ahead = (wanted - clock) % period
-        earlier = self.variant(self.before.changes)
-        self._piece(earlier, build_frame(earlier, self.before.moment), memory, clock, clock + ahead)
+        ahead = (clock_at_phase(frame, self.study.angle) - clock) % period
+        self._piece(earlier, frame, memory, clock, clock + ahead)
         return clock + ahead
 
     def _engine(self, circuit: Circuit, frame: Frame, memory: Memory) -> Engine:

@@ -1,0 +1,59 @@
+"""What the outside checks share: solve a text through the whole chain, read figures, and keep count of honest bounds.
+
+Every comparison goes through `close`, which also asks whether the printed bound covers the true error: it must never be missed by
+more than three times, and a test at the end of the folder asks for 95 % of all.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import simcore
+from simcore.face import Design, Result
+
+DIODE = "saturation_current = 1 nA, ideality_factor = 1.8, temperature = 300.15 K"
+"""The exponential diode of most rows: I_S = 1 nA, n = 1.8 at 300.15 K."""
+
+SHARP = "saturation_current = 1e-3 nA, ideality_factor = 0.1, temperature = 300.15 K"
+"""Nearly ideal: 1 pA, n = 0.1 drops 71 mV at 1 A (0.1 is the smallest factor the language takes)."""
+
+
+@dataclass
+class Ledger:
+    """How many comparisons were made, and in how many the bound covered the true error."""
+
+    compared: int = 0
+    covered: int = 0
+    missed: list[str] = field(default_factory=list)
+
+
+LEDGER = Ledger()
+
+
+def design(text: str) -> Design:
+    """The design that a text holds."""
+    return simcore.read_text(text, "check")
+
+
+def solved(text: str, study: str = "s") -> Result:
+    """A study of a text, solved."""
+    return design(text).run(study)
+
+
+def close(result: Result, figure: str, expected: float, relative: float, absolute: float = 0.0) -> None:
+    """A figure (SI unit, angles in deg) agrees with an outside value; its own bound is judged for honesty where the outside
+    value is exact for the very circuit solved (no absolute allowance for a model's difference)."""
+    found = result.figure(figure)
+    error = abs(found.value - expected)
+    assert error <= relative * abs(expected) + absolute, (
+        f"{figure}: {found.value!r} against {expected!r}, {found.shown}"
+    )
+    if absolute == 0.0:
+        printed = 1e-8 * abs(expected)
+        LEDGER.compared += 1
+        LEDGER.covered += error <= found.bound + printed
+        if error > found.bound + printed:
+            LEDGER.missed.append(f"{figure}: {error:.3g} beyond {found.bound:.3g}")
+        assert error <= 3.0 * found.bound + printed, (
+            f"{figure}: error {error:.3g} is over three times {found.bound:.3g}"
+        )
