@@ -28,7 +28,6 @@ def _build(frame: Frame, part: Part) -> None:
         frame.series(part, inside, resistance=part.value("leakage_resistance"))
 
 
-
 CAPACITOR = Kind(
     "capacitor",
     "capacitance, with its losses where they are given",

@@ -30,7 +30,7 @@ _FORWARD = (
         available=False,
     ),
     Key("saturation_current", "saturation current of the law", AMPERE, low=0.0, open_low=True),
-    Key("ideality_factor", "ideality factor of the law", NONE, low=0.1, high=20.0),
+    Key("ideality_factor", "ideality factor of the law", NONE, low=0.01, high=20.0),
     Key("series_resistance", "resistance in series with the junction", OHM, default=0.0, low=0.0),
 )
 

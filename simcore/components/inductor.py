@@ -20,7 +20,6 @@ def _build(frame: Frame, part: Part) -> None:
     )
 
 
-
 INDUCTOR = Kind(
     "inductor",
     "inductance, with the resistance of its winding where it is given",

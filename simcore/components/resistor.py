@@ -14,7 +14,6 @@ def _build(frame: Frame, part: Part) -> None:
     frame.series(part, part.across(part.ports[0]), resistance=part.value("resistance"))
 
 
-
 RESISTOR = Kind(
     "resistor",
     "linear resistance",

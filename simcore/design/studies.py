@@ -82,6 +82,8 @@ class Studies:
                 self.scope.wrong(f"{setting.key} is given twice", "Give each key once.", setting.span)
             elif setting.key not in allowed:
                 self._no_key(study, setting, allowed)
+            elif setting.key == "angle" and isinstance(setting.value, Worst):
+                given["worst"] = self._worst(setting.value)
             else:
                 given[setting.key] = self._setting(setting)
         if study.kind == "transient" and "duration" not in given:
@@ -112,14 +114,7 @@ class Studies:
     def _setting(self, setting: Setting) -> Any:
         key, value = setting.key, setting.value
         if isinstance(value, Worst):
-            if key == "angle":
-                self.scope.wrong(
-                    "`worst for` is not available in this version",
-                    "Give the angle, as in `angle = 90 deg`.",
-                    value.span or setting.span,
-                )
-            else:
-                self.scope.wrong("`worst for` is for an angle", f"Give the value of {key}.", value.span or setting.span)
+            self.scope.wrong("`worst for` is for an angle", f"Give the value of {key}.", value.span or setting.span)
             return None
         if not isinstance(value, EXPRESSIONS):
             self.scope.wrong(f"{key} takes one value", f"Write it as `{key} = ...`.", span_of(value) or setting.span)
@@ -127,6 +122,17 @@ class Studies:
         if key == "after":
             return self._after(value)
         return self._amount(key, value)
+
+    def _worst(self, worst: Worst) -> Expression | None:
+        """The figure that the phase is sought for."""
+        try:
+            resolved = self.measures.resolve(worst.figure, self.place)
+        except Poisoned:
+            return None
+        if resolved.sort != "figure":
+            cure = "Name a figure, as in `angle = worst for peak(current(D1))`."
+            self.scope.wrong("`worst for` needs a figure", cure, span_of(worst.figure))
+        return resolved.expression
 
     def _amount(self, key: str, value: Expression) -> float | None:
         try:

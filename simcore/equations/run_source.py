@@ -36,12 +36,13 @@ CONTROLS = (
     "floor_current",
     "watch_tolerance",
     "agreement",
+    "kink_size",
 )
 DONE, FULL, NO_CONVERGENCE = 0, 1, 2
 _WEAK_PIVOT = 1e-10
-BLOCKED = 0.01
-"""Agreement, over the law's scale, of a branch that blocks: rounding of the large voltages around it is all that is left to
-its own, and the current it errs by is a ten-thousandth of a leakage."""
+BLOCKED, PATIENCE = 0.01, 8
+"""Agreement, over the law's scale, of a branch that blocks, and the iterations after which the scale itself will do:
+the rounding of the large voltages around such a branch is all that moves it, and it errs by less than a leakage."""
 
 
 def watched_columns(system: System) -> list[int]:
@@ -125,7 +126,6 @@ class RunSource:
                 f"w{index} = {scale}",
                 f"k{index} = {critical}",
                 f"b{index} = {scale} * agreement",
-                f"q{index} = {scale} * {BLOCKED!r}",
             )
             add(1, f"o{index} = {scale} * -6.0", f"g{index} = {critical} - 3.0 * {scale}")
         add(1, "now = s[0]", "wish = s[1]")
@@ -143,7 +143,7 @@ class RunSource:
         add(1, "if order == 3:", "    take1, take2, take3, miss1, miss2, miss3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
         add(1, "mean1, mean2, mean3 = 1.5 * take1, 0.75 * take2, 0.5 * take3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
-        add(1, "failures = 0")
+        add(1, "failures = 0", "landing = 0.0", "kink = 0.0")
 
     def _choose_size(self) -> None:
         self._add(
@@ -220,6 +220,7 @@ class RunSource:
         add(4, "if division > 1:")
         self._each(5, junctions, "n# += a# / division")
         add(4, "count = 0", "while True:", "    count += 1")
+        add(5, f"slack = {BLOCKED!r} if count <= {PATIENCE} else 1.0")
         self._each(5, junctions, "v# = n#")
         add(5, *self.emitter.lines["iteration"], "good = True")
         for index, junction in enumerate(self.system.junctions):
@@ -232,7 +233,8 @@ class RunSource:
         """Convergence in units of the law's scale; an off branch is ignored; NaN passes neither test. A voltage that
         rises past the critical one moves by the logarithm of the step (common practice, no source)."""
         lines = (
-            "if not (-b# <= d <= b# or (n# < o# and v# < o#) or (n# < 0.0 and v# < 0.0 and -q# <= d <= q#)):",
+            "blocks = n# < 0.0 and v# < 0.0 and (-slack * w# <= d <= slack * w# or (n# < o# and v# < o#))",
+            "if not (-b# <= d <= b# or blocks):",
             "    good = False",
             "    if n# > k# and d > 0.0:",
             "        if v# > 0.0:",
@@ -264,6 +266,11 @@ class RunSource:
 
     def _control(self, states: int) -> None:
         add = self._add
+        add(2, "kink = 0.0")
+        for index in range(len(self.system.junctions)):
+            add(2, f"if (u{index} > g{index}) != (n{index} > g{index}):", "    kink = 1.0")
+        add(2, "if kink > 0.0 and order > 1 and size > 1.01 * kink_size and size > smallest:")
+        add(3, "rejected += 1", "wish = kink_size", "continue")
         add(2, "error = 0.0")
         for index, state in enumerate(self.system.states):
             floor = f"floor_{state.quantity}"
@@ -293,7 +300,8 @@ class RunSource:
     def _accept(self, states: int, junctions: int) -> None:
         add = self._add
         add(2, "failures = 0", "steps += 1", "now = stop")
-        add(2, "weight = 1.0 - min(1.0, fade * size)", "kink = 0.0")
+        add(2, "weight = 1.0 - min(1.0, fade * size)")
+        add(2, "if landing > 0.0 or kink > 0.0:", "    wish = min(wish, kink_size)", "    landing = 0.0")
         self._each(
             2,
             states,
@@ -309,12 +317,11 @@ class RunSource:
         self._each(
             2,
             junctions,
-            "if (u# > g#) != (n# > g#):",
-            "    kink = 1.0",
             "if n# < g# - w# and n# > u#:",
             "    d = (g# - n#) * size / (n# - u#) * 1.02",
             "    if max(0.05 * wish, smallest) < d < wish:",
             "        wish = d",
+            "        landing = 1.0",
             "u# = n#",
         )
         self._record()
@@ -328,6 +335,7 @@ class RunSource:
             "    d = r * size / (h# - r)",
             "    if max(0.2 * wish, smallest) < d < wish:",
             "        wish = d",
+            "        landing = 1.0",
             "h# = r",
             "j# = max(abs(r), j# * weight)",
         )

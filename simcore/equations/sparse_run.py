@@ -13,7 +13,7 @@ import numpy as np
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
 from simcore.equations.plain import evaluate
-from simcore.equations.run_source import BLOCKED, CONTROLS, DONE, FULL, NO_CONVERGENCE, record_width
+from simcore.equations.run_source import BLOCKED, CONTROLS, DONE, FULL, NO_CONVERGENCE, PATIENCE, record_width
 from simcore.equations.values import Value
 
 _WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
@@ -70,7 +70,7 @@ class _Attempt:
         self.on = self.critical - 3.0 * self.scale
         self.incidence = self._incidence(inputs)
         self.position = self.steps = self.rejected = self.solves = self.iterations = self.failures = 0
-        self.now, self.wish = s[0], s[1]
+        self.now, self.wish, self.landing = s[0], s[1], False
 
     def _incidence(self, inputs: dict[str, float]) -> Any:
         """Weights of the free unknowns in each companion's voltage, shape (unknowns, companions), sparse."""
@@ -148,18 +148,19 @@ class _Attempt:
             x = factors.solve(right)
             x += factors.solve(right - matrix @ x)
             results = np.array(self.run._results(self.p, history, tuple(v.tolist()), tuple(x.tolist()), h, t))
-            n, good = self._limited(v, results[:junctions])
+            n, good = self._limited(v, results[:junctions], count)
             if good:
                 self.iterations += count
                 return n, results[junctions : junctions + states], results[junctions + states :]
         self.iterations += int(self.c["limit"])
         return None
 
-    def _limited(self, v: np.ndarray, n: np.ndarray) -> tuple[np.ndarray, bool]:
+    def _limited(self, v: np.ndarray, n: np.ndarray, count: int) -> tuple[np.ndarray, bool]:
         """The convergence test and the limiting of run_source, on arrays."""
         step, off = n - v, -6.0 * self.scale
         close = np.abs(step) <= self.c["agreement"] * self.scale
-        blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= BLOCKED * self.scale)
+        slack = BLOCKED if count <= PATIENCE else 1.0
+        blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale)
         moving = ~(close | ((n < off) & (v < off)) | blocked)
         limit = moving & (n > self.critical) & (step > 0.0)
         with np.errstate(all="ignore"):
@@ -178,9 +179,14 @@ class _Attempt:
     def _controlled(self, size: float, found: list) -> bool:
         """Whether a step is accurate enough; sets the next one's size."""
         order = int(self.c["order"])
+        self._error = 0.0
+        self.kink = bool(np.any((self.u > self.on) != (found[-1][2] > self.on)))
         if order == 1:
-            self._error = 0.0
             return True
+        if self.kink and size > 1.01 * self.c["kink_size"] and size > self.c["smallest"]:
+            self.rejected += 1
+            self.wish = self.c["kink_size"]
+            return False
         floors = np.where(self.run._currents, self.c["floor_current"], self.c["floor_voltage"])
         difference = _combine(_ERRORS[order], [states for states, _, _ in found])
         errors = np.abs(difference) / np.maximum(self.peaks, floors) / self.c["tolerance"]
@@ -214,11 +220,12 @@ class _Attempt:
         ends = _combine(weights, [parts[-1] for _, parts, _ in found])
         mean = _combine(weights, [sum(parts) / len(parts) for _, parts, _ in found])
         self.watched_peaks = np.maximum(np.abs(ends[self.run._watched]), self.watched_peaks * fade)
-        kink = float(np.any((self.u > self.on) != (found[-1][2] > self.on)))
+        if self.landing or self.kink:
+            self.wish, self.landing = min(self.wish, self.c["kink_size"]), False
         self._cut(size, found[-1][2])
         if self.c["record"] > 0.0:
             middle = 1.5 * mean - 0.25 * (self.ends + ends)
-            row = [stop, *np.stack([middle, ends], axis=1).ravel().tolist(), kink]
+            row = [stop, *np.stack([middle, ends], axis=1).ravel().tolist(), float(self.kink)]
             self.out[self.position : self.position + len(row)] = row
             self.position += len(row)
             self.ends = ends
@@ -229,7 +236,7 @@ class _Attempt:
         for index in np.flatnonzero(rising):
             ahead = (self.on[index] - n[index]) * size / (n[index] - self.u[index]) * 1.02
             if max(0.05 * self.wish, self.c["smallest"]) < ahead < self.wish:
-                self.wish = float(ahead)
+                self.wish, self.landing = float(ahead), True
         self.u = n
 
 

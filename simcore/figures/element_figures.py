@@ -117,9 +117,7 @@ def utilisation(record: Record, winding: str, load: str) -> Figure:
 
 def harmonic(record: Record, signal: Signal, order: int) -> Figure:
     """Rms value of one harmonic over the whole periods that end with the window."""
-    return _periodic(
-        record, signal, signal.dimension, lambda cut, frequency: measure.harmonic(cut, order, frequency)
-    )
+    return _periodic(record, signal, signal.dimension, lambda cut, frequency: measure.harmonic(cut, order, frequency))
 
 
 def distortion(record: Record, signal: Signal) -> Figure:

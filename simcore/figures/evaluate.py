@@ -42,9 +42,7 @@ def figure_of(expression: Expression, study: str, records: Records) -> Figure:
         return undefined(NONE, str(fault))
 
 
-def figures_with_bounds(
-    asked: Iterable[tuple[str, Expression]], coarse: Records, fine: Records
-) -> list[Figure]:
+def figures_with_bounds(asked: Iterable[tuple[str, Expression]], coarse: Records, fine: Records) -> list[Figure]:
     """Each (study, figure expression) on the fine solutions, bounded by its difference from the coarse ones."""
     return [
         bounded(figure_of(expression, study, coarse), figure_of(expression, study, fine)) for study, expression in asked
@@ -77,9 +75,7 @@ def _record(study: str, records: Records) -> Record:
 
 def _figure_call(call: Call, record: Record) -> Figure:
     declared = FIGURES[call.name].arguments
-    arguments = [
-        _argument(kind, argument, record) for kind, argument in zip(declared, call.arguments, strict=False)
-    ]
+    arguments = [_argument(kind, argument, record) for kind, argument in zip(declared, call.arguments, strict=False)]
     return COMPUTE[call.name](record, *arguments)
 
 

@@ -14,6 +14,9 @@ from grammar.quantities import NONE, Dimension
 ROUNDING = 1e-12
 """Relative error granted to rounding, of the magnitude the figure was formed from (some thousand ulp: long sums)."""
 
+CHANCE = 3e-7
+"""Share of a figure that its bound is never below: two solutions can agree better than either is right."""
+
 SAFETY = 2.0
 """Bound over the difference of two solutions.
 
@@ -108,7 +111,8 @@ def bounded(coarse: Figure, fine: Figure) -> Figure:
     """The fine figure with the bound that its difference from the coarse one and rounding leave.
 
     coarse, fine: the same figure on solutions of the same study at a tolerance and at a tighter one
-    Returns the fine value with bound SAFETY |fine - coarse| + rounding. Where only one of the two has a finite value,
+    Returns the fine value with bound SAFETY |fine - coarse| + CHANCE |fine| + rounding. Where only one of the two has a
+    finite value,
     the bound is infinite: nothing is known. An instant that comes in neither is returned as it is.
     Source: common practice, no source; the factor is reasoned at SAFETY.
     """
@@ -121,4 +125,6 @@ def bounded(coarse: Figure, fine: Figure) -> Figure:
     if math.isinf(fine.value) or math.isinf(coarse.value):
         note = "it comes in one of two solutions only"
         return replace(fine, bound=math.inf, beyond=None, note=note)
-    return replace(fine, bound=SAFETY * abs(fine.value - coarse.value) + coarse.rounding + fine.rounding)
+    difference = abs(fine.value - coarse.value)
+    chance = CHANCE * max(abs(fine.value), abs(coarse.value)) if difference > 0.0 else 0.0
+    return replace(fine, bound=SAFETY * difference + chance + coarse.rounding + fine.rounding)

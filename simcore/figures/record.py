@@ -123,9 +123,7 @@ class Record:
         """Current through a port from a to b, A."""
         return self.keep(
             ("current", element.name, port.name),
-            lambda: Signal.through(
-                self.times, self.solution.current(element.name, port.name), AMPERE, self.rough
-            ),
+            lambda: Signal.through(self.times, self.solution.current(element.name, port.name), AMPERE, self.rough),
         )
 
     def voltage(self, name: str) -> Signal:

@@ -29,6 +29,7 @@ Answer = TypeVar("Answer")
 Variant = Callable[[tuple[Change, ...]], Circuit]
 EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
+_KINKS_A_PERIOD = 100
 _BEGIN = 1e-7
 
 
@@ -165,13 +166,14 @@ class Course:
         scale = min(period, span) if frame.sines or frame.waveforms else span
         largest = scale / _STEPS_A_PERIOD * min(1.0, (self.tolerance / 1e-3) ** 0.25)
         return Stepping(
-            self.tolerance,
-            EXTRAPOLATION_ORDER,
-            largest,
-            1e-9 * scale,
-            _BEGIN * scale,
-            scale,
-            largest_voltage(frame, scale),
+            tolerance=self.tolerance,
+            order=EXTRAPOLATION_ORDER,
+            largest=largest,
+            kink=scale / _KINKS_A_PERIOD * (self.tolerance / 1e-3) ** (1.0 / 3.0),
+            smallest=1e-9 * scale,
+            begin=_BEGIN * scale,
+            memory=scale,
+            voltage=largest_voltage(frame, scale),
         )
 
     def _guard(self, action: Callable[[], Answer], clock: float) -> Answer:

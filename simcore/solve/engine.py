@@ -29,13 +29,15 @@ REST_STEP = 1e15
 
 @dataclass(frozen=True)
 class Stepping:
-    """How a run is stepped: relative tolerance of a step, extrapolation order, largest and smallest step in s, the step
+    """How a run is stepped: relative tolerance of a step, extrapolation order, largest step in s, largest with a kink
+    inside, smallest step, the step
     that gives a consistent start, the span in s over which the scale of a state is remembered, and the sources' largest
     voltage as the scale of what has none yet."""
 
     tolerance: float
     order: int
     largest: float
+    kink: float
     smallest: float
     begin: float
     memory: float
@@ -159,25 +161,31 @@ class Engine:
         raise Interrupted(Reason.NO_CONVERGENCE, time)
 
     def begin(self, time: float, step: float) -> np.ndarray:
-        """Values just after a time, from the states as they are: a step too short to move them. Returns the columns."""
+        """Values just after a time, from the states as they are: steps too short to move them, extrapolated to none.
+        Returns the columns."""
         self._follow(time)
-        before = self.saved[2 : 2 + self._states]
+        states = self.saved[2 : 2 + self._states]
         for shorter in (1.0, 1e-3, 1e-6):
             keep = list(self.saved)
             try:
-                record = self._single(time, step * shorter)
+                twice = self._from(states, time, 2.0 * step * shorter)
+                once = self._from(states, time, step * shorter)
             except Interrupted:
                 self.saved = keep
                 continue
-            self.saved[2 : 2 + self._states] = before
+            self.set_states(states)
             self.saved[0] = time
-            return record
+            return 2.0 * once - twice
         raise Interrupted(Reason.NO_CONVERGENCE, time)
+
+    def _from(self, states: list[float], time: float, step: float) -> np.ndarray:
+        self.set_states(states)
+        return self._single(time, step)
 
     def _single(self, time: float, step: float) -> np.ndarray:
         """One backward-Euler step of a given length that ends at a time."""
         self.saved[0], self.saved[1] = time - step, step
-        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, 1.0, 1.0, 1.0, 1e-6)
+        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, 1.0, 1.0, 1.0, 1e-6, math.inf)
         if self.saved[0] == time:
             raise Interrupted(Reason.NO_CONVERGENCE, time)
         written = self._call(controls)
@@ -226,6 +234,7 @@ class Engine:
             self._current_floor(),
             30.0 * stepping.tolerance,
             min(1e-2, math.sqrt(0.3 * stepping.tolerance)),
+            stepping.kink,
         )
         chunks = []
         while True:

@@ -14,8 +14,12 @@ from simcore.face import Design, Result
 DIODE = "saturation_current = 1 nA, ideality_factor = 1.8, temperature = 300.15 K"
 """The exponential diode of most rows: I_S = 1 nA, n = 1.8 at 300.15 K."""
 
-SHARP = "saturation_current = 1e-3 nA, ideality_factor = 0.1, temperature = 300.15 K"
-"""Nearly ideal: 1 pA, n = 0.1 drops 71 mV at 1 A (0.1 is the smallest factor the language takes)."""
+SHARP = "saturation_current = 1 pA, ideality_factor = 0.01, temperature = 300.15 K"
+"""Nearly ideal: 1 pA, n = 0.01 drops 7 mV at 1 A."""
+
+
+STEEP = "saturation_current = 1 pA, ideality_factor = 0.2, temperature = 300.15 K"
+"""Steep, yet quick to solve: some 0.1 V at the currents of a multiplier."""
 
 
 @dataclass
