@@ -120,13 +120,13 @@ class _Proof:
         return _Level(*Course(study, self.variant, before, tolerance, self.kernels).solve())
 
     def _excess(self, study: PlannedStudy, coarse: Solution, fine: Solution) -> float:
-        """The worst bound over what the accuracy allows, of the figures required of the study, else of its signals'."""
+        """The worst bound over what the accuracy allows, of the figures required of the study, else of what is
+        observed; with neither, nothing asks for accuracy."""
         records = ({study.name: Record(coarse)}, {study.name: Record(fine)})
         mine = [requirement for requirement in self.circuit.requirements if requirement.study == study.name]
         asked = [requirement.figure for requirement in mine if requirement.figure is not None]
-        if asked:
-            figures = [bounded(*(figure_of(part, study.name, record) for record in records)) for part in asked]
-        else:
+        figures = [bounded(*(figure_of(part, study.name, record) for record in records)) for part in asked]
+        if not asked and self.circuit.observes:
             rows = signal_rows(records[1][study.name], records[0][study.name])
             figures = [figure for row in rows for figure in row.figures.values()]
         floors = _floors(fine)

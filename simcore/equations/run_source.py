@@ -41,8 +41,8 @@ CONTROLS = (
 DONE, FULL, NO_CONVERGENCE = 0, 1, 2
 _WEAK_PIVOT = 1e-10
 BLOCKED, PATIENCE = 0.01, 8
-"""Agreement, over the law's scale, of a branch that blocks, and the iterations after which the scale itself will do:
-the rounding of the large voltages around such a branch is all that moves it, and it errs by less than a leakage."""
+"""Agreement, over the law's scale, of a branch that blocks, and the iterations after which any will do: the rounding of
+the large voltages around such a branch is all that moves it, and while it blocks it errs by less than its leakage."""
 
 
 def watched_columns(system: System) -> list[int]:
@@ -220,7 +220,7 @@ class RunSource:
         add(4, "if division > 1:")
         self._each(5, junctions, "n# += a# / division")
         add(4, "count = 0", "while True:", "    count += 1")
-        add(5, f"slack = {BLOCKED!r} if count <= {PATIENCE} else 1.0")
+        add(5, f"slack = {BLOCKED!r} if count <= {PATIENCE} else 1e9")
         self._each(5, junctions, "v# = n#")
         add(5, *self.emitter.lines["iteration"], "good = True")
         for index, junction in enumerate(self.system.junctions):

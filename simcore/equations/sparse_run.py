@@ -159,7 +159,7 @@ class _Attempt:
         """The convergence test and the limiting of run_source, on arrays."""
         step, off = n - v, -6.0 * self.scale
         close = np.abs(step) <= self.c["agreement"] * self.scale
-        slack = BLOCKED if count <= PATIENCE else 1.0
+        slack = BLOCKED if count <= PATIENCE else np.inf
         blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale)
         moving = ~(close | ((n < off) & (v < off)) | blocked)
         limit = moving & (n > self.critical) & (step > 0.0)

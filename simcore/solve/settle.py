@@ -174,8 +174,10 @@ def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
 
 
 def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
-    """The least-squares solution of least size: what no equation fixes stays as it is."""
-    return np.linalg.lstsq(matrix, right, rcond=1e-10)[0]
+    """The least-squares solution of least size: what no equation fixes (a multiplier of 1) stays as it is."""
+    left, sizes, across = np.linalg.svd(matrix)
+    shares = np.where(sizes > _FREE, left.T @ right / np.where(sizes > _FREE, sizes, 1.0), 0.0)
+    return across.T @ shares
 
 
 def _described(way: _Map, scaled: np.ndarray) -> Settled | None:
