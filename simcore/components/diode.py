@@ -1,22 +1,15 @@
-"""A junction diode: the exponential law at its temperature, behind a series resistance.
+"""A junction diode: what its data sheet may say of it, and the rules between that.
 
 Knows its keys and the rules between them, and nothing of text, graphs or solvers.
 """
 
 from __future__ import annotations
 
-import math
-
 from grammar.quantities import AMPERE, COULOMB, FARAD, I2T, KELVIN, KELVIN_PER_WATT, NONE, OHM, SECOND, VOLT
+from simcore.components.forward_fit import NoLaw
 from simcore.components.frame import Frame, Part
+from simcore.components.junction import Junction, describe, law_of
 from simcore.components.kind import Key, Kind
-from simcore.equations.values import Value, exp, log
-
-BOLTZMANN_OVER_CHARGE = 1.380649e-23 / 1.602176634e-19
-"""k / q in V/K (SI, exact since 2019)."""
-
-LEAK = 1e-12
-"""Conductance in S across every junction, so that a node between blocked diodes stays defined."""
 
 _FORWARD = (
     Key(
@@ -27,7 +20,6 @@ _FORWARD = (
         at=AMPERE,
         low=0.0,
         open_low=True,
-        available=False,
     ),
     Key("saturation_current", "saturation current of the law", AMPERE, low=0.0, open_low=True),
     Key("ideality_factor", "ideality factor of the law", NONE, low=0.01, high=20.0),
@@ -43,9 +35,18 @@ _REVERSE = (
         at=VOLT,
         low=0.0,
         open_low=True,
-        available=False,
     ),
-    Key("breakdown_voltage", "reverse voltage of breakdown", VOLT, low=0.0, open_low=True, available=False),
+    Key(
+        "breakdown_voltage",
+        "reverse voltage of breakdown, with the current it holds at (else 1 mA)",
+        VOLT,
+        form="point",
+        at=AMPERE,
+        low=0.0,
+        open_low=True,
+        bare=True,
+    ),
+    Key("breakdown_resistance", "slope of the reverse curve in breakdown", OHM, default=0.0, low=0.0),
     Key(
         "junction_capacitance",
         "junction capacitance at a reverse voltage",
@@ -53,10 +54,9 @@ _REVERSE = (
         form="point",
         at=VOLT,
         low=0.0,
-        available=False,
     ),
-    Key("built_in_voltage", "built-in voltage of the junction", VOLT, low=0.0, open_low=True, available=False),
-    Key("capacitance_exponent", "exponent of the capacitance law", NONE, low=0.0, high=1.0, available=False),
+    Key("built_in_voltage", "built-in voltage of the junction", VOLT, default=0.7, low=0.0, open_low=True),
+    Key("capacitance_exponent", "exponent of the capacitance law", NONE, default=0.5, low=0.05, high=0.95),
     Key(
         "recovery_charge",
         "charge swept out when a current is commutated",
@@ -64,13 +64,12 @@ _REVERSE = (
         form="point",
         at=AMPERE,
         low=0.0,
-        available=False,
     ),
-    Key("carrier_lifetime", "lifetime of the stored carriers", SECOND, low=0.0, open_low=True, available=False),
+    Key("carrier_lifetime", "lifetime of the stored carriers", SECOND, low=0.0, open_low=True),
 )
 
 _THERMAL = (
-    Key("thermal_resistance", "thermal resistance from junction to ambient", KELVIN_PER_WATT, low=0.0, available=False),
+    Key("thermal_resistance", "thermal resistance from junction to ambient", KELVIN_PER_WATT, low=0.0),
     Key(
         "data_temperature",
         "temperature at which its values hold; else the temperature written beside them, else 25 degC",
@@ -98,60 +97,58 @@ _RATINGS = (
     Key("rated_junction_temperature", "junction temperature it stands", KELVIN, low=0.0, open_low=True, rating=True),
 )
 
+_ABOVE = ("reverse_leakage", "recovery_charge", "breakdown_voltage")
+"""Points whose @ value may not be zero."""
+
 DIODE_KEYS = _FORWARD + _REVERSE + _THERMAL + _ARRAY + _RATINGS
 
 
 def check_law(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
-    """A law must be given in full: none is assumed."""
+    """A law must be given in full, and once: none is assumed."""
     law = ("saturation_current", "ideality_factor")
-    if "forward" in given or all(key in given for key in law):
-        return []
+    if "forward" in given:
+        return _check_forward(given)
+    faults = _check_points(given)
+    if all(key in given for key in law):
+        return faults
     for key, other in (law, law[::-1]):
         if key in given:
-            return [(key, f"{key} is given without {other}", f"Add `{other}`: the law needs both.")]
-    cure = (
-        "Name a data sheet in the value's place, or give `saturation_current` and `ideality_factor`: no law is assumed."
-    )
-    return [(None, "it has no law", cure)]
+            return [(key, f"{key} is given without {other}", f"Add `{other}`: the law needs both."), *faults]
+    cure = "Name a data sheet in the value's place, or give `forward`, or `saturation_current` and `ideality_factor`."
+    return [(None, "it has no law", f"{cure} No law is assumed."), *faults]
 
 
-def saturation_current(frame: Frame, part: Part) -> Value:
-    """Saturation current at the temperature the diode runs at.
+def _check_forward(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    if "saturation_current" in given:
+        what = "saturation_current is given beside the forward points"
+        return [("saturation_current", what, "Its law is fitted to the points: leave one of the two out.")]
+    points = given["forward"]
+    if not isinstance(points, tuple):
+        return []
+    if any(current <= 0.0 for _, current in points):
+        return [("forward", "a forward point has no current above zero", "Write the points as V @ A: `0.7 V @ 10 mA`.")]
+    try:
+        law_of(given)
+    except NoLaw as fault:
+        return [("forward", str(fault), fault.cure)]
+    return _check_points(given)
 
-    I_S(T) = I_S(T_0) (T/T_0)^(r/n) exp[(E_g/(n k)) (1/T_0 - 1/T)], from n_i^2 ~ T^3 exp(-E_g/kT).
-    Source: Sze, Ng, Physics of Semiconductor Devices, 2007 (from memory); the exponents are divided by the ideality
-    factor.
-    """
-    hot, cold = part.temperature(), part.given("data_temperature")
-    current = part.value("saturation_current")
-    if hot == cold:
-        return current
-    ratio = frame.parameter(hot / cold, positive=True)
-    energy = frame.parameter(part.given("bandgap") / BOLTZMANN_OVER_CHARGE * (1.0 / cold - 1.0 / hot))
-    exponent = part.value("temperature_exponent") * log(ratio) + energy
-    return current * exp(exponent / part.value("ideality_factor"))
+
+def _check_points(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    """What stands behind an @ must be above zero, and one effect be given once."""
+    faults: list[tuple[str | None, str, str]] = []
+    for key in (*_ABOVE, "junction_capacitance"):
+        point = given.get(key)
+        if isinstance(point, tuple) and point[1] is not None and (point[1] < 0.0 or key in _ABOVE and point[1] == 0.0):
+            faults.append((key, f"{key} holds at nothing above zero", "Write what it holds at behind the @."))
+    if "recovery_charge" in given and "carrier_lifetime" in given:
+        cure = "The lifetime follows from the charge: leave one of the two out."
+        faults.append(("carrier_lifetime", "carrier_lifetime is given beside recovery_charge", cure))
+    return faults
 
 
 def _build(frame: Frame, part: Part) -> None:
-    """i = I_S (exp(v/(n V_T)) - 1) at the junction, V_T = k T/q (Shockley, Bell System Technical Journal 28, 1949)."""
-    port = part.ports[0]
-    series, parallel = part.value("in_series"), part.value("in_parallel")
-    thermal = frame.parameter(BOLTZMANN_OVER_CHARGE * part.temperature(), positive=True)
-    scale = part.value("ideality_factor") * thermal * series
-    saturation = saturation_current(frame, part) * parallel
-    resistance = part.value("series_resistance") * series / parallel
-    junction = part.across(port)
-    if resistance.constant != 0.0:
-        inner = f"{part.name}.inner"
-        frame.series(part, {port.a: 1.0, inner: -1.0}, resistance=resistance)
-        junction = {inner: 1.0, port.b: -1.0}
-    frame.nonlinear(
-        part,
-        junction,
-        lambda voltage: saturation * (exp(voltage / scale) - 1.0) + LEAK * voltage,
-        scale=scale,
-        critical=scale * log(1.0 + scale / (math.sqrt(2.0) * saturation)),
-    )
+    Junction(frame, part).stamp()
 
 
 DIODE = Kind(
@@ -161,4 +158,5 @@ DIODE = Kind(
     DIODE_KEYS,
     check=check_law,
     build=_build,
+    describe=describe,
 )

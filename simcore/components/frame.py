@@ -18,6 +18,8 @@ from simcore.design.circuit import Element, Port
 from simcore.equations.values import Graph, Level, Value, sin
 
 Weights = tuple[tuple[Hashable, Value], ...]
+UNLIMITED = 1e30
+"""Critical voltage (V) of a law that is not steep."""
 
 
 @dataclass(frozen=True)
@@ -49,8 +51,23 @@ class CurrentBranch:
 
 
 @dataclass(frozen=True)
+class Carried:
+    """What a nonlinear branch carries from step to step, such as a charge (C), a flux (V s) or a temperature (K).
+
+    initial: at the start of a transient; before: the input of its value before a step; after: its value after it, an
+    expression of the branch's variable; small: the size of it that needs no accuracy
+    """
+
+    quantity: str
+    initial: Value
+    before: Value
+    after: Value
+    small: Value
+
+
+@dataclass(frozen=True)
 class NonlinearBranch:
-    """i = current, an expression of the input `variable`, the branch voltage that is iterated on.
+    """i = current, an expression of the input `variable`, the branch voltage less the offset, that is iterated on.
 
     scale: voltage over which the law changes by a factor e (V); critical: voltage above which steps are limited (V)
     """
@@ -58,10 +75,12 @@ class NonlinearBranch:
     element: str
     port: str
     weights: Weights
+    offset: Value
     variable: Value
     current: Value
     scale: Value
     critical: Value
+    carried: Carried | None
 
 
 Branch = SeriesBranch | CurrentBranch | NonlinearBranch
@@ -91,6 +110,9 @@ class Frame:
         self.moment = moment
         self.graph = Graph()
         self.time = self.graph.input("t", Level.TIME)
+        self.step = self.graph.input("h", Level.STEP, positive=True)
+        self.small_voltage = self.graph.input("floor_voltage", Level.VARIANT, positive=True)
+        self.small_current = self.graph.input("floor_current", Level.VARIANT, positive=True)
         self.sines: list[tuple[float, float]] = []
         self.branches: list[Branch] = []
         self.numbers: list[float] = []
@@ -143,14 +165,56 @@ class Frame:
         law: Callable[[Value], Value],
         *,
         scale: Value,
-        critical: Value,
+        critical: Value | float = UNLIMITED,
+        offset: Value | float = 0.0,
         port: str = "",
     ) -> None:
-        """Add a branch whose current is law(branch voltage)."""
+        """Add a branch whose current is law(branch voltage - offset)."""
+        variable = self._variable()
+        self._nonlinear(part, port, weights, offset, variable, law(variable), scale, critical, None)
+
+    def carrying(
+        self,
+        part: Part,
+        weights: Mapping[Hashable, Value | float],
+        law: Callable[[Value, Value], tuple[Value, Value]],
+        *,
+        quantity: str,
+        small: Value,
+        initial: Value | float = 0.0,
+        scale: Value,
+        critical: Value | float = UNLIMITED,
+        port: str = "",
+    ) -> None:
+        """Add a branch that carries a quantity: law(branch voltage, quantity before the step) gives its current and the
+        quantity after the step (see Carried)."""
+        count = sum(isinstance(branch, NonlinearBranch) and branch.carried is not None for branch in self.branches)
+        before, variable = self.graph.input(f"y{count}", Level.TIME), self._variable()
+        current, after = law(variable, before)
+        carried = Carried(quantity, self.graph.lift(initial), before, after, small)
+        self._nonlinear(part, port, weights, 0.0, variable, current, scale, critical, carried)
+
+    def _variable(self) -> Value:
         count = sum(isinstance(branch, NonlinearBranch) for branch in self.branches)
-        variable = self.graph.input(f"v{count}", Level.ITERATION)
+        return self.graph.input(f"v{count}", Level.ITERATION)
+
+    def _nonlinear(
+        self,
+        part: Part,
+        port: str,
+        weights: Mapping[Hashable, Value | float],
+        offset: Value | float,
+        variable: Value,
+        current: Value,
+        scale: Value,
+        critical: Value | float,
+        carried: Carried | None,
+    ) -> None:
+        lift = self.graph.lift
         self.branches.append(
-            NonlinearBranch(part.name, port, self._weights(weights), variable, law(variable), scale, critical)
+            NonlinearBranch(
+                part.name, port, self._weights(weights), lift(offset), variable, current, scale, lift(critical), carried
+            )
         )
 
     def sine(self, frequency: float, phase: float) -> Value:
@@ -189,6 +253,8 @@ def _plain(field: Any) -> Any:
         return field.index
     if isinstance(field, tuple):
         return tuple(_plain(item) for item in field)
+    if isinstance(field, Carried):
+        return tuple(_plain(getattr(field, name)) for name in Carried.__dataclass_fields__)
     return field
 
 
@@ -207,6 +273,11 @@ class Part:
         """The value of a key as the circuit holds it, else the kind's default, else None."""
         value = self._element.given.get(key)
         return self._kind.key[key].default if value is None else value
+
+    @property
+    def everything(self) -> dict[str, Any]:
+        """All keys as the circuit holds them, without defaults."""
+        return self._element.given
 
     @property
     def unit(self) -> str:

@@ -131,7 +131,12 @@ def _values(element: Element) -> list[str]:
         f"{key.name} = {value_text(key, element.given[key.name], element.unit)}"
         for key in keys
         if not (element.sheet and key.rating)
-    ]
+    ] + _worked_out(element)
+
+
+def _worked_out(element: Element) -> list[str]:
+    describe = KINDS[element.kind].describe
+    return [] if describe is None else describe(element.given)
 
 
 def value_text(key: Key, value: Any, unit: str = "") -> str:

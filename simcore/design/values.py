@@ -132,7 +132,8 @@ class Reader:
 
     def _law_temperature(self, written: dict[str, Setting], place: Place, found: Values) -> None:
         """A law holds at the temperature written beside it, which can't be so where that varies."""
-        if "saturation_current" not in written or "temperature" not in written or "data_temperature" in written:
+        law = "saturation_current" in written or "forward" in written
+        if not law or "temperature" not in written or "data_temperature" in written:
             return
         value = written["temperature"].value
         let = self.scope.varied(value, place) if isinstance(value, EXPRESSIONS) else None

@@ -10,33 +10,46 @@ from collections.abc import Hashable, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 
-from simcore.components.frame import Branch, CurrentBranch, Frame, NonlinearBranch, SeriesBranch
+from simcore.components.frame import Branch, Carried, CurrentBranch, Frame, NonlinearBranch, SeriesBranch
 from simcore.equations.eliminate import Elimination, Guard
 from simcore.equations.reduce import Form, Reduction, forces_voltage
 from simcore.equations.values import Level, Value, changes, derivative
 
+RECORDED = ("temperature",)
+"""Carried quantities that a run records beside voltages and currents."""
+
+CARRYING = 0.03
+"""Agreement of a branch that carries a quantity, over that of one that does not."""
+
 
 @dataclass(frozen=True)
 class State:
-    """What a branch carries from step to step: its "current" or its "voltage". before: the input of its value
-    before."""
+    """What a branch carries from step to step: its "current", its "voltage" or what a nonlinear branch says.
+
+    before: the input of its value before; small: the size of it that needs no accuracy
+    """
 
     branch: int
     quantity: str
     initial: Value
     before: Value
     new: Value
+    small: Value
 
 
 @dataclass(frozen=True)
 class Junction:
-    """A nonlinear branch's Newton iterate: the voltage put in, and the one that the linearised circuit gives back."""
+    """A nonlinear branch's Newton iterate: the voltage put in, and the one that the linearised circuit gives back.
+
+    agreement: share of the usual agreement that the two need; what is left of it in a charge is a current over a step
+    """
 
     branch: int
     variable: Value
     new: Value
     scale: Value
     critical: Value
+    agreement: float = 1.0
 
 
 @dataclass(frozen=True)
@@ -89,11 +102,12 @@ def assemble(frame: Frame, references: Sequence[Hashable], eliminate: bool = Tru
 class _Assembly:
     def __init__(self, frame: Frame, references: Sequence[Hashable], eliminate: bool):
         self.graph = frame.graph
-        self.step = self.graph.input("h", Level.STEP, positive=True)
+        self.step = frame.step
         self.rate = 1.0 / self.step
         reduction = Reduction(self.graph, frame.branches, references)
         self.system = System(frame, reduction)
         self._histories: dict[tuple[int, str], Value] = {}
+        self._carried: list[State] = []
         companions = [self._companion(index, branch) for index, branch in enumerate(frame.branches)]
         self.system.companions = [companion for companion in companions if companion is not None]
         solution = self._eliminated() if eliminate else self._inputs()
@@ -102,6 +116,7 @@ class _Assembly:
             companion = companions[index]
             if companion is not None and not isinstance(branch, CurrentBranch):
                 self._results(index, branch, companion, solution)
+        self.system.states[:0] = self._carried
 
     def _eliminated(self) -> dict[Hashable, Value]:
         elimination = Elimination(self.graph, list(self.system.reduction.free))
@@ -123,7 +138,8 @@ class _Assembly:
             return Companion(form, self.graph.zero, branch.current)
         if isinstance(branch, NonlinearBranch):
             slope = derivative(branch.current, branch.variable)
-            return Companion(form, slope, branch.current - slope * branch.variable + slope * form.known)
+            behind = branch.current - slope * branch.variable + slope * (form.known - branch.offset)
+            return Companion(form, slope, behind)
         return self._series(index, branch, form)
 
     def _series(self, index: int, branch: SeriesBranch, form: Form) -> Companion:
@@ -148,7 +164,8 @@ class _Assembly:
     def _history(self, branch: int, quantity: str) -> Value:
         key = (branch, quantity)
         if key not in self._histories:
-            self._histories[key] = self.graph.input(f"y{len(self._histories)}", Level.TIME)
+            first = sum(isinstance(b, NonlinearBranch) and b.carried is not None for b in self.system.frame.branches)
+            self._histories[key] = self.graph.input(f"y{first + len(self._histories)}", Level.TIME)
         return self._histories[key]
 
     def _results(self, index: int, branch: Branch, companion: Companion, solution: dict[Hashable, Value]) -> None:
@@ -156,22 +173,38 @@ class _Assembly:
         voltage = self.graph.total(terms)
         current = companion.conductance * voltage + companion.offset
         if isinstance(branch, NonlinearBranch):
-            new = voltage + companion.form.known
-            self.system.junctions.append(Junction(index, branch.variable, new, branch.scale, branch.critical))
+            new = voltage + companion.form.known - branch.offset
+            agreement = 1.0 if branch.carried is None else CARRYING
+            self.system.junctions.append(
+                Junction(index, branch.variable, new, branch.scale, branch.critical, agreement)
+            )
+            if branch.carried is not None:
+                self._carry(index, branch.carried, branch.variable, new)
         elif isinstance(branch, SeriesBranch):
             self._states(index, branch, voltage + companion.form.known, current)
         if not is_resistor(branch):
             self.system.columns.append(Column(None, index, current))
 
+    def _carry(self, index: int, carried: Carried, variable: Value, new: Value) -> None:
+        """The carried quantity by the same straight line as the current, so that nothing of it is lost or made."""
+        after = carried.after + derivative(carried.after, variable) * (new - variable)
+        state = State(index, carried.quantity, carried.initial, carried.before, after, carried.small)
+        self._carried.append(state)
+        if carried.quantity in RECORDED:
+            element = self.system.frame.branches[index].element
+            self.system.columns.append(Column((element, carried.quantity), None, after))
+
     def _states(self, index: int, branch: SeriesBranch, voltage: Value, current: Value) -> None:
         if (index, "current") in self._histories:
             before = self._history(index, "current")
-            self.system.states.append(State(index, "current", branch.initial_current, before, current))
+            small = self.system.frame.small_current
+            self.system.states.append(State(index, "current", branch.initial_current, before, current, small))
         if branch.capacitance is not None:
             alone = branch.resistance.constant == 0.0 and branch.inductance.constant == 0.0
             before = self._history(index, "voltage")
             new = voltage - branch.source if alone else before + self.step / branch.capacitance * current
-            self.system.states.append(State(index, "voltage", branch.initial_voltage, before, new))
+            small = self.system.frame.small_voltage
+            self.system.states.append(State(index, "voltage", branch.initial_voltage, before, new, small))
 
 
 def is_resistor(branch: Branch) -> bool:

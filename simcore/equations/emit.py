@@ -66,6 +66,8 @@ class Emitter:
             return f"{value.operation}({texts[0]})", depth
         if value.operation == "neg":
             return f"-{texts[0]}", depth
+        if value.operation == "where":
+            return f"{texts[1]} if {texts[0]} > 0.0 else {texts[2]}", depth
         return f"{texts[0]} {value.operation} {texts[1]}", depth
 
     def name(self, value: Value) -> str:

@@ -40,4 +40,6 @@ def _compute(node: Value, known: dict[int, Any], inputs: Mapping[str, Any]) -> A
             return arguments[0] / arguments[1]
         case "neg":
             return -arguments[0]
+        case "where":
+            return np.where(arguments[0] > 0.0, arguments[1], arguments[2])
     return _FUNCTIONS[node.operation](arguments[0])

@@ -18,6 +18,7 @@ states: the derivative of the states by those at the start, direction by directi
 
 from __future__ import annotations
 
+from simcore.components.frame import NonlinearBranch
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
 from simcore.equations.values import Value
@@ -46,9 +47,10 @@ the large voltages around such a branch is all that moves it, and while it block
 
 
 def watched_columns(system: System) -> list[int]:
-    """Positions of the columns whose curvature bounds the step, besides the states: the nonlinear branches'
-    currents."""
-    branches = [junction.branch for junction in system.junctions]
+    """Positions of the columns whose curvature bounds the step, besides the states: the currents of the nonlinear
+    branches but those that carry a quantity, whose current follows from a state that is watched as it is."""
+    nonlinear = [(junction.branch, system.frame.branches[junction.branch]) for junction in system.junctions]
+    branches = [index for index, branch in nonlinear if isinstance(branch, NonlinearBranch) and branch.carried is None]
     return [index for index, column in enumerate(system.columns) if column.branch in branches]
 
 
@@ -83,6 +85,7 @@ class RunSource:
     def _stages(self) -> dict[str, list[Value]]:
         system = self.system
         fixed = [value for j in system.junctions for value in (j.scale, j.critical)]
+        fixed += [state.small for state in system.states]
         after = [state.new for state in system.states] + [column.value for column in system.columns]
         after += [value for guard in system.guards for value in (guard.pivot, guard.start)]
         return {
@@ -125,7 +128,7 @@ class RunSource:
                 1,
                 f"w{index} = {scale}",
                 f"k{index} = {critical}",
-                f"b{index} = {scale} * agreement",
+                f"b{index} = {scale} * agreement * {junction.agreement!r}",
             )
             add(1, f"o{index} = {scale} * -6.0", f"g{index} = {critical} - 3.0 * {scale}")
         add(1, "now = s[0]", "wish = s[1]")
@@ -273,7 +276,7 @@ class RunSource:
         add(3, "rejected += 1", "wish = kink_size", "continue")
         add(2, "error = 0.0")
         for index, state in enumerate(self.system.states):
-            floor = f"floor_{state.quantity}"
+            floor = self.emitter.name(state.small)
             add(2, f"r = abs(miss1 * e1_{index} + miss2 * e2_{index} + miss3 * e3_{index}) / max(i{index}, {floor})")
             add(2, "if not r <= error:", "    error = r")
         add(2, "error /= tolerance")

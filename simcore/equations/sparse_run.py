@@ -48,7 +48,6 @@ class SparseRun:
         results += [state.new for state in system.states] + [column.value for column in system.columns]
         arguments["s"] = len(system.reduction.free)
         self._results = compile_source(function_source("results", arguments, results), "results")
-        self._currents = np.array([state.quantity == "current" for state in system.states], dtype=bool)
 
     def __call__(self, p: list[float], s: list[float], out: list[float], c: tuple[float, ...]) -> tuple[int, ...]:
         return _Attempt(self, p, s, out, dict(zip(CONTROLS, c, strict=True))).go()
@@ -67,7 +66,11 @@ class _Attempt:
         fixed = [value for junction in run._system.junctions for value in (junction.scale, junction.critical)]
         numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 2)
         self.scale, self.critical = numbers[:, 0], numbers[:, 1]
+        self.shares = np.array([junction.agreement for junction in run._system.junctions])
         self.on = self.critical - 3.0 * self.scale
+        inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
+        small = [state.small for state in run._system.states]
+        self.floors = np.array([float(value) for value in evaluate(small, inputs)])
         self.incidence = self._incidence(inputs)
         self.position = self.steps = self.rejected = self.solves = self.iterations = self.failures = 0
         self.now, self.wish, self.landing = s[0], s[1], False
@@ -158,7 +161,7 @@ class _Attempt:
     def _limited(self, v: np.ndarray, n: np.ndarray, count: int) -> tuple[np.ndarray, bool]:
         """The convergence test and the limiting of run_source, on arrays."""
         step, off = n - v, -6.0 * self.scale
-        close = np.abs(step) <= self.c["agreement"] * self.scale
+        close = np.abs(step) <= self.c["agreement"] * self.shares * self.scale
         slack = BLOCKED if count <= PATIENCE else np.inf
         blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale)
         moving = ~(close | ((n < off) & (v < off)) | blocked)
@@ -187,9 +190,8 @@ class _Attempt:
             self.rejected += 1
             self.wish = self.c["kink_size"]
             return False
-        floors = np.where(self.run._currents, self.c["floor_current"], self.c["floor_voltage"])
         difference = _combine(_ERRORS[order], [states for states, _, _ in found])
-        errors = np.abs(difference) / np.maximum(self.peaks, floors) / self.c["tolerance"]
+        errors = np.abs(difference) / np.maximum(self.peaks, self.floors) / self.c["tolerance"]
         if order == 3:
             scale = np.maximum(self.watched_peaks, self.c["floor_current"]) * self.c["watch_tolerance"]
             errors = np.concatenate([errors, self._bend(found) / scale])

@@ -172,12 +172,30 @@ class Graph:
     def call(self, function: str, a: Value) -> Value:
         return self._apply(function, (a,), function == "exp" or (function == "sqrt" and a.positive))
 
+    def choose(self, decides: Value, a: Value, b: Value) -> Value:
+        """a where `decides` is above zero, else b; both are computed, so neither may fail where it is not chosen."""
+        if decides.constant is not None or a is b:
+            return a if a is b or decides.arguments[0] > 0.0 else b
+        level = max(decides.level, a.level, b.level)
+        return self._make("where", (decides, a, b), level, a.positive and b.positive)
+
     def total(self, terms: list[Value]) -> Value:
         """Sum of terms, slow levels first, so that a partial sum is computed as seldom as its inputs change."""
         result = self.zero
         for term in sorted(terms, key=lambda value: value.level):
             result = self.add(result, term)
         return result
+
+
+def where(decides: Value, a: Value | float, b: Value | float) -> Value:
+    """a where `decides` is above zero, else b."""
+    graph = decides.graph
+    return graph.choose(decides, graph.lift(a), graph.lift(b))
+
+
+def larger(a: Value, b: Value | float) -> Value:
+    """The larger of two."""
+    return where(a - b, a, b)
 
 
 def exp(a: Value) -> Value:
@@ -240,6 +258,8 @@ def _slope(node: Value, slopes: dict[int, Value]) -> Value:
             return cos(arguments[0]) * inner
         case "cos":
             return -(sin(arguments[0]) * inner)
+        case "where":
+            return where(arguments[0], slopes[arguments[1].index], slopes[arguments[2].index])
     raise ValueError(f"no derivative is known for {node.operation}")
 
 

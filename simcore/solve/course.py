@@ -123,14 +123,15 @@ class Course:
         engine.saved[0] = start
         stepping = self._stepping(frame, self.study.duration)
         recorded = self._guard(lambda: engine.advance(end, stepping, record=True), start)
-        self._forget_currents(memory)
+        self._forget(memory)
         engine.remember(memory)
         return recorded
 
     @staticmethod
-    def _forget_currents(memory: Memory) -> None:
-        """An inductor that is taken out carries nothing when it is put back; a capacitor keeps its charge."""
-        for key in [key for key in memory if key[2] == "current"]:
+    def _forget(memory: Memory) -> None:
+        """An inductor that is taken out carries nothing when it is put back, nor does a junction; a capacitor keeps its
+        charge."""
+        for key in [key for key in memory if key[2] in ("current", "flux", "charge")]:
             del memory[key]
 
     def _next_change(self, circuit: Circuit, moment: float, now: float, events: list[tuple[float, Change]]) -> float:
