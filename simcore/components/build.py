@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from simcore.components import KINDS
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import Frame
+from simcore.components.part import Part
 from simcore.design.circuit import Circuit
 
 

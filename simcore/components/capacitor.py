@@ -6,8 +6,9 @@ Knows its keys, and nothing of text, graphs or solvers.
 from __future__ import annotations
 
 from grammar.quantities import AMPERE, FARAD, HENRY, HERTZ, KELVIN, OHM, VOLT
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
+from simcore.components.part import Part
 
 
 def _build(frame: Frame, part: Part) -> None:

@@ -7,9 +7,10 @@ from __future__ import annotations
 
 from grammar.quantities import AMPERE, COULOMB, FARAD, I2T, KELVIN, KELVIN_PER_WATT, NONE, OHM, SECOND, VOLT
 from simcore.components.forward_fit import NoLaw
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import Frame
 from simcore.components.junction import Junction, describe, law_of
 from simcore.components.kind import Key, Kind
+from simcore.components.part import Part
 
 _FORWARD = (
     Key(

@@ -10,12 +10,15 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Hashable, Mapping, Sequence
-from dataclasses import dataclass
-from typing import Any
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Any
 
-from simcore.components.kind import Kind
-from simcore.design.circuit import Element, Port
-from simcore.equations.values import Graph, Level, Value, sin
+from simcore.design.sensing import SensedTerm
+from simcore.equations.values import Graph, Level, Value, sin, where
+
+if TYPE_CHECKING:
+    from simcore.components.part import Part
+    from simcore.design.circuit import Port
 
 Weights = tuple[tuple[Hashable, Value], ...]
 UNLIMITED = 1e30
@@ -55,7 +58,8 @@ class Carried:
     """What a nonlinear branch carries from step to step, such as a charge (C), a flux (V s) or a temperature (K).
 
     initial: at the start of a transient; before: the input of its value before a step; after: its value after it, an
-    expression of the branch's variable; small: the size of it that needs no accuracy
+    expression of the branch's variable; small: the size of it that needs no accuracy; shown: what of it a solution
+    records, such as its "temperature" (K) or its "energy" (J)
     """
 
     quantity: str
@@ -63,13 +67,15 @@ class Carried:
     before: Value
     after: Value
     small: Value
+    shown: tuple[tuple[str, Value], ...]
 
 
 @dataclass(frozen=True)
 class NonlinearBranch:
     """i = current, an expression of the input `variable`, the branch voltage less the offset, that is iterated on.
 
-    scale: voltage over which the law changes by a factor e (V); critical: voltage above which steps are limited (V)
+    scale: voltage over which the law changes by a factor e (V); critical: voltage above which steps are limited (V);
+    straight: above zero while the law is a straight line, so that nothing is left to iterate
     """
 
     element: str
@@ -80,10 +86,12 @@ class NonlinearBranch:
     current: Value
     scale: Value
     critical: Value
+    straight: Value
     carried: Carried | None
 
 
 Branch = SeriesBranch | CurrentBranch | NonlinearBranch
+_KINDS_OF_BRANCH = (SeriesBranch, CurrentBranch, NonlinearBranch)
 
 
 @dataclass(frozen=True)
@@ -99,6 +107,55 @@ class Waveform:
     period: float | None
     base: int
     slope: int
+
+
+@dataclass(frozen=True)
+class Flag:
+    """A number that is 1 or 0 and that thresholds change during a run; position: in the parameter list."""
+
+    element: str
+    name: str
+    position: int
+    value: Value
+
+    def choose(self, up: Value | float, down: Value | float) -> Value:
+        """One value while the flag is 1, another while it is 0."""
+        return where(self.value - 0.5, up, down)
+
+
+@dataclass(frozen=True)
+class Sensed:
+    """A term of a threshold's signal: factor times the voltage by weights (V), what a branch carries, or the current
+    into an element's port at its node (A)."""
+
+    factor: float
+    weights: Weights = ()
+    branch: int = -1
+    element: str = ""
+    port: str = ""
+    node: str = ""
+
+    def times(self, factor: float) -> Sensed:
+        """The term multiplied."""
+        return replace(self, factor=self.factor * factor)
+
+
+@dataclass(frozen=True)
+class Threshold:
+    """Flags change when the sum of the terms passes the level upwards while other flags stand as said.
+
+    armed, sets: (flag, value); delay: in s from there; turns: further delay in periods of the first sine; tells: what
+    has happened then, for the reader ("" where it is not worth telling)
+    """
+
+    element: str
+    terms: tuple[Sensed, ...]
+    level: Value
+    armed: tuple[tuple[Flag, bool], ...]
+    sets: tuple[tuple[Flag, bool], ...]
+    delay: float
+    turns: float
+    tells: str
 
 
 class Frame:
@@ -117,6 +174,55 @@ class Frame:
         self.branches: list[Branch] = []
         self.numbers: list[float] = []
         self.waveforms: list[Waveform] = []
+        self.flags: list[Flag] = []
+        self.thresholds: list[Threshold] = []
+
+    def flag(self, part: Part, name: str, up: bool) -> Flag:
+        """A flag and where it stands before anything is known of the circuit."""
+        position = len(self.numbers)
+        self.numbers.append(1.0 if up else 0.0)
+        self.flags.append(Flag(part.name, name, position, self.graph.input(f"p{position}", Level.VARIANT)))
+        return self.flags[-1]
+
+    def threshold(
+        self,
+        part: Part,
+        terms: Sequence[Sensed],
+        level: Value | float,
+        *,
+        armed: Sequence[tuple[Flag, bool]],
+        sets: Sequence[tuple[Flag, bool]],
+        delay: float = 0.0,
+        turns: float = 0.0,
+        tells: str = "",
+    ) -> None:
+        """Add a threshold; see Threshold. What it sets must disarm it."""
+        self.thresholds.append(
+            Threshold(part.name, tuple(terms), self.graph.lift(level), tuple(armed), tuple(sets), delay, turns, tells)
+        )
+
+    def sensed_voltage(self, weights: Mapping[Hashable, Value | float], factor: float = 1.0) -> Sensed:
+        """A voltage as a term of a threshold."""
+        return Sensed(factor, weights=self._weights(weights))
+
+    def sensed_port(self, part: Part, port: Port) -> Sensed:
+        """The current into a port as a term of a threshold."""
+        return Sensed(1.0, element=part.name, port=port.name, node=port.a)
+
+    def sensed_quantity(self) -> Sensed:
+        """What the branch added last carries as a term of a threshold."""
+        return Sensed(1.0, branch=len(self.branches) - 1)
+
+    def sense(self, terms: Sequence[SensedTerm]) -> list[Sensed]:
+        """The terms of a signal that a description names."""
+        found = []
+        for term in terms:
+            if term.element:
+                found.append(Sensed(term.factor, element=term.element, port=term.port, node=term.a))
+            else:
+                weights = {term.a: 1.0} if term.b is None else {term.a: 1.0, term.b: -1.0}
+                found.append(self.sensed_voltage(weights, term.factor))
+        return found
 
     def parameter(self, number: float, positive: bool = False) -> Value:
         """A number that may change without a change of the equations' form; zero is a form of its own."""
@@ -166,33 +272,35 @@ class Frame:
         *,
         scale: Value,
         critical: Value | float = UNLIMITED,
+        straight: Value | float = 0.0,
         offset: Value | float = 0.0,
         port: str = "",
     ) -> None:
         """Add a branch whose current is law(branch voltage - offset)."""
         variable = self._variable()
-        self._nonlinear(part, port, weights, offset, variable, law(variable), scale, critical, None)
+        self._nonlinear(part, port, weights, offset, variable, law(variable), (scale, critical, straight), None)
 
     def carrying(
         self,
         part: Part,
         weights: Mapping[Hashable, Value | float],
-        law: Callable[[Value, Value], tuple[Value, Value]],
+        law: Callable[[Value, Value], tuple[Value, Value, dict[str, Value]]],
         *,
         quantity: str,
         small: Value,
         initial: Value | float = 0.0,
         scale: Value,
         critical: Value | float = UNLIMITED,
+        straight: Value | float = 0.0,
         port: str = "",
     ) -> None:
-        """Add a branch that carries a quantity: law(branch voltage, quantity before the step) gives its current and the
-        quantity after the step (see Carried)."""
+        """Add a branch that carries a quantity: law(branch voltage, quantity before the step) gives its current, the
+        quantity after the step and what is shown of it (see Carried)."""
         count = sum(isinstance(branch, NonlinearBranch) and branch.carried is not None for branch in self.branches)
         before, variable = self.graph.input(f"y{count}", Level.TIME), self._variable()
-        current, after = law(variable, before)
-        carried = Carried(quantity, self.graph.lift(initial), before, after, small)
-        self._nonlinear(part, port, weights, 0.0, variable, current, scale, critical, carried)
+        current, after, shown = law(variable, before)
+        carried = Carried(quantity, self.graph.lift(initial), before, after, small, tuple(shown.items()))
+        self._nonlinear(part, port, weights, 0.0, variable, current, (scale, critical, straight), carried)
 
     def _variable(self) -> Value:
         count = sum(isinstance(branch, NonlinearBranch) for branch in self.branches)
@@ -206,14 +314,14 @@ class Frame:
         offset: Value | float,
         variable: Value,
         current: Value,
-        scale: Value,
-        critical: Value | float,
+        manner: tuple[Value | float, Value | float, Value | float],
         carried: Carried | None,
     ) -> None:
         lift = self.graph.lift
+        ends, (scale, critical, straight) = self._weights(weights), (lift(value) for value in manner)
         self.branches.append(
             NonlinearBranch(
-                part.name, port, self._weights(weights), lift(offset), variable, current, scale, lift(critical), carried
+                part.name, port, ends, lift(offset), variable, current, scale, critical, straight, carried
             )
         )
 
@@ -240,71 +348,15 @@ class Frame:
             (value.operation, *(a.index if isinstance(a, Value) else a for a in value.arguments), value.positive)
             for value in self.graph.values
         )
-        return (operations, tuple(_shape(branch) for branch in self.branches))
-
-
-def _shape(branch: Branch) -> tuple:
-    """A branch with its values replaced by their numbers in the graph."""
-    return (type(branch).__name__, *(_plain(getattr(branch, name)) for name in branch.__dataclass_fields__))
+        return (operations, _plain(tuple(self.branches)), _plain(tuple(self.thresholds)))
 
 
 def _plain(field: Any) -> Any:
+    """Branches and thresholds with their values replaced by their numbers in the graph."""
     if isinstance(field, Value):
         return field.index
     if isinstance(field, tuple):
         return tuple(_plain(item) for item in field)
-    if isinstance(field, Carried):
-        return tuple(_plain(getattr(field, name)) for name in Carried.__dataclass_fields__)
+    if isinstance(field, (*_KINDS_OF_BRANCH, Carried, Flag, Sensed, Threshold)):
+        return (type(field).__name__, *(_plain(getattr(field, name)) for name in field.__dataclass_fields__))
     return field
-
-
-class Part:
-    """One element as its kind's physics sees it: given values and defaults as numbers or as parameters of the frame."""
-
-    def __init__(self, element: Element, kind: Kind, frame: Frame, ambient: float):
-        self.name = element.name
-        self.ports: tuple[Port, ...] = element.ports
-        self._element = element
-        self._kind = kind
-        self._frame = frame
-        self._ambient = ambient
-
-    def given(self, key: str) -> Any:
-        """The value of a key as the circuit holds it, else the kind's default, else None."""
-        value = self._element.given.get(key)
-        return self._kind.key[key].default if value is None else value
-
-    @property
-    def everything(self) -> dict[str, Any]:
-        """All keys as the circuit holds them, without defaults."""
-        return self._element.given
-
-    @property
-    def unit(self) -> str:
-        """ "V" or "A": what a source is written in."""
-        return self._element.unit
-
-    def value(self, key: str, index: int | None = None) -> Value:
-        """A key as a graph value, or one of a ratio's; zero where it is neither given nor has a default."""
-        number = self.given(key)
-        if index is not None and number is not None:
-            number = number[index]
-        declared = self._kind.key[key]
-        positive = declared.low is not None and declared.low >= 0.0
-        return self._frame.parameter(0.0 if number is None else number, positive)
-
-    def temperature(self) -> float:
-        """What the element runs at, in K: its own temperature, else its ambient's, else that of the circuit."""
-        for key in ("temperature", "ambient"):
-            if key in self._kind.key and self._element.given.get(key) is not None:
-                return float(self._element.given[key])
-        return self._ambient
-
-    @property
-    def moment(self) -> float:
-        """The time in the study, in s, from which the equations hold."""
-        return self._frame.moment
-
-    def across(self, port: Port) -> dict[Hashable, float]:
-        """The weights of a port's voltage, a minus b."""
-        return {port.a: 1.0, port.b: -1.0}

@@ -9,9 +9,10 @@ import math
 from collections.abc import Callable, Hashable
 
 from simcore.components.forward_fit import ForwardLaw, fit
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import UNLIMITED, Frame
+from simcore.components.part import Part
 from simcore.components.physics import BOLTZMANN_OVER_CHARGE, depletion_charge
-from simcore.equations.values import Value, exp, larger, log
+from simcore.equations.values import Value, exp, larger, log, where
 
 LEAK = 1e-12
 """Conductance in S across every junction, so that a node between blocked diodes stays defined."""
@@ -23,7 +24,7 @@ BREAKDOWN_CURRENT = 1e-3
 """Current in A at which a breakdown voltage holds where none is said (common practice, no source)."""
 
 Capacitance = tuple[Value, Value, Value]
-Law = Callable[[Value, Value], tuple[Value, Value]]
+Law = Callable[[Value, Value], tuple[Value, Value, dict[str, Value]]]
 
 
 def law_of(given: dict[str, object]) -> ForwardLaw:
@@ -42,13 +43,16 @@ def law_of(given: dict[str, object]) -> ForwardLaw:
     assert isinstance(saturation, float) and isinstance(factor, float)
     return ForwardLaw(saturation, factor, resistance if isinstance(resistance, float) else 0.0, ())
 
+BLOCKED = 1e-30
+"""Share of its forward current that a junction carries while it is not fired: nothing, yet known to be above zero."""
+
 SMALL_CURRENT = 1e-5
 """Forward current in A whose stored charge needs no accuracy before the circuit has carried more than a hundred times
 as much."""
 
 
 class Junction:
-    """The junction of a part in a frame; conducts: above zero while its forward law holds (None: always)."""
+    """The junction of a part in a frame; conducts: 1 while its forward law holds, else BLOCKED (None: always 1)."""
 
     def __init__(self, frame: Frame, part: Part, conducts: Value | None = None):
         self._frame, self._part, self._conducts = frame, part, conducts
@@ -93,9 +97,12 @@ class Junction:
             frame.series(part, {port.a: 1.0, anode: -1.0}, resistance=self.resistance)
         weights = {anode: 1.0, port.b: -1.0}
         steep = self.scale * log(1.0 + self.scale / (math.sqrt(2.0) * self.saturation))
+        straight = frame.graph.zero
+        if self._conducts is not None:
+            steep, straight = where(self._conducts - 0.5, steep, UNLIMITED), 0.5 - self._conducts
         lifetime, capacitance = self._lifetime(), self._capacitance()
         if lifetime is None and capacitance is None:
-            frame.nonlinear(part, weights, self._law, scale=self.scale, critical=steep)
+            frame.nonlinear(part, weights, self._law, scale=self.scale, critical=steep, straight=straight)
         else:
             small = self._small(lifetime, capacitance)
             law = self._charged(lifetime, capacitance)
@@ -107,8 +114,9 @@ class Junction:
         return self._conducted(voltage) + self.leak * voltage
 
     def _conducted(self, voltage: Value) -> Value:
-        current = self.saturation * (exp(voltage / self.scale) - 1.0)
-        return current if self._conducts is None else self._conducts * current
+        if self._conducts is not None:
+            return self._conducts * self.saturation * (exp(self._conducts * voltage / self.scale) - 1.0)
+        return self.saturation * (exp(voltage / self.scale) - 1.0)
 
     # --- charge ---
 
@@ -132,13 +140,13 @@ class Junction:
         """i = law + dq/dt, q = lifetime * forward current + depletion charge (charge control: Pierret, Semiconductor
         Device Fundamentals, 1996, ch. 8, from memory)."""
 
-        def law(voltage: Value, before: Value) -> tuple[Value, Value]:
+        def law(voltage: Value, before: Value) -> tuple[Value, Value, dict[str, Value]]:
             charge = self._frame.graph.zero
             if lifetime is not None:
                 charge = lifetime * self._conducted(voltage)
             if capacitance is not None:
                 charge = charge + self.parallel * depletion_charge(voltage / self.series, *capacitance)
-            return self._law(voltage) + (charge - before) / self._frame.step, charge
+            return self._law(voltage) + (charge - before) / self._frame.step, charge, {}
 
         return law
 

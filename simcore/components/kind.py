@@ -13,7 +13,8 @@ from typing import TYPE_CHECKING
 from grammar.quantities import Dimension
 
 if TYPE_CHECKING:
-    from simcore.components.frame import Frame, Part
+    from simcore.components.frame import Frame
+    from simcore.components.part import Part
 
 
 @dataclass(frozen=True)

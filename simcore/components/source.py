@@ -9,8 +9,9 @@ import math
 from itertools import pairwise
 
 from grammar.quantities import AMPERE, ANGLE, HENRY, HERTZ, NONE, OHM, SECOND, VOLT
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
+from simcore.components.part import Part
 from simcore.equations.values import Value
 
 WAVEFORM_KEYS = (
@@ -65,21 +66,22 @@ def check_waveform(given: dict[str, object]) -> list[tuple[str | None, str, str]
             faults.append((key, f"{key} is given without a sine", f"Add `sine`, or leave {key} out."))
     if "period" in given and "points" not in given:
         faults.append(("period", "a period is given without points", "It repeats `points`: add them or leave it out."))
-    return faults + _check_points(given) + _check_harmonics(given)
+    return faults + check_points("points", given) + _check_harmonics(given)
 
 
-def _check_points(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
-    points = given.get("points")
+def check_points(key: str, given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    """The rules for a list over time."""
+    points = given.get(key)
     if not isinstance(points, tuple):
         return []
     times = [float(time) for time, _ in points]
     if any(later < earlier for earlier, later in pairwise(times)):
-        return [("points", "the times of its points do not rise", "Write the points in the order of their times.")]
+        return [(key, "the times of its points do not rise", "Write the points in the order of their times.")]
     if any(first == third for first, third in zip(times, times[2:], strict=False)):
-        return [("points", "three of its points stand at one time", "Two at one time make a jump: leave one out.")]
+        return [(key, "three of its points stand at one time", "Two at one time make a jump: leave one out.")]
     period = given.get("period")
     if isinstance(period, float) and (times[0] < 0.0 or times[-1] > period):
-        return [("points", "its points do not lie within one period", "Keep the times between 0 s and the period.")]
+        return [(key, "its points do not lie within one period", "Keep the times between 0 s and the period.")]
     return []
 
 

@@ -9,8 +9,9 @@ import math
 from dataclasses import replace
 
 from grammar.quantities import NONE, WATT
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
+from simcore.components.part import Part
 from simcore.components.source import IMPEDANCE_KEYS, WAVEFORM_KEYS, check_waveform, waveform
 
 _IN_VOLTS = tuple(replace(key, alternatives=()) for key in WAVEFORM_KEYS)

@@ -6,8 +6,9 @@ Knows its keys and the rules between them, and nothing of text, graphs or solver
 from __future__ import annotations
 
 from grammar.quantities import AMPERE, HENRY, NONE, OHM, VOLT, WATT
-from simcore.components.frame import Frame, Part
+from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
+from simcore.components.part import Part
 
 
 def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:

@@ -75,6 +75,10 @@ def with_changes(
     return Variants(project, circuit, overrides)(changes)
 
 
+SWITCHING = ("opens_at", "closes_at", "control", "closes_above", "opens_below", "delay")
+"""What a study's open or close overrules on a switch."""
+
+
 def _changed(circuit: Circuit, target: str, verb: str) -> Circuit:
     """The circuit with an element, winding or phase opened or shorted. What is closed is as described."""
     elements = dict(circuit.elements)
@@ -104,7 +108,7 @@ def _state(element: Element, verb: str) -> Element:
         return _bridge(element.name, element.ports[0])
     if element.kind != "switch":
         return element
-    kept = {key: value for key, value in element.given.items() if key not in ("opens_at", "closes_at")}
+    kept = {key: value for key, value in element.given.items() if key not in SWITCHING}
     return replace(element, given={**kept, "initially": "open" if verb == "open" else "closed"})
 
 

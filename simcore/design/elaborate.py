@@ -20,11 +20,12 @@ from simcore.design.flatten import Flat, Flattener, is_dotted
 from simcore.design.measures import Measures
 from simcore.design.requirements import Requirements
 from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, at_word, rename_cure, span_of
+from simcore.design.sensing import NotLinear, sensed
 from simcore.design.soundness import unsound
 from simcore.design.studies import Studies, moved_lets
 from simcore.design.sweeps import check_sweeps
 from simcore.design.unused import check_unused
-from simcore.design.values import LATER, Reader, Values, clash, is_current
+from simcore.design.values import EXPRESSIONS, LATER, Reader, Values, clash, is_current
 
 ROOM = 298.15
 
@@ -95,6 +96,7 @@ class _Builder:
             self.flattener.canonical,
             {study.name: study for study in flat.studies},
         )
+        self._sense(flat, measures)
         circuit = Circuit(
             self.project.name,
             flat.purposes[0].text if flat.purposes else "",
@@ -217,6 +219,26 @@ class _Builder:
                     what = f"{key.name} has {count} values for {len(ports)} {each}"
                     span = values.spans.get(key.name) or node.span
                     self.scope.wrong(what, f"Give {len(ports)} values, parted by `:`.", span)
+
+    def _sense(self, flat: Flat, measures: Measures) -> None:
+        """Signals that switch an element, resolved once all nodes and elements are known."""
+        for node, place in flat.elements:
+            element = self.elements.get(place.space.prefix + self.scope.local(node.name, place))
+            for key in KINDS[node.kind].keys:
+                given = None if element is None or key.form != "expression" else element.given.get(key.name)
+                if element is None or not isinstance(given, EXPRESSIONS):
+                    continue
+                try:
+                    signal = measures.resolve(given, place)
+                    terms = sensed(signal.expression, self.elements, measures.observed())
+                except Poisoned:
+                    continue
+                except NotLinear as fault:
+                    self.scope.wrong(f"{key.name}: {fault}", fault.cure, element.key_spans.get(key.name))
+                    continue
+                if signal.dimension not in (key.dimension, *key.alternatives):
+                    self.scope.wrong(*clash(key.name, key.dimension, signal.dimension), element.key_spans.get(key.name))
+                element.given[key.name] = tuple(terms)
 
     # --- the rest ------------------------------------------------------------------------------------------------
 

@@ -79,6 +79,10 @@ class Measures:
         self._observes[entry.full] = found
         return found
 
+    def observed(self) -> dict[str, Expression]:
+        """The observes worked out so far, in full names."""
+        return {name: found.expression for name, found in self._observes.items() if found is not None}
+
     def resolve(self, expression: Expression, place: Place) -> Resolved:
         """An expression with its names in full, its sort and its dimension."""
         if isinstance(expression, Name):

@@ -23,6 +23,7 @@ from simcore.components import KINDS
 from simcore.components.kind import Key
 from simcore.design.circuit import Change, Circuit, Element, LetValue, PlannedStudy
 from simcore.design.graph import port_name
+from simcore.design.sensing import write_sensed
 from simcore.design.soundness import parts_of
 
 TEMPERATURES = ("temperature", "data_temperature", "ambient", "rated_junction_temperature")
@@ -144,6 +145,8 @@ def value_text(key: Key, value: Any, unit: str = "") -> str:
     dimension = AMPERE if key.alternatives and unit == "A" else key.dimension
     if key.form in ("text", "word"):
         return str(value)
+    if key.form == "expression":
+        return write_sensed(value)
     if key.form in ("ratio", "list"):
         return (" : " if key.form == "ratio" else ", ").join(show(each, dimension) for each in value)
     if key.form == "amplitude":

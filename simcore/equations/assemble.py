@@ -10,13 +10,19 @@ from collections.abc import Hashable, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 
-from simcore.components.frame import Branch, Carried, CurrentBranch, Frame, NonlinearBranch, SeriesBranch
+from simcore.components.frame import (
+    Branch,
+    Carried,
+    CurrentBranch,
+    Frame,
+    NonlinearBranch,
+    Sensed,
+    SeriesBranch,
+    Threshold,
+)
 from simcore.equations.eliminate import Elimination, Guard
 from simcore.equations.reduce import Form, Reduction, forces_voltage
 from simcore.equations.values import Level, Value, changes, derivative
-
-RECORDED = ("temperature",)
-"""Carried quantities that a run records beside voltages and currents."""
 
 CARRYING = 0.03
 """Agreement of a branch that carries a quantity, over that of one that does not."""
@@ -41,7 +47,8 @@ class State:
 class Junction:
     """A nonlinear branch's Newton iterate: the voltage put in, and the one that the linearised circuit gives back.
 
-    agreement: share of the usual agreement that the two need; what is left of it in a charge is a current over a step
+    slope: conductance of the law there; agreement: share of the usual agreement that the two need: what is left of it
+    in a charge is a current over a step
     """
 
     branch: int
@@ -49,7 +56,9 @@ class Junction:
     new: Value
     scale: Value
     critical: Value
-    agreement: float = 1.0
+    straight: Value
+    slope: Value
+    agreement: float
 
 
 @dataclass(frozen=True)
@@ -71,6 +80,7 @@ class System:
     junctions: list[Junction] = field(default_factory=list)
     columns: list[Column] = field(default_factory=list)
     guards: list[Guard] = field(default_factory=list)
+    thresholds: list[Value] = field(default_factory=list)
     companions: list[Companion] = field(default_factory=list)
 
     @cached_property
@@ -108,6 +118,7 @@ class _Assembly:
         self.system = System(frame, reduction)
         self._histories: dict[tuple[int, str], Value] = {}
         self._carried: list[State] = []
+        self._currents: dict[int, Value] = {}
         companions = [self._companion(index, branch) for index, branch in enumerate(frame.branches)]
         self.system.companions = [companion for companion in companions if companion is not None]
         solution = self._eliminated() if eliminate else self._inputs()
@@ -117,6 +128,7 @@ class _Assembly:
             if companion is not None and not isinstance(branch, CurrentBranch):
                 self._results(index, branch, companion, solution)
         self.system.states[:0] = self._carried
+        self.system.thresholds = [self._sensed(threshold, solution) for threshold in frame.thresholds]
 
     def _eliminated(self) -> dict[Hashable, Value]:
         elimination = Elimination(self.graph, list(self.system.reduction.free))
@@ -171,12 +183,21 @@ class _Assembly:
     def _results(self, index: int, branch: Branch, companion: Companion, solution: dict[Hashable, Value]) -> None:
         terms = [weight * solution[unknown] for unknown, weight in companion.form.weights.items()]
         voltage = self.graph.total(terms)
-        current = companion.conductance * voltage + companion.offset
+        current = self._currents[index] = companion.conductance * voltage + companion.offset
         if isinstance(branch, NonlinearBranch):
             new = voltage + companion.form.known - branch.offset
             agreement = 1.0 if branch.carried is None else CARRYING
             self.system.junctions.append(
-                Junction(index, branch.variable, new, branch.scale, branch.critical, agreement)
+                Junction(
+                    index,
+                    branch.variable,
+                    new,
+                    branch.scale,
+                    branch.critical,
+                    branch.straight,
+                    companion.conductance,
+                    agreement,
+                )
             )
             if branch.carried is not None:
                 self._carry(index, branch.carried, branch.variable, new)
@@ -185,14 +206,40 @@ class _Assembly:
         if not is_resistor(branch):
             self.system.columns.append(Column(None, index, current))
 
+    def _sensed(self, threshold: Threshold, solution: dict[Hashable, Value]) -> Value:
+        """How far a threshold's signal is above its level."""
+        terms = [-threshold.level]
+        for term in threshold.terms:
+            if term.element:
+                value = self._port_current(term)
+            elif term.branch >= 0:
+                value = next(state.new for state in self._carried if state.branch == term.branch)
+            else:
+                form = self.system.reduction.form(term.weights)
+                known = form.known or self.graph.zero
+                value = self.graph.total([known, *(w * solution[unknown] for unknown, w in form.weights.items())])
+            terms.append(term.factor * value)
+        return self.graph.total(terms)
+
+    def _port_current(self, term: Sensed) -> Value:
+        """The current into a port at its node; none while its element is taken out."""
+        found = [self.graph.zero]
+        for index, branch in enumerate(self.system.frame.branches):
+            weight = dict(branch.weights).get(term.node)
+            if branch.element == term.element and branch.port == term.port and weight is not None:
+                current = branch.current if isinstance(branch, CurrentBranch) else self._currents[index]
+                found.append(weight * current)
+        return self.graph.total(found)
+
     def _carry(self, index: int, carried: Carried, variable: Value, new: Value) -> None:
         """The carried quantity by the same straight line as the current, so that nothing of it is lost or made."""
         after = carried.after + derivative(carried.after, variable) * (new - variable)
         state = State(index, carried.quantity, carried.initial, carried.before, after, carried.small)
         self._carried.append(state)
-        if carried.quantity in RECORDED:
-            element = self.system.frame.branches[index].element
-            self.system.columns.append(Column((element, carried.quantity), None, after))
+        branch = self.system.frame.branches[index]
+        for name, shown in carried.shown:
+            value = shown + derivative(shown, variable) * (new - variable)
+            self.system.columns.append(Column((branch.element, branch.port, name), None, value))
 
     def _states(self, index: int, branch: SeriesBranch, voltage: Value, current: Value) -> None:
         if (index, "current") in self._histories:

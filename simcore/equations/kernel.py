@@ -8,7 +8,8 @@ from functools import cached_property
 
 from simcore.components.frame import Frame
 from simcore.equations.assemble import assemble
-from simcore.equations.run_source import RunSource, saved_count, watched_columns
+from simcore.equations.run_interface import saved_count, watched_columns
+from simcore.equations.run_source import RunSource
 
 Run = Callable[[list[float], list[float], list[float], tuple[float, ...]], tuple[int, ...]]
 

@@ -6,68 +6,29 @@ Equations II, 1996, IV.9); with order 1 it is one backward-Euler step without er
 start of a segment and, with a huge H, the operating point. Kept within floats, math functions, lists and tuples, so
 that it can be compiled as it stands.
 
-Interface of the emitted function `run(p, s, out, c)`:
-p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends
-of the columns; read and written back. out: records of 2 + 2 * columns numbers: time at the end of a step, each column's
-middle and end value, 1 where a nonlinear branch began or ceased to conduct within it (a kink or jump lies inside), else
-0.
-c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of
-states: the derivative of the states by those at the start, direction by direction, and room for three more. Returns
-(status, numbers written, steps, rejected, solves, iterations, weak pivots).
+The function's face is told in run_interface.
 """
 
 from __future__ import annotations
 
-from simcore.components.frame import NonlinearBranch
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
+from simcore.equations.run_interface import (
+    BLOCKED,
+    CONTROLS,
+    EVENT,
+    FULL,
+    NO_CONVERGENCE,
+    PATIENCE,
+    ROUNDING,
+    SHORT,
+    record_width,
+    saved_groups,
+    watched_columns,
+)
 from simcore.equations.values import Value
 
-CONTROLS = (
-    "t_end",
-    "largest",
-    "smallest",
-    "tolerance",
-    "order",
-    "limit",
-    "fade",
-    "record",
-    "room",
-    "floor_voltage",
-    "floor_current",
-    "watch_tolerance",
-    "agreement",
-    "kink_size",
-)
-DONE, FULL, NO_CONVERGENCE = 0, 1, 2
 _WEAK_PIVOT = 1e-10
-BLOCKED, PATIENCE = 0.01, 8
-"""Agreement, over the law's scale, of a branch that blocks, and the iterations after which any will do: the rounding of
-the large voltages around such a branch is all that moves it, and while it blocks it errs by less than its leakage."""
-
-
-def watched_columns(system: System) -> list[int]:
-    """Positions of the columns whose curvature bounds the step, besides the states: the currents of the nonlinear
-    branches but those that carry a quantity, whose current follows from a state that is watched as it is."""
-    nonlinear = [(junction.branch, system.frame.branches[junction.branch]) for junction in system.junctions]
-    branches = [index for index, branch in nonlinear if isinstance(branch, NonlinearBranch) and branch.carried is None]
-    return [index for index, column in enumerate(system.columns) if column.branch in branches]
-
-
-def saved_groups(system: System) -> list[tuple[str, int]]:
-    """The groups of numbers in s after t and H: states, junction voltages, state peaks, watched peaks, column ends."""
-    states, watched = len(system.states), len(watched_columns(system))
-    return [("z", states), ("u", len(system.junctions)), ("i", states), ("j", watched), ("l", len(system.columns))]
-
-
-def saved_count(system: System) -> int:
-    """Length of s."""
-    return 2 + sum(count for _, count in saved_groups(system))
-
-
-def record_width(system: System) -> int:
-    """Numbers that a step records."""
-    return 2 + 2 * len(system.columns)
 
 
 class RunSource:
@@ -84,15 +45,15 @@ class RunSource:
 
     def _stages(self) -> dict[str, list[Value]]:
         system = self.system
-        fixed = [value for j in system.junctions for value in (j.scale, j.critical)]
+        fixed = [value for j in system.junctions for value in (j.scale, j.critical, j.straight)]
         fixed += [state.small for state in system.states]
         after = [state.new for state in system.states] + [column.value for column in system.columns]
-        after += [value for guard in system.guards for value in (guard.pivot, guard.start)]
+        after += [value for guard in system.guards for value in (guard.pivot, guard.start)] + system.thresholds
         return {
             "variant": fixed,
             "step": [],
             "time": [],
-            "iteration": [junction.new for junction in system.junctions],
+            "iteration": [value for junction in system.junctions for value in (junction.new, junction.slope)],
             "after": after,
             "response": system.responses if self._responses else [],
         }
@@ -141,6 +102,7 @@ class RunSource:
         self._each(1, columns, "c1_# = 0.0", "c2_# = 0.0", "c3_# = 0.0", "m2_# = 0.0", "m3_# = 0.0")
         self._each(1, len(self.watched), "d_# = 0.0", "h# = 0.0")
         self._each(1, junctions, "n# = u#", "a# = 0.0")
+        self._each(1, len(self.system.thresholds), "t1_# = 0.0", "t2_# = 0.0", "t3_# = 0.0", "event = 0")
         add(1, "take1, take2, take3, miss1, miss2, miss3 = 1.0, 0.0, 0.0, 0.0, 0.0, 0.0")
         add(1, "if order == 2:", "    take1, take2, take3, miss1, miss2, miss3 = -1.0, 2.0, 0.0, -1.0, 1.0, 0.0")
         add(1, "if order == 3:", "    take1, take2, take3, miss1, miss2, miss3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
@@ -201,6 +163,7 @@ class RunSource:
             add(3, f"{'el' if division > 1 else ''}if division == {division}:")
             self._each(4, states, f"e{division}_# = y#")
             add(4, *(f"c{division}_{i} = {self.emitter.name(c.value)}" for i, c in enumerate(self.system.columns)))
+            add(4, *(f"t{division}_{i} = {self.emitter.name(v)}" for i, v in enumerate(self.system.thresholds)))
             if division == 1:
                 self._each(4, junctions, "a# = n# - u# if u# > g# and n# > g# else 0.0")
             add(4, "pass")
@@ -223,7 +186,7 @@ class RunSource:
         add(4, "if division > 1:")
         self._each(5, junctions, "n# += a# / division")
         add(4, "count = 0", "while True:", "    count += 1")
-        add(5, f"slack = {BLOCKED!r} if count <= {PATIENCE} else 1e9")
+        add(5, f"slack, noise = ({BLOCKED!r}, 0.0) if count <= {PATIENCE} else (1e9, tolerance * floor_current)")
         self._each(5, junctions, "v# = n#")
         add(5, *self.emitter.lines["iteration"], "good = True")
         for index, junction in enumerate(self.system.junctions):
@@ -233,11 +196,18 @@ class RunSource:
         add(4, "iterations += count", "if not good:", "    failed = True", "    break")
 
     def _limit(self, index: int) -> None:
-        """Convergence in units of the law's scale; an off branch is ignored; NaN passes neither test. A voltage that
-        rises past the critical one moves by the logarithm of the step (common practice, no source)."""
+        """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not.
+        A voltage that rises past the critical one moves by the logarithm of the step (common practice, no source)."""
+        junction = self.system.junctions[index]
+        straight = self.emitter.name(junction.straight)
         lines = (
-            "blocks = n# < 0.0 and v# < 0.0 and (-slack * w# <= d <= slack * w# or (n# < o# and v# < o#))",
-            "if not (-b# <= d <= b# or blocks):",
+            "if not (",
+            "    -b# <= d <= b#",
+            "    or (n# < 0.0 and v# < 0.0 and (-slack * w# <= d <= slack * w# or (n# < o# and v# < o#)))",
+            f"    or abs(d) <= {ROUNDING!r} * abs(n#)",
+            f"    or abs(d) * {self.emitter.name(junction.slope)} <= noise",
+            f"    or {straight} > 0.0" if junction.straight.constant != 0.0 else "",
+            "):",
             "    good = False",
             "    if n# > k# and d > 0.0:",
             "        if v# > 0.0:",
@@ -289,7 +259,21 @@ class RunSource:
         add(3, "if not error <= 1.0 and size > smallest:", "    rejected += 1")
         add(4, "wish = size * max(0.2, factor) if factor > 0.0 else size * 0.2", "continue")
         add(3, "if not error < 1e30:", f"    status = {NO_CONVERGENCE}", "    break")
+        self._crossings()
         add(3, "wish = size if 0.9 <= factor <= 1.2 else max(smallest, size * min(2.0, max(0.2, factor)))")
+
+    def _armed(self, index: int) -> str:
+        """Whether a threshold's flags stand so that it counts."""
+        conditions = self.system.frame.thresholds[index].armed
+        return " and ".join(f"p{flag.position} {'>' if up else '<'} 0.5" for flag, up in conditions)
+
+    def _crossings(self) -> None:
+        """A step in which a threshold is passed is taken back unless it is as short as events are resolved to."""
+        for index in range(len(self.system.thresholds)):
+            reached = f"take1 * t1_{index} + take2 * t2_{index} + take3 * t3_{index}"
+            self._add(3, f"if size > event_size and {self._armed(index)}:", f"    r = {reached}")
+            self._add(4, f"if r > 0.0 and f{index} <= 0.0:", "    rejected += 1")
+            self._add(5, f"wish = max(0.6 * event_size, {SHORT!r} * size * f{index} / (f{index} - r))", "continue")
 
     @staticmethod
     def _bend(index: int, column: int) -> str:
@@ -327,7 +311,19 @@ class RunSource:
             "        landing = 1.0",
             "u# = n#",
         )
+        self._approach()
         self._record()
+        if self.system.thresholds:
+            add(2, "if event > 0:", f"    status = {EVENT}", "    break")
+
+    def _approach(self) -> None:
+        """Note the threshold that is passed; where one is neared, end the next step short of it."""
+        for index in range(len(self.system.thresholds)):
+            self._add(2, f"r = take1 * t1_{index} + take2 * t2_{index} + take3 * t3_{index}")
+            self._add(2, f"if order > 1 and {self._armed(index)}:", "    if r > 0.0:", f"        event = {index + 1}")
+            self._add(3, f"elif r > f{index}:", f"    d = {SHORT!r} * size * r / (f{index} - r)")
+            self._add(4, "if d < wish:", "    wish = max(0.6 * event_size, d)")
+            self._add(2, f"f{index} = r")
 
     def _watch(self, index: int, column: int) -> None:
         """A watched current's end and peak; where it falls, the next step ends where the chord meets zero: turn-off
@@ -366,4 +362,5 @@ class RunSource:
         for letter, count in saved_groups(self.system):
             self._add(1, *(f"s[{position + index}] = {letter}{index}" for index in range(count)))
             position += count
-        self._add(1, "return status, position, steps, rejected, solves, iterations, weak")
+        event = "event" if self.system.thresholds else "0"
+        self._add(1, f"return status, position, steps, rejected, solves, iterations, weak, {event}")

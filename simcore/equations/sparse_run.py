@@ -13,7 +13,18 @@ import numpy as np
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
 from simcore.equations.plain import evaluate
-from simcore.equations.run_source import BLOCKED, CONTROLS, DONE, FULL, NO_CONVERGENCE, PATIENCE, record_width
+from simcore.equations.run_interface import (
+    BLOCKED,
+    CONTROLS,
+    DONE,
+    EVENT,
+    FULL,
+    NO_CONVERGENCE,
+    PATIENCE,
+    ROUNDING,
+    SHORT,
+    record_width,
+)
 from simcore.equations.values import Value
 
 _WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
@@ -40,13 +51,16 @@ class SparseRun:
         self._system = system
         self._watched = np.array(watched, dtype=int)
         numbers, states, junctions = len(system.frame.numbers), len(system.states), len(system.junctions)
-        self._counts = (states, junctions, len(watched), len(system.columns))
+        self._counts = (states, junctions, len(watched), len(system.columns), len(system.thresholds))
         arguments = {"p": numbers, "y": states, "v": junctions}
         stamps = [value for companion in system.companions for value in (companion.conductance, companion.offset)]
         self._stamps = compile_source(function_source("stamps", arguments, stamps), "stamps")
         results = [junction.new for junction in system.junctions]
         results += [state.new for state in system.states] + [column.value for column in system.columns]
+        results += system.thresholds
         arguments["s"] = len(system.reduction.free)
+        positions = {id(companion.conductance): index for index, companion in enumerate(system.companions)}
+        self._slopes = [positions[id(junction.slope)] for junction in system.junctions]
         self._results = compile_source(function_source("results", arguments, results), "results")
 
     def __call__(self, p: list[float], s: list[float], out: list[float], c: tuple[float, ...]) -> tuple[int, ...]:
@@ -58,17 +72,20 @@ class _Attempt:
 
     def __init__(self, run: SparseRun, p: list[float], s: list[float], out: list[float], control: dict[str, float]):
         self.run, self.p, self.saved, self.out, self.c = run, p, s, out, control
-        states, junctions, watched, columns = run._counts
-        cuts = np.cumsum([2, states, junctions, states, watched, columns])
+        states, junctions, watched, columns, thresholds = run._counts
+        cuts = np.cumsum([2, states, junctions, states, watched, columns, thresholds])
         parts = [np.array(s[start:end]) for start, end in zip(cuts[:-1], cuts[1:], strict=True)]
-        self.z, self.u, self.peaks, self.watched_peaks, self.ends = parts
+        self.z, self.u, self.peaks, self.watched_peaks, self.ends, self.passed = parts
+        armed = [threshold.armed for threshold in run._system.frame.thresholds]
+        self.armed = np.array([all((p[flag.position] > 0.5) == up for flag, up in each) for each in armed], dtype=bool)
+        self.event = 0
         inputs = {f"p{index}": number for index, number in enumerate(p)}
-        fixed = [value for junction in run._system.junctions for value in (junction.scale, junction.critical)]
-        numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 2)
-        self.scale, self.critical = numbers[:, 0], numbers[:, 1]
+        inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
+        fixed = [value for junction in run._system.junctions for value in (junction.scale, junction.critical, junction.straight)]
+        numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 3)
+        self.scale, self.critical, self.straight = numbers[:, 0], numbers[:, 1], numbers[:, 2] > 0.0
         self.shares = np.array([junction.agreement for junction in run._system.junctions])
         self.on = self.critical - 3.0 * self.scale
-        inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
         small = [state.small for state in run._system.states]
         self.floors = np.array([float(value) for value in evaluate(small, inputs)])
         self.incidence = self._incidence(inputs)
@@ -107,12 +124,15 @@ class _Attempt:
                     break
             elif self._controlled(size, found):
                 self._accept(size, stop, found)
+                if self.event:
+                    status = EVENT
+                    break
             elif not np.isfinite(self._error) and size <= c["smallest"]:
                 status = NO_CONVERGENCE
                 break
-        self.saved[:] = [self.now, self.wish, *self.z, *self.u, *self.peaks, *self.watched_peaks, *self.ends]
-        self.saved[:] = [float(number) for number in self.saved]
-        return status, self.position, self.steps, self.rejected, self.solves, self.iterations, 0
+        groups = (self.z, self.u, self.peaks, self.watched_peaks, self.ends, self.passed)
+        self.saved[:] = [self.now, self.wish, *(float(number) for group in groups for number in group)]
+        return status, self.position, self.steps, self.rejected, self.solves, self.iterations, 0, self.event
 
     def _extrapolated(self, size: float, stop: float) -> list[tuple[np.ndarray, list[np.ndarray], np.ndarray]] | None:
         """States, columns at each part and junction voltages, for each division; None where Newton fails."""
@@ -136,7 +156,7 @@ class _Attempt:
     def _newton(self, n: np.ndarray, y: np.ndarray, h: float, t: float) -> Any:
         from scipy.sparse.linalg import splu
 
-        states, junctions, _, _ = self.run._counts
+        states, junctions, *_ = self.run._counts
         self.solves += 1
         history = tuple(y.tolist())
         for count in range(1, int(self.c["limit"]) + 1):
@@ -151,20 +171,23 @@ class _Attempt:
             x = factors.solve(right)
             x += factors.solve(right - matrix @ x)
             results = np.array(self.run._results(self.p, history, tuple(v.tolist()), tuple(x.tolist()), h, t))
-            n, good = self._limited(v, results[:junctions], count)
+            n, good = self._limited(v, results[:junctions], stamps[self.run._slopes, 0], count)
             if good:
                 self.iterations += count
                 return n, results[junctions : junctions + states], results[junctions + states :]
         self.iterations += int(self.c["limit"])
         return None
 
-    def _limited(self, v: np.ndarray, n: np.ndarray, count: int) -> tuple[np.ndarray, bool]:
+    def _limited(self, v: np.ndarray, n: np.ndarray, slopes: np.ndarray, count: int) -> tuple[np.ndarray, bool]:
         """The convergence test and the limiting of run_source, on arrays."""
         step, off = n - v, -6.0 * self.scale
         close = np.abs(step) <= self.c["agreement"] * self.shares * self.scale
         slack = BLOCKED if count <= PATIENCE else np.inf
         blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale)
-        moving = ~(close | ((n < off) & (v < off)) | blocked)
+        rounding = np.abs(step) <= ROUNDING * np.abs(n)
+        noise = 0.0 if count <= PATIENCE else self.c["tolerance"] * self.c["floor_current"]
+        nothing = (np.abs(step) * slopes <= noise) | self.straight
+        moving = ~(close | ((n < off) & (v < off)) | blocked | rounding | nothing)
         limit = moving & (n > self.critical) & (step > 0.0)
         with np.errstate(all="ignore"):
             inside = v + self.scale * np.log1p(step / self.scale)
@@ -203,8 +226,30 @@ class _Attempt:
             return False
         if not error < 1e30:
             return False
+        crossed = self.armed & (self._reached(found) > 0.0) & (self.passed <= 0.0)
+        if size > self.c["event_size"] and np.any(crossed):
+            self.rejected += 1
+            before, after = self.passed[crossed], self._reached(found)[crossed]
+            self.wish = max(0.6 * self.c["event_size"], float(np.min(SHORT * size * before / (before - after))))
+            return False
         self.wish = size if 0.9 <= factor <= 1.2 else max(self.c["smallest"], size * min(2.0, max(0.2, factor)))
         return True
+
+    def _reached(self, found: list) -> np.ndarray:
+        """How far each threshold is passed at the end of a step."""
+        columns = self.run._counts[3]
+        return _combine(_WEIGHTS[int(self.c["order"])], [parts[-1][columns:] for _, parts, _ in found])
+
+    def _approach(self, size: float, reached: np.ndarray) -> None:
+        """Note the threshold that is passed; where one is neared, end the next step short of it."""
+        over = np.flatnonzero(self.armed & (reached > 0.0))
+        self.event = int(over[-1]) + 1 if len(over) and self.c["order"] > 1 else 0
+        near = self.armed & (reached <= 0.0) & (reached > self.passed)
+        if self.c["order"] > 1 and np.any(near):
+            ahead = float(np.min(SHORT * size * reached[near] / (self.passed[near] - reached[near])))
+            if ahead < self.wish:
+                self.wish = max(0.6 * self.c["event_size"], ahead)
+        self.passed = reached
 
     def _bend(self, found: list) -> np.ndarray:
         """What a quadratic misses of the watched currents, from the third difference (see run_source)."""
@@ -219,12 +264,14 @@ class _Attempt:
         fade = 1.0 - min(1.0, self.c["fade"] * size)
         self.z = _combine(weights, [states for states, _, _ in found])
         self.peaks = np.maximum(np.abs(self.z), self.peaks * fade)
-        ends = _combine(weights, [parts[-1] for _, parts, _ in found])
-        mean = _combine(weights, [sum(parts) / len(parts) for _, parts, _ in found])
+        columns = self.run._counts[3]
+        ends = _combine(weights, [parts[-1][:columns] for _, parts, _ in found])
+        mean = _combine(weights, [sum(parts)[:columns] / len(parts) for _, parts, _ in found])
         self.watched_peaks = np.maximum(np.abs(ends[self.run._watched]), self.watched_peaks * fade)
         if self.landing or self.kink:
             self.wish, self.landing = min(self.wish, self.c["kink_size"]), False
         self._cut(size, found[-1][2])
+        self._approach(size, self._reached(found))
         if self.c["record"] > 0.0:
             middle = 1.5 * mean - 0.25 * (self.ends + ends)
             row = [stop, *np.stack([middle, ends], axis=1).ravel().tolist(), float(self.kink)]

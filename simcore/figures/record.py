@@ -42,7 +42,9 @@ class Solved(Protocol):
         """Each series branch of an element: resistance, inductance, capacitance, current, voltage; shape (5, n, 3)."""
         ...
 
-    def temperature(self, element: str) -> float: ...
+    def shown(self, element: str, name: str) -> Array | None: ...
+
+    def temperature(self, element: str) -> float | Array: ...
 
 
 class UnknownName(Exception):
@@ -148,9 +150,11 @@ class Record:
         return total
 
     def temperature(self, name: str) -> Signal:
-        """Temperature of an element, K: one value for the study."""
+        """Temperature of an element, K: one value for the study, or its course where the element heats up in it."""
         value = self.solution.temperature(self.part(name).element.name)
-        return self.keep(("temperature", name), lambda: Signal.constant(self.times, value, KELVIN))
+        if isinstance(value, float):
+            return self.keep(("temperature", name), lambda: Signal.constant(self.times, value, KELVIN))
+        return self.keep(("temperature", name), lambda: Signal.through(self.times, value, KELVIN, self.rough))
 
     # --- windows -----------------------------------------------------------------------------------------------------
 

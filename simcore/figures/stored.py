@@ -53,6 +53,9 @@ def resistive_loss(record: Record, element: str) -> Signal:
 
 def _stored(record: Record, element: str) -> Signal:
     total = Signal.constant(record.times, 0.0, JOULE)
+    carried = record.solution.shown(element, "energy")
+    if carried is not None:
+        total = total + Signal.through(record.times, carried, JOULE, record.rough)
     for branch in _branches(record, element):
         if np.any(branch.inductance.coefficients):
             total = total + (branch.inductance * branch.current * branch.current).scaled(0.5, JOULE)

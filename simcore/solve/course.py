@@ -22,7 +22,7 @@ from simcore.solve.engine import Counts, Engine, Interrupted, Memory, Stepping
 from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.settle import settle
 from simcore.solve.solution import Solution
-from simcore.solve.sources import clock_at_phase, common_period, largest_voltage
+from simcore.solve.sources import clock_at_phase, common_period, largest_voltage, rounding_current
 from simcore.solve.stretch import Stretch
 
 Answer = TypeVar("Answer")
@@ -31,6 +31,8 @@ EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
 _KINKS_A_PERIOD = 100
 _BEGIN = 1e-7
+_EVENT = 1e-3
+"""Largest step in which a threshold is passed, over the largest with a kink."""
 
 
 @dataclass(frozen=True)
@@ -120,7 +122,7 @@ class Course:
 
     def _piece(self, circuit: Circuit, frame: Frame, memory: Memory, start: float, end: float) -> list[Stretch]:
         engine = self._engine(circuit, frame, memory)
-        engine.saved[0] = start
+        engine.move(start)
         stepping = self._stepping(frame, self.study.duration)
         recorded = self._guard(lambda: engine.advance(end, stepping, record=True), start)
         self._forget(memory)
@@ -157,7 +159,8 @@ class Course:
 
     def _engine(self, circuit: Circuit, frame: Frame, memory: Memory) -> Engine:
         kernel = self.kernels.kernel(frame, grounded(frame, circuit.references))
-        engine = Engine(kernel, list(frame.numbers), frame.waveforms, self.counts)
+        rounding = rounding_current(frame, common_period(frame) or 1.0)
+        engine = Engine(kernel, list(frame.numbers), frame.waveforms, rounding, self.counts)
         engine.recall(memory)
         return engine
 
@@ -171,10 +174,12 @@ class Course:
             order=EXTRAPOLATION_ORDER,
             largest=largest,
             kink=scale / _KINKS_A_PERIOD * (self.tolerance / 1e-3) ** (1.0 / 3.0),
+            event=scale / _KINKS_A_PERIOD * (self.tolerance / 1e-3) ** (1.0 / 3.0) * _EVENT,
             smallest=1e-9 * scale,
             begin=_BEGIN * scale,
             memory=scale,
             voltage=largest_voltage(frame, scale),
+            current=max(1e-9, rounding_current(frame, scale) / self.tolerance),
         )
 
     def _guard(self, action: Callable[[], Answer], clock: float) -> Answer:

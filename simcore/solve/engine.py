@@ -6,17 +6,17 @@ Times here are on the sources' clock. Knows kernels and their controls, and noth
 
 from __future__ import annotations
 
-import bisect
 import math
 from collections.abc import Hashable, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
 
-from simcore.components.frame import Waveform
+from simcore.components.frame import Flag, Threshold, Waveform
 from simcore.equations.kernel import Kernel
 from simcore.equations.plain import evaluate
-from simcore.equations.run_source import DONE, FULL, record_width
+from simcore.equations.run_interface import DONE, EVENT, FULL, WEAK, record_width
+from simcore.solve.corners import corner, line
 from simcore.solve.failure import Reason
 from simcore.solve.stretch import Stretch
 
@@ -25,23 +25,27 @@ _COLD_LIMIT = 100
 _LIMIT = 25
 _STEPS_AT_MOST = 2_000_000
 REST_STEP = 1e15
+_CHANGES_AT_MOST = 200
+_START_AGREEMENT = 1e-4
 
 
 @dataclass(frozen=True)
 class Stepping:
     """How a run is stepped: relative tolerance of a step, extrapolation order, largest step in s, largest with a kink
-    inside, smallest step, the step
-    that gives a consistent start, the span in s over which the scale of a state is remembered, and the sources' largest
-    voltage as the scale of what has none yet."""
+    inside, largest in which a threshold is passed, smallest step, the step
+    that gives a consistent start, the span in s over which the scale of a state is remembered, the sources' largest
+    voltage as the scale of what has none yet, and the least current in A that rounding lets be told."""
 
     tolerance: float
     order: int
     largest: float
     kink: float
+    event: float
     smallest: float
     begin: float
     memory: float
     voltage: float
+    current: float
 
 
 @dataclass
@@ -55,7 +59,7 @@ class Counts:
     weak: int = 0
 
     def add(self, result: tuple[int, ...]) -> None:
-        _, _, steps, rejected, solves, iterations, weak = result
+        _, _, steps, rejected, solves, iterations, weak, _ = result
         self.steps += steps
         self.rejected += rejected
         self.solves += solves
@@ -78,12 +82,15 @@ Memory = dict[tuple[Hashable, ...], float]
 class Engine:
     """A kernel with its numbers and present state.
 
-    saved: the kernel's own numbers (see run_source), the first being the time on the sources' clock in s
+    rounding: of a branch's current, in A
+    saved: the kernel's own numbers (see run_interface), the first being the time on the sources' clock in s; pending:
+    flags that change at a time to come; told: what thresholds had to tell, with the time
     """
 
     kernel: Kernel
     numbers: list[float]
     waveforms: list[Waveform]
+    rounding: float = 0.0
     counts: Counts = field(default_factory=Counts)
 
     def __post_init__(self) -> None:
@@ -92,6 +99,8 @@ class Engine:
         self._junctions = len(self.kernel.system.junctions)
         self._record: list[float] = []
         self._response: list[float] | None = None
+        self.pending: list[tuple[float, Flag, bool]] = []
+        self.told: list[tuple[float, str]] = []
 
     # --- state by name, so that it can move between forms of the equations ---
 
@@ -99,6 +108,15 @@ class Engine:
         """Write the present states and junction voltages to a memory by element."""
         for key, position in self._positions():
             memory[key] = self.saved[position]
+        frame = self.kernel.system.frame
+        for flag in frame.flags:
+            memory[(flag.element, flag.name, "flag")] = self.numbers[flag.position]
+            for up in (False, True):
+                key = (flag.element, flag.name, "pending", up)
+                memory.pop(key, None)
+                times = [time for time, other, value in self.pending if other == flag and value == up]
+                if times:
+                    memory[key] = min(times) - self.saved[0]
 
     def recall(self, memory: Memory) -> None:
         """Take states and junction voltages from a memory; what it lacks starts at its initial value."""
@@ -107,6 +125,17 @@ class Engine:
         for key, position in self._positions():
             start = initial[position - 2] if position < 2 + self._states else 0.0
             self.saved[position] = memory.get(key, start)
+        for flag in self.kernel.system.frame.flags:
+            self.numbers[flag.position] = memory.get((flag.element, flag.name, "flag"), self.numbers[flag.position])
+            for up in (False, True):
+                key = (flag.element, flag.name, "pending", up)
+                if key in memory:
+                    self.pending.append((self.saved[0] + memory[key], flag, up))
+
+    def move(self, time: float) -> None:
+        """Set the sources' clock; what is pending keeps its distance."""
+        self.pending = [(each + time - self.saved[0], flag, up) for each, flag, up in self.pending]
+        self.saved[0] = time
 
     def _positions(self) -> list[tuple[tuple[Hashable, ...], int]]:
         branches = self.kernel.system.frame.branches
@@ -185,10 +214,12 @@ class Engine:
     def _single(self, time: float, step: float) -> np.ndarray:
         """One backward-Euler step of a given length that ends at a time."""
         self.saved[0], self.saved[1] = time - step, step
-        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, 1.0, 1.0, 1.0, 1e-6, math.inf)
+        floors = (1.0, self.rounding)
+        limits = (1.0, _START_AGREEMENT, math.inf, math.inf)
+        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, *floors, *limits)
         if self.saved[0] == time:
             raise Interrupted(Reason.NO_CONVERGENCE, time)
-        written = self._call(controls)
+        written, _ = self._call(controls)
         columns = len(self.kernel.system.columns)
         return np.array(self._record[written - 2 * columns - 1 : written - 1]).reshape(columns, 2)[:, 1]
 
@@ -197,13 +228,70 @@ class Engine:
         stretches = []
         while self.saved[0] < end:
             time = self.saved[0]
-            corner = min(end, self._next_corner(time))
-            first = self.begin(time, stepping.begin)
-            self.saved[1] = min(stepping.largest, 1e-3 * stepping.memory, max(corner - time, stepping.smallest))
-            chunks = self._to_corner(corner, stepping, record)
-            if record:
-                stretches.append(self._recorded(time, first, chunks, stepping.order))
+            first, numbers = self._begun(time, stepping.begin), list(self.numbers)
+            stop = min(end, self._next_corner(time), *(instant for instant, _, _ in self.pending))
+            self.saved[1] = min(stepping.largest, 1e-3 * stepping.memory, max(stop - time, stepping.smallest))
+            chunks = self._to_corner(stop, stepping, record)
+            if record and self.saved[0] > time:
+                stretches.append(self._recorded(time, first, chunks, numbers, stepping.order))
         return stretches
+
+    # --- flags ---
+
+    def _begun(self, time: float, step: float) -> np.ndarray:
+        """A consistent start in which every flag stands as its thresholds ask. Returns the columns."""
+        for _ in range(_CHANGES_AT_MOST):
+            if self._fall_due(time):
+                self._forget_guesses()
+            columns = self.begin(time, step)
+            passed = self._passed()
+            if passed is None:
+                return columns
+            self._change(passed, time)
+            self._forget_guesses()
+        raise Interrupted(Reason.CHATTER, time, f"at {self.kernel.system.frame.thresholds[passed].element}")
+
+    def _fall_due(self, time: float) -> bool:
+        """Change the flags whose time has come; whether there were any."""
+        slack = 1e-12 * abs(time)
+        due = [each for each in self.pending if each[0] <= time + slack]
+        for _, flag, up in due:
+            self.numbers[flag.position] = float(up)
+        self.pending = [each for each in self.pending if each[0] > time + slack]
+        return bool(due)
+
+    def _forget_guesses(self) -> None:
+        """A law that has changed may not stand the voltage that its branch had: start its iteration from none."""
+        first = 2 + self._states
+        for position in range(first, first + self._junctions):
+            self.saved[position] = min(self.saved[position], 0.0)
+
+    def _passed(self) -> int | None:
+        """The first threshold that counts and is passed at the present start."""
+        thresholds = self.kernel.system.frame.thresholds
+        reached = self.saved[len(self.saved) - len(thresholds) :]
+        for index, threshold in enumerate(thresholds):
+            if reached[index] > 0.0 and self._counts(threshold):
+                return index
+        return None
+
+    def _counts(self, threshold: Threshold) -> bool:
+        return all((self.numbers[flag.position] > 0.5) == up for flag, up in threshold.armed)
+
+    def _change(self, index: int, time: float) -> None:
+        """Change a passed threshold's flags, the first at once and the others after its delay."""
+        frame = self.kernel.system.frame
+        threshold = frame.thresholds[index]
+        delay = threshold.delay
+        if threshold.turns and frame.sines:
+            delay += threshold.turns / frame.sines[0][0]
+        for position, (flag, up) in enumerate(threshold.sets):
+            if position == 0 or delay == 0.0:
+                self.numbers[flag.position] = float(up)
+            else:
+                self.pending.append((time + delay, flag, up))
+        if threshold.tells:
+            self.told.append((time, f"{threshold.element} {threshold.tells}"))
 
     def respond(self, end: float, stepping: Stepping) -> np.ndarray | None:
         """Run to a time and give the derivative of the states there by those at the start, shape (states, states), a
@@ -231,23 +319,27 @@ class Engine:
             1.0 if record else 0.0,
             _ROOM,
             0.01 * stepping.voltage,
-            self._current_floor(),
+            max(stepping.current, self._current_floor()),
             30.0 * stepping.tolerance,
             min(1e-2, math.sqrt(0.3 * stepping.tolerance)),
             stepping.kink,
+            stepping.event,
         )
         chunks = []
         while True:
-            written = self._call(controls)
+            written, passed = self._call(controls)
             if record:
                 chunks.append(np.array(self._record[:written]).reshape(-1, width))
-            if self.saved[0] >= corner:
+            if passed is not None:
+                self._change(passed, self.saved[0])
+                self._forget_guesses()
+            if self.saved[0] >= corner or passed is not None:
                 return chunks
             if self.counts.steps > _STEPS_AT_MOST:
                 raise Interrupted(Reason.WORK, self.saved[0])
 
     def _current_floor(self) -> float:
-        """One per cent of the largest current the run has seen, and never nothing."""
+        """One per cent of the largest current the run has seen."""
         first = 2 + self._states + self._junctions
         peaks = [
             self.saved[first + index]
@@ -256,25 +348,25 @@ class Engine:
         ]
         watched = first + self._states
         peaks += self.saved[watched : watched + len(self.kernel.watched)]
-        return max(1e-9, 0.01 * max(peaks, default=0.0))
+        return 0.01 * max(peaks, default=0.0)
 
-    def _call(self, controls: tuple[float, ...]) -> int:
-        """Run the kernel once; returns how many numbers it recorded. A pivot that shrank to rounding is answered by
-        going back and on with the sparse LU, which may pivot."""
+    def _call(self, controls: tuple[float, ...]) -> tuple[int, int | None]:
+        """Run the kernel once; returns how many numbers it recorded and the threshold that ended it, if one did. A
+        pivot that shrank to rounding is answered by going back and on with the sparse LU, which may pivot."""
         if not self._record:
             self._record = [0.0] * (_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
         result = self._run(controls)
-        if (result is None or result[-1]) and self.kernel.source:
+        if (result is None or result[WEAK]) and self.kernel.source:
             self.kernel.use_sparse()
             self.saved[:] = before
             result = self._run(controls)
         if result is None:
             raise Interrupted(Reason.SINGULAR, self.saved[0])
         self.counts.add(result)
-        if result[0] not in (DONE, FULL):
+        if result[0] not in (DONE, FULL, EVENT):
             raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0])
-        return result[1]
+        return result[1], result[-1] - 1 if result[0] == EVENT else None
 
     def _run(self, controls: tuple[float, ...]) -> tuple[int, ...] | None:
         """The kernel's answer; None where a pivot vanished altogether."""
@@ -290,58 +382,20 @@ class Engine:
     def _follow(self, time: float) -> None:
         """Set each waveform's straight line to the one that holds just after a time."""
         for waveform in self.waveforms:
-            self.numbers[waveform.base], self.numbers[waveform.slope] = _line(waveform, time)
+            self.numbers[waveform.base], self.numbers[waveform.slope] = line(waveform, time)
 
     def _next_corner(self, time: float) -> float:
-        return min((_corner(waveform, time) for waveform in self.waveforms), default=math.inf)
+        return min((corner(waveform, time) for waveform in self.waveforms), default=math.inf)
 
     # --- records ---
 
-    def _recorded(self, start: float, first: np.ndarray, chunks: list[np.ndarray], order: int) -> Stretch:
+    def _recorded(
+        self, start: float, first: np.ndarray, chunks: list[np.ndarray], numbers: list[float], order: int
+    ) -> Stretch:
         rows = np.concatenate(chunks)
         columns = len(self.kernel.system.columns)
         pairs = rows[:, 1:-1].reshape(len(rows), columns, 2)
         begins = np.concatenate([first[None], pairs[:-1, :, 1]])
         values = np.stack([begins, pairs[:, :, 0], pairs[:, :, 1]], axis=1)
         times = np.concatenate([[start], rows[:, 0]])
-        return Stretch(self.kernel.system, list(self.numbers), times, values, order, rows[:, -1] == 0.0)
-
-
-def _line(waveform: Waveform, time: float) -> tuple[float, float]:
-    """Value at t = 0 and slope of the line that holds from a time on."""
-    shift = 0.0
-    if waveform.period is not None:
-        shift = math.floor(_local(waveform, time)[1]) * waveform.period
-    local = time - shift
-    points = waveform.points
-    after = bisect.bisect_right([instant for instant, _ in points], local * (1.0 + 1e-12))
-    if after == 0:
-        return points[0][1], 0.0
-    if after == len(points):
-        return points[-1][1], 0.0
-    (t0, v0), (t1, v1) = points[after - 1], points[after]
-    slope = (v1 - v0) / (t1 - t0)
-    return v0 - slope * (t0 + shift), slope
-
-
-def _local(waveform: Waveform, time: float) -> tuple[float, float]:
-    """A time within the period and the count of periods before it; a time a rounding before a period's end is its
-    end."""
-    assert waveform.period is not None
-    cycles = time / waveform.period
-    nearest = round(cycles)
-    if abs(cycles - nearest) < 1e-9:
-        cycles = float(nearest)
-    return time - math.floor(cycles) * waveform.period, cycles
-
-
-def _corner(waveform: Waveform, time: float) -> float:
-    """The next instant after a time at which the waveform's line changes."""
-    instants = [instant for instant, _ in waveform.points]
-    if waveform.period is None:
-        return next((instant for instant in instants if instant > time * (1.0 + 1e-12)), math.inf)
-    local, cycles = _local(waveform, time)
-    shift = math.floor(cycles) * waveform.period
-    margin = 1e-9 * waveform.period
-    candidates = [instant for instant in (*instants, waveform.period) if instant > local + margin]
-    return shift + min(candidates)
+        return Stretch(self.kernel.system, numbers, times, values, order, rows[:, -1] == 0.0)

@@ -24,6 +24,10 @@ class Reason(Enum):
         "the sources have no common period",
         "give the study a period, or use an operating_point or transient study",
     )
+    CHATTER = (
+        "parts switch one another on and off without end",
+        "set the level that closes or starts them further from the one that opens or stops them",
+    )
     WORK = (
         "the work bound was reached",
         "shorten the duration or ask for a looser accuracy",

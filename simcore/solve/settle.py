@@ -70,7 +70,7 @@ class _Map:
 
     def _start(self, states: np.ndarray) -> None:
         self.engine.set_states(states.tolist())
-        self.engine.saved[0] = self.clock
+        self.engine.move(self.clock)
 
     def finish(self, states: np.ndarray) -> None:
         """Leave the engine in the settled state, at the start of a period."""

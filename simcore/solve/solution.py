@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Hashable
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from simcore.components import KINDS
-from simcore.components.frame import Part, SeriesBranch
+from simcore.components.frame import SeriesBranch
+from simcore.components.part import Part
 from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.solve.stretch import Stretch
+
+_SMALL_SHARE = 1e-6
 
 
 @dataclass
@@ -69,12 +73,32 @@ class Solution:
         the right integral, and what it reaches between its ends is no extremum."""
         return np.concatenate([stretch.smooth for stretch in self.stretches])
 
-    def temperature(self, element: str) -> float:
-        """What an element runs at, in K."""
+    def shown(self, element: str, name: str) -> np.ndarray | None:
+        """What an element shows of what it carries, such as its "energy" in J, shape (n, 3): zero while it is taken
+        out; None where it shows no such."""
+        found = [stretch.shown(element, name) for stretch in self.stretches]
+        if all(each is None for each in found):
+            return None
+        pairs = zip(found, self.stretches, strict=True)
+        return np.concatenate([np.zeros(stretch.shape) if each is None else each for each, stretch in pairs])
+
+    def temperature(self, element: str) -> float | np.ndarray:
+        """What an element runs at, in K; of one that heats up in the run, shape (n, 3)."""
+        course = self.shown(element, "temperature")
+        if course is not None:
+            return course
         found = self.circuit.elements[element]
         return Part(found, KINDS[found.kind], self.stretches[-1].system.frame, self.circuit.ambient).temperature()
 
     @property
     def kirchhoff(self) -> float:
-        """The worst relative sum of currents at any node and time."""
-        return max(stretch.kirchhoff() for stretch in self.stretches)
+        """The worst sum of currents at any node and time, relative to the largest current there, or to a millionth of
+        the circuit's where a node carries less."""
+        worst: dict[Hashable, float] = {}
+        largest: dict[Hashable, float] = {}
+        for stretch in self.stretches:
+            for unknown, (total, current) in stretch.kirchhoff().items():
+                worst[unknown] = max(worst.get(unknown, 0.0), total)
+                largest[unknown] = max(largest.get(unknown, 0.0), current)
+        floor = max(1e-15, _SMALL_SHARE * max(largest.values(), default=0.0))
+        return max((total / max(largest[unknown], floor) for unknown, total in worst.items()), default=0.0)

@@ -12,6 +12,7 @@ from simcore.equations.plain import evaluate
 
 _MOST_PERIODS = 1000
 _SAMPLES = 64
+_ROUNDING = 3e-15
 
 
 def common_period(frame: Frame) -> float | None:
@@ -52,3 +53,12 @@ def largest_voltage(frame: Frame, span: float) -> float:
     if not any(peaks):
         peaks = [abs(float(value)) for value in evaluate([branch.initial_voltage for branch in series], inputs)]
     return max(peaks, default=0.0) or 1.0
+
+
+def rounding_current(frame: Frame, span: float) -> float:
+    """What rounding may make of the current of a branch, in A: a share of the sources' voltage over the smallest
+    resistance, which is what flows in and out of a node in the equations."""
+    inputs = {f"p{index}": np.float64(number) for index, number in enumerate(frame.numbers)} | {"t": np.float64(0.0)}
+    series = [branch.resistance for branch in frame.branches if isinstance(branch, SeriesBranch)]
+    resistances = [float(value) for value in evaluate([value for value in series if value.constant != 0.0], inputs)]
+    return _ROUNDING * largest_voltage(frame, span) / min(resistances, default=math.inf)

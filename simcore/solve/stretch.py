@@ -102,6 +102,15 @@ class Stretch:
             return self.voltage(branch.weights) / self._evaluate(branch.resistance)
         return self._forced[self.system.reduction.constraints.index(index)]
 
+    def shown(self, element: str, name: str) -> np.ndarray | None:
+        """What an element's branches show of what they carry, added up, shape (n, 3); None where they show no such."""
+        found = [
+            self._values[:, :, index]
+            for key, index in self._columns.items()
+            if isinstance(key, tuple) and len(key) == 3 and (key[0], key[2]) == (element, name)
+        ]
+        return sum(found[1:], found[0]) if found else None
+
     def series(self, branch: int) -> np.ndarray:
         """Resistance, inductance, capacitance (zero where there is none), current, voltage less that of the source.
 
@@ -146,9 +155,8 @@ class Stretch:
     def _number(self, value: Value) -> float:
         return float(evaluate([value], self._inputs)[0])
 
-    def kirchhoff(self) -> float:
-        """The worst sum of currents at an unknown, relative to the largest current there over the stretch, or to a
-        millionth of the circuit's where an unknown carries less."""
+    def kirchhoff(self) -> dict[Hashable, tuple[float, float]]:
+        """At each unknown the worst sum of currents and the largest current, both in A."""
         sums = dict(self._free_sums)
         largest = {unknown: 0.0 for unknown in sums}
         for index, branch in enumerate(self.system.frame.branches):
@@ -158,9 +166,4 @@ class Stretch:
                     largest[unknown] = max(largest[unknown], peak * abs(self._number(weight)))
         for position, index in enumerate(self.system.reduction.constraints):
             self._add(sums, self.system.frame.branches[index].weights, self._forced[position])
-        overall = max(largest.values(), default=0.0)
-        residuals = [
-            float(np.max(np.abs(total), initial=0.0)) / max(largest[unknown], 1e-6 * overall, 1e-15)
-            for unknown, total in sums.items()
-        ]
-        return max(residuals, default=0.0)
+        return {key: (float(np.max(np.abs(total), initial=0.0)), largest[key]) for key, total in sums.items()}
