@@ -8,11 +8,11 @@ from __future__ import annotations
 from collections.abc import Iterable
 from functools import singledispatch
 
+from grammar.axes import Axis, ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
 from grammar.description import (
     Action,
     Ambient,
     Amplitude,
-    Axis,
     Binary,
     Block,
     Branch,
@@ -24,8 +24,6 @@ from grammar.description import (
     Element,
     Event,
     Expression,
-    ExtremesAxis,
-    FaultsAxis,
     Given,
     Item,
     Let,
@@ -34,19 +32,16 @@ from grammar.description import (
     Negative,
     Number,
     Observe,
-    OverAxis,
     Parameter,
     Part,
     Point,
     Purpose,
     Range,
-    RangeAxis,
     Ratings,
     Ratio,
     Reference,
     Repeat,
     Require,
-    SamplesAxis,
     Setting,
     Spread,
     Statement,

@@ -8,15 +8,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
-from grammar.description import (
-    ExtremesAxis,
-    FaultsAxis,
-    Name,
-    OverAxis,
-    RangeAxis,
-    SamplesAxis,
-    Sweep,
-)
+from grammar.axes import ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
+from grammar.description import Name, Sweep
 from grammar.quantities import AMPERE, ANGLE, KELVIN, SECOND, Dimension, Quantity, show
 from grammar.writer import write_expression
 from simcore.components import KINDS

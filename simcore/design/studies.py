@@ -7,8 +7,10 @@ from __future__ import annotations
 
 from typing import Any
 
-from grammar.description import Action, Expression, Name, OverAxis, RangeAxis, Setting, Span, Study, Worst
+from grammar.axes import OverAxis, RangeAxis
+from grammar.description import Action, Expression, Name, Setting, Study, Worst
 from grammar.quantities import ANGLE, NONE, SECOND, Quantity, show
+from grammar.spans import Span
 from simcore.design.circuit import Change, PlannedStudy
 from simcore.design.flatten import Flat
 from simcore.design.measures import Measures
