@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from grammar.axes import ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
-from grammar.description import Name, Sweep
+from grammar.description import Expression, Name, Negative, Sweep
 from grammar.quantities import AMPERE, ANGLE, KELVIN, SECOND, Dimension, Quantity, show
 from grammar.writer import write_expression
 from simcore.components import KINDS
@@ -185,6 +185,8 @@ def sentence(study: PlannedStudy) -> str:
         text += f", with a period of {show(study.period, SECOND)}"
     if study.angle is not None:
         text += f", starting at {show(study.angle, ANGLE)} of the first sine"
+    if study.worst is not None:
+        text += f", starting at the phase of the first sine that makes {_extreme(study.worst)}"
     if study.last is not None:
         text += f", the last {study.last:.0f} periods judged"
     for change in study.changes:
@@ -192,6 +194,13 @@ def sentence(study: PlannedStudy) -> str:
     for time, change in study.events:
         text += f"; at {show(time, SECOND)} {_action(change)}"
     return text
+
+
+def _extreme(figure: Expression) -> str:
+    """What `worst for` a figure comes to: a minus sign asks for the lowest."""
+    if isinstance(figure, Negative):
+        return f"{write_expression(figure.operand)} lowest"
+    return f"{write_expression(figure)} highest"
 
 
 def _action(change: Change) -> str:

@@ -148,9 +148,12 @@ class Record:
         return total
 
     def temperature(self, name: str) -> Signal:
-        """Temperature of an element, K: one value for the study."""
-        value = self.solution.temperature(self.part(name).element.name)
-        return self.keep(("temperature", name), lambda: Signal.constant(self.times, value, KELVIN))
+        """Temperature of an element, K: constant but where a study sets it."""
+        element = self.part(name).element.name
+        return self.keep(
+            ("temperature", element),
+            lambda: Signal.through(self.times, self.solution.temperature(element), KELVIN),
+        )
 
     # --- windows -----------------------------------------------------------------------------------------------------
 

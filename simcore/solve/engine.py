@@ -25,6 +25,9 @@ _COLD_LIMIT = 100
 _LIMIT = 25
 _STEPS_AT_MOST = 2_000_000
 REST_STEP = 1e15
+_REST_AGAIN = (1e9, 1e3, 1.0, 1e-3)
+"""Steps in s that follow it and move nothing: at the long one an inductance is so small a resistance that its current
+is lost in the rounding of its voltage, at these it comes back."""
 
 
 @dataclass(frozen=True)
@@ -90,6 +93,7 @@ class Engine:
         self.saved = [0.0] * self.kernel.saved_count
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
+        self._begun = 0.0
         self._record: list[float] = []
         self._response: list[float] | None = None
 
@@ -144,7 +148,7 @@ class Engine:
         for steps in ([REST_STEP], [10.0**exponent for exponent in range(-12, 16)]):
             self.saved = list(start)
             try:
-                for step in steps:
+                for step in (*steps, *_REST_AGAIN):
                     record = self._single(time, step)
             except Interrupted:
                 continue
@@ -156,6 +160,7 @@ class Engine:
                 values,
                 1,
                 np.array([True]),
+                shortest=_REST_AGAIN[-1],
                 held=True,
             )
         raise Interrupted(Reason.NO_CONVERGENCE, time)
@@ -175,6 +180,7 @@ class Engine:
                 continue
             self.set_states(states)
             self.saved[0] = time
+            self._begun = step * shorter
             return 2.0 * once - twice
         raise Interrupted(Reason.NO_CONVERGENCE, time)
 
@@ -304,7 +310,7 @@ class Engine:
         begins = np.concatenate([first[None], pairs[:-1, :, 1]])
         values = np.stack([begins, pairs[:, :, 0], pairs[:, :, 1]], axis=1)
         times = np.concatenate([[start], rows[:, 0]])
-        return Stretch(self.kernel.system, list(self.numbers), times, values, order, rows[:, -1] == 0.0)
+        return Stretch(self.kernel.system, list(self.numbers), times, values, order, rows[:, -1] == 0.0, self._begun)
 
 
 def _line(waveform: Waveform, time: float) -> tuple[float, float]:

@@ -24,6 +24,10 @@ class Reason(Enum):
         "the sources have no common period",
         "give the study a period, or use an operating_point or transient study",
     )
+    KIRCHHOFF = (
+        "the currents at a node do not add up to zero",
+        "ask for more accuracy, or look for parts whose values lie far out of proportion to the others",
+    )
     WORK = (
         "the work bound was reached",
         "shorten the duration or ask for a looser accuracy",

@@ -6,8 +6,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from simcore.components import KINDS
-from simcore.components.frame import Part, SeriesBranch
+from simcore.components.frame import SeriesBranch, temperature_of
 from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.solve.stretch import Stretch
 
@@ -17,6 +16,7 @@ class Solution:
     """The solved study of a circuit.
 
     times: breakpoints in s of the study's own clock, shape (n + 1,)
+    valued: for each stretch, the circuit with the values its lets had then, nothing opened or shorted
     period: of the sources in s, None where there is none; window: (start, end) in s of what is judged
     first_event: time in s of the study's first event, None where it has none
     notes: what a reader must know of how it was solved; statistics: steps, solves, iterations, rejected, periods
@@ -26,6 +26,7 @@ class Solution:
     study: PlannedStudy
     times: np.ndarray
     stretches: list[Stretch]
+    valued: list[Circuit]
     period: float | None
     window: tuple[float, float]
     first_event: float | None = None
@@ -69,10 +70,14 @@ class Solution:
         the right integral, and what it reaches between its ends is no extremum."""
         return np.concatenate([stretch.smooth for stretch in self.stretches])
 
-    def temperature(self, element: str) -> float:
-        """What an element runs at, in K."""
-        found = self.circuit.elements[element]
-        return Part(found, KINDS[found.kind], self.stretches[-1].system.frame, self.circuit.ambient).temperature()
+    def temperature(self, element: str) -> np.ndarray:
+        """What an element runs at, in K, shape (n, 3); while it is taken out, what it would run at."""
+        described = self.circuit.elements[element]
+        found = [
+            np.full(stretch.shape, temperature_of(circuit.elements.get(element, described), circuit.ambient))
+            for stretch, circuit in zip(self.stretches, self.valued, strict=True)
+        ]
+        return np.concatenate(found)
 
     @property
     def kirchhoff(self) -> float:
