@@ -17,6 +17,7 @@ from simcore.components.kind import Key
 from simcore.design.circuit import Change, Circuit, Element, LetValue, PlannedStudy
 from simcore.design.graph import port_name
 from simcore.design.soundness import parts_of
+from simcore.design.studies import STUDY_MEANINGS
 
 TEMPERATURES = ("temperature", "data_temperature", "ambient", "rated_junction_temperature")
 """Keys that hold a temperature; other values in K are differences or constants."""
@@ -173,11 +174,7 @@ def _let(let: LetValue) -> LetShown:
 
 def sentence(study: PlannedStudy) -> str:
     """What a study will do."""
-    words = {
-        "operating_point": "the rest state, sources at their value at t = 0",
-        "settled": "the periodic steady state",
-    }
-    text = words.get(study.kind, "")
+    text = STUDY_MEANINGS.get(study.kind, "")
     if study.kind == "transient":
         start = f"from the end of {study.after}" if study.after else "from rest"
         text = f"{start}, for {show(study.duration or 0.0, SECOND)}"
