@@ -56,6 +56,9 @@ def _parser() -> argparse.ArgumentParser:
     look.add_argument("file", metavar="FILE", help="a description, ending in .rect")
     _add_settings(look)
     look.set_defaults(action=_look)
+    tidy = commands.add_parser("tidy", help="put files in canonical order and layout, comments kept")
+    tidy.add_argument("files", metavar="FILE", nargs="+", help="a description or a file of data sheets")
+    tidy.set_defaults(action=_tidy)
     return parser
 
 
@@ -112,6 +115,12 @@ def _look(options: argparse.Namespace) -> Outcome:
     from simcore.report.session import look_at
 
     return look_at(options.file, dict(options.settings), say, complain)
+
+
+def _tidy(options: argparse.Namespace) -> Outcome:
+    from simcore.report.tidying import tidy_files
+
+    return tidy_files(options.files, say, complain)
 
 
 def say(text: str) -> None:

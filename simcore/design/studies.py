@@ -45,7 +45,7 @@ STUDY_KEYS = {
     for key in (
         StudyKey("after", "study whose end it starts from", None, ("transient",), "a study", "from rest"),
         StudyKey("duration", "how long it runs", SECOND, ("transient",), default="must be given"),
-        StudyKey("period", "period that it settles to and is judged by", SECOND, _MOVING, default="the sources' common one"),
+        StudyKey("period", "period it settles to and is judged by", SECOND, _MOVING, default="the sources' common one"),
         StudyKey(
             "angle",
             "phase of the first sine at t = 0, or the one that makes a figure highest (with a minus sign lowest)",

@@ -17,7 +17,8 @@ from typing import TextIO
 def whole_file(path: Path) -> Iterator[TextIO]:
     """A UTF-8 text file that appears under its name, complete, when the block ends; line ends are written as given.
 
-    Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one.
+    Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one. What takes the
+    place of another file has its rights.
     """
     path.parent.mkdir(parents=True, exist_ok=True)
     handle, temporary = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=path.parent)
@@ -26,7 +27,7 @@ def whole_file(path: Path) -> Iterator[TextIO]:
             yield file
             file.flush()
             os.fsync(file.fileno())
-        os.chmod(temporary, 0o666 & ~_umask())
+        os.chmod(temporary, path.stat().st_mode & 0o777 if path.exists() else 0o666 & ~_umask())
         os.replace(temporary, path)
     except BaseException:
         with suppress(FileNotFoundError):
