@@ -10,6 +10,7 @@ import os
 import sys
 from collections.abc import Callable, Sequence
 from pathlib import Path
+from typing import TextIO
 
 from simcore.judge.outcome import Outcome
 
@@ -27,7 +28,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     try:
         return action(options).status
     except KeyboardInterrupt:
-        print("interrupted; no file is half written", file=sys.stderr)
+        complain("interrupted; no file is half written")
         return INTERRUPTED
 
 
@@ -124,16 +125,21 @@ def _tidy(options: argparse.Namespace) -> Outcome:
 
 
 def say(text: str) -> None:
-    """Print for people. A reader who has gone away ends the printing and nothing else."""
-    try:
-        print(text, flush=True)
-    except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    """Print for people."""
+    _print(text, sys.stdout)
 
 
 def complain(text: str) -> None:
     """Print a mistake or progress, apart from what people asked for."""
-    print(text, file=sys.stderr, flush=True)
+    _print(text, sys.stderr)
+
+
+def _print(text: str, stream: TextIO) -> None:
+    """Print to a stream. A reader who has gone away ends the printing and nothing else."""
+    try:
+        print(text, file=stream, flush=True)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
 
 
 if __name__ == "__main__":

@@ -13,6 +13,14 @@ from pathlib import Path
 from typing import TextIO
 
 
+def why_unwritable(folder: Path) -> str:
+    """Why files can't go to a folder that may have to be made first, "" where nothing is known against it."""
+    nearest = next((place for place in (folder, *folder.absolute().parents) if place.exists()), Path())
+    if not nearest.is_dir():
+        return f"{nearest} is no folder"
+    return "" if os.access(nearest, os.W_OK | os.X_OK) else f"there is no right to write to {nearest}"
+
+
 @contextmanager
 def whole_file(path: Path) -> Iterator[TextIO]:
     """A UTF-8 text file that appears under its name, complete, when the block ends; line ends are written as given.
