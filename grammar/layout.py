@@ -5,6 +5,7 @@ A comment stays with the statement it stands before or behind. Knows texts and d
 
 from __future__ import annotations
 
+from bisect import bisect, bisect_left
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from itertools import groupby
@@ -262,7 +263,7 @@ class _Commented:
     def _as_written(self, piece: Piece) -> list[str] | None:
         """The head of a piece as it stands, where it has comments inside."""
         start, end = piece.tokens[0].start, piece.tokens[-1].end
-        if not any(start < comment < end for comment in self._comments):
+        if bisect(self._comments, start) == bisect_left(self._comments, end):
             return None
         first, *others = [line.strip() for line in self.text[start:end].split("\n")]
         return [first, *(_INDENT + line for line in others if line)]
@@ -294,9 +295,9 @@ class _Commented:
             texts = [[(event, write_event(event))] for event in statement.events]
         else:
             settings = [(setting, write_setting(setting)) for setting in statement.settings]
-            texts = [
-                [pair for pair in settings if part.tokens[0].start <= pair[0].span.start < part.end] for part in body
-            ]
+            starts = [setting.span.start for setting in statement.settings]
+            cuts = [bisect_left(starts, part.tokens[0].start) for part in body]
+            texts = [settings[cut:after] for cut, after in zip(cuts, [*cuts[1:], len(starts)], strict=True)]
         items = []
         for part, own in zip(body, texts, strict=True):
             head = self._as_written(part)

@@ -95,7 +95,10 @@ def _binary(expression: Binary) -> tuple[str, int]:
     operator = expression.operator
     strength = _STRENGTH[operator]
     if operator == "^":
-        return f"{_within(expression.left, _ATOM)}^{_within(expression.right, _SIGN)}", _POWER
+        base = _within(expression.left, _ATOM)
+        if isinstance(expression.left, Number) and expression.left.unit:
+            base = f"({base})"
+        return f"{base}^{_within(expression.right, _SIGN)}", _POWER
     left, right = _within(expression.left, strength), _within(expression.right, strength + 1)
     return f"{left} {operator} {right}", strength
 
@@ -113,7 +116,15 @@ def _part(part: Part) -> str:
 def _index(index: Expression | Range) -> str:
     if isinstance(index, Range):
         return f"{_index(index.first)}..{_index(index.last)}"
-    return write_expression(index).replace(" ", "")
+    text = write_expression(index)
+    return text.replace(" ", "") if _is_count(index) else text
+
+
+def _is_count(expression: Expression) -> bool:
+    """Whether an index is made of names and plain numbers, as `k-1`; it is written without gaps."""
+    if isinstance(expression, Binary):
+        return _is_count(expression.left) and _is_count(expression.right)
+    return isinstance(expression, Name) or (isinstance(expression, Number) and not expression.unit)
 
 
 # --- settings --------------------------------------------------------------------------------------------------------

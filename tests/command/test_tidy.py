@@ -34,7 +34,7 @@ let N = 3 # bb
 
 repeat k from 1 to N { # chain
     # over the link
-    p -> q[k-1]: resistor R[k], 1 Ohm #r
+    p -> q[k-1]: resistor R[k], 1 Ohm#r
   # last in the chain
 }
 datasheet law: diode as "generic, # no comment" { # sheet
@@ -177,3 +177,24 @@ def test_an_empty_file_and_one_of_comments_alone_stay(tmp_path: Path) -> None:
         file = tmp_path / "empty.rect"
         file.write_text(text)
         assert run(file) == 0 and file.read_text() == text
+
+
+@pytest.mark.parametrize(
+    ("written", "tidied"),
+    [
+        ("let x=(2 V)^2", "let x = (2 V)^2\n"),
+        ("let x=2 V^2", "let x = 2 V^2\n"),
+        ("a->b[ k - 1 ]: resistor R[2*N], 1 Ohm", "a -> b[k-1]: resistor R[2*N], 1 Ohm\n"),
+        ("let x = max(" + ", ".join(["12345.678 mOhm"] * 12) + ")", None),
+        ('require s: mean(u) <= 1 V as "' + "many words, and more, " * 8 + '"', None),
+    ],
+)
+def test_powers_of_units_indices_and_long_lines_keep_their_meaning(written: str, tidied: str | None) -> None:
+    result, mistakes = tidy(written, "text")
+    assert mistakes == [] and result is not None
+    assert read_text(result, "")[0] == read_text(written, "")[0]
+    if tidied is None:
+        assert len(result.splitlines()) == (2 if "max" in written else 1)
+        assert "max" not in written or max(map(len, result.splitlines())) <= layout.WIDTH
+    else:
+        assert result == tidied
