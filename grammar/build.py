@@ -10,7 +10,9 @@ from collections.abc import Callable, Iterable
 from typing import TYPE_CHECKING, Any, cast
 
 from grammar import description as nodes
-from grammar.description import Expression, Given, Name, Setting, Source, Span, Statement
+from grammar.axes import Axis, ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
+from grammar.description import Expression, Given, Name, Setting, Statement
+from grammar.spans import Source, Span
 
 if TYPE_CHECKING:
     from lark import Tree
@@ -193,21 +195,21 @@ class Builder:
         built = tuple(self._axis(axis) for axis in axes)
         return nodes.Sweep(str(name), built, tuple(settings), self._label(label), self.span(tree))
 
-    def _axis(self, tree: Any) -> nodes.Axis:
+    def _axis(self, tree: Any) -> Axis:
         parts = tree.children
         if _is(tree, "range"):
             let, first, last, count, log = parts[:5]
             ends = self.expression(first), self.expression(last)
-            return nodes.RangeAxis(self._ref(let), *ends, self.expression(count), log is not None)
+            return RangeAxis(self._ref(let), *ends, self.expression(count), log is not None)
         if _is(tree, "over"):
-            return nodes.OverAxis(self._ref(parts[0]), self._list(parts[1]))
+            return OverAxis(self._ref(parts[0]), self._list(parts[1]))
         if _is(tree, "extremes"):
-            return nodes.ExtremesAxis(self._names(parts[0].children))
+            return ExtremesAxis(self._names(parts[0].children))
         if _is(tree, "samples"):
-            return nodes.SamplesAxis(self.expression(parts[0]), self._names(parts[1].children))
+            return SamplesAxis(self.expression(parts[0]), self._names(parts[1].children))
         faults = tuple(dict.fromkeys(str(each.children[0]) for each in parts if _is(each, "fault")))
         kind = next((str(each.children[0]) for each in parts if _is(each, "each")), None)
-        return nodes.FaultsAxis(faults, self._names(parts), kind)
+        return FaultsAxis(faults, self._names(parts), kind)
 
     # --- what a key is given -------------------------------------------------------------------------------------
 

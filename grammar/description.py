@@ -8,22 +8,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
-
-@dataclass(frozen=True)
-class Source:
-    """A text and the name it is shown under in messages."""
-
-    name: str
-    text: str = field(repr=False)
-
-
-@dataclass(frozen=True)
-class Span:
-    """The half-open range of characters [start, end) of a source."""
-
-    source: Source
-    start: int
-    end: int
+from grammar.axes import Axis
+from grammar.spans import Source, Span
 
 
 def _span() -> Span | None:
@@ -354,48 +340,6 @@ class Require:
     claim: Comparison | Ratings
     label: str | None = None
     span: Span | None = _span()
-
-
-@dataclass(frozen=True)
-class RangeAxis:
-    let: Name
-    first: Expression
-    last: Expression
-    count: Expression
-    logarithmic: bool
-
-
-@dataclass(frozen=True)
-class OverAxis:
-    let: Name
-    values: Listed
-
-
-@dataclass(frozen=True)
-class ExtremesAxis:
-    """names is () for `each let`."""
-
-    names: tuple[Name, ...]
-
-
-@dataclass(frozen=True)
-class SamplesAxis:
-    """names is () for `each let`."""
-
-    count: Expression
-    names: tuple[Name, ...]
-
-
-@dataclass(frozen=True)
-class FaultsAxis:
-    """faults holds "open", "short" or both; each is a kind or "element", else names are listed."""
-
-    faults: tuple[str, ...]
-    names: tuple[Name, ...]
-    each: str | None = None
-
-
-Axis = RangeAxis | OverAxis | ExtremesAxis | SamplesAxis | FaultsAxis
 
 
 @dataclass(frozen=True)

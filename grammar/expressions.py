@@ -9,9 +9,10 @@ import difflib
 import math
 from collections.abc import Callable, Iterable
 
-from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Range, Span
+from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Range
 from grammar.mistakes import Mistake
 from grammar.quantities import ANGLE, NONE, Quantity, quantity, unit_of
+from grammar.spans import Span
 
 Lookup = Callable[[Name], Quantity]
 FUNCTIONS = ("sqrt", "exp", "log", "sin", "cos", "abs", "min", "max")

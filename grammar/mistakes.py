@@ -6,7 +6,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from grammar.description import Span
+from grammar.spans import Span
 
 
 @dataclass(frozen=True)

@@ -12,10 +12,11 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeVar
 
 from grammar.build import Builder, Unbuildable
-from grammar.description import Description, Event, Expression, Setting, Source, Span, Statement
+from grammar.description import Description, Event, Expression, Setting, Statement
 from grammar.expressions import nearest
 from grammar.mistakes import Mistake
 from grammar.scanner import Piece, Token, pieces_of
+from grammar.spans import Source, Span
 from grammar.wording import FORMS, NEVER_NAMES, expected, near_keyword, no_unit, strange
 
 if TYPE_CHECKING:

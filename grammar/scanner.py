@@ -10,9 +10,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
-from grammar.description import Source, Span
 from grammar.mistakes import Mistake
 from grammar.quantities import quantity
+from grammar.spans import Source, Span
 
 DEEPEST_BRACKETS = 60
 DEEPEST_BODIES = 16

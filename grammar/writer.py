@@ -1,6 +1,6 @@
-"""Descriptions as canonical text: what is read from it means the same, and writing that again changes nothing.
+"""Statements as canonical text: what is read from it means the same, and writing that again changes nothing.
 
-Knows descriptions only. Statements keep their order; `in_order` puts them in the order that a design is read in.
+Knows descriptions only; `grammar.layout` puts the lines of a whole text together.
 """
 
 from __future__ import annotations
@@ -8,24 +8,21 @@ from __future__ import annotations
 from collections.abc import Iterable
 from functools import singledispatch
 
+from grammar.axes import Axis, ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
 from grammar.description import (
     Action,
     Ambient,
     Amplitude,
-    Axis,
     Binary,
     Block,
     Branch,
     Call,
     Comparison,
     Datasheet,
-    Description,
     Each,
     Element,
     Event,
     Expression,
-    ExtremesAxis,
-    FaultsAxis,
     Given,
     Item,
     Let,
@@ -34,19 +31,16 @@ from grammar.description import (
     Negative,
     Number,
     Observe,
-    OverAxis,
     Parameter,
     Part,
     Point,
     Purpose,
     Range,
-    RangeAxis,
     Ratings,
     Ratio,
     Reference,
     Repeat,
     Require,
-    SamplesAxis,
     Setting,
     Spread,
     Statement,
@@ -61,27 +55,6 @@ from grammar.description import (
 _INDENT = "    "
 _SUM, _PRODUCT, _SIGN, _POWER, _ATOM = range(1, 6)
 _STRENGTH = {"+": _SUM, "-": _SUM, "*": _PRODUCT, "/": _PRODUCT, "^": _POWER}
-_ORDER = (Purpose, Use, Require, Study, Let, Ambient, Datasheet, Block, Element, Repeat, Reference, Observe, Sweep)
-
-
-def write(description: Description) -> str:
-    """The text of a description, statements in their order, groups of a kind parted by an empty line."""
-    lines: list[str] = []
-    before: type | None = None
-    for statement in description.statements:
-        if before is not None and (type(statement) is not before or isinstance(statement, (Block, Datasheet, Repeat))):
-            lines.append("")
-        lines += write_statement(statement)
-        before = type(statement)
-    return "\n".join(lines) + ("\n" if lines else "")
-
-
-def in_order(description: Description) -> Description:
-    """The same statements in the order of reading: what must hold, how it is judged, then the circuit."""
-    ranks = {kind: rank for rank, kind in enumerate(_ORDER)}
-    ordered = sorted(description.statements, key=lambda statement: ranks[type(statement)])
-    return Description(tuple(ordered), description.source)
-
 
 # --- expressions -----------------------------------------------------------------------------------------------------
 
@@ -122,7 +95,10 @@ def _binary(expression: Binary) -> tuple[str, int]:
     operator = expression.operator
     strength = _STRENGTH[operator]
     if operator == "^":
-        return f"{_within(expression.left, _ATOM)}^{_within(expression.right, _SIGN)}", _POWER
+        base = _within(expression.left, _ATOM)
+        if isinstance(expression.left, Number) and expression.left.unit:
+            base = f"({base})"
+        return f"{base}^{_within(expression.right, _SIGN)}", _POWER
     left, right = _within(expression.left, strength), _within(expression.right, strength + 1)
     return f"{left} {operator} {right}", strength
 
@@ -139,8 +115,16 @@ def _part(part: Part) -> str:
 
 def _index(index: Expression | Range) -> str:
     if isinstance(index, Range):
-        return f"{write_expression(index.first)}..{write_expression(index.last)}"
-    return write_expression(index)
+        return f"{_index(index.first)}..{_index(index.last)}"
+    text = write_expression(index)
+    return text.replace(" ", "") if _is_count(index) else text
+
+
+def _is_count(expression: Expression) -> bool:
+    """Whether an index is made of names and plain numbers, as `k-1`; it is written without gaps."""
+    if isinstance(expression, Binary):
+        return _is_count(expression.left) and _is_count(expression.right)
+    return isinstance(expression, Name) or (isinstance(expression, Number) and not expression.unit)
 
 
 # --- settings --------------------------------------------------------------------------------------------------------
@@ -171,12 +155,12 @@ def _item(item: Item) -> str:
     return key + write_expression(item.value) + at
 
 
-def _setting(setting: Setting) -> str:
+def write_setting(setting: Setting) -> str:
     return f"{setting.key} = {write_given(setting.value)}"
 
 
 def _settings(settings: Iterable[Setting]) -> str:
-    return "".join(f", {_setting(setting)}" for setting in settings)
+    return "".join(f", {write_setting(setting)}" for setting in settings)
 
 
 def _names(names: Iterable[Name | Each]) -> str:
@@ -240,7 +224,7 @@ def _spread(spread: Spread) -> str:
 @write_statement.register
 def _(statement: Datasheet) -> list[str]:
     head = f"datasheet {statement.name}: {statement.kind}{_label(statement.label)}"
-    return _braced(head, [_setting(setting) for setting in statement.settings])
+    return _braced(head, [write_setting(setting) for setting in statement.settings])
 
 
 @write_statement.register
@@ -264,11 +248,11 @@ def _(statement: Repeat) -> list[str]:
 @write_statement.register
 def _(statement: Element) -> list[str]:
     value = "" if statement.value is None else f", {write_expression(statement.value)}"
-    head = f"{_terminals(statement.terminals)}: {statement.kind} {write_expression(statement.name)}"
+    head = f"{write_terminals(statement.terminals)}: {statement.kind} {write_expression(statement.name)}"
     return [head + value + _settings(statement.settings) + _label(statement.label)]
 
 
-def _terminals(terminals: Terminals) -> str:
+def write_terminals(terminals: Terminals) -> str:
     nodes = [write_expression(node) for node in terminals.nodes]
     if terminals.form == "branch":
         return " -> ".join(nodes)
@@ -288,12 +272,13 @@ def _(statement: Observe) -> list[str]:
 
 @write_statement.register
 def _(statement: Study) -> list[str]:
-    items = [_setting(setting) for setting in statement.settings] + [_action(action) for action in statement.actions]
+    items = [write_setting(setting) for setting in statement.settings]
+    items += [_action(action) for action in statement.actions]
     head = f"study {statement.name}: {', '.join([statement.kind, *items])}{_label(statement.label)}"
-    return _braced(head, [_event(event) for event in statement.events]) if statement.events else [head]
+    return _braced(head, [write_event(event) for event in statement.events]) if statement.events else [head]
 
 
-def _event(event: Event) -> str:
+def write_event(event: Event) -> str:
     return f"at {write_expression(event.time)}: {_action(event.action)}"
 
 

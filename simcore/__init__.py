@@ -2,14 +2,15 @@
 
 The way of a description, stage by stage, with what each takes and gives:
 
-1. `grammar.reader.read_text`        text -> Description, and all its mistakes at once
-2. `simcore.design.files.load`       file -> Project: the description and every file it uses
-3. `simcore.design.elaborate`        Project, values of lets -> Circuit: flat elements with SI values, checked as a
-graph 4. `simcore.components.build`        Circuit -> Frame: each kind's equations as branches between nodes 5.
-`simcore.equations.kernel`        Frame -> Kernel: the whole run as straight-line code 6. `simcore.solve`
-Kernel, PlannedStudy -> Solution: traces as quadratic pieces 7. `simcore.figures`                 Solution -> Figure:
-integrals and extrema with error bounds 8. `simcore.judge`                   Requirement, Figure -> Verdict 9.
-`simcore.report`                  Proof -> terminal text, CSV, JSON
+1. `grammar.reader.read_text`     text -> Description, and all its mistakes at once
+2. `simcore.design.files.load`    file -> Project: the description and every file it uses
+3. `simcore.design.elaborate`     Project, values of lets -> Circuit: flat elements with SI values, checked as a graph
+4. `simcore.components.build`     Circuit -> Frame: each kind's equations as branches between nodes
+5. `simcore.equations.kernel`     Frame -> Kernel: the whole run as straight-line code
+6. `simcore.solve`                Kernel, PlannedStudy -> Solution: traces as quadratic pieces
+7. `simcore.figures`              Solution -> Figure: integrals and extrema with error bounds
+8. `simcore.judge`                Requirement, Figure -> Verdict
+9. `simcore.report`               Proof -> terminal text, CSV, JSON
 
 `simcore.proof.prove` walks stages 4 to 8; `simcore.opening` stages 1 to 3. What stands below is the face of both:
 

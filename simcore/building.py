@@ -6,9 +6,9 @@ It knows the language's statements and nothing of circuits.
 from __future__ import annotations
 
 from grammar.description import Description, Statement
+from grammar.layout import write
 from grammar.mistakes import DescriptionError
 from grammar.reader import read_text
-from grammar.writer import write
 from simcore.face import Design
 from simcore.face import read_text as read_design
 
@@ -25,7 +25,7 @@ class Builder:
     >>> print(divider.design().run("rest").figure("mean(voltage(mid))"))
     3 V ± 6 pV
     >>> print(divider.text.splitlines()[2])
-    a -> b: source cell, constant = 9 V
+    a -> b:   source cell, constant = 9 V
     """
 
     def __init__(self, purpose: str = ""):

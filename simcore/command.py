@@ -10,6 +10,7 @@ import os
 import sys
 from collections.abc import Callable, Sequence
 from pathlib import Path
+from typing import TextIO
 
 from simcore.judge.outcome import Outcome
 
@@ -27,7 +28,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     try:
         return action(options).status
     except KeyboardInterrupt:
-        print("interrupted; no file is half written", file=sys.stderr)
+        complain("interrupted; no file is half written")
         return INTERRUPTED
 
 
@@ -56,6 +57,9 @@ def _parser() -> argparse.ArgumentParser:
     look.add_argument("file", metavar="FILE", help="a description, ending in .rect")
     _add_settings(look)
     look.set_defaults(action=_look)
+    tidy = commands.add_parser("tidy", help="put files in canonical order and layout, comments kept")
+    tidy.add_argument("files", metavar="FILE", nargs="+", help="a description or a file of data sheets")
+    tidy.set_defaults(action=_tidy)
     return parser
 
 
@@ -114,17 +118,28 @@ def _look(options: argparse.Namespace) -> Outcome:
     return look_at(options.file, dict(options.settings), say, complain)
 
 
+def _tidy(options: argparse.Namespace) -> Outcome:
+    from simcore.report.tidying import tidy_files
+
+    return tidy_files(options.files, say, complain)
+
+
 def say(text: str) -> None:
-    """Print for people. A reader who has gone away ends the printing and nothing else."""
-    try:
-        print(text, flush=True)
-    except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    """Print for people."""
+    _print(text, sys.stdout)
 
 
 def complain(text: str) -> None:
     """Print a mistake or progress, apart from what people asked for."""
-    print(text, file=sys.stderr, flush=True)
+    _print(text, sys.stderr)
+
+
+def _print(text: str, stream: TextIO) -> None:
+    """Print to a stream. A reader who has gone away ends the printing and nothing else."""
+    try:
+        print(text, file=stream, flush=True)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
 
 
 if __name__ == "__main__":

@@ -15,10 +15,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from grammar.description import Expression
+from grammar.layout import write
 from grammar.mistakes import DescriptionError
 from grammar.quantities import ANGLE, show, unit_of
 from grammar.reader import read_expression
-from grammar.writer import write
 from simcore.design.circuit import Circuit
 from simcore.design.files import Project, load, load_text
 from simcore.design.graph import graph_of

@@ -24,6 +24,7 @@ from simcore.figures.figure import Figure, bounded
 from simcore.figures.overview import signal_rows
 from simcore.figures.record import Record
 from simcore.solve.course import Course, Reached
+from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.solution import Solution
 from simcore.solve.worst import worst_angle
 
@@ -41,6 +42,8 @@ ABSENT = 1e-6
 """Share of the circuit's largest voltage, current or power below which one of them counts as none."""
 WORK = 1e7
 """Solves times recorded columns of a solution after which none tighter is tried."""
+LARGEST_SUM = 1e-3
+"""Sum of the currents at a node, over the largest one there, above which a solution is none."""
 _LOOSEST, _TIGHTEST = 1e-2, 1e-8
 
 
@@ -113,11 +116,16 @@ class _Proof:
         return replace(study, angle=worst_angle(at), worst=None)
 
     def _level(self, study: PlannedStudy, tolerance: float, which: int, earlier: _Level | None) -> _Level:
-        """One solution; a settled state is looked for from where the looser solution found it."""
+        """One solution, held to Kirchhoff's current law; a settled state is looked for from where the looser solution
+        found it."""
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
             before = earlier.left if before is None else before
-        return _Level(*Course(study, self.variant, before, tolerance, self.kernels).solve())
+        solution, left = Course(study, self.variant, before, tolerance, self.kernels).solve()
+        if not solution.kirchhoff <= LARGEST_SUM:
+            detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
+            raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
+        return _Level(solution, left)
 
     def _excess(self, study: PlannedStudy, coarse: Solution, fine: Solution) -> float:
         """The worst bound over what the accuracy allows, of the figures required of the study, else of what is

@@ -51,7 +51,7 @@ def _build(frame: Frame, part: Part) -> None:
 
 FUSE = Kind(
     "fuse",
-    "fuse",
+    "resistance that melts when its squared current has added up",
     "branch",
     (
         Key("rated_current", "current it carries for good", AMPERE, low=0.0, open_low=True, rating=True),

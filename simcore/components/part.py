@@ -11,6 +11,14 @@ from simcore.design.circuit import Element, Port
 from simcore.equations.values import Value
 
 
+def temperature_of(element: Element, ambient: float) -> float:
+    """What an element runs at, in K: its own temperature, else its ambient's, else that of the circuit (ambient)."""
+    for key in ("temperature", "ambient"):
+        if element.given.get(key) is not None:
+            return float(element.given[key])
+    return ambient
+
+
 class Part:
     """One element as its kind's physics sees it: given values and defaults as numbers or as parameters of the frame."""
 
@@ -47,11 +55,8 @@ class Part:
         return self._frame.parameter(0.0 if number is None else number, positive)
 
     def temperature(self) -> float:
-        """What the element runs at, in K: its own temperature, else its ambient's, else that of the circuit."""
-        for key in ("temperature", "ambient"):
-            if key in self._kind.key and self._element.given.get(key) is not None:
-                return float(self._element.given[key])
-        return self._ambient
+        """What the element runs at, in K; see temperature_of."""
+        return temperature_of(self._element, self._ambient)
 
     @property
     def moment(self) -> float:

@@ -8,8 +8,9 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Any
 
-from grammar.description import Expression, Span, Sweep
+from grammar.description import Expression, Sweep
 from grammar.quantities import Quantity
+from grammar.spans import Span
 
 
 @dataclass(frozen=True)

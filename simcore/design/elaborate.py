@@ -8,9 +8,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import replace
 
-from grammar.description import Element, Expression, Let, Name, Span
+from grammar.description import Element, Expression, Let, Name
 from grammar.mistakes import Mistake
 from grammar.quantities import KELVIN, NONE, Quantity, unit_of
+from grammar.spans import Span
 from simcore.components import KINDS
 from simcore.components.kind import Kind
 from simcore.design.circuit import Circuit, LetValue, Observed, Port

@@ -9,9 +9,10 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 
-from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Observe, Span
+from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Observe
 from grammar.expressions import FUNCTIONS
 from grammar.quantities import NONE, Dimension, Quantity, unit_of
+from grammar.spans import Span
 from simcore.design.circuit import Element
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, named, span_of, suggest
 from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure

@@ -8,15 +8,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
-from grammar.description import (
-    ExtremesAxis,
-    FaultsAxis,
-    Name,
-    OverAxis,
-    RangeAxis,
-    SamplesAxis,
-    Sweep,
-)
+from grammar.axes import ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
+from grammar.description import Expression, Name, Negative, Sweep
 from grammar.quantities import AMPERE, ANGLE, KELVIN, SECOND, Dimension, Quantity, show
 from grammar.writer import write_expression
 from simcore.components import KINDS
@@ -25,6 +18,7 @@ from simcore.design.circuit import Change, Circuit, Element, LetValue, PlannedSt
 from simcore.design.graph import port_name
 from simcore.design.sensing import write_sensed
 from simcore.design.soundness import parts_of
+from simcore.design.studies import STUDY_MEANINGS
 
 TEMPERATURES = ("temperature", "data_temperature", "ambient", "rated_junction_temperature")
 """Keys that hold a temperature; other values in K are differences or constants."""
@@ -188,11 +182,7 @@ def _let(let: LetValue) -> LetShown:
 
 def sentence(study: PlannedStudy) -> str:
     """What a study will do."""
-    words = {
-        "operating_point": "the rest state, sources at their value at t = 0",
-        "settled": "the periodic steady state",
-    }
-    text = words.get(study.kind, "")
+    text = STUDY_MEANINGS.get(study.kind, "")
     if study.kind == "transient":
         start = f"from the end of {study.after}" if study.after else "from rest"
         text = f"{start}, for {show(study.duration or 0.0, SECOND)}"
@@ -200,6 +190,8 @@ def sentence(study: PlannedStudy) -> str:
         text += f", with a period of {show(study.period, SECOND)}"
     if study.angle is not None:
         text += f", starting at {show(study.angle, ANGLE)} of the first sine"
+    if study.worst is not None:
+        text += f", starting at the phase of the first sine that makes {_extreme(study.worst)}"
     if study.last is not None:
         text += f", the last {study.last:.0f} periods judged"
     for change in study.changes:
@@ -207,6 +199,13 @@ def sentence(study: PlannedStudy) -> str:
     for time, change in study.events:
         text += f"; at {show(time, SECOND)} {_action(change)}"
     return text
+
+
+def _extreme(figure: Expression) -> str:
+    """What `worst for` a figure comes to: a minus sign asks for the lowest."""
+    if isinstance(figure, Negative):
+        return f"{write_expression(figure.operand)} lowest"
+    return f"{write_expression(figure)} highest"
 
 
 def _action(change: Change) -> str:

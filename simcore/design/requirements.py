@@ -8,8 +8,9 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import replace
 
-from grammar.description import Call, Comparison, Each, Expression, Name, Ratings, Require, Span, Study
+from grammar.description import Call, Comparison, Each, Expression, Name, Ratings, Require, Study
 from grammar.quantities import NONE, Dimension, show, unit_of
+from grammar.spans import Span
 from grammar.writer import write_expression
 from simcore.components import KINDS
 from simcore.design.circuit import Requirement

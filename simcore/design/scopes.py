@@ -10,10 +10,11 @@ import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
-from grammar.description import Datasheet, Expression, Let, Name, Number, Observe, Parameter, Part, Range, Span
+from grammar.description import Datasheet, Expression, Let, Name, Number, Observe, Parameter, Part, Range
 from grammar.expressions import Poisoned, evaluate, names_in, nearest
 from grammar.mistakes import Mistake
 from grammar.quantities import NONE, Quantity
+from grammar.spans import Span
 from simcore.design.files import Project, Unit
 
 DEEPEST_VALUE = 100

@@ -8,8 +8,8 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 
-from grammar.description import Span
 from grammar.mistakes import Mistake
+from grammar.spans import Span
 from simcore.design.circuit import Circuit, Element, Port
 from simcore.design.graph import forces_voltage, graph_of, is_current_source, is_inductive, port_name
 

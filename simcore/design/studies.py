@@ -5,29 +5,60 @@ It knows the circuit's names, and nothing of how a study is solved.
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Any
 
-from grammar.description import Action, Expression, Name, OverAxis, RangeAxis, Setting, Span, Study, Worst
-from grammar.quantities import ANGLE, NONE, SECOND, Quantity, show
+from grammar.axes import OverAxis, RangeAxis
+from grammar.description import Action, Expression, Name, Setting, Study, Worst
+from grammar.quantities import ANGLE, NONE, SECOND, Dimension, Quantity, show
+from grammar.spans import Span
 from simcore.design.circuit import Change, PlannedStudy
 from simcore.design.flatten import Flat
 from simcore.design.measures import Measures
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, at_word, span_of, suggest, text_of
 from simcore.design.values import EXPRESSIONS, clash
 
-STUDY_KINDS = {
-    "operating_point": ("angle", "accuracy"),
-    "settled": ("period", "angle", "accuracy", "record_every"),
-    "transient": ("after", "duration", "period", "angle", "last", "accuracy", "record_every"),
+STUDY_MEANINGS = {
+    "operating_point": "the rest state, sources at their value at t = 0",
+    "settled": "the periodic steady state",
+    "transient": "the course in time, from rest or from where another study ended",
 }
-_AMOUNTS = {
-    "duration": SECOND,
-    "period": SECOND,
-    "angle": ANGLE,
-    "last": NONE,
-    "accuracy": NONE,
-    "record_every": SECOND,
+_EVERY = tuple(STUDY_MEANINGS)
+_MOVING = ("settled", "transient")
+
+
+@dataclass(frozen=True)
+class StudyKey:
+    """One key of studies. dimension: of its value, None for a name; kinds: which studies take it; takes: what may be
+    written where its unit does not say so; default: in words."""
+
+    name: str
+    meaning: str
+    dimension: Dimension | None
+    kinds: tuple[str, ...] = _EVERY
+    takes: str = ""
+    default: str = ""
+
+
+STUDY_KEYS = {
+    key.name: key
+    for key in (
+        StudyKey("after", "study whose end it starts from", None, ("transient",), "a study", "from rest"),
+        StudyKey("duration", "how long it runs", SECOND, ("transient",), default="must be given"),
+        StudyKey("period", "period it settles to and is judged by", SECOND, _MOVING, default="the sources' common one"),
+        StudyKey(
+            "angle",
+            "phase of the first sine at t = 0, or the one that makes a figure highest (with a minus sign lowest)",
+            ANGLE,
+            takes="deg, or `worst for FIGURE`",
+            default="as the sources have it",
+        ),
+        StudyKey("last", "how many periods at its end are judged", NONE, ("transient",), default="its whole span"),
+        StudyKey("accuracy", "relative error wanted on the figures", NONE, default="0.1 %"),
+        StudyKey("record_every", "interval of its trace", SECOND, _MOVING, default="each step and its middle"),
+    )
 }
+STUDY_KINDS = {kind: tuple(key.name for key in STUDY_KEYS.values() if kind in key.kinds) for kind in STUDY_MEANINGS}
 
 
 def moved_lets(flat: Flat) -> dict[str, None]:
@@ -139,8 +170,8 @@ class Studies:
             quantity = self.scope.quantity(value, self.place)
         except Poisoned:
             return None
-        if quantity.dimension != _AMOUNTS[key]:
-            self.scope.wrong(*clash(key, _AMOUNTS[key], quantity.dimension), span_of(value))
+        if quantity.dimension != (wanted := STUDY_KEYS[key].dimension or NONE):
+            self.scope.wrong(*clash(key, wanted, quantity.dimension), span_of(value))
             return None
         number = quantity.value
         allowed = {

@@ -5,20 +5,9 @@ It knows the circuit's names and lets, and runs nothing.
 
 from __future__ import annotations
 
-from grammar.description import (
-    Expression,
-    ExtremesAxis,
-    FaultsAxis,
-    Name,
-    OverAxis,
-    Part,
-    Range,
-    RangeAxis,
-    SamplesAxis,
-    Setting,
-    Span,
-    Sweep,
-)
+from grammar.axes import ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
+from grammar.description import Expression, Name, Part, Range, Setting, Sweep
+from grammar.spans import Span
 from simcore.components import KINDS
 from simcore.design.circuit import Circuit
 from simcore.design.flatten import Flat, all_kinds

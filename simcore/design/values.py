@@ -27,10 +27,10 @@ from grammar.description import (
     Point,
     Ratio,
     Setting,
-    Span,
     Text,
 )
 from grammar.quantities import AMPERE, ANGLE, Dimension, Quantity, show, unit_of
+from grammar.spans import Span
 from simcore.components.kind import Key, Kind
 from simcore.design.scopes import Place, Poisoned, Scope, Sheet, span_of, suggest
 

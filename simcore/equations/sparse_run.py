@@ -81,7 +81,7 @@ class _Attempt:
         self.event = 0
         inputs = {f"p{index}": number for index, number in enumerate(p)}
         inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
-        fixed = [value for junction in run._system.junctions for value in (junction.scale, junction.critical, junction.straight)]
+        fixed = [value for each in run._system.junctions for value in (each.scale, each.critical, each.straight)]
         numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 3)
         self.scale, self.critical, self.straight = numbers[:, 0], numbers[:, 1], numbers[:, 2] > 0.0
         self.shares = np.array([junction.agreement for junction in run._system.junctions])

@@ -44,7 +44,7 @@ class Solved(Protocol):
 
     def shown(self, element: str, name: str) -> Array | None: ...
 
-    def temperature(self, element: str) -> float | Array: ...
+    def temperature(self, element: str) -> Array: ...
 
 
 class UnknownName(Exception):
@@ -150,11 +150,12 @@ class Record:
         return total
 
     def temperature(self, name: str) -> Signal:
-        """Temperature of an element, K: one value for the study, or its course where the element heats up in it."""
-        value = self.solution.temperature(self.part(name).element.name)
-        if isinstance(value, float):
-            return self.keep(("temperature", name), lambda: Signal.constant(self.times, value, KELVIN))
-        return self.keep(("temperature", name), lambda: Signal.through(self.times, value, KELVIN, self.rough))
+        """Temperature of an element, K: constant but where a study sets it or the element heats up in it."""
+        element = self.part(name).element.name
+        return self.keep(
+            ("temperature", element),
+            lambda: Signal.through(self.times, self.solution.temperature(element), KELVIN, self.rough),
+        )
 
     # --- windows -----------------------------------------------------------------------------------------------------
 

@@ -13,6 +13,7 @@ from grammar.mistakes import DescriptionError, Mistake, render
 from simcore.judge.outcome import Outcome, worst
 from simcore.opening import Opened, open_design
 from simcore.proof import Proof, chosen_studies, prove
+from simcore.report.writing import why_unwritable
 from simcore.solve.failure import NoSolution
 
 Say = Callable[[str], None]
@@ -43,6 +44,8 @@ def run_files(
             studies, wrong = chosen_studies(opened.circuit, wanted, file)
         jobs.append(_Job(file, folder, opened, studies))
         mistakes += wrong
+        if against := why_unwritable(folder):
+            mistakes.append(_unwritable(folder, against))
     if mistakes:
         complain(_rendered(mistakes))
         return Outcome.INPUT_WRONG
@@ -70,11 +73,15 @@ def _run(job: _Job, say: Say, complain: Say) -> tuple[Outcome, Proof | None]:
     try:
         files = write_results(proof, job.folder, job.file)
     except OSError as error:
-        cure = "Name a folder that can be written to with --out."
-        complain(_rendered([Mistake(f"the results can't be written: {error.strerror}", cure, file=str(job.folder))]))
+        complain(_rendered([_unwritable(job.folder, error.strerror or str(error))]))
         return Outcome.INPUT_WRONG, None
     say(report(proof, job.file, files) + "\n")
     return proof.outcome, proof
+
+
+def _unwritable(folder: Path, reason: str) -> Mistake:
+    cure = "Name a folder that can be written to with --out."
+    return Mistake(f"the results can't be written: {reason}", cure, file=str(folder))
 
 
 def look_at(file: str, settings: Mapping[str, str], say: Say, complain: Say) -> Outcome:

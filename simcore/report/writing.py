@@ -13,11 +13,20 @@ from pathlib import Path
 from typing import TextIO
 
 
+def why_unwritable(folder: Path) -> str:
+    """Why files can't go to a folder that may have to be made first, "" where nothing is known against it."""
+    nearest = next((place for place in (folder, *folder.absolute().parents) if place.exists()), Path())
+    if not nearest.is_dir():
+        return f"{nearest} is no folder"
+    return "" if os.access(nearest, os.W_OK | os.X_OK) else f"there is no right to write to {nearest}"
+
+
 @contextmanager
 def whole_file(path: Path) -> Iterator[TextIO]:
     """A UTF-8 text file that appears under its name, complete, when the block ends; line ends are written as given.
 
-    Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one.
+    Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one. What takes the
+    place of another file has its rights.
     """
     path.parent.mkdir(parents=True, exist_ok=True)
     handle, temporary = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=path.parent)
@@ -26,7 +35,7 @@ def whole_file(path: Path) -> Iterator[TextIO]:
             yield file
             file.flush()
             os.fsync(file.fileno())
-        os.chmod(temporary, 0o666 & ~_umask())
+        os.chmod(temporary, path.stat().st_mode & 0o777 if path.exists() else 0o666 & ~_umask())
         os.replace(temporary, path)
     except BaseException:
         with suppress(FileNotFoundError):

@@ -77,7 +77,8 @@ class Course:
         stretch = self._guard(lambda: engine.rest(clock), clock)
         memory: Memory = {}
         engine.remember(memory)
-        return self._solution(changes, [stretch], clock, None, 1.0), Reached(memory, clock, 0.0, changes)
+        valued = self._valued(changes, [stretch])
+        return self._solution(valued, [stretch], clock, None, 1.0), Reached(memory, clock, 0.0, changes)
 
     def _settled(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
         circuit = self.variant(changes)
@@ -92,7 +93,7 @@ class Course:
         found = self._guard(lambda: settle(engine, clock, period, stepping), clock)
         stretches = self._guard(lambda: engine.advance(clock + period, stepping, record=True), clock)
         engine.remember(memory)
-        solution = self._solution(changes, stretches, clock, period, period)
+        solution = self._solution(self._valued(changes, stretches), stretches, clock, period, period)
         solution.notes.append(found.how)
         solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
         return solution, Reached(memory, clock, math.inf, changes)
@@ -104,6 +105,7 @@ class Course:
         events = list(self.study.events)
         clock, period, now = 0.0, None, 0.0
         stretches: list[Stretch] = []
+        valued: list[Circuit] = []
         while now < self.study.duration or not stretches:
             while events and events[0][0] <= now:
                 changes = (*changes, events.pop(0)[1])
@@ -113,9 +115,11 @@ class Course:
                 clock = self._first_clock(circuit, frame, memory)
                 period = self.study.period or common_period(frame)
             end = self._next_change(circuit, moment, now, events)
-            stretches += self._piece(circuit, frame, memory, clock + now, clock + end)
+            piece = self._piece(circuit, frame, memory, clock + now, clock + end)
+            stretches += piece
+            valued += self._valued(changes, piece)
             now = end
-        solution = self._solution(changes, stretches, clock, period, self.study.duration)
+        solution = self._solution(valued, stretches, clock, period, self.study.duration)
         return solution, Reached(memory, clock + now, moment + now, changes)
 
     # --- pieces ---
@@ -191,8 +195,12 @@ class Course:
 
     # --- the result ---
 
+    def _valued(self, changes: tuple[Change, ...], stretches: list[Stretch]) -> list[Circuit]:
+        """For each stretch, the circuit with the lets that changes set."""
+        return [self.variant(tuple(change for change in changes if change.verb == "set"))] * len(stretches)
+
     def _solution(
-        self, changes: tuple[Change, ...], stretches: list[Stretch], clock: float, period: float | None, span: float
+        self, valued: list[Circuit], stretches: list[Stretch], clock: float, period: float | None, span: float
     ) -> Solution:
         times = np.concatenate([stretches[0].times[:1], *(stretch.times[1:] for stretch in stretches)]) - clock
         times[-1] = span
@@ -209,4 +217,4 @@ class Course:
             "weak pivots": counts.weak,
         }
         whole = self.variant(())
-        return Solution(whole, self.study, times, stretches, period, window, first_event, [], statistics)
+        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, [], statistics)

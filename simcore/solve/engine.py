@@ -27,6 +27,9 @@ _STEPS_AT_MOST = 2_000_000
 REST_STEP = 1e15
 _CHANGES_AT_MOST = 200
 _START_AGREEMENT = 1e-4
+_REST_AGAIN = (1e9, 1e3, 1.0, 1e-3)
+"""Steps in s that follow it and move nothing: at the long one an inductance is so small a resistance that its current
+is lost in the rounding of its voltage, at these it comes back."""
 
 
 @dataclass(frozen=True)
@@ -97,6 +100,7 @@ class Engine:
         self.saved = [0.0] * self.kernel.saved_count
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
+        self._first_step = 0.0
         self._record: list[float] = []
         self._response: list[float] | None = None
         self.pending: list[tuple[float, Flag, bool]] = []
@@ -173,7 +177,7 @@ class Engine:
         for steps in ([REST_STEP], [10.0**exponent for exponent in range(-12, 16)]):
             self.saved = list(start)
             try:
-                for step in steps:
+                for step in (*steps, *_REST_AGAIN):
                     record = self._single(time, step)
             except Interrupted:
                 continue
@@ -185,6 +189,7 @@ class Engine:
                 values,
                 1,
                 np.array([True]),
+                shortest=_REST_AGAIN[-1],
                 held=True,
             )
         raise Interrupted(Reason.NO_CONVERGENCE, time)
@@ -204,6 +209,7 @@ class Engine:
                 continue
             self.set_states(states)
             self.saved[0] = time
+            self._first_step = step * shorter
             return 2.0 * once - twice
         raise Interrupted(Reason.NO_CONVERGENCE, time)
 
@@ -398,4 +404,4 @@ class Engine:
         begins = np.concatenate([first[None], pairs[:-1, :, 1]])
         values = np.stack([begins, pairs[:, :, 0], pairs[:, :, 1]], axis=1)
         times = np.concatenate([[start], rows[:, 0]])
-        return Stretch(self.kernel.system, numbers, times, values, order, rows[:, -1] == 0.0)
+        return Stretch(self.kernel.system, numbers, times, values, order, rows[:, -1] == 0.0, self._first_step)

@@ -28,6 +28,10 @@ class Reason(Enum):
         "parts switch one another on and off without end",
         "set the level that closes or starts them further from the one that opens or stops them",
     )
+    KIRCHHOFF = (
+        "the currents at a node do not add up to zero",
+        "ask for more accuracy, or look for parts whose values lie far out of proportion to the others",
+    )
     WORK = (
         "the work bound was reached",
         "shorten the duration or ask for a looser accuracy",

@@ -7,9 +7,8 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from simcore.components import KINDS
 from simcore.components.frame import SeriesBranch
-from simcore.components.part import Part
+from simcore.components.part import temperature_of
 from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.solve.stretch import Stretch
 
@@ -21,6 +20,7 @@ class Solution:
     """The solved study of a circuit.
 
     times: breakpoints in s of the study's own clock, shape (n + 1,)
+    valued: for each stretch, the circuit with the values its lets had then, nothing opened or shorted
     period: of the sources in s, None where there is none; window: (start, end) in s of what is judged
     first_event: time in s of the study's first event, None where it has none
     notes: what a reader must know of how it was solved; statistics: steps, solves, iterations, rejected, periods
@@ -30,6 +30,7 @@ class Solution:
     study: PlannedStudy
     times: np.ndarray
     stretches: list[Stretch]
+    valued: list[Circuit]
     period: float | None
     window: tuple[float, float]
     first_event: float | None = None
@@ -82,13 +83,17 @@ class Solution:
         pairs = zip(found, self.stretches, strict=True)
         return np.concatenate([np.zeros(stretch.shape) if each is None else each for each, stretch in pairs])
 
-    def temperature(self, element: str) -> float | np.ndarray:
-        """What an element runs at, in K; of one that heats up in the run, shape (n, 3)."""
-        course = self.shown(element, "temperature")
-        if course is not None:
-            return course
-        found = self.circuit.elements[element]
-        return Part(found, KINDS[found.kind], self.stretches[-1].system.frame, self.circuit.ambient).temperature()
+    def temperature(self, element: str) -> np.ndarray:
+        """What an element runs at, in K, shape (n, 3); while it is taken out, what it would run at."""
+        described = self.circuit.elements[element]
+        found = []
+        for stretch, circuit in zip(self.stretches, self.valued, strict=True):
+            course = stretch.shown(element, "temperature")
+            if course is None:
+                steady = temperature_of(circuit.elements.get(element, described), circuit.ambient)
+                course = np.full(stretch.shape, steady)
+            found.append(course)
+        return np.concatenate(found)
 
     @property
     def kirchhoff(self) -> float:

@@ -12,7 +12,7 @@ from functools import cached_property
 
 import numpy as np
 
-from simcore.components.frame import CurrentBranch, SeriesBranch, Weights
+from simcore.components.frame import Branch, CurrentBranch, SeriesBranch, Weights
 from simcore.equations.assemble import System, is_resistor
 from simcore.equations.plain import evaluate
 from simcore.equations.reduce import forces_voltage
@@ -20,6 +20,9 @@ from simcore.equations.values import Level, Value
 
 _INSTANTS = np.array([0.0, 1.0 / 3.0, 0.5, 2.0 / 3.0, 1.0])
 """Where in a step known functions of time are evaluated, as shares of it."""
+
+_TOLD = 1e3 * 16.0 * float(np.finfo(float).eps)
+"""A thousand roundings of a voltage, of which a current takes several."""
 
 _MEANS = {
     1: np.array([0.0, 0.0, 0.0, 0.0, 1.0]),
@@ -31,8 +34,8 @@ _MEANS = {
 
 class Stretch:
     """times: breakpoints on the sources' clock in s, shape (n + 1,); values: shape (n, 3, columns), in V and A; order:
-    of the extrapolation that gave them; smooth: shape (n,), whether no kink or jump lies inside a step; held: the
-    sources stood still at the first time."""
+    of the extrapolation that gave them; smooth: shape (n,), whether no kink or jump lies inside a step; shortest: step
+    in s that the values come from, at least; held: the sources stood still at the first time."""
 
     def __init__(
         self,
@@ -42,11 +45,13 @@ class Stretch:
         values: np.ndarray,
         order: int,
         smooth: np.ndarray,
+        shortest: float,
         held: bool = False,
     ):
         self.system = system
         self.times = times
         self.smooth = smooth
+        self._steps = (shortest, max(shortest, float(np.max(np.diff(times)))))
         self._values = values
         self._mean = _MEANS[order]
         self._inputs = {f"p{index}": number for index, number in enumerate(numbers)}
@@ -155,15 +160,26 @@ class Stretch:
     def _number(self, value: Value) -> float:
         return float(evaluate([value], self._inputs)[0])
 
+    def _conductance(self, branch: Branch) -> float:
+        """The largest conductance in S that a series branch has to the steps taken, zero for any other."""
+        if not isinstance(branch, SeriesBranch) or forces_voltage(branch):
+            return 0.0
+        elastance = 0.0 if branch.capacitance is None else 1.0 / self._number(branch.capacitance)
+        resistance, inductance = float(np.min(self._evaluate(branch.resistance))), self._number(branch.inductance)
+        return max(1.0 / (resistance + inductance / step + step * elastance) for step in self._steps)
+
     def kirchhoff(self) -> dict[Hashable, tuple[float, float]]:
-        """At each unknown the worst sum of currents and the largest current, both in A."""
+        """At each unknown the worst sum of currents, and the largest current or, where that is less, the least that the
+        rounding of voltages lets be told to a thousandth; both in A."""
         sums = dict(self._free_sums)
         largest = {unknown: 0.0 for unknown in sums}
+        voltage = max((float(np.max(np.abs(self.node(unknown)))) for unknown in sums), default=0.0)
         for index, branch in enumerate(self.system.frame.branches):
             peak = float(np.max(np.abs(self.current(index)), initial=0.0))
+            told = _TOLD * voltage * self._conductance(branch)
             for unknown, weight in branch.weights:
                 if unknown in largest:
-                    largest[unknown] = max(largest[unknown], peak * abs(self._number(weight)))
+                    largest[unknown] = max(largest[unknown], max(peak, told) * abs(self._number(weight)))
         for position, index in enumerate(self.system.reduction.constraints):
             self._add(sums, self.system.frame.branches[index].weights, self._forced[position])
         return {key: (float(np.max(np.abs(total), initial=0.0)), largest[key]) for key, total in sums.items()}

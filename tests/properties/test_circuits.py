@@ -10,8 +10,8 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 import simcore
+from grammar.layout import write
 from grammar.reader import read_text
-from grammar.writer import write
 from simcore.figures.overview import balance
 
 VALUES = {

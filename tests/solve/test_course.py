@@ -3,13 +3,17 @@
 from __future__ import annotations
 
 import math
+import re
 
 import numpy as np
 import pytest
 
 import simcore
 from simcore.face import Result
+from simcore.solve.course import EXTRAPOLATION_ORDER
 from simcore.solve.failure import NoSolution, Reason
+from simcore.solve.solution import Solution
+from simcore.solve.stretch import Stretch
 
 LAW = "saturation_current = 1 nA, ideality_factor = 1.8"
 TANK = "a -> g: capacitor C, 100 uF, initial_voltage = 10 V\na -> b: resistor R, 1 kOhm\nb -> g: switch S, closed_resistance = 1 mOhm, open_resistance = 1 GOhm"
@@ -116,6 +120,13 @@ def test_operating_point_opens_capacitors_and_shorts_inductors() -> None:
     assert at(solved(text), 0.5) == pytest.approx(4.0, rel=1e-9)
 
 
+def test_an_inductance_at_rest_carries_the_current_of_its_neighbours() -> None:
+    """10 V over 3 and 2 ohm; the voltage across 1 mH or 1 H at rest is nothing, so its current follows from no voltage."""
+    for inductance in ("1 uH", "1 mH", "1 H"):
+        text = f"e -> g: source V, constant = 10 V\ne -> x: inductor L, {inductance}\nx -> a: resistor R1, 3 Ohm\na -> g: resistor R2, 2 Ohm\nreference g\nstudy s: operating_point"
+        assert solved(text).figure("mean(current(L))").value == pytest.approx(2.0, rel=1e-9)
+
+
 def test_operating_point_divides_by_capacitances_where_nothing_else_does() -> None:
     """What no steady state fixes is as reached from rest: charges on a blocked node."""
     text = "e -> g: source V, constant = 9 V\ne -> a: capacitor C1, 1 uF\na -> g: capacitor C2, 2 uF\nreference g\nstudy s: operating_point"
@@ -147,9 +158,10 @@ def test_newton_settles_where_following_does(name: str) -> None:
     design = simcore.read(simcore.library_folder() / f"{name}.rect")
     study = next(key for key, planned in design.circuit.studies.items() if planned.kind == "settled")
     observed = next(iter(design.circuit.observes))
-    text = design.text.replace(
-        f"study {study}: settled",
+    text = re.sub(
+        rf"study {study}: +settled",
         f"study {study}: settled, accuracy = 0.01 %\nstudy long: transient, duration = 2 s, last = 1, accuracy = 0.01 %",
+        design.text,
     )
     both = simcore.read_text(text, name, simcore.library_folder())
     settled, long = both.run(study), both.run("long")
@@ -270,3 +282,63 @@ def test_iterations_a_cycle(name: str) -> None:
         assert course.counts.iterations / cycles <= 1.15 * wanted
         assert course.counts.iterations / course.counts.solves <= 4.0
         assert course.counts.rejected <= 0.25 * course.counts.steps
+
+
+# --- what is read off a solution ---------------------------------------------------------------------------------------------
+
+
+WARM = f"""let T_air = 300 K
+let T_j = 310 K
+e -> g: source V, sine = 10 V peak, frequency = 50 Hz
+e -> a: diode D1, {LAW}, temperature = T_j, data_temperature = 300 K
+a -> g: resistor R1, 1 kOhm
+a -> g: resistor R2, 1 kOhm
+ambient T_air
+reference g
+"""
+
+
+def test_a_temperature_that_a_study_sets_is_what_its_figures_say() -> None:
+    text = WARM + "study s: settled, set T_j = 350 K, set T_air = 320 K\nstudy plain: settled\n"
+    hot, plain = solved(text), solved(text, "plain")
+    assert hot.figure("junction_temperature(D1)").value == pytest.approx(350.0, rel=1e-12)
+    assert hot.figure("mean(temperature(R1))").value == pytest.approx(320.0, rel=1e-12)
+    assert plain.figure("junction_temperature(D1)").value == pytest.approx(310.0, rel=1e-12)
+    assert plain.figure("mean(temperature(R1))").value == pytest.approx(300.0, rel=1e-12)
+
+
+def test_a_temperature_set_on_the_way_is_a_step_and_outlives_opening() -> None:
+    """300 K for 10 ms and 320 K for 30 ms are 315 K in the mean; R2, out from 20 ms on, is as warm as its surroundings."""
+    events = "at 10 ms: set T_air = 320 K\nat 20 ms: open R2\n"
+    result = solved(WARM + f"study s: transient, duration = 40 ms {{\n{events}}}")
+    assert result.figure("mean(temperature(R1))").value == pytest.approx(315.0, rel=1e-9)
+    assert result.figure("mean(temperature(R2))").value == pytest.approx(315.0, rel=1e-9)
+    assert result.figure("valley(temperature(R1))").value == pytest.approx(300.0, rel=1e-12)
+
+
+@pytest.mark.parametrize(("residual", "stopped"), [(0.9e-3, False), (1.1e-3, True), (math.nan, True)])
+def test_currents_that_do_not_add_up_are_no_solution(
+    monkeypatch: pytest.MonkeyPatch, residual: float, stopped: bool
+) -> None:
+    monkeypatch.setattr(Solution, "kirchhoff", property(lambda solution: residual))
+    text = TANK + "\nreference g\nstudy s: transient, duration = 1 ms"
+    if not stopped:
+        assert solved(text).solved.kirchhoff == residual
+        return
+    with pytest.raises(NoSolution, match="do not add up to zero.*cure") as failure:
+        solved(text)
+    assert failure.value.reason is Reason.KIRCHHOFF and failure.value.study == "s"
+
+
+def test_a_wrong_current_shows_in_the_sum_and_rounding_does_not() -> None:
+    """For 20 ms the capacitor feeds 1 Gohm, with less than rounding leaves of its first current; then one voltage of
+    the record is put off by a hundredth."""
+    text = TANK.replace("switch S,", "switch S, closes_at = 20 ms,")
+    solution = solved(text + "\nreference g\nstudy s: transient, duration = 120 ms").solved.record.solution
+    assert len(solution.stretches) == 2 and solution.kirchhoff < 1e-4
+    stretch = solution.stretches[1]
+    values = stretch._values.copy()
+    values[-1, -1, stretch._columns["a"]] *= 1.01
+    off = Stretch(stretch.system, [], stretch.times, values, EXTRAPOLATION_ORDER, stretch.smooth, 1e-6)
+    off._inputs |= stretch._inputs
+    assert max(total / current for total, current in off.kirchhoff().values()) > 1e-3

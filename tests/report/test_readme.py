@@ -1,0 +1,132 @@
+"""The README says what is so: its reference, the output it shows, and its examples."""
+
+from __future__ import annotations
+
+import doctest
+import math
+import os
+import re
+import shutil
+import subprocess
+import sys
+from dataclasses import replace
+from itertools import zip_longest
+from pathlib import Path
+
+import pytest
+
+import simcore
+from simcore.components import KINDS
+from simcore.components.kind import Kind
+from simcore.design.studies import STUDY_KEYS, STUDY_KINDS
+from simcore.figures.catalogue import FIGURES, SIGNALS
+from simcore.report import reference as written
+from simcore.report.reference import BEGIN, END, README, main, reference, with_reference
+
+TEXT = README.read_text("utf-8")
+NUMBER = re.compile(r"(?<![\w.])-?[0-9]+(?:\.[0-9]+)?(?:e[+-]?[0-9]+)?(?![\w.]*[A-Za-z(\[])(?: ([fpnumkMG]?)(V|A|W|J|s)\b)?")
+PREFIX = {"": 1.0, "f": 1e-15, "p": 1e-12, "n": 1e-9, "u": 1e-6, "m": 1e-3, "k": 1e3, "M": 1e6, "G": 1e9}
+
+
+def indented(start: str) -> str:
+    """The indented block of the README that starts with a line."""
+    lines = TEXT.splitlines()
+    first = lines.index(f"    {start}")
+    block = []
+    for line in lines[first:]:
+        if line and not line.startswith("    "):
+            break
+        block.append(line[4:])
+    return "\n".join(block).rstrip() + "\n"
+
+
+# --- the reference -----------------------------------------------------------------------------------------------------------
+
+
+def test_the_reference_is_that_of_the_declarations() -> None:
+    assert with_reference(TEXT) == TEXT, "run python -m simcore.report.reference"
+
+
+def test_the_reference_names_every_declaration() -> None:
+    names = [name for kind in KINDS.values() for name in (kind.name, *kind.key)]
+    names += [*STUDY_KEYS, *STUDY_KINDS, *SIGNALS, *FIGURES]
+    text = reference()
+    assert len(names) > 100
+    assert [name for name in names if not re.search(rf"\b{name}\b", text)] == []
+
+
+@pytest.mark.parametrize("lacking", ["kind", "key", "study key", "study", "figure", "signal"])
+def test_nothing_is_declared_without_a_meaning(monkeypatch: pytest.MonkeyPatch, lacking: str) -> None:
+    diode: Kind = KINDS["diode"]
+    changes = {
+        "kind": (KINDS, "diode", replace(diode, meaning=" ")),
+        "key": (KINDS, "diode", replace(diode, keys=(*diode.keys[:-1], replace(diode.keys[-1], meaning="")))),
+        "study key": (STUDY_KEYS, "last", replace(STUDY_KEYS["last"], meaning="")),
+        "study": (written.STUDY_MEANINGS, "settled", ""),
+        "figure": (FIGURES, "rms", replace(FIGURES["rms"], meaning="")),
+        "signal": (SIGNALS, "power", replace(SIGNALS["power"], meaning="")),
+    }
+    reference()
+    monkeypatch.setitem(*changes[lacking])
+    with pytest.raises(ValueError, match="without a meaning"):
+        reference()
+
+
+def test_the_module_brings_a_readme_up_to_date(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    monkeypatch.setattr(written, "README", tmp_path / "README.md")
+    assert main() == 2
+    written.README.write_text(f"before\n{BEGIN}\nold\n{END}\nafter\n")
+    assert main() == 0
+    assert written.README.read_text("utf-8") == f"before\n{BEGIN}\n\n{reference()}\n\n{END}\nafter\n"
+    with pytest.raises(ValueError, match="markers"):
+        with_reference("no markers")
+
+
+# --- what a run prints -------------------------------------------------------------------------------------------------------
+
+
+def plain(line: str) -> str:
+    """A line without its numbers and spacing; sure: what no machine changes, the units with it."""
+    return re.sub(r"-{2,}", "--", re.sub(r"\s+", " ", NUMBER.sub(lambda match: f"# {match[2] or ''}", line)))
+
+
+def values(line: str) -> list[float]:
+    """The figures of a line, in SI units, without what follows ± or says what a run cost."""
+    if re.match(r"\s*(±|energy|cost|settled|All)", line):
+        return []
+    kept = re.sub(r"± \S+ \S+", "", line)
+    return [float(match[0].split()[0]) * PREFIX[match[1] or ""] for match in NUMBER.finditer(kept)]
+
+
+def test_the_output_shown_is_that_of_a_run(tmp_path: Path) -> None:
+    """Words and units to the letter; figures to a thousandth, since other machines round otherwise."""
+    shutil.copytree(simcore.library_folder(), tmp_path / "circuits")
+    command = [sys.executable, "-m", "simcore.command", "run", "circuits/bench_supply.rect"]
+    environment = {**os.environ, "PYTHONPATH": str(README.parent)}
+    done = subprocess.run(command, cwd=tmp_path, env=environment, capture_output=True, text=True, timeout=120, check=True)
+    real = iter(done.stdout.splitlines())
+    shown = indented("12 V bench supply: bridge with reservoir capacitor").splitlines()
+    assert shown.count("...") == 1 and len(shown) > 30
+    compared = 0
+    for line in shown:
+        if line in ("...", ""):
+            continue
+        found = next((other for other in real if plain(other) == plain(line)), None)
+        assert found is not None, f"a run does not print: {line}"
+        for expected, value in zip_longest(values(line), values(found)):
+            assert math.isclose(expected, value, rel_tol=1e-3), (line, found)
+            compared += 1
+    assert compared > 60
+
+
+# --- examples ----------------------------------------------------------------------------------------------------------------
+
+
+def test_the_python_examples_run() -> None:
+    result = doctest.testfile(str(README), module_relative=False, report=True)
+    assert result.failed == 0 and result.attempted >= 20
+
+
+def test_the_language_in_one_screen_holds_what_it_requires() -> None:
+    proof = simcore.read_text(indented('purpose "5 V for a door bell"                        # one statement a line; a line goes on after a comma')).prove()
+    assert proof.outcome.status == 0 and len(proof.verdicts) == 2
