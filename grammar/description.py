@@ -8,6 +8,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
+from grammar.axes import ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
+
 
 @dataclass(frozen=True)
 class Source:
@@ -234,11 +236,14 @@ class Let:
 
 @dataclass(frozen=True)
 class Datasheet:
+    """whole: False where one of its keys could not be read."""
+
     name: str
     kind: str
     settings: tuple[Setting, ...]
     label: str | None = None
     span: Span | None = _span()
+    whole: bool = field(default=True, compare=False, repr=False)
 
 
 @dataclass(frozen=True)
@@ -356,45 +361,6 @@ class Require:
     span: Span | None = _span()
 
 
-@dataclass(frozen=True)
-class RangeAxis:
-    let: Name
-    first: Expression
-    last: Expression
-    count: Expression
-    logarithmic: bool
-
-
-@dataclass(frozen=True)
-class OverAxis:
-    let: Name
-    values: Listed
-
-
-@dataclass(frozen=True)
-class ExtremesAxis:
-    """names is () for `each let`."""
-
-    names: tuple[Name, ...]
-
-
-@dataclass(frozen=True)
-class SamplesAxis:
-    """names is () for `each let`."""
-
-    count: Expression
-    names: tuple[Name, ...]
-
-
-@dataclass(frozen=True)
-class FaultsAxis:
-    """faults holds "open", "short" or both; each is a kind or "element", else names are listed."""
-
-    faults: tuple[str, ...]
-    names: tuple[Name, ...]
-    each: str | None = None
-
-
 Axis = RangeAxis | OverAxis | ExtremesAxis | SamplesAxis | FaultsAxis
 
 
@@ -414,7 +380,13 @@ Statement = (
 
 @dataclass(frozen=True)
 class Description:
-    """A whole file, in the order written."""
+    """A whole file, in the order written.
+
+    unread: the words of statements that could not be read, which may name anything; lost: whether nobody knows where
+    the statements belong, since braces don't match or the text as a whole could not be read
+    """
 
     statements: tuple[Statement, ...]
     source: Source | None = field(default=None, compare=False, repr=False)
+    unread: frozenset[str] = field(default=frozenset(), compare=False, repr=False)
+    lost: bool = field(default=False, compare=False, repr=False)

@@ -9,14 +9,14 @@ from collections.abc import Mapping
 from dataclasses import replace
 
 from grammar.description import Element, Expression, Let, Name, Span
-from grammar.mistakes import Mistake
+from grammar.mistakes import Mistake, first_of
 from grammar.quantities import KELVIN, NONE, Quantity, unit_of
 from simcore.components import KINDS
 from simcore.components.kind import Kind
 from simcore.design.circuit import Circuit, LetValue, Observed, Port
 from simcore.design.circuit import Element as Component
 from simcore.design.files import Project
-from simcore.design.flatten import Flat, Flattener, is_dotted
+from simcore.design.flatten import Flat, Flattener, TooLarge, is_dotted
 from simcore.design.measures import Measures
 from simcore.design.requirements import Requirements
 from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, at_word, rename_cure, span_of
@@ -36,12 +36,20 @@ def elaborate(
 
     overrides: full names of lets (`C_res`, `S[2].C`) -> a quantity, an expression or a data sheet's name
     again: the same design was found right before; what can't have changed is not looked at twice
+    Of a design with mistakes in its texts, what could be read is looked at: whatever the rest may have named is not
+    called unknown, and the soundness of the graph is left open.
     """
+    nothing = Circuit(project.name, "", (), ROOM, {}, {}, {}, {}, ())
+    if project.lost:
+        return nothing, []
     scope = Scope(project, {})
     builder = _Builder(project, scope, again)
     scope.overrides = builder.overridden(overrides or {})
-    circuit = builder.circuit()
-    return circuit, _once(scope.mistakes)
+    try:
+        circuit = builder.circuit()
+    except TooLarge:
+        circuit = nothing
+    return circuit, first_of(_once(scope.mistakes), project.top.name)
 
 
 def _once(mistakes: list[Mistake]) -> list[Mistake]:
@@ -111,7 +119,7 @@ class _Builder:
             return circuit
         circuit = self._asked(circuit, measures, flat)
         check_unused(self.scope, self.reader, flat)
-        if not self.scope.mistakes and self.elements:
+        if self.project.sound and not self.scope.mistakes and self.elements:
             self.scope.mistakes += unsound(circuit, self.nodes, self.reference_spans)
         return circuit
 
@@ -132,6 +140,7 @@ class _Builder:
             full = self._named(node, place)
             ports = self._ports(node, place, full)
         except Poisoned:
+            self.scope.tear(node.name, *node.terminals.nodes, node.terminals.star)
             return
         if kind.build is None:
             where = at_word(node.span, node.kind, node.terminals.span)

@@ -20,6 +20,7 @@ STUDY_KINDS = {
     "settled": ("period", "angle", "accuracy", "record_every"),
     "transient": ("after", "duration", "period", "angle", "last", "accuracy", "record_every"),
 }
+DEEPEST_AFTER = 100
 _AMOUNTS = {
     "duration": SECOND,
     "period": SECOND,
@@ -57,15 +58,16 @@ class Studies:
         self.flat = flat
         self.place = Place(scope.root)
         self.studies: dict[str, Study] = {}
+        for study in flat.studies:
+            self.studies.setdefault(study.name, study)
 
     def planned(self) -> dict[str, PlannedStudy]:
         """All studies, in the order written."""
         for study in self.flat.studies:
-            if study.name in self.studies:
+            if self.studies[study.name] is not study:
                 self.scope.wrong(
                     f"study {study.name} is declared twice", "Rename one of the two.", at_word(study.span, study.name)
                 )
-            self.studies.setdefault(study.name, study)
         found = {study.name: self._study(study) for study in self.studies.values()}
         self._orders()
         return found
@@ -157,10 +159,9 @@ class Studies:
 
     def _after(self, value: Expression) -> str | None:
         name = value.parts[0].name if isinstance(value, Name) and len(value.parts) == 1 else ""
-        study = next((study for study in self.flat.studies if study.name == name), None)
+        study = self.studies.get(name)
         if study is None:
-            known = [other.name for other in self.flat.studies]
-            self.scope.unknown(name or "here", known, span_of(value), "no study is named")
+            self.scope.unknown(name or "here", list(self.studies), span_of(value), "no study is named")
             return None
         if study.kind == "operating_point":
             cure = "Begin after a settled or transient study."
@@ -175,14 +176,22 @@ class Studies:
             for setting in study.settings:
                 if setting.key == "after" and isinstance(setting.value, Name):
                     after[study.name] = setting.value.parts[0].name
-        for name in after:
-            walk, seen = after.get(name), 0
-            while walk is not None and walk != name and seen <= len(after):
-                walk, seen = after.get(walk), seen + 1
-            if walk == name:
+        depths: dict[str, int] = {}
+        for first in after:
+            path: dict[str, None] = {}
+            name: str | None = first
+            while name is not None and name not in depths and name not in path:
+                path[name] = None
+                name = after.get(name)
+            if name in path:
                 span = at_word(self.studies[name].span, name)
                 self.scope.wrong(f"study {name} comes after itself", "Let one of them start from rest.", span)
-                return
+            below = depths.get(name or "", 0)
+            depths.update((each, below + height) for height, each in enumerate(reversed(path), 1))
+        deep = next((name for name, depth in depths.items() if depth > DEEPEST_AFTER), None)
+        if deep is not None:
+            cure = f"Let one of them start from rest: at most {DEEPEST_AFTER} may follow one another."
+            self.scope.wrong("too many studies start from one another", cure, self.studies[deep].span)
 
     def _events(self, study: Study, duration: float | None) -> tuple[tuple[float, Change], ...]:
         found = []
