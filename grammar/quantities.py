@@ -112,7 +112,7 @@ def _scaled(number: float, scale: float) -> float:
     """number * scale, dividing where the scale is a negative power of ten, so that 4.7 m is the double nearest
     0.0047."""
     inverse = 1.0 / scale
-    exact = scale < 1.0 and inverse == round(inverse) and inverse <= 1e15
+    exact = scale < 1.0 and inverse <= 1e15 and abs(inverse - round(inverse)) <= 1e-12 * inverse
     return number / round(inverse) if exact else number * scale
 
 
