@@ -143,8 +143,12 @@ class _Loader:
             return None, ""
         outside = False
         for base, root in self._places(path):
-            candidate = (base / use.path).resolve()
-            if not candidate.is_file():
+            try:
+                candidate = (base / use.path).resolve()
+                there = candidate.is_file()
+            except (OSError, RuntimeError, ValueError):  # too long a name, links in a circle, a name that can't be one
+                continue
+            if not there:
                 continue
             if candidate.is_relative_to(root):
                 return candidate, candidate.relative_to(root).as_posix()

@@ -95,12 +95,12 @@ class Measures:
             cure = "Write the signal with fewer observes in one another."
             self._wrong(f"more than {DEEPEST_OBSERVE} observes stand in one another", cure, span_of(value))
             raise Poisoned
-        self._depths[entry.full] = depth
         found = self.resolve(value, entry.place)
         if found.sort == "figure":
             cure = "Observe a signal, and ask for its figure in a requirement."
             self._wrong(f"{entry.full} is a figure, not a signal", cure, span_of(value))
             raise Poisoned
+        self._depths[entry.full] = depth
         return found
 
     def resolve(self, expression: Expression, place: Place) -> Resolved:

@@ -17,6 +17,7 @@ from grammar.quantities import NONE, Quantity
 from simcore.design.files import Project, Unit
 
 FEW = 8
+_LARGEST_WHOLE = 10**6
 
 
 @dataclass(frozen=True)
@@ -164,11 +165,13 @@ class Scope:
         if isinstance(index, Range):
             self.wrong("a range of indices stands where one name is wanted", "Give one index.", name.span)
             raise Poisoned
-        if isinstance(index, Number) and not index.unit and index.value == int(index.value):
+        if isinstance(index, Number) and not index.unit and index.value in range(_LARGEST_WHOLE):
             return int(index.value)
         return self.whole(index, place, "an index")
 
-    def whole(self, expression: Expression, place: Place, what: str, low: int = -(10**6), high: int = 10**6) -> int:
+    def whole(
+        self, expression: Expression, place: Place, what: str, low: int = -_LARGEST_WHOLE, high: int = _LARGEST_WHOLE
+    ) -> int:
         """A whole number, such as an index or a bound of a repeat."""
         value = self.quantity(expression, place)
         number = value.value
