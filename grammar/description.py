@@ -382,7 +382,8 @@ Statement = (
 class Description:
     """A whole file, in the order written.
 
-    unread: the words of statements that could not be read, which may name anything; lost: whether nobody knows where
+    unread: the words of statements that could not be read, which may name anything, and "" where one names something
+    that can't be told; lost: whether nobody knows where
     the statements belong, since braces don't match or the text as a whole could not be read
     """
 

@@ -69,16 +69,20 @@ def _order(mistake: Mistake) -> tuple[str, int, str]:
 
 
 def _render_one(mistake: Mistake) -> str:
+    what, cure = _visible(mistake.what), _visible(mistake.cure)
     if mistake.span is None:
-        return f"{mistake.file}: {mistake.what}\n    cure: {mistake.cure}\n"
+        return f"{_visible(mistake.file)}: {what}\n    cure: {cure}\n"
     name, line, column = place(mistake.span)
-    text = _shown(mistake.span.source.text, mistake.span.start)
+    text = _line_around(mistake.span.source.text, mistake.span.start)
     indent = "".join("\t" if letter == "\t" else " " for letter in text[: column - 1])
-    return f"{name}:{line}:{column}: {mistake.what}\n    {text}\n    {indent}^\n    cure: {mistake.cure}\n"
+    return f"{_visible(name)}:{line}:{column}: {what}\n    {_visible(text)}\n    {indent}^\n    cure: {cure}\n"
 
 
-def _shown(text: str, position: int) -> str:
-    """The line around a position; what would steer the terminal it is shown on gets a sign of its own."""
+def _line_around(text: str, position: int) -> str:
     end = text.find("\n", position)
-    line = text[text.rfind("\n", 0, position) + 1 : len(text) if end < 0 else end].rstrip("\r")
-    return "".join(letter if letter.isprintable() or letter == "\t" else _UNPRINTABLE for letter in line)
+    return text[text.rfind("\n", 0, position) + 1 : len(text) if end < 0 else end].rstrip("\r")
+
+
+def _visible(text: str) -> str:
+    """A text with a sign in the place of what would steer the terminal that it is shown on."""
+    return "".join(letter if letter.isprintable() or letter == "\t" else _UNPRINTABLE for letter in text)

@@ -26,6 +26,7 @@ LONGEST_LINE = 10_000
 
 _WITH_BODY = {"datasheet": True, "block": True, "repeat": True, "study": False}
 _STATEMENTS = tuple(form for form in FORMS if form not in ("element", "setting", "event", "expression"))
+_NAMING = ("let", "observe", "study", "datasheet", "block")
 _SPOKEN = {"datasheet": "data sheet", "use": "use", "setting": "key", "require": "requirement", "expression": "value"}
 _STARTS = "A statement starts with its word, as let or study, or with the nodes that an element joins."
 _SMALLER = "Descriptions have up to 250 kB: write copies by `repeat`, and sheets and blocks in files of their own."
@@ -151,13 +152,17 @@ class _Reading:
         return statement
 
     def unread(self) -> frozenset[str]:
-        """The words of the pieces that could not be read."""
+        """The words of the pieces that could not be read, "" where one does not say what it names."""
         found: set[str] = set()
         end = 0
         for piece in sorted(self._unread, key=lambda piece: piece.start):
             text = self.source.text[max(piece.start, end) : piece.end]
-            found.update(token.text for token in tokens_of(text) if token.kind == "word")
+            tokens = tokens_of(text)
+            found.update(token.text for token in tokens if token.kind == "word")
+            found.update("use" for token in tokens if token.kind == "string" and token.text.endswith('.rect"'))
             end = max(end, piece.end)
+            if piece.tokens and _nameless(piece.tokens):
+                found.add("")
         return frozenset(found)
 
     def _read(self, piece: Piece) -> Statement | None:
@@ -205,13 +210,17 @@ class _Reading:
                 first = piece.tokens[0]
                 self._wrong(f"the {_SPOKEN.get(form, form)} has no body", cure, first.start, first.end)
             return ()
+        if form is not None and form not in _WITH_BODY and piece.whole and piece.brace is not None:
+            cure = "Leave them out: only data sheets, blocks, repeats and studies have a body."
+            self._wrong(f"braces can't follow this {_SPOKEN.get(form, form)}", cure, piece.brace.start, piece.brace.end)
+        if form not in _WITH_BODY and piece.tokens:
+            form = next((token.text for token in piece.tokens if token.text in _WITH_BODY), "unknown")
+        if form == "unknown":
+            return ()
         if form == "datasheet":
             return _found(self._setting(part) for inner in piece.body for part in self._keys(inner))
         if form == "study":
             return _found(self._event(inner) for inner in piece.body)
-        if form is not None and form not in _WITH_BODY and piece.whole and piece.brace is not None:
-            cure = "Leave them out: only data sheets, blocks, repeats and studies have a body."
-            self._wrong(f"braces can't follow this {_SPOKEN.get(form, form)}", cure, piece.brace.start, piece.brace.end)
         return self.statements(piece.body)
 
     def _keys(self, piece: Piece) -> list[Sequence[Token]]:
@@ -309,6 +318,10 @@ class _Reading:
             return
         token = tokens[position]
         what, cure = self._misfit_words(form, token, last, accepted, wanted)
+        line = self.source.text.rfind("\n", 0, token.start) + 1
+        above = next((each for each in reversed(tokens[:position]) if each.start < line), None)
+        if above is not None and above.is_mark(","):
+            cure = f"The comma at the end of the line above lets the statement go on here. {cure}"
         self._wrong(what, cure, token.start, token.end)
 
     def _misfit_words(
@@ -320,8 +333,6 @@ class _Reading:
             return f"{token.text} can't be a name", f"Take another word. {FORMS[form]}"
         near = near_keyword(token.text, accepted, _grammar().literals) if token.kind == "word" else None
         cure = FORMS[form] if near is None else f"Did you mean {near}? {FORMS[form]}"
-        if last is not None and last.is_mark(",") and "\n" in self.source.text[last.end : token.start]:
-            cure = f"The comma at the end of the line above lets the statement go on here. {cure}"
         return f"{token.text} can't stand here: {wanted} is expected", cure
 
 
@@ -331,6 +342,15 @@ def _name_of(token: Token, choices: Container[str], grammar: _Grammar) -> str:
     if name is None or (token.kind == "word" and grammar.names.get(token.text, "") in choices):
         return grammar.names.get(token.text, token.text)
     return "NEVER" if name == "NAME" and token.text in NEVER_NAMES else name
+
+
+def _nameless(tokens: Sequence[Token]) -> bool:
+    """Whether a statement should name something, and has no name where that belongs."""
+    words = [token.kind == "word" for token in tokens]
+    if tokens[0].text in _NAMING:
+        return words[1:2] != [True]
+    colons = [position for position, token in enumerate(tokens) if token.is_mark(":")]
+    return bool(colons) and not any(words[position + 1 : position + 3] == [True, True] for position in colons)
 
 
 def _found(parts: Iterable[Built | None]) -> tuple[Built, ...]:

@@ -107,6 +107,7 @@ class _Loader:
                     used.append((statement, found))
                 if found is None or found.description.lost:
                     self.found = False
+        self.found = self.found and "use" not in description.unread
         unit = Unit(name, description, tuple(other for _, other in used))
         self._names(unit, used)
         return unit

@@ -139,7 +139,7 @@ class Scope:
 
     def is_torn(self, text: str) -> bool:
         """Whether a name may be that of something which could not be read."""
-        return bool(self.torn) and any(word in self.torn for word in re.findall(r"\w+", text))
+        return "" in self.torn or (bool(self.torn) and any(word in self.torn for word in re.findall(r"\w+", text)))
 
     @property
     def crowded(self) -> bool:
@@ -279,7 +279,7 @@ class Scope:
     def unknown(self, text: str, known: list[str], span: Span | None, what: str = "nothing is named") -> None:
         """Report a name that stands for nothing, with the nearest that does."""
         if not self.is_torn(text):
-            self.wrong(f"{what} {text}", suggest(text, known), span)
+            self.wrong(f"{what} {text}", suggest(text, [] if self.crowded else known), span)
 
     def entry_value(self, entry: Entry, span: Span | None) -> Value:
         """The value of a let or parameter, worked out once."""

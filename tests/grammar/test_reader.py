@@ -163,7 +163,7 @@ def test_spans_stand_where_the_text_does() -> None:
 def test_all_mistakes_at_once_and_the_rest_is_read() -> None:
     description, mistakes = read_text("let a =\nlet b = 1\nstudy\nxyz\nreference g\n", "text")
     assert len(mistakes) == 3 and len(description.statements) == 2
-    assert description.unread == {"let", "a", "study", "xyz"} and not description.lost
+    assert description.unread == {"let", "a", "study", "xyz", ""} and not description.lost
 
 
 def test_what_stands_in_a_body_that_can_not_be_read() -> None:
