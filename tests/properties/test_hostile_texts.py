@@ -25,8 +25,35 @@ from simcore.report.look import look
 
 LIBRARY = simcore.library_folder()
 WORKED = {path.stem: path.read_text("utf-8") for path in sorted(LIBRARY.rglob("*.rect"))}
-WORDS = sorted({token.text for text in WORKED.values() for token in tokens_of(text) if token.kind in ("word", "mark", "number", "unit", "string")})
-STRANGE = ["1e999", "1e-400", "9^9^9^9", "\0", "\x1b", "\u202e", "\r", "\x0c", "__import__", "[1..9999]", ",\n", "{", "}", "(", "\u00b5F", "1 TV^9 TV^9", "each", '"', "#"]
+WORDS = sorted(
+    {
+        token.text
+        for text in WORKED.values()
+        for token in tokens_of(text)
+        if token.kind in ("word", "mark", "number", "unit", "string")
+    }
+)
+STRANGE = [
+    "1e999",
+    "1e-400",
+    "9^9^9^9",
+    "\0",
+    "\x1b",
+    "\u202e",
+    "\r",
+    "\x0c",
+    "__import__",
+    "[1..9999]",
+    ",\n",
+    "{",
+    "}",
+    "(",
+    "\u00b5F",
+    "1 TV^9 TV^9",
+    "each",
+    '"',
+    "#",
+]
 STEERING = re.compile(r"[\x00-\x08\x0b-\x1f\x7f-\x9f\u202a-\u202e]")
 
 
@@ -65,7 +92,13 @@ def test_any_text_ends_in_a_circuit_or_in_mistakes(text: str) -> None:
 
 def spans(statements) -> list[Span]:
     found = [statement.span for statement in statements]
-    return found + [span for statement in statements for span in spans(getattr(statement, "body", ()) if hasattr(statement, "terminals") or hasattr(statement, "variable") else ())]
+    return found + [
+        span
+        for statement in statements
+        for span in spans(
+            getattr(statement, "body", ()) if hasattr(statement, "terminals") or hasattr(statement, "variable") else ()
+        )
+    ]
 
 
 DAMAGE = ["", "{} 1 2", "? {}", "{})", "@@{}", "zzz zzz {}"]
@@ -78,14 +111,18 @@ def test_a_damaged_statement_makes_no_mistake_elsewhere(data: st.DataObject) -> 
     text = WORKED[data.draw(st.sampled_from(sorted(WORKED)))]
     span = data.draw(st.sampled_from(spans(read_text(text, "x")[0].statements)))
     statement = text[span.start : span.end]
-    token = data.draw(st.sampled_from([token for token in tokens_of(statement) if token.kind not in ("blank", "comment", "line")]))
+    token = data.draw(
+        st.sampled_from([token for token in tokens_of(statement) if token.kind not in ("blank", "comment", "line")])
+    )
     assume(not token.is_mark("{", "}"))
     damaged = statement[: token.start] + data.draw(st.sampled_from(DAMAGE)).format(token.text) + statement[token.end :]
     assume(not damaged.rstrip().endswith(","))
     description, _, mistakes, more = understood(text[: span.start] + damaged + text[span.end :])
     assume(description.unread)
     for mistake in mistakes + more:
-        assert mistake.span is not None and span.start - 1 <= mistake.span.start <= span.start + len(damaged) + 1, render([mistake])
+        assert mistake.span is not None and span.start - 1 <= mistake.span.start <= span.start + len(damaged) + 1, (
+            render([mistake])
+        )
 
 
 # --- bounds --------------------------------------------------------------------------------------------------------
@@ -118,8 +155,13 @@ HOSTILE = {
     "many elements": filled("a -> b: resistor X#, 1 Ohm"),
     "a chain of studies": filled("study t#: transient, duration = 1 ms, after = t#1"),
     "a product of requirements": filled("study t#: settled\nrequire each study: mean(voltage(a)) <= 1 V"),
-    "copies of many lets": BASE + "repeat k from 1 to 9999 {\n" + "".join(f"let q{n}[k] = 1 V\n" for n in range(1000)) + "}\n",
-    "a voltage source twice, many times": filled("a -> n#: source X#, constant = 1 V\na -> n#: source Y#, constant = 1 V"),
+    "copies of many lets": BASE
+    + "repeat k from 1 to 9999 {\n"
+    + "".join(f"let q{n}[k] = 1 V\n" for n in range(1000))
+    + "}\n",
+    "a voltage source twice, many times": filled(
+        "a -> n#: source X#, constant = 1 V\na -> n#: source Y#, constant = 1 V"
+    ),
 }
 
 
@@ -139,6 +181,8 @@ def test_the_command_never_breaks(tmp_path: Path, content: bytes) -> None:
     (tmp_path / "x.rect").write_bytes(content)
     command = [sys.executable, "-m", "simcore.command", "look", "x.rect"]
     environment = {"PYTHONPATH": str(Path(simcore.__file__).parent.parent), "PATH": "/usr/bin:/bin"}
-    done = subprocess.run(command, cwd=tmp_path, capture_output=True, text=True, timeout=60, env=environment, check=False)
+    done = subprocess.run(
+        command, cwd=tmp_path, capture_output=True, text=True, timeout=60, env=environment, check=False
+    )
     assert "Traceback" not in done.stderr and not STEERING.search(done.stdout + done.stderr)
     assert done.returncode == (2 if content else 0) and ("cure:" in done.stderr) == bool(content)
