@@ -16,7 +16,7 @@ from grammar.quantities import ANGLE, NONE, Quantity, quantity, unit_of
 Lookup = Callable[[Name], Quantity]
 FUNCTIONS = ("sqrt", "exp", "log", "sin", "cos", "abs", "min", "max")
 HIGHEST_POWER = 100.0
-_LONGEST_WORD, _MOST_CANDIDATES = 100, 1000
+_LONGEST_WORD, _MOST_CANDIDATES = 100, 500
 _PLAIN = {"sqrt": math.sqrt, "exp": math.exp, "log": math.log, "sin": math.sin, "cos": math.cos}
 
 

@@ -11,7 +11,7 @@ from grammar.description import Action, Expression, Name, OverAxis, RangeAxis, S
 from grammar.quantities import ANGLE, NONE, SECOND, Quantity, show
 from simcore.design.circuit import Change, PlannedStudy
 from simcore.design.flatten import Flat
-from simcore.design.measures import Measures
+from simcore.design.measures import SOURCES, Measures
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, at_word, span_of, suggest, text_of
 from simcore.design.values import EXPRESSIONS, clash
 
@@ -21,6 +21,8 @@ STUDY_KINDS = {
     "transient": ("after", "duration", "period", "angle", "last", "accuracy", "record_every"),
 }
 DEEPEST_AFTER = 100
+MOST_PERIODS = 100_000
+MOST_ROWS = 1_000_000
 _AMOUNTS = {
     "duration": SECOND,
     "period": SECOND,
@@ -92,6 +94,7 @@ class Studies:
             self.scope.wrong(
                 f"transient {study.name} has no duration", "Add `duration = 100 ms`, or yours.", study.span
             )
+        self._bounded(study, given)
         changes = [self._change(action) for action in study.actions]
         events = self._events(study, given.get("duration"))
         values = {key: value for key, value in given.items() if value is not None}
@@ -104,6 +107,27 @@ class Studies:
             span=study.span,
             **values,
         )
+
+    def _bounded(self, study: Study, given: dict[str, Any]) -> None:
+        """No study may span more periods of a source, or record more rows, than can be worked through."""
+        elements = self.measures.elements.values()
+        periods = {
+            element.name: element.given.get("period") or 1.0 / element.given["frequency"]
+            for element in elements
+            if element.kind in SOURCES and (element.given.get("period") or element.given.get("frequency"))
+        }
+        spans = [given.get(key) for key in ("duration", "period")]
+        span = next((span for span in spans if span), max(periods.values(), default=0.0))
+        for setting in study.settings:
+            every = given.get("record_every")
+            if setting.key == "record_every" and every and span > MOST_ROWS * every:
+                cure = f"Record every {show(span / MOST_ROWS, SECOND)} or less often: at most {MOST_ROWS} rows."
+                self.scope.wrong("the study would record too many rows", cure, setting.span)
+        fastest = min(periods, key=periods.__getitem__, default=None)
+        if fastest is not None and span > MOST_PERIODS * periods[fastest]:
+            cure = f"Make it shorter, or slow {fastest} down: at most {MOST_PERIODS} periods."
+            where = at_word(study.span, study.name)
+            self.scope.wrong(f"the study spans {span / periods[fastest]:.2g} periods of {fastest}", cure, where)
 
     def _no_key(self, study: Study, setting: Setting, allowed: tuple[str, ...]) -> None:
         if setting.key in STUDY_KINDS["transient"]:
