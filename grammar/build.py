@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from lark import Tree
 
 DEEPEST_EXPRESSION = 100
+SMALLEST_NUMBER = 1e-300
 _OPERATORS = {"add": "+", "subtract": "-", "multiply": "*", "divide": "/", "power": "^"}
 
 
@@ -281,6 +282,8 @@ class Builder:
         value = float(digits)
         if not math.isfinite(value):
             raise Unbuildable("the number is too large", "Give one below 1e300.", self.span(tree))
+        if value < SMALLEST_NUMBER and any(digit in "123456789" for digit in digits.lower().partition("e")[0]):
+            raise Unbuildable("the number is too small", "Give one above 1e-300, or 0.", self.span(tree))
         return nodes.Number(value, "".join(str(each) for each in unit if each is not None), self.span(tree))
 
     def _call(self, tree: Any) -> nodes.Call:

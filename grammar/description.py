@@ -220,11 +220,14 @@ class Let:
 
 @dataclass(frozen=True)
 class Datasheet:
+    """whole: False where one of its keys could not be read."""
+
     name: str
     kind: str
     settings: tuple[Setting, ...]
     label: str | None = None
     span: Span | None = _span()
+    whole: bool = field(default=True, compare=False, repr=False)
 
 
 @dataclass(frozen=True)
@@ -358,7 +361,14 @@ Statement = (
 
 @dataclass(frozen=True)
 class Description:
-    """A whole file, in the order written."""
+    """A whole file, in the order written.
+
+    unread: the words of statements that could not be read, which may name anything, and "" where one names something
+    that can't be told; lost: whether nobody knows where
+    the statements belong, since braces don't match or the text as a whole could not be read
+    """
 
     statements: tuple[Statement, ...]
     source: Source | None = field(default=None, compare=False, repr=False)
+    unread: frozenset[str] = field(default=frozenset(), compare=False, repr=False)
+    lost: bool = field(default=False, compare=False, repr=False)

@@ -16,6 +16,8 @@ from grammar.spans import Span
 
 Lookup = Callable[[Name], Quantity]
 FUNCTIONS = ("sqrt", "exp", "log", "sin", "cos", "abs", "min", "max")
+HIGHEST_POWER = 100.0
+_LONGEST_WORD, _MOST_CANDIDATES = 100, 500
 _PLAIN = {"sqrt": math.sqrt, "exp": math.exp, "log": math.log, "sin": math.sin, "cos": math.cos}
 
 
@@ -25,7 +27,9 @@ class Poisoned(Exception):
 
 def nearest(word: str, candidates: Iterable[str]) -> str | None:
     """The known word that a misspelt one most likely stands for, None where none is near."""
-    known = list(candidates)
+    known = list(candidates)[:_MOST_CANDIDATES]
+    if len(word) > _LONGEST_WORD:
+        return None
     folded = {name.lower(): name for name in reversed(known)}
     if word.lower() in folded and folded[word.lower()] != word:
         return folded[word.lower()]
@@ -205,6 +209,9 @@ class _Evaluation:
             raise self._wrong(what, "Keep what stands in it above zero.", call.span) from None
 
     def _finite(self, result: Quantity, span: Span | None) -> Quantity:
+        if not all(abs(power) <= HIGHEST_POWER for power in result.dimension.powers):
+            what = f"the value has a unit to a power above {HIGHEST_POWER:.0f}"
+            raise self._wrong(what, "Check the exponents.", span)
         if math.isfinite(result.value):
             return result
         raise self._wrong("the value is too large to be a number", "Give a value below 1e300.", span)

@@ -25,6 +25,21 @@ class Mistake:
     file: str = ""
 
 
+MOST_MISTAKES = 100
+ENOUGH = 1000
+"""Mistakes after which a reader of a text gives up."""
+_UNPRINTABLE = "\N{REPLACEMENT CHARACTER}"
+
+
+def first_of(mistakes: Iterable[Mistake], file: str) -> list[Mistake]:
+    """As many mistakes as a reader can mend in one go, those that stand first, and a last one that says so."""
+    found = list(mistakes)
+    if len(found) <= MOST_MISTAKES:
+        return found
+    more = Mistake(f"only the first {MOST_MISTAKES} mistakes are shown", "Mend these first.", None, file)
+    return [*sorted(found, key=_order)[:MOST_MISTAKES], more]
+
+
 class DescriptionError(Exception):
     """Raised by the Python face where a caller asked for a result that mistakes prevent; carries all of them."""
 
@@ -35,9 +50,9 @@ class DescriptionError(Exception):
 
 def place(span: Span) -> tuple[str, int, int]:
     """File name, line and column of a span's start, both counted from 1."""
-    before = span.source.text[: span.start]
-    line = before.count("\n") + 1
-    column = span.start - (before.rfind("\n") + 1) + 1
+    text = span.source.text
+    line = text.count("\n", 0, span.start) + 1
+    column = span.start - text.rfind("\n", 0, span.start)
     return span.source.name, line, column
 
 
@@ -54,9 +69,20 @@ def _order(mistake: Mistake) -> tuple[str, int, str]:
 
 
 def _render_one(mistake: Mistake) -> str:
+    what, cure = _visible(mistake.what), _visible(mistake.cure)
     if mistake.span is None:
-        return f"{mistake.file}: {mistake.what}\n    cure: {mistake.cure}\n"
+        return f"{_visible(mistake.file)}: {what}\n    cure: {cure}\n"
     name, line, column = place(mistake.span)
-    text = mistake.span.source.text.split("\n")[line - 1].rstrip("\r")
+    text = _line_around(mistake.span.source.text, mistake.span.start)
     indent = "".join("\t" if letter == "\t" else " " for letter in text[: column - 1])
-    return f"{name}:{line}:{column}: {mistake.what}\n    {text}\n    {indent}^\n    cure: {mistake.cure}\n"
+    return f"{_visible(name)}:{line}:{column}: {what}\n    {_visible(text)}\n    {indent}^\n    cure: {cure}\n"
+
+
+def _line_around(text: str, position: int) -> str:
+    end = text.find("\n", position)
+    return text[text.rfind("\n", 0, position) + 1 : len(text) if end < 0 else end].rstrip("\r")
+
+
+def _visible(text: str) -> str:
+    """A text with a sign in the place of what would steer the terminal that it is shown on."""
+    return "".join(letter if letter.isprintable() or letter == "\t" else _UNPRINTABLE for letter in text)

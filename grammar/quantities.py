@@ -95,6 +95,7 @@ _COMPOUND = {I2T: "A^2 s"}
 _COMPOUND |= {KELVIN_PER_WATT: "K/W", WATT_PER_KELVIN: "W/K", JOULE_PER_KELVIN: "J/K", VOLT_PER_SECOND: "V/s"}
 _NAMES = {dimension: name for name, dimension in UNITS.items() if name != "VA"} | _COMPOUND
 _SHOWN_DIGITS = 5
+_LONGEST_UNIT = 40
 
 
 def quantity(number: float, unit: str = "") -> Quantity:
@@ -111,11 +112,13 @@ def _scaled(number: float, scale: float) -> float:
     """number * scale, dividing where the scale is a negative power of ten, so that 4.7 m is the double nearest
     0.0047."""
     inverse = 1.0 / scale
-    exact = scale < 1.0 and inverse == round(inverse) and inverse <= 1e15
+    exact = scale < 1.0 and inverse <= 1e15 and abs(inverse - round(inverse)) <= 1e-12 * inverse
     return number / round(inverse) if exact else number * scale
 
 
 def _unit(text: str) -> tuple[float, Dimension]:
+    if len(text) > _LONGEST_UNIT:
+        raise ValueError(f"a unit has up to {_LONGEST_UNIT} characters")
     scale, dimension, over = 1.0, NONE, False
     for piece in re.split(r"([/ ])", text):
         if piece in ("/", " "):
@@ -124,6 +127,8 @@ def _unit(text: str) -> tuple[float, Dimension]:
         factor, part = _factor(piece)
         scale = scale / factor if over else scale * factor
         dimension = dimension / part if over else dimension * part
+    if not 1e-200 < scale < 1e200:
+        raise ValueError(f"{text} is too small or too large a unit")
     return scale, dimension
 
 

@@ -6,30 +6,31 @@ A text that can't be read is a list of mistakes and never an exception. Nothing 
 from __future__ import annotations
 
 from collections.abc import Callable, Container, Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeVar
 
 from grammar.build import Builder, Unbuildable
-from grammar.description import Description, Event, Expression, Setting, Statement
+from grammar.description import Datasheet, Description, Event, Expression, Setting, Statement
 from grammar.expressions import nearest
-from grammar.mistakes import Mistake
-from grammar.scanner import Piece, Token, pieces_of
+from grammar.mistakes import ENOUGH, Mistake, first_of
+from grammar.scanner import Piece, Token, pieces_of, tokens_of
 from grammar.spans import Source, Span
 from grammar.wording import FORMS, NEVER_NAMES, expected, near_keyword, no_unit, strange
 
 if TYPE_CHECKING:
     from lark import Lark, Tree
 
-LARGEST_FILE = 1_000_000
+LARGEST_FILE = 250_000
 LONGEST_LINE = 10_000
-MOST_MISTAKES = 100
 
 _WITH_BODY = {"datasheet": True, "block": True, "repeat": True, "study": False}
 _STATEMENTS = tuple(form for form in FORMS if form not in ("element", "setting", "event", "expression"))
+_NAMING = ("let", "observe", "study", "datasheet", "block")
 _SPOKEN = {"datasheet": "data sheet", "use": "use", "setting": "key", "require": "requirement", "expression": "value"}
 _STARTS = "A statement starts with its word, as let or study, or with the nodes that an element joins."
+_SMALLER = "Descriptions have up to 250 kB: write copies by `repeat`, and sheets and blocks in files of their own."
 _KINDS = {"number": "NUMBER", "unit": "UNIT", "string": "STRING", "word": "NAME"}
 
 Built = TypeVar("Built")
@@ -47,8 +48,7 @@ def read_file(path: str | Path) -> tuple[str | None, list[Mistake]]:
         reason = getattr(error, "strerror", None) or "its name can't be one"
         return None, [Mistake(f"the file can't be read: {reason}", "Check its path and rights.", None, name)]
     if len(content) > LARGEST_FILE:
-        cure = "Descriptions have up to 1 MB: move data sheets and blocks to files of their own."
-        return None, [Mistake("the file is too large", cure, None, name)]
+        return None, [Mistake("the file is too large", _SMALLER, None, name)]
     try:
         return content.decode("utf-8-sig"), []
     except UnicodeDecodeError as error:
@@ -65,11 +65,13 @@ def read_text(text: str, name: str) -> tuple[Description, list[Mistake]]:
     source = Source(name, text)
     mistakes = _out_of_bounds(source)
     if mistakes:
-        return Description((), source), mistakes
-    pieces, mistakes = pieces_of(source)
-    reading = _Reading(source, mistakes)
-    statements = reading.statements(pieces)
-    return Description(statements, source), _limited(reading.mistakes, source)
+        return Description((), source, lost=True), mistakes
+    cut = pieces_of(source)
+    reading = _Reading(source, cut.mistakes)
+    statements = reading.statements(cut.pieces)
+    lost = cut.lost or len(reading.mistakes) > ENOUGH
+    description = Description(statements, source, frozenset() if lost else reading.unread(), lost)
+    return description, first_of(reading.mistakes, name)
 
 
 def read_expression(text: str, name: str) -> tuple[Expression | None, list[Mistake]]:
@@ -78,10 +80,10 @@ def read_expression(text: str, name: str) -> tuple[Expression | None, list[Mista
     mistakes = _out_of_bounds(source)
     if mistakes:
         return None, mistakes
-    pieces, mistakes = pieces_of(source)
-    reading = _Reading(source, mistakes)
-    if mistakes:
-        return None, mistakes
+    cut = pieces_of(source)
+    pieces, reading = cut.pieces, _Reading(source, cut.mistakes)
+    if cut.mistakes:
+        return None, cut.mistakes
     if len(pieces) != 1 or pieces[0].body is not None:
         where = Span(source, pieces[1].tokens[0].start if len(pieces) > 1 else 0, len(text))
         reading.mistakes.append(Mistake("one value is expected here", FORMS["expression"], where))
@@ -91,8 +93,7 @@ def read_expression(text: str, name: str) -> tuple[Expression | None, list[Mista
 
 def _out_of_bounds(source: Source) -> list[Mistake]:
     if len(source.text) > LARGEST_FILE:
-        cure = "Descriptions have up to 1 MB: move data sheets and blocks to files of their own."
-        return [Mistake("the text is too large", cure, None, source.name)]
+        return [Mistake("the text is too large", _SMALLER, None, source.name)]
     position = 0
     for number, line in enumerate(source.text.split("\n"), 1):
         if len(line) > LONGEST_LINE:
@@ -104,14 +105,6 @@ def _out_of_bounds(source: Source) -> list[Mistake]:
             return [Mistake("a NUL character stands here", cure, Span(source, start, start + 1))]
         position += len(line) + 1
     return []
-
-
-def _limited(mistakes: list[Mistake], source: Source) -> list[Mistake]:
-    if len(mistakes) <= MOST_MISTAKES:
-        return mistakes
-    ordered = sorted(mistakes, key=lambda mistake: mistake.span.start if mistake.span else 0)
-    more = Mistake(f"only the first {MOST_MISTAKES} mistakes are shown", "Mend these first.", None, source.name)
-    return [*ordered[:MOST_MISTAKES], more]
 
 
 @dataclass(frozen=True)
@@ -139,10 +132,11 @@ class _Reading:
     def __init__(self, source: Source, mistakes: list[Mistake]):
         self.source = source
         self.mistakes = mistakes
+        self._unread: list[Piece] = []
         self._builder = Builder(source)
 
     def statements(self, pieces: Sequence[Piece]) -> tuple[Statement, ...]:
-        found = [self._statement(piece) for piece in pieces]
+        found = [self._statement(piece) for piece in pieces if len(self.mistakes) <= ENOUGH]
         return tuple(statement for statement in found if statement is not None)
 
     def expression(self, piece: Piece) -> Expression | None:
@@ -153,15 +147,38 @@ class _Reading:
         self.mistakes.append(Mistake(what, cure, Span(self.source, start, end)))
 
     def _statement(self, piece: Piece) -> Statement | None:
+        statement = self._read(piece)
+        if statement is None:
+            self._unread.append(piece)
+        return statement
+
+    def unread(self) -> frozenset[str]:
+        """The words of the pieces that could not be read, "" where one does not say what it names."""
+        found: set[str] = set()
+        end = 0
+        for piece in sorted(self._unread, key=lambda piece: piece.start):
+            text = self.source.text[max(piece.start, end) : piece.end]
+            tokens = tokens_of(text)
+            found.update(token.text for token in tokens if token.kind == "word")
+            found.update("use" for token in tokens if token.kind == "string" and token.text.endswith('.rect"'))
+            end = max(end, piece.end)
+            if piece.tokens and _nameless(piece.tokens):
+                found.add("")
+        return frozenset(found)
+
+    def _read(self, piece: Piece) -> Statement | None:
         form = self._form(piece) if piece.tokens else None
         if not piece.tokens and piece.brace is not None and piece.whole:
             cure = "Write what the braces belong to before them, on the same line."
             self._wrong("these braces belong to nothing", cure, piece.brace.start, piece.brace.end)
+        before = len(self.mistakes)
         body = self._body(form, piece)
         if form is None or not piece.whole:
             return None
+        missing = len(self.mistakes) > before or not all(inner.whole for inner in piece.body or ())
         tree = self._parse(form, piece.tokens)
-        return None if tree is None else self._built(lambda: self._builder.statement(tree, body))
+        built = None if tree is None else self._built(lambda: self._builder.statement(tree, body))
+        return replace(built, whole=False) if missing and isinstance(built, Datasheet) else built
 
     def _form(self, piece: Piece) -> str | None:
         """Which statement a piece is, by its first words."""
@@ -194,13 +211,17 @@ class _Reading:
                 first = piece.tokens[0]
                 self._wrong(f"the {_SPOKEN.get(form, form)} has no body", cure, first.start, first.end)
             return ()
+        if form is not None and form not in _WITH_BODY and piece.whole and piece.brace is not None:
+            cure = "Leave them out: only data sheets, blocks, repeats and studies have a body."
+            self._wrong(f"braces can't follow this {_SPOKEN.get(form, form)}", cure, piece.brace.start, piece.brace.end)
+        if form not in _WITH_BODY and piece.tokens:
+            form = next((token.text for token in piece.tokens if token.text in _WITH_BODY), "unknown")
+        if form == "unknown":
+            return ()
         if form == "datasheet":
             return _found(self._setting(part) for inner in piece.body for part in self._keys(inner))
         if form == "study":
             return _found(self._event(inner) for inner in piece.body)
-        if form is not None and form not in _WITH_BODY and piece.whole and piece.brace is not None:
-            cure = "Leave them out: only data sheets, blocks, repeats and studies have a body."
-            self._wrong(f"braces can't follow this {_SPOKEN.get(form, form)}", cure, piece.brace.start, piece.brace.end)
         return self.statements(piece.body)
 
     def _keys(self, piece: Piece) -> list[Sequence[Token]]:
@@ -298,6 +319,10 @@ class _Reading:
             return
         token = tokens[position]
         what, cure = self._misfit_words(form, token, last, accepted, wanted)
+        line = self.source.text.rfind("\n", 0, token.start) + 1
+        above = next((each for each in reversed(tokens[:position]) if each.start < line), None)
+        if above is not None and above.is_mark(","):
+            cure = f"The comma at the end of the line above lets the statement go on here. {cure}"
         self._wrong(what, cure, token.start, token.end)
 
     def _misfit_words(
@@ -309,8 +334,6 @@ class _Reading:
             return f"{token.text} can't be a name", f"Take another word. {FORMS[form]}"
         near = near_keyword(token.text, accepted, _grammar().literals) if token.kind == "word" else None
         cure = FORMS[form] if near is None else f"Did you mean {near}? {FORMS[form]}"
-        if last is not None and last.is_mark(",") and "\n" in self.source.text[last.end : token.start]:
-            cure = f"The comma at the end of the line above lets the statement go on here. {cure}"
         return f"{token.text} can't stand here: {wanted} is expected", cure
 
 
@@ -320,6 +343,15 @@ def _name_of(token: Token, choices: Container[str], grammar: _Grammar) -> str:
     if name is None or (token.kind == "word" and grammar.names.get(token.text, "") in choices):
         return grammar.names.get(token.text, token.text)
     return "NEVER" if name == "NAME" and token.text in NEVER_NAMES else name
+
+
+def _nameless(tokens: Sequence[Token]) -> bool:
+    """Whether a statement should name something, and has no name where that belongs."""
+    words = [token.kind == "word" for token in tokens]
+    if tokens[0].text in _NAMING:
+        return words[1:2] != [True]
+    colons = [position for position, token in enumerate(tokens) if token.is_mark(":")]
+    return bool(colons) and not any(words[position + 1 : position + 3] == [True, True] for position in colons)
 
 
 def _found(parts: Iterable[Built | None]) -> tuple[Built, ...]:

@@ -10,12 +10,13 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
-from grammar.mistakes import Mistake
+from grammar.mistakes import ENOUGH, Mistake
 from grammar.quantities import quantity
 from grammar.spans import Source, Span
 
-DEEPEST_BRACKETS = 60
+DEEPEST_BRACKETS = 30
 DEEPEST_BODIES = 16
+LONGEST_NAME = 100
 
 _TOKEN = re.compile(
     r"""(?P<line>\r?\n)
@@ -31,6 +32,8 @@ _TOKEN = re.compile(
 )
 _FACTOR = re.compile(r"(?:%|[A-Za-z\u00b5\u03bc\u03a9\u2126]+(?![A-Za-z0-9_]))(?:\^-?[0-9](?![0-9A-Za-z_]|\.[0-9]))?")
 _GAP = re.compile(r"[ \t]*")
+_UNSEEN = re.compile("[\x00-\x08\x0b-\x1f\x7f-\x9f\u2028\u2029\u202a-\u202e\u2066-\u2069]")
+"""Characters that steer a terminal, or the order in which a line is shown, and stand for nothing in a text."""
 _CLOSER = {"(": ")", "[": "]"}
 
 
@@ -55,10 +58,12 @@ class Piece:
     """A statement, event or line of keys as it stands in the text.
 
     tokens: those of its head, without blanks, comments and line ends; body: what its braces hold, None where it has
-    none; brace: the opening one; end: where it ends in the text; whole: False where a mistake in it is reported already
+    none; brace: the opening one; start, end: where it stands in the text; whole: False where a mistake in it is
+    reported already
     """
 
     tokens: tuple[Token, ...]
+    start: int
     end: int
     brace: Token | None = None
     body: tuple[Piece, ...] | None = None
@@ -113,11 +118,37 @@ def _is_unit(text: str) -> bool:
     return True
 
 
-def pieces_of(source: Source) -> tuple[tuple[Piece, ...], list[Mistake]]:
-    """The statements of a text with their bodies, and what is wrong with its brackets and braces."""
-    kept = [token for token in tokens_of(source.text) if token.kind not in ("blank", "comment")]
+@dataclass(frozen=True)
+class Cut:
+    """A text cut into statements; lost: whether its braces don't match, so that nobody knows what belongs where."""
+
+    pieces: tuple[Piece, ...]
+    mistakes: list[Mistake]
+    lost: bool
+
+
+def pieces_of(source: Source) -> Cut:
+    """The statements of a text with their bodies, and what is wrong with its signs, brackets and braces."""
+    tokens = tokens_of(source.text)
+    kept = [token for token in tokens if token.kind not in ("blank", "comment")]
     splitter = _Splitter(source, kept)
-    return splitter.pieces(None), splitter.mistakes
+    pieces = splitter.pieces(None)
+    return Cut(pieces, splitter.mistakes + _signs(source, tokens), splitter.lost)
+
+
+def _signs(source: Source, tokens: Sequence[Token]) -> list[Mistake]:
+    """Names that are too long, and what can't be seen in a quoted text or a comment."""
+    found = []
+    for token in tokens:
+        if token.kind == "word" and len(token.text) > LONGEST_NAME:
+            cure = f"Names have up to {LONGEST_NAME} characters."
+            found.append(Mistake("this name is too long", cure, Span(source, token.start, token.end)))
+        unseen = _UNSEEN.search(token.text) if token.kind in ("string", "comment") else None
+        if unseen is not None:
+            start = token.start + unseen.start()
+            what = f"the character U+{ord(unseen.group()):04X} can't be seen and has no meaning here"
+            found.append(Mistake(what, "Leave it out.", Span(source, start, start + 1)))
+    return found
 
 
 class _Splitter:
@@ -126,15 +157,18 @@ class _Splitter:
     def __init__(self, source: Source, tokens: Sequence[Token]):
         self.source = source
         self.mistakes: list[Mistake] = []
+        self.lost = False
         self._tokens = tokens
         self._next = 0
         self._bodies = 0
 
     def _wrong(self, token: Token, what: str, cure: str) -> None:
         self.mistakes.append(Mistake(what, cure, Span(self.source, token.start, token.end)))
+        self.lost = self.lost or len(self.mistakes) > ENOUGH
 
     def _peek(self) -> Token | None:
-        return self._tokens[self._next] if self._next < len(self._tokens) else None
+        ended = self._next >= len(self._tokens) or len(self.mistakes) > ENOUGH
+        return None if ended else self._tokens[self._next]
 
     def pieces(self, brace: Token | None) -> tuple[Piece, ...]:
         """Pieces up to the brace that closes the body, which is passed, or to the end of the text."""
@@ -146,23 +180,27 @@ class _Splitter:
                 self._next += 1
                 if brace is not None:
                     return tuple(found)
+                self.lost = True
                 self._wrong(token, "this } closes nothing", "Leave it out, or add the { that it should close.")
             else:
                 found.append(self._piece())
         if brace is not None:
+            self.lost = True
             self._wrong(brace, "this { is never closed", "Add a } after the last line that belongs to it.")
         return tuple(found)
 
     def _piece(self) -> Piece:
+        start = self._tokens[self._next].start
         head, whole = self._head()
         brace = self._peek()
         if brace is None or not brace.is_mark("{"):
-            return Piece(tuple(head), self._tokens[self._next - 1].end, whole=whole)
+            return Piece(tuple(head), start, self._tokens[self._next - 1].end, whole=whole)
         self._next += 1
         if self._bodies == DEEPEST_BODIES:
             self._wrong(brace, f"braces stand more than {DEEPEST_BODIES} deep", "Name the inner part as a block.")
             self._skip_body()
-            return Piece(tuple(head), brace.end, brace, (), False)
+            end = self._tokens[self._next - 1].end
+            return Piece(tuple(head), start, end, brace, (), False)
         self._bodies += 1
         body = self.pieces(brace)
         self._bodies -= 1
@@ -170,7 +208,7 @@ class _Splitter:
         end = self._tokens[self._next - 1].end
         if whole and after is not None and after.kind != "line" and not after.is_mark("}"):
             self._wrong(after, "after } a new line begins", "Put what follows on a line of its own.")
-        return Piece(tuple(head), end, brace, body, whole)
+        return Piece(tuple(head), start, end, brace, body, whole)
 
     def _skip_body(self) -> None:
         depth = 1

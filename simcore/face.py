@@ -20,6 +20,7 @@ from grammar.mistakes import DescriptionError
 from grammar.quantities import ANGLE, show, unit_of
 from grammar.reader import read_expression
 from simcore.design.circuit import Circuit
+from simcore.design.elaborate import elaborate
 from simcore.design.files import Project, load, load_text
 from simcore.design.graph import graph_of
 from simcore.figures.evaluate import figure_of
@@ -58,7 +59,7 @@ def read_text(text: str, name: str = "text", folder: str | Path | None = None) -
 
 def _sound(project: Project, mistakes: list) -> Design:
     if mistakes:
-        raise DescriptionError(mistakes)
+        raise DescriptionError(mistakes + elaborate(project)[1])
     return Design(project)
 
 

@@ -32,7 +32,7 @@ def open_design(file: str | Path, settings: Mapping[str, str]) -> tuple[Opened, 
     """Open a description file; settings: let -> its new value as text, an expression or a data sheet's name."""
     project, mistakes = load(file)
     opened, more = open_project(project, settings)
-    return opened, mistakes or more
+    return opened, mistakes + more
 
 
 def open_project(project: Project, settings: Mapping[str, str]) -> tuple[Opened, list[Mistake]]:
@@ -46,7 +46,8 @@ def open_project(project: Project, settings: Mapping[str, str]) -> tuple[Opened,
             overrides[name] = expression.parts[0].name if _names_sheet(expression) else expression
     circuit, more = elaborate(project, overrides)
     mistakes += more
-    mistakes += [_unknown(name, circuit, project.name) for name in overrides if name not in circuit.lets]
+    if project.sound and not more:
+        mistakes += [_unknown(name, circuit, project.name) for name in overrides if name not in circuit.lets]
     return Opened(project, circuit, overrides), mistakes
 
 

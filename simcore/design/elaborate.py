@@ -9,7 +9,7 @@ from collections.abc import Mapping
 from dataclasses import replace
 
 from grammar.description import Element, Expression, Let, Name
-from grammar.mistakes import Mistake
+from grammar.mistakes import Mistake, first_of
 from grammar.quantities import KELVIN, NONE, Quantity, unit_of
 from grammar.spans import Span
 from simcore.components import KINDS
@@ -17,7 +17,7 @@ from simcore.components.kind import Kind
 from simcore.design.circuit import Circuit, LetValue, Observed, Port
 from simcore.design.circuit import Element as Component
 from simcore.design.files import Project
-from simcore.design.flatten import Flat, Flattener, is_dotted
+from simcore.design.flatten import Flat, Flattener, TooLarge, is_dotted
 from simcore.design.measures import Measures
 from simcore.design.requirements import Requirements
 from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, at_word, rename_cure, span_of
@@ -38,12 +38,20 @@ def elaborate(
 
     overrides: full names of lets (`C_res`, `S[2].C`) -> a quantity, an expression or a data sheet's name
     again: the same design was found right before; what can't have changed is not looked at twice
+    Of a design with mistakes in its texts, what could be read is looked at: whatever the rest may have named is not
+    called unknown, and the soundness of the graph is left open.
     """
+    nothing = Circuit(project.name, "", (), ROOM, {}, {}, {}, {}, ())
+    if project.lost:
+        return nothing, []
     scope = Scope(project, {})
     builder = _Builder(project, scope, again)
     scope.overrides = builder.overridden(overrides or {})
-    circuit = builder.circuit()
-    return circuit, _once(scope.mistakes)
+    try:
+        circuit = builder.circuit()
+    except TooLarge:
+        circuit = nothing
+    return circuit, first_of(_once(scope.mistakes), project.top.name)
 
 
 def _once(mistakes: list[Mistake]) -> list[Mistake]:
@@ -66,6 +74,7 @@ class _Builder:
         self.elements: dict[str, Component] = {}
         self.nodes: dict[str, Span | None] = {}
         self.mentions: dict[str, Name] = {}
+        self.placed: dict[str, Place] = {}
         self.reference_spans: dict[str, Span | None] = {}
 
     def overridden(self, overrides: Mapping[str, Quantity | Expression | str]) -> dict[str, Value]:
@@ -97,7 +106,7 @@ class _Builder:
             self.flattener.canonical,
             {study.name: study for study in flat.studies},
         )
-        self._sense(flat, measures)
+        self._sense(measures)
         circuit = Circuit(
             self.project.name,
             flat.purposes[0].text if flat.purposes else "",
@@ -114,7 +123,7 @@ class _Builder:
             return circuit
         circuit = self._asked(circuit, measures, flat)
         check_unused(self.scope, self.reader, flat)
-        if not self.scope.mistakes and self.elements:
+        if self.project.sound and not self.scope.mistakes and self.elements:
             self.scope.mistakes += unsound(circuit, self.nodes, self.reference_spans)
         return circuit
 
@@ -135,6 +144,7 @@ class _Builder:
             full = self._named(node, place)
             ports = self._ports(node, place, full)
         except Poisoned:
+            self.scope.tear(node.name, *node.terminals.nodes, node.terminals.star)
             return
         if kind.build is None:
             where = at_word(node.span, node.kind, node.terminals.span)
@@ -143,6 +153,7 @@ class _Builder:
             return
         values = self.reader.element(node, kind, place)
         self._enter(full, node, ports, values)
+        self.placed[full] = place
         self._fits(node, kind, ports, values)
 
     def _enter(self, full: str, node: Element, ports: tuple[Port, ...], values: Values) -> None:
@@ -221,13 +232,13 @@ class _Builder:
                     span = values.spans.get(key.name) or node.span
                     self.scope.wrong(what, f"Give {len(ports)} values, parted by `:`.", span)
 
-    def _sense(self, flat: Flat, measures: Measures) -> None:
+    def _sense(self, measures: Measures) -> None:
         """Signals that switch an element, resolved once all nodes and elements are known."""
-        for node, place in flat.elements:
-            element = self.elements.get(place.space.prefix + self.scope.local(node.name, place))
-            for key in KINDS[node.kind].keys:
-                given = None if element is None or key.form != "expression" else element.given.get(key.name)
-                if element is None or not isinstance(given, EXPRESSIONS):
+        for full, place in self.placed.items():
+            element = self.elements[full]
+            for key in KINDS[element.kind].keys:
+                given = element.given.get(key.name) if key.form == "expression" else None
+                if not isinstance(given, EXPRESSIONS):
                     continue
                 try:
                     signal = measures.resolve(given, place)

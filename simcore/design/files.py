@@ -15,6 +15,8 @@ from grammar.reader import read_file, read_text
 
 MOST_FILES = 200
 DEEPEST_USE = 16
+MOST_TEXT = 300_000
+"""Characters in all files of a design together."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,11 +37,17 @@ class Unit:
 class Project:
     """A design as read: the top file and, through it, every file it uses.
 
-    name: what its results are filed under
+    name: what its results are filed under; unread: words of statements that could not be read, which may name anything;
+    sound: whether all texts could be read in full; found: whether every used file could be had; lost: whether nothing
+    can be said of the top file beyond the mistakes in its text
     """
 
     name: str
     top: Unit
+    unread: frozenset[str] = frozenset()
+    sound: bool = True
+    found: bool = True
+    lost: bool = False
 
 
 def library_folder() -> Path:
@@ -54,10 +62,10 @@ def load(path: str | Path) -> tuple[Project, list[Mistake]]:
     given = Path(path)
     text, mistakes = read_file(given)
     if text is None:
-        return Project(given.stem, Unit(str(path), Description(()))), mistakes
+        return Project(given.stem, Unit(str(path), Description(())), sound=False, lost=True), mistakes
     loader = _Loader(given.resolve().parent)
     top = loader.unit(text, str(path), given.resolve(), [])
-    return Project(given.stem, top), loader.mistakes
+    return loader.project(given.stem, top), loader.mistakes
 
 
 def load_text(text: str, name: str, folder: str | Path | None = None) -> tuple[Project, list[Mistake]]:
@@ -66,7 +74,7 @@ def load_text(text: str, name: str, folder: str | Path | None = None) -> tuple[P
     loader = _Loader(beside)
     here = None if beside is None else beside / "text"
     top = loader.unit(text, name, here, [])
-    return Project(Path(name).stem, top), loader.mistakes
+    return loader.project(Path(name).stem, top), loader.mistakes
 
 
 class _Loader:
@@ -77,10 +85,19 @@ class _Loader:
         self.library = library_folder().resolve()
         self.known: dict[Path, Unit] = {}
         self.mistakes: list[Mistake] = []
+        self.unread: set[str] = set()
+        self.found = True
+        self._size = 0
+
+    def project(self, name: str, top: Unit) -> Project:
+        """The design with a top file, after all its files were read."""
+        return Project(name, top, frozenset(self.unread), not self.mistakes, self.found, top.description.lost)
 
     def unit(self, text: str, name: str, path: Path | None, above: list[Path]) -> Unit:
         description, mistakes = read_text(text, name)
         self.mistakes += mistakes
+        self.unread |= description.unread
+        self._size += len(text)
         chain = above if path is None else [*above, path]
         used: list[tuple[Use, Unit]] = []
         for statement in description.statements:
@@ -88,6 +105,9 @@ class _Loader:
                 found = self._used(statement, path, chain)
                 if found is not None:
                     used.append((statement, found))
+                if found is None or found.description.lost:
+                    self.found = False
+        self.found = self.found and "use" not in description.unread
         unit = Unit(name, description, tuple(other for _, other in used))
         self._names(unit, used)
         return unit
@@ -108,6 +128,10 @@ class _Loader:
             self.mistakes += [Mistake(each.what, each.cure, use.span, each.file) for each in mistakes]
             if text is None:
                 return None
+            if self._size + len(text) > MOST_TEXT:
+                cure = f"At most {MOST_TEXT // 1000} kB in all files of a design: use files that hold less."
+                self._wrong(use, "the files of the design are too large together", cure)
+                return None
             self.known[found] = self.unit(text, name, found, chain)
         return self.known[found]
 
@@ -120,8 +144,12 @@ class _Loader:
             return None, ""
         outside = False
         for base, root in self._places(path):
-            candidate = (base / use.path).resolve()
-            if not candidate.is_file():
+            try:
+                candidate = (base / use.path).resolve()
+                there = candidate.is_file()
+            except (OSError, RuntimeError, ValueError):  # too long a name, links in a circle, a name that can't be one
+                continue
+            if not there:
                 continue
             if candidate.is_relative_to(root):
                 return candidate, candidate.relative_to(root).as_posix()

@@ -21,6 +21,7 @@ from grammar.description import (
     Reference,
     Repeat,
     Require,
+    Span,
     Statement,
     Study,
     Sweep,
@@ -33,7 +34,9 @@ from simcore.design.values import EXPRESSIONS
 
 MOST_ELEMENTS = 20_000
 MOST_COPIES = 10_000
+MOST_STATEMENTS = 50_000
 DEEPEST_BLOCK = 16
+DEEPEST_BODY = 32
 
 _IN_REPEAT = (Let, Element, Repeat, Observe, Require)
 _IN_BLOCK = (Let, Element, Repeat, Observe)
@@ -56,6 +59,10 @@ class Flat:
     blocks_used: dict[str, Block] = field(default_factory=dict)
 
 
+class TooLarge(Exception):
+    """The design has more of something than can be written out; its mistake is reported already."""
+
+
 class Flattener:
     """Walks the statements; copies: names of block copies with the statement that made each."""
 
@@ -63,10 +70,12 @@ class Flattener:
         self.scope = scope
         self.flat = Flat()
         self._repeated = 0
+        self._written = 0
+        self._deep = 0
         self._open: list[Block] = []
 
     def run(self) -> Flat:
-        """All statements of the top file."""
+        """All statements of the top file. Raises TooLarge."""
         unit = self.scope.root.unit
         self._kind_names()
         self._body(unit.description.statements, Place(self.scope.root))
@@ -85,7 +94,36 @@ class Flattener:
                 self.scope.wrong(f"{statement.name} is {names[statement.name]} already", cure, statement.span)
             names[statement.name] = "a block" if isinstance(statement, Block) else "a data sheet"
 
-    def _body(self, statements: Sequence[Statement], place: Place) -> None:
+    def _body(self, statements: Sequence[Statement], place: Place, span: Span | None = None) -> None:
+        """The statements of a file, block or repeat; span: of what holds them."""
+        self._written += 1 + len(statements)
+        if self._written > MOST_STATEMENTS or self._deep >= DEEPEST_BODY:
+            cure = f"At most {MOST_STATEMENTS} statements with all copies, {DEEPEST_BODY} repeats and blocks deep."
+            self._too_large("the design is too large once its repeats and blocks are written out", cure, span)
+        self._deep += 1
+        try:
+            self._statements(statements, place)
+        finally:
+            self._deep -= 1
+
+    def _too_large(self, what: str, cure: str, span: Span | None) -> None:
+        self.scope.wrong(what, cure, span)
+        raise TooLarge(what)
+
+    def _tear(self, statements: Sequence[Statement]) -> None:
+        """What statements that are not written out would name is not unknown."""
+        for statement in statements:
+            if isinstance(statement, Let | Observe):
+                self.scope.tear(statement.name)
+            elif isinstance(statement, Element):
+                self._tear_element(statement)
+            elif isinstance(statement, Repeat):
+                self._tear(statement.body)
+
+    def _tear_element(self, node: Element) -> None:
+        self.scope.tear(node.name, *node.terminals.nodes, node.terminals.star)
+
+    def _statements(self, statements: Sequence[Statement], place: Place) -> None:
         for statement in statements:
             if isinstance(statement, Let | Observe):
                 self.scope.declare(statement, place)
@@ -130,38 +168,40 @@ class Flattener:
     def _repeat(self, node: Repeat, place: Place) -> None:
         if node.variable in place.indices or self.scope.root.prefix + node.variable in self.scope.entries:
             self.scope.wrong(f"{node.variable} is named already", "Choose another index.", node.span)
+            self._tear(node.body)
             return
         try:
             first = self.scope.whole(node.first, place, "the first copy of a repeat")
             last = self.scope.whole(node.last, place, "the last copy of a repeat")
         except Poisoned:
+            self._tear(node.body)
             return
         self._repeated += max(0, last - first + 1)
         if self._repeated > MOST_COPIES:
             cure = f"At most {MOST_COPIES} copies in a design."
-            self.scope.wrong("the repeats make too many copies", cure, span_of(node.last))
-            return
+            self._too_large("the repeats make too many copies", cure, span_of(node.last))
         for index in range(first, last + 1):
-            self._body(node.body, Place(place.space, {**place.indices, node.variable: index}))
+            self._body(node.body, Place(place.space, {**place.indices, node.variable: index}), node.span)
 
     def _element(self, node: Element, place: Place) -> None:
         found = place.space.unit.blocks.get(node.kind)
         if node.kind in KINDS:
-            if len(self.flat.elements) < MOST_ELEMENTS:
-                self.flat.elements.append((node, place))
-            elif len(self.flat.elements) == MOST_ELEMENTS:
+            if len(self.flat.elements) >= MOST_ELEMENTS:
                 cure = f"At most {MOST_ELEMENTS} elements in a design."
-                self.scope.wrong("the design has too many elements", cure, node.span)
+                self._too_large("the design has too many elements", cure, node.span)
+            self.flat.elements.append((node, place))
         elif found is None:
-            kinds = [*KINDS, *place.space.unit.blocks]
-            where = at_word(node.span, node.kind, node.terminals.span)
-            self.scope.wrong(f"there is no kind {node.kind}", suggest(node.kind, kinds, all_kinds(kinds)), where)
+            self._tear_element(node)
+            if self.scope.found and not self.scope.is_torn(node.kind):
+                kinds = [*KINDS, *place.space.unit.blocks]
+                where = at_word(node.span, node.kind, node.terminals.span)
+                self.scope.wrong(f"there is no kind {node.kind}", suggest(node.kind, kinds, all_kinds(kinds)), where)
         else:
             unit, block = found
             try:
                 self._copy(node, block, Space(unit, self._prefix(node, place), self.scope.file_space(unit)), place)
             except Poisoned:
-                return
+                self._tear_element(node)
 
     def _prefix(self, node: Element, place: Place) -> str:
         full = place.space.prefix + self.scope.local(node.name, place)
@@ -176,14 +216,14 @@ class Flattener:
         if any(block is other for other in self._open) or len(self._open) >= DEEPEST_BLOCK:
             cure = "A block can't hold itself; blocks may stand 16 deep in one another."
             self.scope.wrong(f"block {block.name} holds itself", cure, node.span)
-            return
+            raise Poisoned
         self.flat.blocks_used[block.name] = block
         inner = Place(space)
         if not self._parameters(node, block, inner, place) or not self._terminals(node, block, inner, place):
-            return
+            raise Poisoned
         self._open.append(block)
         try:
-            self._body(block.body, inner)
+            self._body(block.body, inner, node.span)
         finally:
             self._open.pop()
 

@@ -6,19 +6,22 @@ their place. It knows the catalogue of signals and figures, and computes none.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import suppress
 from dataclasses import dataclass, replace
 
 from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Observe
-from grammar.expressions import FUNCTIONS
+from grammar.expressions import FUNCTIONS, names_in
 from grammar.quantities import NONE, Dimension, Quantity, unit_of
 from grammar.spans import Span
 from simcore.design.circuit import Element
-from simcore.design.scopes import Entry, Place, Poisoned, Scope, named, span_of, suggest
+from simcore.design.scopes import Entry, Place, Poisoned, Scope, in_turn, named, span_of, suggest
 from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure
 
 JUNCTIONS = ("diode", "thyristor")
 SOURCES = ("source", "three_phase")
+DEEPEST_OBSERVE = 32
+"""Observes that may stand in one another: a signal is formed by going down all of them."""
 
 
 @dataclass(frozen=True)
@@ -57,27 +60,48 @@ class Measures:
             if port.name
         }
         self._observes: dict[str, Resolved | None] = {}
+        self._depths: dict[str, int] = {}
 
     def observe(self, entry: Entry, span: Span | None = None) -> Resolved:
         """An observe's signal, worked out once."""
-        if entry.full in self._observes:
-            known = self._observes[entry.full]
-            if known is None and entry.state == "busy":
-                self._wrong(f"{entry.full} depends on itself", "Break the circle.", span)
-            if known is None:
-                raise Poisoned
-            return known
+        if entry.state == "busy":
+            self._wrong(f"{entry.full} depends on itself", "Break the circle.", span)
+        elif entry.state == "new":
+            in_turn(entry, self._observes_in, self._work_out)
+        known = self._observes.get(entry.full)
+        if known is None:
+            raise Poisoned
+        return known
+
+    def _observes_in(self, entry: Entry) -> Iterator[Entry]:
+        """The observes that an observe is made of."""
+        for name in names_in(entry.node.value) if isinstance(entry.node, Observe) else ():
+            try:
+                found = self.scope.find(name, entry.place)
+            except Poisoned:
+                continue
+            if isinstance(found, Entry) and isinstance(found.node, Observe):
+                yield found
+
+    def _work_out(self, entry: Entry) -> None:
         assert isinstance(entry.node, Observe)
-        self._observes[entry.full], entry.state = None, "busy"
-        try:
-            found = self.resolve(entry.node.value, entry.place)
-            if found.sort == "figure":
-                cure = "Observe a signal, and ask for its figure in a requirement."
-                self._wrong(f"{entry.full} is a figure, not a signal", cure, span_of(entry.node.value))
-                raise Poisoned
-        finally:
-            entry.state = "known"
-        self._observes[entry.full] = found
+        self._observes[entry.full] = None
+        with suppress(Poisoned):
+            self._observes[entry.full] = self._observed(entry, entry.node.value)
+        entry.state = "known"
+
+    def _observed(self, entry: Entry, value: Expression) -> Resolved:
+        depth = 1 + max((self._depths.get(inner.full, 0) for inner in self._observes_in(entry)), default=0)
+        if depth > DEEPEST_OBSERVE:
+            cure = "Write the signal with fewer observes in one another."
+            self._wrong(f"more than {DEEPEST_OBSERVE} observes stand in one another", cure, span_of(value))
+            raise Poisoned
+        found = self.resolve(value, entry.place)
+        if found.sort == "figure":
+            cure = "Observe a signal, and ask for its figure in a requirement."
+            self._wrong(f"{entry.full} is a figure, not a signal", cure, span_of(value))
+            raise Poisoned
+        self._depths[entry.full] = depth
         return found
 
     def observed(self) -> dict[str, Expression]:
@@ -345,6 +369,8 @@ class Measures:
 
     def _seen(self, names: Mapping[str, object], place: Place) -> list[str]:
         prefix = place.space.prefix
+        if self.scope.crowded:
+            return []
         return [name[len(prefix) :] for name in names if name.startswith(prefix)]
 
     def _wrong(self, what: str, cure: str, span: Span | None) -> None:

@@ -20,6 +20,8 @@ from simcore.design.rewrite import eaches, put_element, rename
 from simcore.design.scopes import Place, Poisoned, Scope, at_word, named, span_of, suggest
 from simcore.design.values import EXPRESSIONS
 
+MOST_REQUIREMENTS = 20_000
+
 
 class Requirements:
     """Works out the requirements of a design."""
@@ -29,6 +31,7 @@ class Requirements:
         self.measures = measures
         self.studies = studies
         self.place = Place(scope.root)
+        self._count = 0
 
     def spread(self, require: Require, place: Place) -> list[Requirement]:
         """The requirements that one statement makes; none where it is mistaken."""
@@ -38,6 +41,7 @@ class Requirements:
                 self.scope.unknown(name, list(self.studies), at_word(require.span, name), "no study is named")
         names = tuple(name for name in names if name in self.studies)
         try:
+            self._counted(require, len(names))
             if isinstance(require.claim, Ratings):
                 return self._ratings(require, require.claim, names)
             return self._claims(require, require.claim, place, names)
@@ -52,9 +56,20 @@ class Requirements:
         if not kinds:
             return self._one(require, claim, place, names)
         found: list[Requirement] = []
-        for element in self.each(kinds[0], eaches(claim)[0].span):
+        elements = self.each(kinds[0], eaches(claim)[0].span)
+        self._counted(require, (len(elements) - 1) * len(names))
+        for element in elements:
             found += self._one(require, claim, place, names, named(element))
         return found
+
+    def _counted(self, require: Require, more: int) -> None:
+        """Requirements over all studies and elements, which are bounded."""
+        before, self._count = self._count, self._count + more
+        if self._count > MOST_REQUIREMENTS:
+            if before <= MOST_REQUIREMENTS:
+                cure = f"At most {MOST_REQUIREMENTS}, counting each study and each element: name those that matter."
+                self.scope.wrong("the design has too many requirements", cure, require.span)
+            raise Poisoned
 
     def each(self, kind: str, span: Span | None) -> list[str]:
         """Full names of all elements of a kind, blocks included."""
@@ -62,8 +77,9 @@ class Requirements:
             self.scope.wrong(f"there is no kind {kind}", suggest(kind, list(KINDS), all_kinds(list(KINDS))), span)
             raise Poisoned
         found = [name for name, element in self.measures.elements.items() if element.kind == kind]
-        if not found:
+        if not found and not self.scope.incomplete:
             self.scope.wrong(f"the circuit has no {kind}", "Leave the requirement out, or name another kind.", span)
+        if not found:
             raise Poisoned
         return found
 

@@ -7,18 +7,18 @@ It knows names and values, and nothing of elements, graphs or studies.
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 
 from grammar.description import Datasheet, Expression, Let, Name, Number, Observe, Parameter, Part, Range
 from grammar.expressions import Poisoned, evaluate, names_in, nearest
-from grammar.mistakes import Mistake
+from grammar.mistakes import MOST_MISTAKES, Mistake
 from grammar.quantities import NONE, Quantity
 from grammar.spans import Span
 from simcore.design.files import Project, Unit
 
-DEEPEST_VALUE = 100
 FEW = 8
+_LARGEST_WHOLE = 10**6
 
 
 @dataclass(frozen=True)
@@ -86,12 +86,28 @@ def named(text: str, span: Span | None = None) -> Name:
     return Name(tuple(parts), span)
 
 
+def in_turn(first: Entry, needs: Callable[[Entry], Iterable[Entry]], finish: Callable[[Entry], None]) -> None:
+    """Finish an entry after all new ones that it needs, however long the chain. Those at work on are in state busy."""
+    first.state = "busy"
+    work: list[tuple[Entry, Iterator[Entry]]] = [(first, iter(needs(first)))]
+    while work:
+        entry, rest = work[-1]
+        needed = next(rest, None)
+        if needed is None:
+            work.pop()
+            finish(entry)
+        elif needed.state == "new":
+            needed.state = "busy"
+            work.append((needed, iter(needs(needed))))
+
+
 class Scope:
     """All names of a design, and the mistakes found while their values are worked out.
 
     overrides: full names of lets and parameters with the value that replaces their own, an expression or a data sheet's
     name as a resolved value
     moved: full names of lets that a study or a sweep gives other values
+    torn: words of statements that could not be read or made sense of; whatever they name is not reported as unknown
     """
 
     def __init__(self, project: Project, overrides: Mapping[str, Value]):
@@ -99,9 +115,10 @@ class Scope:
         self.mistakes: list[Mistake] = []
         self.entries: dict[str, Entry] = {}
         self.moved: dict[str, None] = {}
+        self.torn: set[str] = set(project.unread)
+        self.found = project.found
         self.root = Space(project.top, "")
         self._files: dict[Unit, Space] = {project.top: self.root}
-        self._depth = 0
 
     def file_space(self, unit: Unit) -> Space:
         """The names of a used file: those of its own lets, out of every other file's sight."""
@@ -117,6 +134,24 @@ class Scope:
         """Report a mistake."""
         self.mistakes.append(Mistake(what, cure, span))
 
+    def tear(self, *names: Name | None) -> None:
+        """Note the names of a statement that makes nothing, so that nobody reports them as unknown."""
+        self.torn.update(part.name for name in names if name is not None for part in name.parts)
+
+    def is_torn(self, text: str) -> bool:
+        """Whether a name may be that of something which could not be read."""
+        return "" in self.torn or (bool(self.torn) and any(word in self.torn for word in re.findall(r"\w+", text)))
+
+    @property
+    def crowded(self) -> bool:
+        """Whether there are more mistakes than anybody is shown."""
+        return len(self.mistakes) > MOST_MISTAKES
+
+    @property
+    def incomplete(self) -> bool:
+        """Whether something of the design is missing, so that nothing can be said of what is not there."""
+        return bool(self.torn) or not self.found
+
     # --- names ---------------------------------------------------------------------------------------------------
 
     def local(self, name: Name, place: Place) -> str:
@@ -131,11 +166,13 @@ class Scope:
         if isinstance(index, Range):
             self.wrong("a range of indices stands where one name is wanted", "Give one index.", name.span)
             raise Poisoned
-        if isinstance(index, Number) and not index.unit and index.value == int(index.value):
+        if isinstance(index, Number) and not index.unit and index.value in range(_LARGEST_WHOLE):
             return int(index.value)
         return self.whole(index, place, "an index")
 
-    def whole(self, expression: Expression, place: Place, what: str, low: int = -(10**6), high: int = 10**6) -> int:
+    def whole(
+        self, expression: Expression, place: Place, what: str, low: int = -_LARGEST_WHOLE, high: int = _LARGEST_WHOLE
+    ) -> int:
         """A whole number, such as an index or a bound of a repeat."""
         value = self.quantity(expression, place)
         number = value.value
@@ -154,6 +191,7 @@ class Scope:
         try:
             local = self.local(name, place)
         except Poisoned:
+            self.tear(name)
             return
         span = name.span or node.span
         if len(name.parts) > 1:
@@ -192,7 +230,9 @@ class Scope:
         return None if found is None else Sheet(*found)
 
     def names(self, place: Place) -> list[str]:
-        """Names an expression may hold, for suggesting the nearest."""
+        """Names an expression may hold, for suggesting the nearest; none once nobody is shown them."""
+        if self.crowded:
+            return []
         space = place.space
         found = [*place.indices, *space.unit.sheets]
         for full in self.entries:
@@ -206,7 +246,7 @@ class Scope:
     def value(self, expression: Expression, place: Place) -> Value:
         """The value of an expression: a quantity, or a data sheet where it only names one."""
         if isinstance(expression, Name):
-            return self._named(expression, place)
+            return self._named(expression, place, bare=True)
         return evaluate(expression, lambda name: self._quantity(name, place), self.mistakes)
 
     def quantity(self, expression: Expression, place: Place) -> Quantity:
@@ -225,8 +265,11 @@ class Scope:
             raise Poisoned
         return value
 
-    def _named(self, name: Name, place: Place) -> Value:
+    def _named(self, name: Name, place: Place, bare: bool = False) -> Value:
+        """What a name stands for; a bare one may be a data sheet, and so of a file that could not be had."""
         found = self.find(name, place)
+        if found is None and bare and not self.found:
+            raise Poisoned
         if found is None:
             self.unknown(self.local(name, place), self.names(place), name.span)
             raise Poisoned
@@ -236,46 +279,61 @@ class Scope:
 
     def unknown(self, text: str, known: list[str], span: Span | None, what: str = "nothing is named") -> None:
         """Report a name that stands for nothing, with the nearest that does."""
-        self.wrong(f"{what} {text}", suggest(text, known), span)
+        if not self.is_torn(text):
+            self.wrong(f"{what} {text}", suggest(text, [] if self.crowded else known), span)
 
     def entry_value(self, entry: Entry, span: Span | None) -> Value:
         """The value of a let or parameter, worked out once."""
-        if entry.value is not None:
-            return entry.value
-        if entry.state == "failed":
-            raise Poisoned
         if isinstance(entry.node, Observe):
             cure = "Use it in a figure, such as `mean(...)`, or name a let."
             self.wrong(f"{entry.full} is an observed signal, not a value", cure, span)
             raise Poisoned
-        if entry.state == "busy" or self._depth > DEEPEST_VALUE:
+        if entry.state == "busy":
             self.wrong(f"{entry.full} depends on itself", "Break the circle: give one of them a value.", span)
             raise Poisoned
-        entry.state, self._depth = "busy", self._depth + 1
-        try:
-            entry.value = self._worked_out(entry)
-        finally:
-            entry.state, self._depth = "failed" if entry.value is None else "known", self._depth - 1
+        if entry.state == "new":
+            in_turn(entry, self._needs, self._work_out)
+        if entry.value is None:
+            raise Poisoned
         return entry.value
 
-    def _worked_out(self, entry: Entry) -> Value:
-        if entry.full in self.overrides:
-            return self.overrides[entry.full]
-        if entry.expression is None:
-            raise Poisoned
-        return self.value(entry.expression, entry.place)
-
-    def varied(self, expression: Expression, place: Place, depth: int = 0) -> str | None:
-        """The name of a let with a spread, or set by a study or sweep, on which an expression depends."""
-        for name in names_in(expression):
-            found = self.find(name, place)
-            if not isinstance(found, Entry) or depth > DEEPEST_VALUE:
+    def _needs(self, entry: Entry) -> Iterator[Entry]:
+        """The lets and parameters in an entry's expression, those in indices first."""
+        if entry.expression is None or entry.full in self.overrides:
+            return
+        for name in reversed(names_in(entry.expression)):
+            try:
+                found = self.find(name, entry.place)
+            except Poisoned:
                 continue
-            if found.full in self.moved or (isinstance(found.node, Let) and found.node.spread is not None):
-                return found.full
-            inner = None if found.expression is None else self.varied(found.expression, found.place, depth + 1)
-            if inner is not None:
-                return inner
+            if isinstance(found, Entry) and not isinstance(found.node, Observe):
+                yield found
+
+    def _work_out(self, entry: Entry) -> None:
+        try:
+            if entry.full in self.overrides:
+                entry.value = self.overrides[entry.full]
+            elif entry.expression is not None:
+                entry.value = self.value(entry.expression, entry.place)
+        except Poisoned:
+            pass
+        entry.state = "failed" if entry.value is None else "known"
+
+    def varied(self, expression: Expression, place: Place) -> str | None:
+        """The name of a let with a spread, or set by a study or sweep, on which an expression depends."""
+        seen: dict[str, None] = {}
+        work = [(expression, place)]
+        while work:
+            current, here = work.pop()
+            for name in names_in(current):
+                found = self.find(name, here)
+                if not isinstance(found, Entry) or found.full in seen:
+                    continue
+                seen[found.full] = None
+                if found.full in self.moved or (isinstance(found.node, Let) and found.node.spread is not None):
+                    return found.full
+                if found.expression is not None:
+                    work.append((found.expression, found.place))
         return None
 
 

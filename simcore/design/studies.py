@@ -14,7 +14,7 @@ from grammar.quantities import ANGLE, NONE, SECOND, Dimension, Quantity, show
 from grammar.spans import Span
 from simcore.design.circuit import Change, PlannedStudy
 from simcore.design.flatten import Flat
-from simcore.design.measures import Measures
+from simcore.design.measures import SOURCES, Measures
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, at_word, span_of, suggest, text_of
 from simcore.design.values import EXPRESSIONS, clash
 
@@ -23,6 +23,9 @@ STUDY_MEANINGS = {
     "settled": "the periodic steady state",
     "transient": "the course in time, from rest or from where another study ended",
 }
+DEEPEST_AFTER = 100
+MOST_PERIODS = 100_000
+MOST_ROWS = 1_000_000
 _EVERY = tuple(STUDY_MEANINGS)
 _MOVING = ("settled", "transient")
 
@@ -88,15 +91,16 @@ class Studies:
         self.flat = flat
         self.place = Place(scope.root)
         self.studies: dict[str, Study] = {}
+        for study in flat.studies:
+            self.studies.setdefault(study.name, study)
 
     def planned(self) -> dict[str, PlannedStudy]:
         """All studies, in the order written."""
         for study in self.flat.studies:
-            if study.name in self.studies:
+            if self.studies[study.name] is not study:
                 self.scope.wrong(
                     f"study {study.name} is declared twice", "Rename one of the two.", at_word(study.span, study.name)
                 )
-            self.studies.setdefault(study.name, study)
         found = {study.name: self._study(study) for study in self.studies.values()}
         self._orders()
         return found
@@ -121,6 +125,7 @@ class Studies:
             self.scope.wrong(
                 f"transient {study.name} has no duration", "Add `duration = 100 ms`, or yours.", study.span
             )
+        self._bounded(study, given)
         changes = [self._change(action) for action in study.actions]
         events = self._events(study, given.get("duration"))
         values = {key: value for key, value in given.items() if value is not None}
@@ -133,6 +138,27 @@ class Studies:
             span=study.span,
             **values,
         )
+
+    def _bounded(self, study: Study, given: dict[str, Any]) -> None:
+        """No study may span more periods of a source, or record more rows, than can be worked through."""
+        elements = self.measures.elements.values()
+        periods = {
+            element.name: element.given.get("period") or 1.0 / element.given["frequency"]
+            for element in elements
+            if element.kind in SOURCES and (element.given.get("period") or element.given.get("frequency"))
+        }
+        spans = [given.get(key) for key in ("duration", "period")]
+        span = next((span for span in spans if span), max(periods.values(), default=0.0))
+        for setting in study.settings:
+            every = given.get("record_every")
+            if setting.key == "record_every" and every and span > MOST_ROWS * every:
+                cure = f"Record every {show(span / MOST_ROWS, SECOND)} or less often: at most {MOST_ROWS} rows."
+                self.scope.wrong("the study would record too many rows", cure, setting.span)
+        fastest = min(periods, key=periods.__getitem__, default=None)
+        if fastest is not None and span > MOST_PERIODS * periods[fastest]:
+            cure = f"Make it shorter, or slow {fastest} down: at most {MOST_PERIODS} periods."
+            where = at_word(study.span, study.name)
+            self.scope.wrong(f"the study spans {span / periods[fastest]:.2g} periods of {fastest}", cure, where)
 
     def _no_key(self, study: Study, setting: Setting, allowed: tuple[str, ...]) -> None:
         if setting.key in STUDY_KINDS["transient"]:
@@ -188,10 +214,9 @@ class Studies:
 
     def _after(self, value: Expression) -> str | None:
         name = value.parts[0].name if isinstance(value, Name) and len(value.parts) == 1 else ""
-        study = next((study for study in self.flat.studies if study.name == name), None)
+        study = self.studies.get(name)
         if study is None:
-            known = [other.name for other in self.flat.studies]
-            self.scope.unknown(name or "here", known, span_of(value), "no study is named")
+            self.scope.unknown(name or "here", list(self.studies), span_of(value), "no study is named")
             return None
         if study.kind == "operating_point":
             cure = "Begin after a settled or transient study."
@@ -206,14 +231,22 @@ class Studies:
             for setting in study.settings:
                 if setting.key == "after" and isinstance(setting.value, Name):
                     after[study.name] = setting.value.parts[0].name
-        for name in after:
-            walk, seen = after.get(name), 0
-            while walk is not None and walk != name and seen <= len(after):
-                walk, seen = after.get(walk), seen + 1
-            if walk == name:
+        depths: dict[str, int] = {}
+        for first in after:
+            path: dict[str, None] = {}
+            name: str | None = first
+            while name is not None and name not in depths and name not in path:
+                path[name] = None
+                name = after.get(name)
+            if name in path:
                 span = at_word(self.studies[name].span, name)
                 self.scope.wrong(f"study {name} comes after itself", "Let one of them start from rest.", span)
-                return
+            below = depths.get(name or "", 0)
+            depths.update((each, below + height) for height, each in enumerate(reversed(path), 1))
+        deep = next((name for name, depth in depths.items() if depth > DEEPEST_AFTER), None)
+        if deep is not None:
+            cure = f"Let one of them start from rest: at most {DEEPEST_AFTER} may follow one another."
+            self.scope.wrong("too many studies start from one another", cure, self.studies[deep].span)
 
     def _events(self, study: Study, duration: float | None) -> tuple[tuple[float, Change], ...]:
         found = []

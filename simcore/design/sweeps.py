@@ -5,6 +5,8 @@ It knows the circuit's names and lets, and runs nothing.
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 from grammar.axes import ExtremesAxis, FaultsAxis, OverAxis, RangeAxis, SamplesAxis
 from grammar.description import Expression, Name, Part, Range, Setting, Sweep
 from grammar.spans import Span
@@ -36,14 +38,15 @@ def spread_names(scope: Scope, names: tuple[Name, ...], place: Place) -> list[Na
     """A list of names with its ranges written out: `D[1..4]` is four names."""
     found: list[Name] = []
     for name in names:
-        found += _spread(scope, name, place)
-        if len(found) > MOST_NAMES:
-            scope.wrong("the list of names is too long", f"At most {MOST_NAMES} names.", name.span)
-            raise Poisoned
+        for each in _spread(scope, name, place):
+            found.append(each)
+            if len(found) > MOST_NAMES:
+                scope.wrong("the list of names is too long", f"At most {MOST_NAMES} names.", name.span)
+                raise Poisoned
     return found
 
 
-def _spread(scope: Scope, name: Name, place: Place) -> list[Name]:
+def _spread(scope: Scope, name: Name, place: Place) -> Iterator[Name]:
     """One name for each index of its first range, and so on inwards."""
     for at, part in enumerate(name.parts):
         for position, index in enumerate(part.indices):
@@ -54,14 +57,13 @@ def _spread(scope: Scope, name: Name, place: Place) -> list[Name]:
             if not 0 <= last - first < MOST_NAMES:
                 scope.wrong("the range of indices is empty or too long", "Write it from low to high.", name.span)
                 raise Poisoned
-            found = []
             for number in range(first, last + 1):
                 fixed = named(f"x[{number}]").parts[0].indices
                 indices = (*part.indices[:position], *fixed, *part.indices[position + 1 :])
                 parts = (*name.parts[:at], Part(part.name, indices), *name.parts[at + 1 :])
-                found += _spread(scope, Name(parts, name.span), place)
-            return found
-    return [name]
+                yield from _spread(scope, Name(parts, name.span), place)
+            return
+    yield name
 
 
 class _Sweeps:
@@ -125,7 +127,8 @@ class _Sweeps:
         """Lets that take part with their tolerance must have one."""
         if isinstance(axis, SamplesAxis):
             self.scope.whole(axis.count, self.place, "the number of samples", 1, MOST_VARIANTS)
-        if not axis.names and not any(let.low is not None for let in self.circuit.lets.values()):
+        known = any(let.low is not None for let in self.circuit.lets.values()) or self.scope.incomplete
+        if not axis.names and not known:
             self.scope.wrong("no let has a tolerance", "Add `tolerance 10 %` to a let.", span)
         for name in spread_names(self.scope, axis.names, self.place):
             full = self.studies.let(name).full
@@ -139,7 +142,7 @@ class _Sweeps:
                 known = ["element", *KINDS]
                 where = at_word(span, axis.each)
                 self.scope.wrong(f"there is no kind {axis.each}", suggest(axis.each, known, all_kinds(known)), where)
-            elif not any(element.kind == axis.each for element in self.circuit.elements.values()):
+            elif not (self.scope.incomplete or any(e.kind == axis.each for e in self.circuit.elements.values())):
                 self.scope.wrong(f"the circuit has no {axis.each}", "Name another kind.", span)
         for name in spread_names(self.scope, axis.names, self.place):
             self.measures.element(name, self.place, "a fault")

@@ -34,7 +34,7 @@ def _kinds(scope: Scope, statements: Sequence[Statement]) -> None:
             _kinds(scope, statement.body)
         elif isinstance(statement, Element):
             known = [*KINDS, *scope.root.unit.blocks]
-            if statement.kind not in known:
+            if statement.kind not in known and scope.found and not scope.is_torn(statement.kind):
                 _no_kind(scope, statement, known)
 
 

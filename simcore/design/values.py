@@ -77,7 +77,7 @@ class Reader:
         known = self._sheets.get(id(sheet.node))
         if known is None:
             place = Place(self.scope.file_space(sheet.unit))
-            known = self._settings(list(sheet.node.settings), kind, place, Values())
+            known = self._settings(list(sheet.node.settings), kind, place, Values(failed=not sheet.node.whole))
             self._sheets[id(sheet.node)] = known
         return known
 

@@ -22,9 +22,7 @@ CASES = sorted(FOLDER.glob("*.case"))
 def messages(text: str) -> str:
     """What the command prints for a description, read and understood like a file of its own."""
     project, mistakes = load_text(text, "design.rect")
-    if not mistakes:
-        mistakes = elaborate(project)[1]
-    return render(mistakes)
+    return render(mistakes + elaborate(project)[1])
 
 
 def parts(case: Path) -> tuple[str, str]:
