@@ -15,6 +15,8 @@ from grammar.reader import read_file, read_text
 
 MOST_FILES = 200
 DEEPEST_USE = 16
+MOST_BYTES = 10**6
+"""Of a file of numbers that a description names."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,11 +37,12 @@ class Unit:
 class Project:
     """A design as read: the top file and, through it, every file it uses.
 
-    name: what its results are filed under
+    name: what its results are filed under; folder: the top file's, None for a text that is no file
     """
 
     name: str
     top: Unit
+    folder: Path | None = None
 
 
 def library_folder() -> Path:
@@ -57,7 +60,7 @@ def load(path: str | Path) -> tuple[Project, list[Mistake]]:
         return Project(given.stem, Unit(str(path), Description(()))), mistakes
     loader = _Loader(given.resolve().parent)
     top = loader.unit(text, str(path), given.resolve(), [])
-    return Project(given.stem, top), loader.mistakes
+    return Project(given.stem, top, loader.folder), loader.mistakes
 
 
 def load_text(text: str, name: str, folder: str | Path | None = None) -> tuple[Project, list[Mistake]]:
@@ -66,7 +69,32 @@ def load_text(text: str, name: str, folder: str | Path | None = None) -> tuple[P
     loader = _Loader(beside)
     here = None if beside is None else beside / "text"
     top = loader.unit(text, name, here, [])
-    return Project(Path(name).stem, top), loader.mistakes
+    return Project(Path(name).stem, top, beside), loader.mistakes
+
+
+def read_beside(folder: Path | None, name: str) -> str:
+    """The text of a file of numbers that a description names, which lies in its folder or below.
+
+    Raises ValueError, in words for the user, for one that lies elsewhere or is no such text; OSError where it can't be
+    read.
+    """
+    if folder is None:
+        raise ValueError("the description is no file, so nothing lies beside it")
+    if Path(name).is_absolute() or "\\" in name or "\0" in name:
+        raise ValueError("it is no relative path")
+    found = (folder / name).resolve()
+    if not found.is_relative_to(folder.resolve()):
+        raise ValueError("it lies outside the folder of the description")
+    if not found.is_file():
+        raise ValueError("there is no such file")
+    with found.open("rb") as file:
+        content = file.read(MOST_BYTES + 1)
+    if len(content) > MOST_BYTES:
+        raise ValueError(f"it is larger than {MOST_BYTES // 10**6} MB")
+    try:
+        return content.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        raise ValueError("it is no UTF-8 text") from None
 
 
 class _Loader:

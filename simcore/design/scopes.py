@@ -99,6 +99,7 @@ class Scope:
         self.entries: dict[str, Entry] = {}
         self.moved: dict[str, None] = {}
         self.root = Space(project.top, "")
+        self.folder = project.folder
         self._files: dict[Unit, Space] = {project.top: self.root}
         self._depth = 0
 

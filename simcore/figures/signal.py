@@ -12,7 +12,7 @@ from functools import cached_property
 
 import numpy as np
 
-from grammar.quantities import NONE, Dimension
+from grammar.quantities import NONE, SECOND, Dimension
 from simcore.figures import polynomials
 from simcore.figures.polynomials import Array
 
@@ -204,6 +204,15 @@ class Signal:
     def integral(self) -> float:
         """Definite integral over the span, in the unit times s; exact up to rounding."""
         return float(np.sum(self.widths * polynomials.means(self.coefficients)))
+
+    def running(self) -> Signal:
+        """The integral from the start to each instant, in the unit times s; exact up to rounding."""
+        powers = np.arange(1.0, self.coefficients.shape[1] + 1.0)
+        rows = np.zeros((len(self.widths), len(powers) + 1))
+        rows[:, 1:] = 0.5 * self.widths[:, None] * self.coefficients / powers
+        before = np.concatenate([[0.0], np.cumsum(self.widths * polynomials.means(self.coefficients))[:-1]])
+        rows[:, 0] = before - (rows[:, 1:] * (-1.0) ** powers).sum(axis=1)
+        return Signal(self.times, rows, self.dimension * SECOND)
 
     def inner(self, other: Signal) -> float:
         """Integral of the product of both over the span, in both units times s; exact whatever the orders."""

@@ -35,7 +35,7 @@ def report(proof: Proof, description: str, files: Sequence[Path]) -> str:
     lines = [proof.circuit.purpose, description] if proof.circuit.purpose else [description]
     for name, study in proof.studies.items():
         lines += ["", *study_lines(name, study)]
-    lines += ["", *verdict_lines(proof.verdicts), ""]
+    lines += ["", *verdict_lines(proof.verdicts), *unrated_lines(proof.unrated), ""]
     lines.append(f"{closing(proof.verdicts)} Solved in {show_seconds(proof.seconds)}.")
     lines += [f"Files in {files[0].parent}: {', '.join(path.name for path in files)}", CAUTION]
     return "\n".join(lines)
@@ -124,8 +124,16 @@ def verdict_lines(verdicts: Sequence[Verdict]) -> list[str]:
         return ["No requirement was judged."]
     headings = ["verdict", "study", "requirement", "required", "found", "margin"]
     lines = ["Requirements", *table(headings, [_verdict_cells(verdict) for verdict in verdicts], left=3)]
-    reasons = [f"{_subject(verdict)}: {verdict.reason}" for verdict in verdicts if verdict.reason]
-    return lines + [INDENT + reason for reason in reasons]
+    reasons: dict[str, dict[str, None]] = {}
+    for verdict in verdicts:
+        if verdict.reason:
+            reasons.setdefault(verdict.reason, {})[_subject(verdict)] = None
+    return lines + [f"{INDENT}{', '.join(subjects)}: {reason}" for reason, subjects in reasons.items()]
+
+
+def unrated_lines(names: Sequence[str]) -> list[str]:
+    """Which elements had no rating to be held against."""
+    return [f"{INDENT}no rating is given of {', '.join(names)}"] if names else []
 
 
 def _verdict_cells(verdict: Verdict) -> list[str]:
