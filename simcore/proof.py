@@ -22,7 +22,7 @@ from simcore.opening import Opened
 from simcore.pipeline import solve_studies
 from simcore.solve.solution import Solution
 
-TAKEN = ("figures", "verdicts")
+TAKEN = ("figures", "verdicts", "bill", "size")
 """Names of result files that a study's trace would take the place of."""
 
 

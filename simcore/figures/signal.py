@@ -259,10 +259,16 @@ class Signal:
         found = np.concatenate(hits)
         return float(found.min()) if len(found) else None
 
+    def spans_above(self, level: float) -> Array:
+        """Start and end in s of each span in which the signal is above a level, in order, shape (m, 2)."""
+        cut = (self - level)._cut_at_zeros()
+        above = np.concatenate([[False], polynomials.means(cut.coefficients) > 0.0, [False]])
+        starts, ends = np.flatnonzero(above[1:] & ~above[:-1]), np.flatnonzero(above[:-1] & ~above[1:])
+        return np.stack([cut.times[starts], cut.times[ends]], axis=1)
+
     def time_above(self, level: float) -> float:
         """How long in s the signal is above a level, all in all."""
-        cut = (self - level)._cut_at_zeros()
-        return float(np.sum(cut.widths[polynomials.means(cut.coefficients) > 0.0]))
+        return float(np.sum(np.diff(self.spans_above(level))))
 
 
 def _either(left: Signal, right: Signal) -> Array:

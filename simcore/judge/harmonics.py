@@ -48,7 +48,7 @@ def judge_harmonics(requirement: Requirement, coarse: Records, fine: Records) ->
     if study not in fine:
         return Verdict(requirement, State.UNDECIDED, reason=f"study {study} was not solved")
     name = tabled_element(requirement)
-    why = _unfit(name, table, fine[study])
+    why = unfit(name, table, fine[study])
     if why:
         return Verdict(requirement, State.NOT_JUDGED, reason=why)
     rows = harmonics(name, table, coarse[study], fine[study])
@@ -100,7 +100,7 @@ def _input_power(name: str, record: Record) -> float:
     return abs(element_figures.mean_power(record, name).value)
 
 
-def _unfit(name: str, table: LimitTable, record: Record) -> str:
+def unfit(name: str, table: LimitTable, record: Record) -> str:
     """Why the harmonics of an element can't be held against a table; "" where they can."""
     span = record.whole_periods()
     if span is None:

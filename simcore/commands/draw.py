@@ -1,0 +1,5 @@
+"""later"""
+
+
+def add(commands):
+    pass

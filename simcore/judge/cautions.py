@@ -1,0 +1,97 @@
+"""What a reader must be warned of: what no description says, and what this design can do to whoever touches it.
+
+It reads solved studies; it lays nothing out.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+
+from grammar.quantities import JOULE, OHM, SECOND, VOLT, show
+from simcore.design.circuit import Circuit, Element
+from simcore.figures import measure
+from simcore.figures.element_figures import largest_stored_energy
+from simcore.figures.record import DELIVERING
+from simcore.proof import Proof
+
+SAFE_DIRECT = 60.0
+"""V: direct voltage that counts as safe to touch in the dry (IEC 62368-1:2018, table 4, ES1; from memory)."""
+SAFE_PEAK = 42.4
+"""V: crest of an alternating voltage that does (likewise)."""
+
+GENERAL = (
+    "This speaks of the description, not of what is built: measure before you trust.",
+    "Mains voltage and charged capacitors kill. Isolation, creepage, earthing, fusing and fire are not looked at here.",
+    "Local codes, and for whatever is connected to the mains licensed practice, come first.",
+)
+
+_DIGITS = 3
+
+
+def cautions(proof: Proof) -> list[str]:
+    """The cautions of a design, its own before the general ones."""
+    return [*_voltages(proof), *_energy(proof), *_bleeding(proof), *GENERAL]
+
+
+def _voltages(proof: Proof) -> Iterator[str]:
+    crests = [_crest(proof, element) for element in proof.circuit.elements.values() if element.kind in DELIVERING]
+    if max(crests, default=0.0) > SAFE_PEAK:
+        yield f"Sources reach {show(max(crests), VOLT, _DIGITS)}: deadly to touch."
+
+
+def _crest(proof: Proof, element: Element) -> float:
+    return max(
+        measure.peak(study.record.window(study.record.between(port.a, port.b))).value
+        for study in proof.studies.values()
+        for port in element.ports
+    )
+
+
+def _energy(proof: Proof) -> Iterator[str]:
+    energies = {name: largest_stored_energy(study.record).value for name, study in proof.studies.items()}
+    worst = max(energies, key=lambda name: energies[name], default="")
+    if worst and energies[worst] > 0.0:
+        yield f"Capacitors and inductors hold up to {show(energies[worst], JOULE, _DIGITS)} (in {worst})."
+
+
+def _bleeding(proof: Proof) -> Iterator[str]:
+    """For each pair of nodes with capacitors charged beyond what is safe: what discharges them without a source."""
+    done: dict[frozenset[str], None] = {}
+    for element in proof.circuit.elements.values():
+        ends = _ends(element)
+        if element.kind != "capacitor" or ends in done:
+            continue
+        done[ends] = None
+        voltage = max(
+            measure.peak(study.record.window(study.record.voltage(element.name))).value
+            for study in proof.studies.values()
+        )
+        if voltage > SAFE_DIRECT:
+            yield _bled(proof.circuit, ends, voltage)
+
+
+def _bled(circuit: Circuit, ends: frozenset[str], voltage: float) -> str:
+    across = [element for element in circuit.elements.values() if _ends(element) == ends]
+    capacitors = [element for element in across if element.kind == "capacitor"]
+    names = ", ".join(element.name for element in capacitors)
+    start = f"{names} charged to {show(voltage, VOLT, _DIGITS)}"
+    conductances = [1.0 / each for each in (_resistance(element) for element in across) if each]
+    if not conductances:
+        return f"{start}: nothing across it is known to discharge it; it may stay dangerous for hours."
+    resistance = 1.0 / sum(conductances)
+    constant = resistance * sum(element.given["capacitance"] for element in capacitors)
+    time = show(constant * math.log(voltage / SAFE_DIRECT), SECOND, _DIGITS)
+    safe = show(SAFE_DIRECT, VOLT)
+    through = f"through {show(resistance, OHM, _DIGITS)} across it, if that stays connected"
+    return f"{start}: {through}, {safe} are reached after {time}."
+
+
+def _resistance(element: Element) -> float | None:
+    """What a resistor, or a capacitor's leakage, puts across its ends in ohm; None where there is nothing."""
+    found = element.given.get({"resistor": "resistance", "capacitor": "leakage_resistance"}.get(element.kind, ""))
+    return None if found is None else float(found)
+
+
+def _ends(element: Element) -> frozenset[str]:
+    return frozenset((element.ports[0].a, element.ports[0].b))
