@@ -195,4 +195,4 @@ def decades(rows: Sequence[Harmonic]) -> tuple[int, int]:
     """The powers of ten, lowest and highest, of a logarithmic axis for bars; what is smaller is cut off."""
     largest = max(max(row.figure.value, row.limit.value) for row in rows)
     smallest = min(row.limit.value for row in rows)
-    return math.floor(math.log10(smallest)) - 1, math.ceil(math.log10(largest))
+    return math.floor(math.log10(smallest)) - 1, math.ceil(math.log10(1.2 * largest))

@@ -187,8 +187,9 @@ def look_at(file: str, settings: Mapping[str, str], say: Say, complain: Say) -> 
         return Outcome.INPUT_WRONG
     from simcore.design.overview import describe
     from simcore.report.look import look
+    from simcore.report.screen import present_screen
 
-    say(look(describe(opened.circuit), file))
+    say(look(describe(opened.circuit), file, present_screen()))
     return Outcome.ALL_HOLD
 
 
