@@ -141,7 +141,7 @@ class Requirements:
             return table
         where = at_word(span, name)
         if not name.lower().endswith(".csv"):
-            cure = suggest(name, list(PUBLISHED), f"Known are {', '.join(PUBLISHED)}; or name a CSV file of your own.")
+            cure = f"Known are {' and '.join(PUBLISHED)}; or name a CSV file of your own."
             self.scope.wrong(f'there is no table "{name}"', cure, where)
             raise Poisoned
         try:
