@@ -8,7 +8,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
-from grammar.quantities import JOULE, OHM, SECOND, VOLT, show
+from grammar.quantities import JOULE, SECOND, VOLT, show
 from simcore.design.circuit import Circuit, Element
 from simcore.figures import measure
 from simcore.figures.element_figures import largest_stored_energy
@@ -72,19 +72,17 @@ def _bleeding(proof: Proof) -> Iterator[str]:
 
 
 def _bled(circuit: Circuit, ends: frozenset[str], voltage: float) -> str:
+    """How long it takes through each resistance alone, the slowest first: loads may be off, a bleeder broken."""
     across = [element for element in circuit.elements.values() if _ends(element) == ends]
     capacitors = [element for element in across if element.kind == "capacitor"]
-    names = ", ".join(element.name for element in capacitors)
-    start = f"{names} charged to {show(voltage, VOLT, _DIGITS)}"
-    conductances = [1.0 / each for each in (_resistance(element) for element in across) if each]
-    if not conductances:
+    start = f"{', '.join(element.name for element in capacitors)} charged to {show(voltage, VOLT, _DIGITS)}"
+    ways = {element.name: found for element in across if (found := _resistance(element))}
+    if not ways:
         return f"{start}: nothing across it is known to discharge it; it may stay dangerous for hours."
-    resistance = 1.0 / sum(conductances)
-    constant = resistance * sum(element.given["capacitance"] for element in capacitors)
-    time = show(constant * math.log(voltage / SAFE_DIRECT), SECOND, _DIGITS)
-    safe = show(SAFE_DIRECT, VOLT)
-    through = f"through {show(resistance, OHM, _DIGITS)} across it, if that stays connected"
-    return f"{start}: {through}, {safe} are reached after {time}."
+    charge = sum(element.given["capacitance"] for element in capacitors) * math.log(voltage / SAFE_DIRECT)
+    slowest_first = sorted(ways, key=lambda name: -ways[name])
+    times = ", ".join(f"{show(ways[name] * charge, SECOND, _DIGITS)} through {name}" for name in slowest_first)
+    return f"{start}: {show(SAFE_DIRECT, VOLT)} are reached after {times} alone, while that stays connected."
 
 
 def _resistance(element: Element) -> float | None:

@@ -144,7 +144,7 @@ def _thinned(times: Array, values: Array) -> tuple[Array, Array]:
 
 
 def _conduction(record: Record) -> dict[str, Array]:
-    """When each diode conducts, by the measure that its conduction angle is taken with."""
+    """When each diode conducts, by the measure that its conduction angle is taken with; empty where none ever does."""
     found = {}
     for element in record.circuit.elements.values():
         if element.kind in VALVES:
@@ -153,7 +153,7 @@ def _conduction(record: Record) -> dict[str, Array]:
             found[element.name] = (
                 current.spans_above(measure.CONDUCTING * peak) if peak > 0.0 else np.zeros((0, 2), dtype=np.float64)
             )
-    return found
+    return found if any(len(spans) for spans in found.values()) else {}
 
 
 def any_conducts(conduction: dict[str, Array]) -> list[tuple[float, float]]:

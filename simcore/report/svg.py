@@ -90,7 +90,7 @@ def value_range(curves: Sequence[Curve]) -> tuple[float, float]:
     """Lowest and highest value of an axis, with a little air."""
     low = min(float(curve.values.min()) for curve in curves)
     high = max(float(curve.values.max()) for curve in curves)
-    air = 0.06 * (high - low) or 0.1 * max(abs(high), 1e-12)
+    air = 0.06 * (high - low) or 0.1 * abs(high) or 1.0
     return low - air, high + air
 
 
