@@ -24,7 +24,7 @@ from simcore.figures.evaluate import figure_of
 from simcore.figures.figure import Figure, bounded
 from simcore.figures.overview import signal_rows
 from simcore.figures.record import Record
-from simcore.figures.stresses import Stress, rated_stresses
+from simcore.figures.stresses import Stress, rated_elements, rated_stresses
 from simcore.solve.course import Course, Reached
 from simcore.solve.solution import Solution
 from simcore.solve.worst import worst_angle
@@ -141,8 +141,7 @@ _Asked = Callable[[str, Mapping[str, Record]], Figure]
 def _asked(requirement: Requirement, circuit: Circuit) -> list[_Asked]:
     """What a requirement asks to be accurate, each a function of the study and the records."""
     if requirement.relation == "ratings":
-        names = requirement.elements or tuple(circuit.elements)
-        elements = [circuit.elements[name] for name in names if name in circuit.elements]
+        elements = rated_elements(circuit, requirement)
         return [_stress(element, stress) for element in elements for stress, _, _ in rated_stresses(element)]
     figure = requirement.figure
     if isinstance(figure, Call) and figure.name in TABLED:

@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 
 from grammar.quantities import AMPERE, I2T
-from simcore.design.circuit import Element
+from simcore.design.circuit import Circuit, Element, Requirement
 from simcore.design.graph import port_name
 from simcore.figures import element_figures, measure
 from simcore.figures.figure import Figure
@@ -141,6 +141,14 @@ STRESSES: dict[str, tuple[Stress, ...]] = {
 def stress_names(element: Element, stress: Stress) -> list[str]:
     """The names a stress is looked at under: the element's, or those of its windings or phases."""
     return [port_name(element, port) for port in element.ports] if stress.ports else [element.name]
+
+
+def rated_elements(circuit: Circuit, requirement: Requirement) -> list[Element]:
+    """The elements that a requirement on ratings is about; a winding or phase stands for the whole."""
+    if not requirement.elements:
+        return list(circuit.elements.values())
+    owners = [name if name in circuit.elements else name.rpartition(".")[0] for name in requirement.elements]
+    return [circuit.elements[name] for name in dict.fromkeys(owners)]
 
 
 def rated_stresses(element: Element) -> Iterator[tuple[Stress, float, float | None]]:

@@ -13,9 +13,9 @@ from simcore.components import KINDS
 from simcore.design.circuit import Circuit, Element
 from simcore.figures.figure import Figure, bounded
 from simcore.figures.record import Record
-from simcore.figures.stresses import STRESSES, Stress, rated_stresses, stress_names
+from simcore.figures.stresses import STRESSES, Stress, rated_elements, rated_stresses, stress_names
 from simcore.judge.preferred import SERIES
-from simcore.judge.ratings import base_of, knows_temperature, rated_elements, rating_text, unused
+from simcore.judge.ratings import base_of, knows_temperature, rating_text, unused
 from simcore.proof import Proof
 
 USUAL_MARGIN = 0.2

@@ -15,7 +15,7 @@ from simcore.design.overview import celsius, value_text
 from simcore.figures.evaluate import Records
 from simcore.figures.figure import Figure, plain
 from simcore.figures.record import Record
-from simcore.figures.stresses import Stress, rated_stresses
+from simcore.figures.stresses import Stress, rated_elements, rated_stresses
 from simcore.judge.held import Pair, Verdict, side
 from simcore.judge.outcome import State
 
@@ -41,14 +41,6 @@ def judge_ratings(requirement: Requirement, coarse: Records, fine: Records) -> l
             verdicts = [Verdict(worded, State.NOT_JUDGED, reason="no rating is given for it")]
         found += verdicts
     return found or [Verdict(requirement, State.NOT_JUDGED, reason="no element has a rating")]
-
-
-def rated_elements(circuit: Circuit, requirement: Requirement) -> list[Element]:
-    """The elements that a requirement on ratings is about; a winding or phase stands for the whole."""
-    if not requirement.elements:
-        return list(circuit.elements.values())
-    owners = [name if name in circuit.elements else name.rpartition(".")[0] for name in requirement.elements]
-    return [circuit.elements[name] for name in dict.fromkeys(owners)]
 
 
 def unrated(circuit: Circuit) -> list[str]:

@@ -131,3 +131,23 @@ def test_what_is_never_reversed_has_no_reverse_stress() -> None:
     )
     ((stress, _, _),) = rated_stresses(element)
     assert stress.compute(record, element, "D1").value == 0.0
+
+
+def test_a_ripple_current_counts_about_its_mean() -> None:
+    element = branch("C1", "capacitor", "a", "0", rated_ripple_current=(2.0, 100.0))
+    times = np.linspace(0.0, 0.02, 401)
+    currents = {("C1", ""): lambda t: 5.0 + 3.0 * np.sin(100.0 * math.pi * t)}
+    record = Record(FakeSolution(circuit_of([element]), times, {"a": steady(1.0), "0": zero}, currents))
+    ((stress, rating, at),) = rated_stresses(element)
+    assert (rating, at) == (2.0, 100.0)
+    assert stress.compute(record, element, "C1").value == pytest.approx(3.0 / math.sqrt(2.0), rel=1e-6)
+
+
+@pytest.mark.parametrize(("kind", "flow"), [("settled", 10e-3), ("transient", 2e-3)])
+def test_what_a_settled_study_shows_goes_on(kind: str, flow: float) -> None:
+    element = branch("D1", "diode", "a", "0", rated_i2t=1.0)
+    times = np.linspace(0.0, 2e-3, 11)
+    currents, study = {("D1", ""): steady(3.0)}, PlannedStudy("run", kind)
+    record = Record(FakeSolution(circuit_of([element]), times, {"a": steady(1.0), "0": zero}, currents, study=study))
+    ((stress, _, _),) = rated_stresses(element)
+    assert stress.compute(record, element, "D1").value == pytest.approx(9.0 * flow)

@@ -110,15 +110,6 @@ def test_a_divider_is_sized_by_ohms_law() -> None:
     assert turn.preferred is not None and turn.preferred.value == 680.0
 
 
-def test_two_lets_trade_off() -> None:
-    # u = 4 V wants R_low = 2/3 R_top, whatever R_top is.
-    traded = sizer("s: mean(u) >= 4 V").trade("R_top", "R_low", "500 Ohm", "2 kOhm")
-    assert len(traded) > 5 and traded[0][0] == 500.0 and traded[-1][0] == pytest.approx(2000.0)
-    for value, found in traded:
-        (turn,) = found.sizing.turns
-        assert turn.value == pytest.approx(value * 2.0 / 3.0, rel=2e-4)
-
-
 @pytest.mark.parametrize(
     ("let", "first", "last", "why"),
     [
