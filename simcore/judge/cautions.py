@@ -12,7 +12,6 @@ from grammar.quantities import JOULE, SECOND, VOLT, show
 from simcore.design.circuit import Circuit, Element
 from simcore.figures import measure
 from simcore.figures.element_figures import largest_stored_energy
-from simcore.figures.record import DELIVERING
 from simcore.proof import Proof
 
 SAFE_DIRECT = 60.0
@@ -35,12 +34,14 @@ def cautions(proof: Proof) -> list[str]:
 
 
 def _voltages(proof: Proof) -> Iterator[str]:
-    crests = [_crest(proof, element) for element in proof.circuit.elements.values() if element.kind in DELIVERING]
-    if max(crests, default=0.0) > SAFE_PEAK:
-        yield f"Sources reach {show(max(crests), VOLT, _DIGITS)}: deadly to touch."
+    crests = {element.name: _crest(proof, element) for element in proof.circuit.elements.values()}
+    worst = max(crests, key=lambda name: crests[name], default="")
+    if worst and crests[worst] > SAFE_PEAK:
+        yield f"Up to {show(crests[worst], VOLT, _DIGITS)} stand across {worst}: not safe to touch."
 
 
 def _crest(proof: Proof, element: Element) -> float:
+    """The largest voltage across any of its ports in any study, V."""
     return max(
         measure.peak(study.record.window(study.record.between(port.a, port.b))).value
         for study in proof.studies.values()

@@ -55,7 +55,7 @@ def page(proof: Proof, project: Project) -> str:
     title = proof.circuit.purpose or proof.circuit.name
     sections = [
         f"<h1>{escape(title)}</h1>",
-        f"<p>{escape(words.closing(proof.verdicts))} {escape(proof.outcome.sentence)}</p>",
+        f"<p>{escape(words.closing(proof.verdicts))}</p>",
         *_required(proof),
         "<h2>How sure this is</h2>",
         f"<p>{escape(_SURE)}</p>",

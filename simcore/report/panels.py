@@ -34,6 +34,8 @@ MOST_POINTS = 1500
 """Of a curve, so that a picture stays small; extremes are kept."""
 MOST_CURVES = 6
 """In one panel."""
+MOST_SPANS = 200
+"""Of a diode: where it conducts more often, no picture could show when."""
 
 
 @dataclass(frozen=True)
@@ -144,7 +146,8 @@ def _thinned(times: Array, values: Array) -> tuple[Array, Array]:
 
 
 def _conduction(record: Record) -> dict[str, Array]:
-    """When each diode conducts, by the measure that its conduction angle is taken with; empty where none ever does."""
+    """When each diode conducts, by the measure that its conduction angle is taken with; empty where none ever does,
+    or too often to be seen."""
     found = {}
     for element in record.circuit.elements.values():
         if element.kind in VALVES:
@@ -153,7 +156,8 @@ def _conduction(record: Record) -> dict[str, Array]:
             found[element.name] = (
                 current.spans_above(measure.CONDUCTING * peak) if peak > 0.0 else np.zeros((0, 2), dtype=np.float64)
             )
-    return found if any(len(spans) for spans in found.values()) else {}
+    most = max((len(spans) for spans in found.values()), default=0)
+    return found if 0 < most <= MOST_SPANS else {}
 
 
 def any_conducts(conduction: dict[str, Array]) -> list[tuple[float, float]]:

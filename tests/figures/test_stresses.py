@@ -1,6 +1,8 @@
 """What elements have to stand: each rating has its figure, and the figures that only ratings need are right."""
 
 import math
+import re
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -14,6 +16,7 @@ from simcore.figures.signal import Signal
 from simcore.figures.stresses import STRESSES, rated_stresses, stress_names
 from tests.figures.fake_solution import FakeSolution, branch, circuit_of, steady, zero
 
+README = Path(__file__).parent.parent.parent / "README.md"
 RATINGS = [(kind.name, key.name) for kind in KINDS.values() for key in kind.keys if key.rating]
 
 
@@ -25,6 +28,11 @@ def test_every_kind_says_what_it_has_to_stand() -> None:
 @pytest.mark.parametrize(("kind", "key"), RATINGS)
 def test_every_rating_is_held_against_one_figure(kind: str, key: str) -> None:
     assert sum(stress.rating == key for stress in STRESSES[kind]) == 1
+
+
+def test_the_readme_says_what_each_rating_is_held_against() -> None:
+    rows = re.findall(r"^\| `(rated_\w+)` \|", README.read_text("utf-8"), re.MULTILINE)
+    assert sorted(rows) == sorted({key for _, key in RATINGS})
 
 
 def test_nothing_is_held_against_what_is_no_rating() -> None:
