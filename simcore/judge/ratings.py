@@ -5,7 +5,7 @@ It reads the records of solved studies. Which figure a rating is held against is
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from grammar.quantities import KELVIN, show
 from simcore.components import KINDS
@@ -22,6 +22,39 @@ from simcore.judge.outcome import State
 NO_TEMPERATURE = "nothing says how hot it gets: give its thermal_resistance, or the temperature it runs at"
 
 
+@dataclass(frozen=True)
+class _Claim:
+    """A requirement as one of its ratings; stress: None for an element that was named and has no rating."""
+
+    requirement: Requirement
+    element: Element
+    stress: Stress | None = None
+    rating: float = 0.0
+
+
+def _claims(circuit: Circuit, requirement: Requirement) -> list[_Claim]:
+    found = []
+    for element in rated_elements(circuit, requirement):
+        claims = [
+            _Claim(
+                _worded(requirement, f"{element.name}: {stress.title} ({_rated(element, stress)})"),
+                element,
+                stress,
+                value,
+            )
+            for stress, value, _ in rated_stresses(element)
+        ]
+        if not claims and requirement.elements:
+            claims = [_Claim(_worded(requirement, f"{element.name}: ratings"), element)]
+        found += claims
+    return found
+
+
+def spread_ratings(circuit: Circuit, requirement: Requirement) -> list[Requirement]:
+    """The requirement as it is judged, one for each verdict: known before anything is solved."""
+    return [claim.requirement for claim in _claims(circuit, requirement)] or [requirement]
+
+
 def judge_ratings(requirement: Requirement, coarse: Records, fine: Records) -> list[Verdict]:
     """One verdict for each rating of each element that the requirement is about.
 
@@ -30,16 +63,7 @@ def judge_ratings(requirement: Requirement, coarse: Records, fine: Records) -> l
     study = requirement.study
     if study not in fine:
         return [Verdict(requirement, State.UNDECIDED, reason=f"study {study} was not solved")]
-    found = []
-    for element in rated_elements(fine[study].circuit, requirement):
-        verdicts = [
-            _rating(requirement, element, stress, value, coarse[study], fine[study])
-            for stress, value, _ in rated_stresses(element)
-        ]
-        if not verdicts and requirement.elements:
-            worded = _worded(requirement, f"{element.name}: ratings")
-            verdicts = [Verdict(worded, State.NOT_JUDGED, reason="no rating is given for it")]
-        found += verdicts
+    found = [_judged(claim, coarse[study], fine[study]) for claim in _claims(fine[study].circuit, requirement)]
     return found or [Verdict(requirement, State.NOT_JUDGED, reason="no element has a rating")]
 
 
@@ -56,18 +80,22 @@ def unrated(circuit: Circuit) -> list[str]:
     ]
 
 
-def _rating(
-    requirement: Requirement, element: Element, stress: Stress, value: float, coarse: Record, fine: Record
-) -> Verdict:
+def _judged(claim: _Claim, coarse: Record, fine: Record) -> Verdict:
+    element, stress, requirement = claim.element, claim.stress, claim.requirement
+    if stress is None:
+        return Verdict(requirement, State.NOT_JUDGED, reason="no rating is given for it")
     key = KINDS[element.kind].key[stress.rating]
-    worded = _worded(requirement, f"{element.name}: {stress.title} ({rating_text(key, element)})")
     if key.dimension == KELVIN and not knows_temperature(element):
-        return Verdict(worded, State.NOT_JUDGED, reason=NO_TEMPERATURE)
+        return Verdict(requirement, State.NOT_JUDGED, reason=NO_TEMPERATURE)
     figure = Pair.of(lambda record: stress.compute(record, element, element.name), coarse, fine)
     base = base_of(key, element, fine.circuit)
-    limit = Pair.exact(plain(base + (1.0 - requirement.margin) * (value - base), key.dimension))
+    limit = Pair.exact(plain(base + (1.0 - requirement.margin) * (claim.rating - base), key.dimension))
     state, margin, reason = side(figure, limit, 1.0, False)
-    return Verdict(worded, state, figure.bounded, limit.fine, margin=margin, reason=reason)
+    return Verdict(requirement, state, figure.bounded, limit.fine, margin=margin, reason=reason)
+
+
+def _rated(element: Element, stress: Stress) -> str:
+    return rating_text(KINDS[element.kind].key[stress.rating], element)
 
 
 def _worded(requirement: Requirement, text: str) -> Requirement:

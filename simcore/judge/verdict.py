@@ -7,13 +7,13 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 
-from simcore.design.circuit import Requirement
+from simcore.design.circuit import Circuit, Requirement
 from simcore.figures.evaluate import Records, figure_of
 from simcore.judge.harmonics import judge_harmonics
 from simcore.judge.held import Pair, Verdict, rank, side
-from simcore.judge.ratings import judge_ratings
+from simcore.judge.ratings import judge_ratings, spread_ratings
 
-__all__ = ["Verdict", "judge", "judge_one"]
+__all__ = ["Verdict", "judge", "judge_one", "spread"]
 
 
 def judge(requirements: Iterable[Requirement], coarse: Records, fine: Records) -> list[Verdict]:
@@ -30,6 +30,14 @@ def judge(requirements: Iterable[Requirement], coarse: Records, fine: Records) -
             found.append(judge_harmonics(requirement, coarse, fine))
         else:
             found.append(judge_one(requirement, coarse, fine))
+    return found
+
+
+def spread(circuit: Circuit, requirements: Iterable[Requirement]) -> list[Requirement]:
+    """Requirements as they are judged, one for each verdict that `judge` makes of them, in the same order."""
+    found: list[Requirement] = []
+    for requirement in requirements:
+        found += spread_ratings(circuit, requirement) if requirement.relation == "ratings" else [requirement]
     return found
 
 

@@ -9,7 +9,7 @@ from simcore.figures.figure import Figure
 from simcore.judge.bill import bill_of
 from simcore.judge.cautions import cautions
 from simcore.judge.outcome import State
-from simcore.judge.verdict import Verdict
+from simcore.judge.verdict import Verdict, spread
 from tests.outside.checking import SHARP
 
 # --- a design worked by hand -----------------------------------------------------------------------------------------
@@ -168,6 +168,13 @@ def test_a_design_without_any_rating_is_not_judged() -> None:
     text = "a -> g: source e, constant = 9 V\na -> g: resistor R1, 1 kOhm\nreference g\nstudy s: operating_point\n"
     (only,) = verdicts(text + "require s: ratings\n")
     assert (only.state, only.reason) == (State.NOT_JUDGED, "no element has a rating")
+
+
+@pytest.mark.parametrize("of", ["", " of R1, C1, D2", " of each diode"])
+def test_what_will_be_judged_is_known_before_anything_is_solved(of: str) -> None:
+    design = simcore.read_text(bridge(studies="s", margin=", margin = 5 %").replace("ratings", f"ratings{of}"))
+    planned = spread(design.circuit, design.circuit.requirements)
+    assert planned == [verdict.requirement for verdict in design.prove().verdicts] and len(planned) > 5
 
 
 def test_a_label_stands_before_each_rating() -> None:
