@@ -95,7 +95,7 @@ class _Item:
 
 
 def _tidied(text: str, description: Description) -> str:
-    pieces, _ = pieces_of(Source("", text))
+    pieces = pieces_of(Source("", text)).pieces
     source = _Commented(text)
     opening, items, closing = source.statements(pieces, description.statements, 0, len(text))
     header: list[str] = []

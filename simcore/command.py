@@ -1,18 +1,19 @@
-"""The `bulkrail` command: reads what is asked, hands it on, and turns the outcome into an exit status.
+"""The `bulkrail` command: finds the verb that is asked for, and turns what it comes to into an exit status.
 
-Imports nothing heavy until a command needs it, and knows neither circuits nor figures.
+Imports nothing heavy until a verb needs it, and knows neither circuits nor figures.
 """
 
 from __future__ import annotations
 
 import argparse
-import os
 import sys
 from collections.abc import Callable, Sequence
-from pathlib import Path
-from typing import TextIO
 
+from simcore.commands import baseline, draw, look, run, size, tidy
+from simcore.commands.speaking import complain
 from simcore.judge.outcome import Outcome
+
+VERBS = (run, look, size, baseline, draw, tidy)
 
 INTERRUPTED = 130
 """Exit status after an interrupt from the keyboard, as shells have it: 128 + signal number."""
@@ -33,113 +34,18 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 
 def _parser() -> argparse.ArgumentParser:
+    from simcore import __version__
+
     parser = argparse.ArgumentParser(
         prog="bulkrail",
         description="Solves rectifier circuits described in text and judges them against what they must hold.",
         epilog="exit status: " + "; ".join(f"{outcome.status} {outcome.sentence}" for outcome in Outcome),
     )
-    parser.add_argument("--version", action="version", version=_version_text())
+    parser.add_argument("--version", action="version", version=f"bulkrail {__version__}")
     commands = parser.add_subparsers(metavar="COMMAND", required=True)
-    run = commands.add_parser("run", help="solve the studies, print figures and verdicts, write traces")
-    run.add_argument("files", metavar="FILE", nargs="+", help="a description, ending in .rect")
-    run.add_argument(
-        "--out",
-        metavar="DIR",
-        type=Path,
-        help="folder for the results, by default results/<file's stem>; with several files one folder each in it",
-    )
-    run.add_argument(
-        "--study", metavar="NAME", action="append", default=[], help="solve this study only; may be repeated"
-    )
-    _add_settings(run)
-    run.set_defaults(action=_run)
-    look = commands.add_parser("look", help="show the circuit as understood, and what each study will do")
-    look.add_argument("file", metavar="FILE", help="a description, ending in .rect")
-    _add_settings(look)
-    look.set_defaults(action=_look)
-    tidy = commands.add_parser("tidy", help="put files in canonical order and layout, comments kept")
-    tidy.add_argument("files", metavar="FILE", nargs="+", help="a description or a file of data sheets")
-    tidy.set_defaults(action=_tidy)
+    for verb in VERBS:
+        verb.add(commands)
     return parser
-
-
-def _add_settings(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument(
-        "--set",
-        metavar="NAME=VALUE",
-        dest="settings",
-        type=_setting,
-        action="append",
-        default=[],
-        help='give a let another value, as "C_res=2200 uF"; may be repeated',
-    )
-
-
-def _setting(text: str) -> tuple[str, str]:
-    name, equals, value = (part.strip() for part in text.partition("="))
-    if not (name and equals and value):
-        raise argparse.ArgumentTypeError(f'"{text}" is not NAME=VALUE, such as "C_res=2200 uF"')
-    return name, value
-
-
-def _version_text() -> str:
-    from simcore import __version__
-
-    return f"bulkrail {__version__}"
-
-
-def _run(options: argparse.Namespace) -> Outcome:
-    from simcore.report.session import run_files
-
-    folders = _folders(options.files, options.out)
-    if folders is None:
-        return Outcome.INPUT_WRONG
-    return run_files(folders, options.study, dict(options.settings), say, complain)
-
-
-def _folders(files: Sequence[str], out: Path | None) -> dict[str, Path] | None:
-    """Where the results of each file go; None, with a message, where two would share a folder."""
-    base = Path("results") if out is None else out
-    alone = out is not None and len(files) == 1
-    folders = {file: base if alone else base / Path(file).stem for file in files}
-    first: dict[Path, str] = {}
-    for file, folder in folders.items():
-        other = first.setdefault(folder, file)
-        if other != file:
-            complain(f"{file}: its results would take the place of those of {other}")
-            complain("    cure: run the two apart, each with its own --out")
-            return None
-    return folders
-
-
-def _look(options: argparse.Namespace) -> Outcome:
-    from simcore.report.session import look_at
-
-    return look_at(options.file, dict(options.settings), say, complain)
-
-
-def _tidy(options: argparse.Namespace) -> Outcome:
-    from simcore.report.tidying import tidy_files
-
-    return tidy_files(options.files, say, complain)
-
-
-def say(text: str) -> None:
-    """Print for people."""
-    _print(text, sys.stdout)
-
-
-def complain(text: str) -> None:
-    """Print a mistake or progress, apart from what people asked for."""
-    _print(text, sys.stderr)
-
-
-def _print(text: str, stream: TextIO) -> None:
-    """Print to a stream. A reader who has gone away ends the printing and nothing else."""
-    try:
-        print(text, file=stream, flush=True)
-    except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
 
 
 if __name__ == "__main__":

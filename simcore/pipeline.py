@@ -13,16 +13,18 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from grammar.description import Expression
+from grammar.description import Call, Expression
 from grammar.quantities import AMPERE, ANGLE, JOULE, VOLT, WATT, Dimension, Quantity, show
 from simcore.design.changes import Variants
-from simcore.design.circuit import Circuit, PlannedStudy
+from simcore.design.circuit import Circuit, Element, PlannedStudy, Requirement
 from simcore.design.files import Project
 from simcore.equations.kernel import KernelCache
+from simcore.figures.catalogue import TABLED
 from simcore.figures.evaluate import figure_of
 from simcore.figures.figure import Figure, bounded
 from simcore.figures.overview import signal_rows
 from simcore.figures.record import Record
+from simcore.figures.stresses import Stress, rated_elements, rated_stresses
 from simcore.solve.course import Course, Reached
 from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.solution import Solution
@@ -132,13 +134,31 @@ class _Proof:
         observed; with neither, nothing asks for accuracy."""
         records = ({study.name: Record(coarse)}, {study.name: Record(fine)})
         mine = [requirement for requirement in self.circuit.requirements if requirement.study == study.name]
-        asked = [requirement.figure for requirement in mine if requirement.figure is not None]
-        figures = [bounded(*(figure_of(part, study.name, record) for record in records)) for part in asked]
+        asked = [figure for requirement in mine for figure in _asked(requirement, self.circuit)]
+        figures = [bounded(*(figure(study.name, record) for record in records)) for figure in asked]
         if not asked and self.circuit.observes:
             rows = signal_rows(records[1][study.name], records[0][study.name])
             figures = [figure for row in rows for figure in row.figures.values()]
         floors = _floors(fine)
         return max((_share(figure, study.accuracy, floors) for figure in figures), default=0.0)
+
+
+_Asked = Callable[[str, Mapping[str, Record]], Figure]
+
+
+def _asked(requirement: Requirement, circuit: Circuit) -> list[_Asked]:
+    """What a requirement asks to be accurate, each a function of the study and the records."""
+    if requirement.relation == "ratings":
+        elements = rated_elements(circuit, requirement)
+        return [_stress(element, stress) for element in elements for stress, _, _ in rated_stresses(element)]
+    figure = requirement.figure
+    if isinstance(figure, Call) and figure.name in TABLED:
+        figure = Call("rms", (Call("current", figure.arguments),))
+    return [] if figure is None else [lambda study, records: figure_of(figure, study, records)]
+
+
+def _stress(element: Element, stress: Stress) -> _Asked:
+    return lambda study, records: stress.compute(records[study], element, element.name)
 
 
 def _floors(solution: Solution) -> dict[Dimension, float]:

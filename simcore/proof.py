@@ -16,12 +16,13 @@ from simcore.design.circuit import Circuit, PlannedStudy
 from simcore.figures.overview import Balance, Row, balance, diode_rows, signal_rows
 from simcore.figures.record import Record
 from simcore.judge.outcome import Outcome, outcome_of
+from simcore.judge.ratings import unrated
 from simcore.judge.verdict import Verdict, judge
 from simcore.opening import Opened
 from simcore.pipeline import solve_studies
 from simcore.solve.solution import Solution
 
-TAKEN = ("figures", "verdicts")
+TAKEN = ("figures", "verdicts", "bill", "size")
 """Names of result files that a study's trace would take the place of."""
 
 
@@ -44,7 +45,7 @@ class Proof:
     """What a design came to.
 
     studies: in the order solved; coarse: all solved studies at the looser tolerance that the bounds come from;
-    verdicts: of the requirements on them, in the order written; seconds: wall-clock time
+    verdicts: of the requirements on them, in the order written, of `ratings` one a rating; seconds: wall-clock time
     """
 
     circuit: Circuit
@@ -57,6 +58,11 @@ class Proof:
     def outcome(self) -> Outcome:
         """What the verdicts come to together."""
         return outcome_of(verdict.state for verdict in self.verdicts)
+
+    @property
+    def unrated(self) -> list[str]:
+        """Elements that `ratings` was required of and that have none, though their kind can."""
+        return unrated(self.circuit)
 
 
 def chosen_studies(circuit: Circuit, wanted: Sequence[str], file: str) -> tuple[list[str], list[Mistake]]:

@@ -11,6 +11,7 @@ from typing import Any
 from grammar.description import Expression, Sweep
 from grammar.quantities import Quantity
 from grammar.spans import Span
+from simcore.design.limits import LimitTable
 
 
 @dataclass(frozen=True)
@@ -99,7 +100,8 @@ class Requirement:
     """One requirement on one study (repeats, `each study` and `each KIND` spread out).
 
     relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at
-    other studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for reports
+    other studies; elements: those that `ratings` is about, () for all; limits: the table that `within` names; wording:
+    the text as tidy writes it, for reports
     """
 
     study: str
@@ -111,7 +113,7 @@ class Requirement:
     label: str | None = None
     elements: tuple[str, ...] = ()
     margin: float = 0.0
-    table: str | None = None
+    limits: LimitTable | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
 
 

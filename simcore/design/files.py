@@ -17,6 +17,8 @@ MOST_FILES = 200
 DEEPEST_USE = 16
 MOST_TEXT = 300_000
 """Characters in all files of a design together."""
+MOST_BYTES = 10**6
+"""Of a file of numbers that a description names."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -39,7 +41,7 @@ class Project:
 
     name: what its results are filed under; unread: words of statements that could not be read, which may name anything;
     sound: whether all texts could be read in full; found: whether every used file could be had; lost: whether nothing
-    can be said of the top file beyond the mistakes in its text
+    can be said of the top file beyond the mistakes in its text; folder: the top file's, None for a text that is no file
     """
 
     name: str
@@ -48,6 +50,7 @@ class Project:
     sound: bool = True
     found: bool = True
     lost: bool = False
+    folder: Path | None = None
 
 
 def library_folder() -> Path:
@@ -65,7 +68,7 @@ def load(path: str | Path) -> tuple[Project, list[Mistake]]:
         return Project(given.stem, Unit(str(path), Description(())), sound=False, lost=True), mistakes
     loader = _Loader(given.resolve().parent)
     top = loader.unit(text, str(path), given.resolve(), [])
-    return loader.project(given.stem, top), loader.mistakes
+    return loader.project(given.stem, top, loader.folder), loader.mistakes
 
 
 def load_text(text: str, name: str, folder: str | Path | None = None) -> tuple[Project, list[Mistake]]:
@@ -74,7 +77,32 @@ def load_text(text: str, name: str, folder: str | Path | None = None) -> tuple[P
     loader = _Loader(beside)
     here = None if beside is None else beside / "text"
     top = loader.unit(text, name, here, [])
-    return loader.project(Path(name).stem, top), loader.mistakes
+    return loader.project(Path(name).stem, top, beside), loader.mistakes
+
+
+def read_beside(folder: Path | None, name: str) -> str:
+    """The text of a file of numbers that a description names, which lies in its folder or below.
+
+    Raises ValueError, in words for the user, for one that lies elsewhere or is no such text; OSError where it can't be
+    read.
+    """
+    if folder is None:
+        raise ValueError("the description is no file, so nothing lies beside it")
+    if Path(name).is_absolute() or "\\" in name or "\0" in name:
+        raise ValueError("it is no relative path")
+    found = (folder / name).resolve()
+    if not found.is_relative_to(folder.resolve()):
+        raise ValueError("it lies outside the folder of the description")
+    if not found.is_file():
+        raise ValueError("there is no such file")
+    with found.open("rb") as file:
+        content = file.read(MOST_BYTES + 1)
+    if len(content) > MOST_BYTES:
+        raise ValueError(f"it is larger than {MOST_BYTES // 10**6} MB")
+    try:
+        return content.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        raise ValueError("it is no UTF-8 text") from None
 
 
 class _Loader:
@@ -89,9 +117,10 @@ class _Loader:
         self.found = True
         self._size = 0
 
-    def project(self, name: str, top: Unit) -> Project:
-        """The design with a top file, after all its files were read."""
-        return Project(name, top, frozenset(self.unread), not self.mistakes, self.found, top.description.lost)
+    def project(self, name: str, top: Unit, folder: Path | None) -> Project:
+        """The design with a top file, after all its files were read; folder: the top file's."""
+        sound = not self.mistakes
+        return Project(name, top, frozenset(self.unread), sound, self.found, top.description.lost, folder)
 
     def unit(self, text: str, name: str, path: Path | None, above: list[Path]) -> Unit:
         description, mistakes = read_text(text, name)

@@ -14,7 +14,9 @@ from grammar.spans import Span
 from grammar.writer import write_expression
 from simcore.components import KINDS
 from simcore.design.circuit import Requirement
+from simcore.design.files import read_beside
 from simcore.design.flatten import all_kinds
+from simcore.design.limits import COLUMNS, PUBLISHED, LimitTable, read_limits
 from simcore.design.measures import Measures, Resolved
 from simcore.design.rewrite import eaches, put_element, rename
 from simcore.design.scopes import Place, Poisoned, Scope, at_word, named, span_of, suggest
@@ -92,13 +94,15 @@ class Requirements:
         figure, bound, upper = put(claim.figure), put(claim.bound), put(claim.upper)
         assert figure is not None
         wording = _wording(claim, *(self._indexed(each, place) for each in (figure, bound, upper)))
+        limits = None
         if claim.relation == "within":
             resolved: list[Resolved | None] = [self._tabled(figure, place), None, None]
+            limits = self._limits(claim.table or "", require.span)
         else:
             resolved = self._compared(figure, bound, upper, place)
         parts = [None if each is None else each.expression for each in resolved]
         return [
-            Requirement(name, claim.relation, *parts, wording, require.label, table=claim.table, span=require.span)
+            Requirement(name, claim.relation, *parts, wording, require.label, limits=limits, span=require.span)
             for name in names
         ]
 
@@ -146,6 +150,24 @@ class Requirements:
             raise Poisoned
         full = self.measures.element(argument, place, "harmonics", "branch")
         return Resolved(replace(figure, arguments=(named(full, argument.span),)), "figure", NONE)
+
+    def _limits(self, name: str, span: Span | None) -> LimitTable:
+        """A published table, or the user's own from a CSV file in the folder of the description."""
+        table = PUBLISHED.get(" ".join(name.split()))
+        if table is not None:
+            return table
+        where = at_word(span, name)
+        if not name.lower().endswith(".csv"):
+            cure = f"Known are {' and '.join(PUBLISHED)}; or name a CSV file of your own."
+            self.scope.wrong(f'there is no table "{name}"', cure, where)
+            raise Poisoned
+        try:
+            return read_limits(name, read_beside(self.scope.folder, name))
+        except (OSError, ValueError) as fault:
+            reason = fault.strerror if isinstance(fault, OSError) else str(fault)
+            cure = f"Give a CSV file inside the folder of the description, with the columns {' and '.join(COLUMNS)}."
+            self.scope.wrong(f'the table "{name}" can\'t be used: {reason}', cure, where)
+            raise Poisoned from None
 
     def _ratings(self, require: Require, claim: Ratings, names: tuple[str, ...]) -> list[Requirement]:
         elements: dict[str, None] = {}

@@ -118,6 +118,7 @@ class Scope:
         self.torn: set[str] = set(project.unread)
         self.found = project.found
         self.root = Space(project.top, "")
+        self.folder = project.folder
         self._files: dict[Unit, Space] = {project.top: self.root}
 
     def file_space(self, unit: Unit) -> Space:

@@ -21,6 +21,9 @@ NEGLIGIBLE = 1e-9
 CONDUCTING = 1e-3
 """A diode counts as conducting while its current is above this share of its peak."""
 
+ROUNDING = 1e-9
+"""Share of a length below which what is left of it counts as none."""
+
 _POINTS, _WEIGHTS = np.polynomial.legendre.leggauss(24)
 
 
@@ -85,6 +88,33 @@ def crest_factor(signal: Signal) -> Figure:
 def i2t(signal: Signal) -> Figure:
     """Integral of the square over the window; unit squared times s."""
     return Figure(signal.inner(signal), signal.dimension * signal.dimension * SECOND)
+
+
+def largest_i2t(current: Signal, length: float, repeats: bool) -> float:
+    """The largest integral of the square over any stretch of a length (s) within the window; unit squared times s.
+
+    repeats: the window is a period of what goes on for ever; else a window that is shorter than the stretch counts
+    whole. Exact: the running integral is a polynomial too, and the largest difference over the length its extremum.
+    """
+    square = current * current
+    whole = square.integral()
+    if not repeats:
+        return whole if square.span <= length else _largest_sum(square, length)
+    periods = math.floor(length / square.span)
+    rest = length - periods * square.span
+    twice = Signal(
+        np.concatenate([square.times, square.times[1:] + square.span]),
+        np.concatenate([square.coefficients, square.coefficients]),
+        square.dimension,
+    )
+    return periods * whole + (_largest_sum(twice, rest) if rest > ROUNDING * length else 0.0)
+
+
+def _largest_sum(signal: Signal, length: float) -> float:
+    """The largest integral over a stretch of a length that lies inside the span."""
+    running = signal.running()
+    later = Signal(running.times + length, running.coefficients, running.dimension)
+    return (running.restrict(signal.start + length, signal.end) - later).highest()
 
 
 def energy(power: Signal) -> Figure:

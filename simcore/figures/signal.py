@@ -12,7 +12,7 @@ from functools import cached_property
 
 import numpy as np
 
-from grammar.quantities import NONE, Dimension
+from grammar.quantities import NONE, SECOND, Dimension
 from simcore.figures import polynomials
 from simcore.figures.polynomials import Array
 
@@ -205,6 +205,15 @@ class Signal:
         """Definite integral over the span, in the unit times s; exact up to rounding."""
         return float(np.sum(self.widths * polynomials.means(self.coefficients)))
 
+    def running(self) -> Signal:
+        """The integral from the start to each instant, in the unit times s; exact up to rounding."""
+        powers = np.arange(1.0, self.coefficients.shape[1] + 1.0)
+        rows = np.zeros((len(self.widths), len(powers) + 1))
+        rows[:, 1:] = 0.5 * self.widths[:, None] * self.coefficients / powers
+        before = np.concatenate([[0.0], np.cumsum(self.widths * polynomials.means(self.coefficients))[:-1]])
+        rows[:, 0] = before - (rows[:, 1:] * (-1.0) ** powers).sum(axis=1)
+        return Signal(self.times, rows, self.dimension * SECOND)
+
     def inner(self, other: Signal) -> float:
         """Integral of the product of both over the span, in both units times s; exact whatever the orders."""
         left, right = aligned(self, other)
@@ -250,10 +259,16 @@ class Signal:
         found = np.concatenate(hits)
         return float(found.min()) if len(found) else None
 
+    def spans_above(self, level: float) -> Array:
+        """Start and end in s of each span in which the signal is above a level, in order, shape (m, 2)."""
+        cut = (self - level)._cut_at_zeros()
+        above = np.concatenate([[False], polynomials.means(cut.coefficients) > 0.0, [False]])
+        starts, ends = np.flatnonzero(above[1:] & ~above[:-1]), np.flatnonzero(above[:-1] & ~above[1:])
+        return np.stack([cut.times[starts], cut.times[ends]], axis=1)
+
     def time_above(self, level: float) -> float:
         """How long in s the signal is above a level, all in all."""
-        cut = (self - level)._cut_at_zeros()
-        return float(np.sum(cut.widths[polynomials.means(cut.coefficients) > 0.0]))
+        return float(np.sum(np.diff(self.spans_above(level))))
 
 
 def _either(left: Signal, right: Signal) -> Array:

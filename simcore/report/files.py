@@ -8,11 +8,14 @@ from __future__ import annotations
 import csv
 import json
 import math
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from pathlib import Path
 
 from grammar.quantities import Quantity, unit_of
 from simcore.figures.figure import Figure
+from simcore.judge.bill import BillLine
+from simcore.judge.cautions import cautions
+from simcore.judge.outcome import Outcome
 from simcore.judge.verdict import Verdict
 from simcore.proof import Proof, ProvedStudy
 from simcore.report.traces import TIME, recorded, traces
@@ -35,22 +38,42 @@ VERDICT_COLUMNS = (
 )
 
 
-def write_results(proof: Proof, folder: Path, description: str) -> list[Path]:
-    """Write all files of a proof to a folder, made where it is missing; description: the file that was proved."""
+BILL_COLUMNS = (
+    "element",
+    "kind",
+    "stress",
+    "study",
+    "value",
+    "unit",
+    "bound",
+    "rating",
+    "unused share",
+    "margin",
+    "suggested rating",
+)
+
+
+def write_results(proof: Proof, folder: Path, description: str, bill: Sequence[BillLine] = ()) -> list[Path]:
+    """Write all files of a proof to a folder, made where it is missing; description: the file that was proved; bill:
+    where it was asked for."""
     written = []
     for name, study in proof.studies.items():
         written.append(folder / f"{name}.csv")
-        _write_table(written[-1], *_trace(study))
+        write_table(written[-1], *_trace(study))
     written += [folder / "figures.csv", folder / "verdicts.csv", folder / "summary.json"]
-    _write_table(written[-3], FIGURE_COLUMNS, _figure_rows(proof))
-    _write_table(written[-2], VERDICT_COLUMNS, [_verdict_row(verdict) for verdict in proof.verdicts])
+    write_table(written[-3], FIGURE_COLUMNS, _figure_rows(proof))
+    write_table(written[-2], VERDICT_COLUMNS, [_verdict_row(verdict) for verdict in proof.verdicts])
     with whole_file(written[-1]) as file:
         json.dump(_summary(proof, description), file, indent=2, ensure_ascii=False, allow_nan=False)
         file.write("\n")
+    if bill:
+        written.append(folder / "bill.csv")
+        write_table(written[-1], BILL_COLUMNS, [_bill_row(line) for line in bill])
     return written
 
 
-def _write_table(path: Path, columns: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
+def write_table(path: Path, columns: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
+    """Write a table as CSV."""
     with whole_file(path) as file:
         writer = csv.writer(file)
         writer.writerow(columns)
@@ -120,6 +143,11 @@ def _verdict_row(verdict: Verdict) -> Sequence[object]:
     )
 
 
+def _bill_row(line: BillLine) -> Sequence[object]:
+    numbers = (line.rating, _finite(line.unused), line.margin, line.suggested)
+    return line.name, line.kind, line.stress, line.study, *_numbers(line.figure), *numbers
+
+
 # --- the summary -----------------------------------------------------------------------------------------------------
 
 
@@ -131,8 +159,21 @@ def _summary(proof: Proof, description: str) -> dict[str, object]:
         "outcome": {"status": proof.outcome.status, "sentence": proof.outcome.sentence},
         "lets": {name: _value(let.value) for name, let in circuit.lets.items()},
         "studies": {name: _study_summary(study) for name, study in proof.studies.items()},
+        "unrated": proof.unrated,
+        "cautions": cautions(proof),
         "verdicts": [dict(zip(VERDICT_COLUMNS, _verdict_row(verdict), strict=True)) for verdict in proof.verdicts],
     }
+
+
+def summaries(proofs: Mapping[str, tuple[Outcome, Proof | None]]) -> str:
+    """The summaries of several descriptions as one JSON text: a list, also of one."""
+    listed = [
+        {"description": description, "outcome": {"status": outcome.status, "sentence": outcome.sentence}}
+        if proof is None
+        else _summary(proof, description)
+        for description, (outcome, proof) in proofs.items()
+    ]
+    return json.dumps(listed, indent=2, ensure_ascii=False, allow_nan=False)
 
 
 def _value(value: Quantity | str) -> object:

@@ -8,32 +8,35 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from simcore.design.overview import Overview
+from simcore.report.screen import Screen
 from simcore.report.tables import INDENT, table
 
 
-def look(overview: Overview, description: str) -> str:
-    """The whole overview as text; description: the file it comes from."""
+def look(overview: Overview, description: str, screen: Screen | None = None) -> str:
+    """The whole overview as text; description: the file it comes from; screen: what it is shown on."""
+    screen = screen or Screen()
+    width = screen.width
     lines = [overview.purpose, description] if overview.purpose else [description]
     branches = [
         [branch.name, branch.kind, f"{branch.a} -> {branch.b}", _labelled(", ".join(branch.values), branch.label)]
         for branch in overview.branches
     ]
-    lines += _titled("Branches", table(["name", "kind", "goes", "has"], branches, left=4) if branches else [])
-    lines += _titled("Parts of the circuit", _part_lines(overview))
+    lines += _titled("Branches", table(["name", "kind", "goes", "has"], branches, 4, width) if branches else [])
+    lines += _titled("Parts of the circuit", _part_lines(overview, width))
     lets = [[let.name, let.value, let.tolerance, let.label] for let in overview.lets]
-    lines += _titled("Lets", table(["name", "value", "tolerance", "wording"], lets, left=4) if lets else [])
+    lines += _titled("Lets", table(["name", "value", "tolerance", "wording"], lets, 4, width) if lets else [])
     used = {f"data sheet {sheet}": ", ".join(elements) for sheet, elements in overview.sheets.items()}
     used.update({f"block {copy}": f"copy of {block}" for copy, block in overview.blocks.items()})
     lines += _titled("Data sheets and blocks", _named(used))
     lines += _titled("Observed", _named(overview.observes))
     lines += _titled("Studies", _named(overview.studies))
     required = [[study, claim, label] for study, claim, label in overview.requirements]
-    lines += _titled("Requirements", table(["study", "requirement", "wording"], required, left=3) if required else [])
+    lines += _titled("Requirements", table(["study", "requirement", "wording"], required, 3, width) if required else [])
     lines += _titled("Sweeps", _named(overview.sweeps))
-    return "\n".join(lines)
+    return "\n".join(screen.fitted(lines))
 
 
-def _part_lines(overview: Overview) -> list[str]:
+def _part_lines(overview: Overview, width: int | None) -> list[str]:
     rows = [
         [
             part.reference or "(none)",
@@ -46,7 +49,7 @@ def _part_lines(overview: Overview) -> list[str]:
     ]
     headings = ["reference", "nodes", "count", "branches", "independent loops"]
     ambient = f"{INDENT}ambient temperature {overview.ambient}"
-    return [*(table(headings, rows, left=2) if rows else []), ambient]
+    return [*(table(headings, rows, 2, width) if rows else []), ambient]
 
 
 def _titled(title: str, lines: list[str]) -> list[str]:

@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from grammar.mistakes import DescriptionError, Mistake, render
 from simcore.judge.outcome import Outcome, worst
@@ -16,11 +17,29 @@ from simcore.proof import Proof, chosen_studies, prove
 from simcore.report.writing import why_unwritable
 from simcore.solve.failure import NoSolution
 
+if TYPE_CHECKING:
+    from simcore.judge.bill import BillLine
+
 Say = Callable[[str], None]
 
 
 @dataclass(frozen=True)
-class _Job:
+class Wishes:
+    """What a run is asked for beside its results.
+
+    bill: the bill of ratings; page, junit: files to write; quiet: say only what does not hold; as_json: say the
+    summaries as JSON and nothing else
+    """
+
+    bill: bool = False
+    page: Path | None = None
+    junit: Path | None = None
+    quiet: bool = False
+    as_json: bool = False
+
+
+@dataclass(frozen=True)
+class Job:
     """A description to prove: the file, where its results go, the design and its studies."""
 
     file: str
@@ -29,10 +48,20 @@ class _Job:
     studies: list[str]
 
 
-def run_files(
-    folders: Mapping[str, Path], wanted: Sequence[str], settings: Mapping[str, str], say: Say, complain: Say
-) -> Outcome:
-    """Prove each description and write its results; say is for people, complain for mistakes and progress.
+@dataclass(frozen=True)
+class Ended:
+    """How a job ended; proof: what it came to, else None and why as text."""
+
+    job: Job
+    outcome: Outcome
+    proof: Proof | None = None
+    why: str = ""
+
+
+def open_jobs(
+    folders: Mapping[str, Path], wanted: Sequence[str], settings: Mapping[str, str], complain: Say
+) -> list[Job] | None:
+    """Open every description; None, with all mistakes said, where one is wrong.
 
     folders: description's file -> folder of its results; wanted: studies to solve, none for all; settings: let -> value
     """
@@ -42,41 +71,113 @@ def run_files(
         studies: list[str] = []
         if not wrong:
             studies, wrong = chosen_studies(opened.circuit, wanted, file)
-        jobs.append(_Job(file, folder, opened, studies))
+        jobs.append(Job(file, folder, opened, studies))
         mistakes += wrong
         if against := why_unwritable(folder):
             mistakes.append(_unwritable(folder, against))
     if mistakes:
-        complain(_rendered(mistakes))
-        return Outcome.INPUT_WRONG
-    outcomes = {job.file: _run(job, say, complain) for job in jobs}
-    if len(jobs) > 1:
-        from simcore.report.terminal import summary
-
-        say(summary(outcomes))
-    return worst(outcome for outcome, _ in outcomes.values())
+        complain(rendered(mistakes))
+        return None
+    return jobs
 
 
-def _run(job: _Job, say: Say, complain: Say) -> tuple[Outcome, Proof | None]:
-    """Prove one description; its files are written only once all of it is there."""
-    from simcore.report.files import write_results
-    from simcore.report.terminal import report
-
+def proved(job: Job, complain: Say) -> Ended:
+    """Prove one description; what stops that is said."""
     try:
         proof = prove(job.opened, job.studies)
     except DescriptionError as error:
-        complain(_rendered(error.mistakes))
-        return Outcome.INPUT_WRONG, None
+        complain(rendered(error.mistakes))
+        return Ended(job, Outcome.INPUT_WRONG, why=str(error))
     except NoSolution as failure:
         complain(f"{job.file}: {failure}")
-        return Outcome.NO_SOLUTION, None
+        return Ended(job, Outcome.NO_SOLUTION, why=str(failure))
+    return Ended(job, proof.outcome, proof)
+
+
+def run_files(
+    folders: Mapping[str, Path],
+    wanted: Sequence[str],
+    settings: Mapping[str, str],
+    say: Say,
+    complain: Say,
+    wishes: Wishes | None = None,
+) -> Outcome:
+    """Prove each description and write its results; say is for what was asked, complain for mistakes and progress."""
+    wishes = wishes or Wishes()
+    jobs = open_jobs(folders, wanted, settings, complain)
+    if jobs is None:
+        return Outcome.INPUT_WRONG
+    ended = [_run(job, wishes, say, complain) for job in jobs]
+    if wishes.as_json:
+        from simcore.report.files import summaries
+
+        say(summaries({each.job.file: (each.outcome, each.proof) for each in ended}))
+    elif len(jobs) > 1 and not wishes.quiet:
+        from simcore.report.terminal import summary
+
+        say(summary({each.job.file: (each.outcome, each.proof) for each in ended}))
+    outcomes = [each.outcome for each in ended]
+    if wishes.junit is not None and not _report_tests(wishes.junit, ended, complain):
+        outcomes.append(Outcome.INPUT_WRONG)
+    return worst(outcomes)
+
+
+def _run(job: Job, wishes: Wishes, say: Say, complain: Say) -> Ended:
+    """Prove one description; its files are written only once all of it is there."""
+    from simcore.report.screen import present_screen
+    from simcore.report.terminal import failures, report
+
+    ended = proved(job, complain)
+    proof = ended.proof
+    if proof is None:
+        return ended
+    bill: list[BillLine] = []
+    files: list[Path] = []
+    if wishes.bill:
+        from simcore.judge.bill import bill_of
+
+        bill = bill_of(proof)
+
+    def write() -> None:
+        from simcore.report.files import write_results
+
+        files.extend(write_results(proof, job.folder, job.file, bill))
+        if wishes.page is not None:
+            from simcore.report.page import write_page
+
+            write_page(wishes.page, proof, job.opened.project)
+
+    if not written(write, wishes.page or job.folder, complain):
+        return Ended(job, Outcome.INPUT_WRONG, why="the results can't be written")
+    if wishes.quiet:
+        text = failures(proof, job.file, present_screen())
+        if text:
+            say(text)
+    elif not wishes.as_json:
+        say(report(proof, job.file, files, bill, present_screen()) + "\n")
+    return ended
+
+
+def written(write: Callable[[], None], place: Path, complain: Say) -> bool:
+    """Write, or say why that can't be done."""
     try:
-        files = write_results(proof, job.folder, job.file)
+        write()
     except OSError as error:
-        complain(_rendered([_unwritable(job.folder, error.strerror or str(error))]))
-        return Outcome.INPUT_WRONG, None
-    say(report(proof, job.file, files) + "\n")
-    return proof.outcome, proof
+        complain(rendered([_unwritable(place, error.strerror or str(error))]))
+        return False
+    return True
+
+
+def _report_tests(path: Path, ended: Sequence[Ended], complain: Say) -> bool:
+    from simcore.report.junit import Suite, verdict_case, write_junit
+
+    suites = [
+        Suite(each.job.file, [], each.why)
+        if each.proof is None
+        else Suite(each.job.file, [verdict_case(verdict) for verdict in each.proof.verdicts], "", each.proof.seconds)
+        for each in ended
+    ]
+    return written(lambda: write_junit(path, suites), path, complain)
 
 
 def _unwritable(folder: Path, reason: str) -> Mistake:
@@ -88,14 +189,16 @@ def look_at(file: str, settings: Mapping[str, str], say: Say, complain: Say) -> 
     """Say how a description was understood, and solve nothing."""
     opened, mistakes = open_design(file, settings)
     if mistakes:
-        complain(_rendered(mistakes))
+        complain(rendered(mistakes))
         return Outcome.INPUT_WRONG
     from simcore.design.overview import describe
     from simcore.report.look import look
+    from simcore.report.screen import present_screen
 
-    say(look(describe(opened.circuit), file))
+    say(look(describe(opened.circuit), file, present_screen()))
     return Outcome.ALL_HOLD
 
 
-def _rendered(mistakes: Sequence[Mistake]) -> str:
+def rendered(mistakes: Sequence[Mistake]) -> str:
+    """Mistakes as a person reads them."""
     return render(mistakes).rstrip("\n")

@@ -5,24 +5,60 @@ Knows text only: no figures, no units, no files.
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Sequence
 
 INDENT = "  "
 GAP = "   "
+NARROWEST = 16
+"""Of a text column that is broken."""
 
 
-def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1) -> list[str]:
+def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1, width: int | None = None) -> list[str]:
     """The lines of a table: headings, a rule, one line a row; the first `left` columns are text, the others numbers.
 
     headings: of each column; rows: cells of each row, as many as headings
+    width: characters a line may have: the widest text column is broken to leave room, and columns that are still beyond
+    follow below, behind the text columns again
     """
     cells = [list(headings), *map(list, rows)]
     if any(len(row) != len(headings) for row in cells):
         raise ValueError("a row has not as many cells as the table has columns")
     widths = [max(len(row[column]) for row in cells) for column in range(len(headings))]
-    lines = [_line(row, widths, left) for row in cells]
-    lines.insert(1, INDENT + "-" * (sum(widths) + len(GAP) * (len(widths) - 1)))
+    longest = max(range(left), key=lambda column: widths[column], default=0)
+    if width is not None and left:
+        beside = len(INDENT) + sum(each + len(GAP) for each in widths[:left]) - widths[longest] - len(GAP)
+        room = width - beside - max((each + len(GAP) for each in widths[left:]), default=0)
+        widths[longest] = min(widths[longest], max(room, NARROWEST))
+    broken = [part for row in cells for part in _broken(row, longest, widths)]
+    head = len(_broken(cells[0], longest, widths))
+    lines: list[str] = []
+    for columns in _blocks(widths, left, width):
+        chosen = [widths[column] for column in columns]
+        block = [_line([row[column] for column in columns], chosen, left) for row in broken]
+        block.insert(head, INDENT + "-" * (sum(chosen) + len(GAP) * (len(chosen) - 1)))
+        lines += [""] * bool(lines) + block
     return lines
+
+
+def _broken(row: list[str], column: int, widths: Sequence[int]) -> list[list[str]]:
+    """A row as several where a text cell is wider than its column."""
+    if len(row[column]) <= widths[column]:
+        return [row]
+    parts = textwrap.wrap(row[column], widths[column]) or [""]
+    rest = [[part if at == column else "" for at in range(len(row))] for part in parts[1:]]
+    return [[*row[:column], parts[0], *row[column + 1 :]], *rest]
+
+
+def _blocks(widths: Sequence[int], left: int, width: int | None) -> list[list[int]]:
+    """Which columns stand beside one another: the text columns in each block, at least one other with them."""
+    text, blocks = list(range(left)), [list(range(left))]
+    for column in range(left, len(widths)):
+        needed = len(INDENT) + sum(widths[each] + len(GAP) for each in blocks[-1]) + widths[column]
+        if width is not None and needed > width and len(blocks[-1]) > left:
+            blocks.append(list(text))
+        blocks[-1].append(column)
+    return blocks
 
 
 def _line(row: Sequence[str], widths: Sequence[int], left: int) -> str:

@@ -28,13 +28,27 @@ def whole_file(path: Path) -> Iterator[TextIO]:
     Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one. What takes the
     place of another file has its rights.
     """
+    with _whole(path) as handle, open(handle, "w", encoding="utf-8", newline="") as file:
+        yield file
+        file.flush()
+        os.fsync(file.fileno())
+
+
+def whole_bytes(path: Path, content: bytes) -> None:
+    """The same for a file that is no text, such as a picture."""
+    with _whole(path) as handle, open(handle, "wb") as file:
+        file.write(content)
+        file.flush()
+        os.fsync(file.fileno())
+
+
+@contextmanager
+def _whole(path: Path) -> Iterator[int]:
+    """The handle of a temporary file beside the target, which takes the target's name when the block ends."""
     path.parent.mkdir(parents=True, exist_ok=True)
     handle, temporary = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=path.parent)
     try:
-        with open(handle, "w", encoding="utf-8", newline="") as file:
-            yield file
-            file.flush()
-            os.fsync(file.fileno())
+        yield handle
         os.chmod(temporary, path.stat().st_mode & 0o777 if path.exists() else 0o666 & ~_umask())
         os.replace(temporary, path)
     except BaseException:

@@ -11,7 +11,7 @@ from grammar.description import Binary, Call, Expression, Name, Negative, Number
 from simcore.design.circuit import Observed, Requirement
 from simcore.figures.record import Record
 from simcore.judge.outcome import Outcome, State, outcome_of, worst
-from simcore.judge.verdict import Verdict, judge, judge_one
+from simcore.judge.verdict import Verdict, judge_one
 from tests.figures.fake_solution import FakeSolution, branch, circuit_of, zero
 
 
@@ -151,13 +151,6 @@ def test_undefined_figures_and_unsolved_studies_are_undecided_with_their_reason(
     assert unsolved.state is State.UNDECIDED and "was not solved" in unsolved.reason
     units = verdict(requirement("<=", Number(1.0, "A")), 0.5, 0.5)
     assert units.state is State.UNDECIDED and "different units" in units.reason
-
-
-def test_what_this_version_cannot_judge_is_said_and_does_not_hold() -> None:
-    wanted = [requirement("ratings", None, figure=None), requirement("within", None, figure=None)]
-    found = judge(wanted, {"run": flat(1.0)}, {"run": flat(1.0)})
-    assert [entry.state for entry in found] == [State.NOT_JUDGED, State.NOT_JUDGED]
-    assert all("not available in this version" in entry.reason for entry in found)
 
 
 def test_outcomes_have_each_status_once_a_sentence_and_where_something_is_wrong_a_cure() -> None:

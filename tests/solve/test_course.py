@@ -150,9 +150,7 @@ def test_no_common_period_is_said() -> None:
     assert failure.value.reason is Reason.NO_PERIOD and "cure" in str(failure.value)
 
 
-@pytest.mark.parametrize(
-    "name", ["bridge", "bench_supply", "choke_input", "doubler_half_wave"]
-)
+@pytest.mark.parametrize("name", ["bridge", "bench_supply", "choke_input", "doubler_half_wave"])
 def test_newton_settles_where_following_does(name: str) -> None:
     """Brute force: the settled state's first observed signal against the end of a long transient of the same circuit."""
     design = simcore.read(simcore.library_folder() / f"{name}.rect")

@@ -1,0 +1,130 @@
+"""Figures kept and compared: what `bulkrail keep` and `bulkrail compare` say and write.
+
+Knows proofs and kept files; works no figure out.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+
+from grammar.mistakes import Mistake
+from simcore.judge.outcome import Outcome, worst
+from simcore.proof import Proof
+from simcore.report.baseline import (
+    Drift,
+    Kept,
+    KeptFileError,
+    Key,
+    compared,
+    figures_to_keep,
+    kept_path,
+    read_kept,
+    write_kept,
+)
+from simcore.report.junit import Case, Suite, write_junit
+from simcore.report.screen import Screen, present_screen
+from simcore.report.session import Say, open_jobs, proved, rendered, written
+from simcore.report.tables import INDENT, table
+
+HEADINGS = ("study", "of", "figure", "was", "is", "moved", "bounds allow")
+_DIGITS = 8
+
+
+def keep_files(files: Sequence[str], say: Say, complain: Say) -> Outcome:
+    """Solve designs and keep their figures beside them; nothing is kept where one can't be solved."""
+    jobs = open_jobs({file: Path() for file in files}, [], {}, complain)
+    if jobs is None:
+        return Outcome.INPUT_WRONG
+    ended = [proved(job, complain) for job in jobs]
+    stopped = [each.outcome for each in ended if each.proof is None]
+    if stopped:
+        return worst(stopped)
+    for each in ended:
+        assert each.proof is not None
+        path, figures = kept_path(Path(each.job.file)), figures_to_keep(each.proof)
+        if not written(lambda path=path, figures=figures: write_kept(path, figures), path, complain):  # type: ignore[misc]
+            return Outcome.INPUT_WRONG
+        say(f"{each.job.file}: {len(figures)} figures kept in {path}")
+    return Outcome.ALL_HOLD
+
+
+def compare_files(files: Sequence[str], junit: Path | None, say: Say, complain: Say) -> Outcome:
+    """Solve designs again and say what drifted from the kept figures; also write it as a test report where asked."""
+    kept: dict[str, dict[Key, Kept]] = {}
+    mistakes = []
+    for file in files:
+        try:
+            kept[file] = read_kept(kept_path(Path(file)))
+        except KeptFileError as error:
+            cure = f"Run `bulkrail keep {file}` while the figures are right."
+            mistakes.append(Mistake(str(error), cure, file=str(kept_path(Path(file)))))
+    jobs = open_jobs({file: Path() for file in files}, [], {}, complain)
+    if mistakes:
+        complain(rendered(mistakes))
+    if jobs is None or mistakes:
+        return Outcome.INPUT_WRONG
+    outcomes, suites, screen = [], [], present_screen()
+    for job in jobs:
+        ended = proved(job, complain)
+        if ended.proof is None:
+            outcomes.append(ended.outcome)
+            suites.append(Suite(job.file, [], ended.why))
+            continue
+        outcome, text, suite = _one(job.file, kept[job.file], ended.proof, screen)
+        say(text)
+        outcomes.append(outcome)
+        suites.append(suite)
+    if junit is not None and not written(lambda: write_junit(junit, suites), junit, complain):
+        outcomes.append(Outcome.INPUT_WRONG)
+    return worst(outcomes)
+
+
+def _one(file: str, was: Mapping[Key, Kept], proof: Proof, screen: Screen) -> tuple[Outcome, str, Suite]:
+    """How a design compares: the outcome, the text and the test report."""
+    now = figures_to_keep(proof)
+    drifted, missing, new = compared(was, now)
+    same = len(was) - len(drifted) - len(missing)
+    lines = [f"{file}: {same} figures as kept, {len(drifted)} drifted, {len(missing)} missing, {len(new)} new"]
+    changed = [*drifted, *missing, *new]
+    if changed:
+        lines += table(HEADINGS, [_cells(drift) for drift in changed], 3, screen.width)
+    if missing or new:
+        lines.append(f"{INDENT}`bulkrail keep {file}` takes today's figures, once they are right")
+    bad = {drift.key: drift for drift in (*drifted, *missing)}
+    cases = [_case(key, bad.get(key)) for key in dict.fromkeys((*was, *now))]
+    outcome = Outcome.NOT_ALL_HOLD if bad else Outcome.ALL_HOLD
+    return outcome, "\n".join(screen.fitted(lines)), Suite(file, cases, "", proof.seconds)
+
+
+def _cells(drift: Drift) -> list[str]:
+    moved = "-"
+    if drift.was is not None and drift.now is not None:
+        moved = _number(Kept(drift.now.value - drift.was.value, drift.now.unit, 0.0), 3)
+    allowed = _number(Kept(drift.allowed, (drift.now or drift.was or _NOTHING).unit, 0.0), 3)
+    return [*drift.key, _kept(drift.was), _kept(drift.now), moved, allowed]
+
+
+_NOTHING = Kept(math.nan, "", 0.0)
+
+
+def _kept(kept: Kept | None) -> str:
+    return "none" if kept is None else _number(kept, _DIGITS)
+
+
+def _number(kept: Kept, digits: int) -> str:
+    if math.isnan(kept.value):
+        return "undefined"
+    if math.isinf(kept.value):
+        return "never"
+    return f"{kept.value:.{digits}g} {kept.unit}".rstrip()
+
+
+def _case(key: Key, drift: Drift | None) -> Case:
+    study, subject, title = key
+    failure = ""
+    if drift is not None:
+        failure = "missing" if drift.now is None else "drifted"
+    text = "" if drift is None else ", ".join(f"{a} {b}" for a, b in zip(HEADINGS[3:], _cells(drift)[3:], strict=True))
+    return Case(study, f"{subject} {title}", failure, text)

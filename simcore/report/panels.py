@@ -1,0 +1,202 @@
+"""What the pictures of a study show, before anyone draws: curves by unit, conduction, harmonics beside their limits.
+
+Knows solved studies and scales; draws nothing.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from grammar.quantities import AMPERE, JOULE, KELVIN, NONE, OHM, PREFIXES, SECOND, VOLT, WATT, Dimension, unit_of
+from simcore.design.overview import sentence
+from simcore.figures import measure
+from simcore.figures.overview import VALVES
+from simcore.figures.polynomials import Array
+from simcore.figures.record import Record
+from simcore.judge.harmonics import Harmonic, harmonics, tabled_element, unfit
+from simcore.proof import Proof, ProvedStudy
+from simcore.report.traces import heading, recorded, traces
+
+QUANTITIES = {
+    VOLT: "voltage",
+    AMPERE: "current",
+    WATT: "power",
+    KELVIN: "temperature",
+    JOULE: "energy",
+    OHM: "resistance",
+    NONE: "value",
+}
+MOST_POINTS = 1500
+"""Of a curve, so that a picture stays small; extremes are kept."""
+MOST_CURVES = 6
+"""In one panel."""
+MOST_SPANS = 200
+"""Of a diode: where it conducts more often, no picture could show when."""
+
+
+@dataclass(frozen=True)
+class Curve:
+    """A line: times and values in the panel's units, shape (n,) each."""
+
+    label: str
+    times: Array
+    values: Array
+
+
+@dataclass(frozen=True)
+class Panel:
+    """Curves over one axis; title: quantity and unit, as the axis says them."""
+
+    title: str
+    curves: Sequence[Curve]
+
+
+@dataclass(frozen=True)
+class Picture:
+    """The traces of a study over time.
+
+    time_title: as the axis says it; span: start and end; judged: the same of the judged part, None where it is all
+    conduction: diode -> spans in which it conducts, shape (m, 2); all times in the unit of the axis
+    """
+
+    title: str
+    time_title: str
+    span: tuple[float, float]
+    judged: tuple[float, float] | None
+    panels: Sequence[Panel]
+    conduction: dict[str, Array]
+
+
+@dataclass(frozen=True)
+class Bars:
+    """Harmonics beside their limits, A rms."""
+
+    title: str
+    rows: Sequence[Harmonic]
+
+
+def picture_of(name: str, study: ProvedStudy) -> Picture | None:
+    """The traces of a study; None for one without a course, such as an operating point."""
+    record = study.record
+    if study.study.kind == "operating_point":
+        return None
+    prefix = _prefix(float(record.times[-1] - record.times[0]))
+    scale = 1.0 / PREFIXES[prefix]
+    start, end = float(record.times[0]) * scale, float(record.times[-1]) * scale
+    window = tuple(each * scale for each in record.solution.window)
+    whole = abs(window[1] - window[0] - (end - start)) <= 1e-9 * (end - start)
+    return Picture(
+        f"{name}: {sentence(study.study)}",
+        f"time in {prefix}s",
+        (start, end),
+        None if whole else (window[0], window[1]),
+        _panels(record, scale),
+        {element: spans * scale for element, spans in _conduction(record).items()},
+    )
+
+
+def _panels(record: Record, scale: float) -> list[Panel]:
+    """One panel a unit, split where it would hold too many curves."""
+    by_unit: dict[Dimension, list[str]] = {}
+    signals = recorded(record)
+    for name, signal in signals.items():
+        by_unit.setdefault(signal.dimension, []).append(name)
+    found = []
+    for dimension, names in by_unit.items():
+        for first in range(0, len(names), MOST_CURVES):
+            chosen = {name: signals[name] for name in names[first : first + MOST_CURVES]}
+            sampled = traces(chosen)
+            columns = {name: sampled.columns[heading(name, dimension)] for name in chosen}
+            prefix = _prefix(max(float(np.abs(column).max()) for column in columns.values()), dimension)
+            unit = prefix + unit_of(dimension)
+            curves = [
+                Curve(name, *_thinned(sampled.times * scale, column / PREFIXES[prefix]))
+                for name, column in columns.items()
+            ]
+            title = QUANTITIES.get(dimension, "value") + (f" in {unit}" if unit else "")
+            found.append(Panel(title, curves))
+    return found
+
+
+def _prefix(size: float, dimension: Dimension = SECOND) -> str:
+    """The prefix that brings a size to 1 to 999; of plain numbers, temperatures and units made of several, none."""
+    if not size > 0.0 or dimension in (NONE, KELVIN) or not unit_of(dimension).isalpha():
+        return ""
+    fitting = [name for name, factor in PREFIXES.items() if size >= factor and (factor <= 1.0 or dimension != SECOND)]
+    return fitting[-1] if fitting else "f"
+
+
+def _thinned(times: Array, values: Array) -> tuple[Array, Array]:
+    """At most about MOST_POINTS of a curve: of each stretch the first, the lowest, the highest and the last point."""
+    if len(times) <= MOST_POINTS:
+        return times, values
+    edges = np.linspace(times[0], times[-1], MOST_POINTS // 4 + 1)
+    starts = np.unique(np.searchsorted(times, edges[:-1]))
+    keep: dict[int, None] = {}
+    for first, last in zip(starts, [*starts[1:], len(times)], strict=True):
+        part = values[first:last]
+        for place in sorted({0, int(part.argmin()), int(part.argmax()), len(part) - 1}):
+            keep[int(first) + place] = None
+    chosen = np.fromiter(keep, dtype=np.int64)
+    return times[chosen], values[chosen]
+
+
+def _conduction(record: Record) -> dict[str, Array]:
+    """When each diode conducts, by the measure that its conduction angle is taken with; empty where none ever does,
+    or too often to be seen."""
+    found = {}
+    for element in record.circuit.elements.values():
+        if element.kind in VALVES:
+            current = record.current(element.name)
+            peak = current.highest()
+            found[element.name] = (
+                current.spans_above(measure.CONDUCTING * peak) if peak > 0.0 else np.zeros((0, 2), dtype=np.float64)
+            )
+    most = max((len(spans) for spans in found.values()), default=0)
+    return found if 0 < most <= MOST_SPANS else {}
+
+
+def any_conducts(conduction: dict[str, Array]) -> list[tuple[float, float]]:
+    """The spans in which one diode at least conducts, joined where they meet."""
+    joined: list[tuple[float, float]] = []
+    for start, end in sorted((float(a), float(b)) for spans in conduction.values() for a, b in spans):
+        if joined and start <= joined[-1][1]:
+            joined[-1] = (joined[-1][0], max(joined[-1][1], end))
+        else:
+            joined.append((start, end))
+    return joined
+
+
+def bars_of(proof: Proof) -> list[Bars]:
+    """Each requirement on harmonics that can be judged, with every order."""
+    found = []
+    for verdict in proof.verdicts:
+        requirement = verdict.requirement
+        table = requirement.limits
+        if table is None or requirement.study not in proof.studies:
+            continue
+        name, fine = tabled_element(requirement), proof.studies[requirement.study].record
+        if not unfit(name, table, fine):
+            rows = harmonics(name, table, proof.coarse[requirement.study], fine)
+            found.append(Bars(f"{requirement.study}: harmonics of {name} and limits of {table.name}", rows))
+    return found
+
+
+def ticks(low: float, high: float, count: int = 5) -> list[float]:
+    """About `count` round values between two others, for an axis."""
+    raw = (high - low) / max(count, 1)
+    power = 10.0 ** math.floor(math.log10(raw))
+    step = next(power * factor for factor in (1.0, 2.0, 2.5, 5.0, 10.0) if power * factor >= raw * (1.0 - 1e-9))
+    first = math.ceil(low / step - 1e-9)
+    return [step * place for place in range(first, math.floor(high / step + 1e-9) + 1)]
+
+
+def decades(rows: Sequence[Harmonic]) -> tuple[int, int]:
+    """The powers of ten, lowest and highest, of a logarithmic axis for bars; what is smaller is cut off."""
+    largest = max(max(row.figure.value, row.limit.value) for row in rows)
+    smallest = min(row.limit.value for row in rows)
+    return math.floor(math.log10(smallest)) - 1, math.ceil(math.log10(1.2 * largest))

@@ -1,0 +1,143 @@
+"""Figures, verdicts and bills in words and numbers with units, for whatever a person reads.
+
+Knows how numbers are written; lays nothing out and works nothing out.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Sequence
+
+from grammar.quantities import AMPERE, show
+from grammar.writer import write_expression
+from simcore.figures.figure import Figure
+from simcore.judge.bill import BillLine
+from simcore.judge.harmonics import Harmonic
+from simcore.judge.held import Verdict
+from simcore.judge.outcome import State
+from simcore.judge.ratings import stress_text
+
+BOUND_DIGITS = 2
+
+VERDICT_HEADINGS = ("verdict", "study", "requirement", "required", "found", "margin")
+BILL_HEADINGS = ("element", "stress", "worst in", "found", "rated", "unused", "suggested")
+HARMONIC_HEADINGS = ("verdict", "order", "limit", "found", "margin")
+
+
+def value(figure: Figure) -> str:
+    """A figure without its bound."""
+    if not figure.defined:
+        return "undefined"
+    if math.isinf(figure.value):
+        return "never" if figure.beyond is None else f"later than {show(figure.beyond, figure.dimension)}"
+    return show(figure.value, figure.dimension)
+
+
+def bound(figure: Figure) -> str:
+    """The bound of a figure."""
+    if figure.bound is None:
+        return "-"
+    if math.isinf(figure.bound):
+        return "unknown"
+    return show(figure.bound, figure.dimension, BOUND_DIGITS)
+
+
+def with_bound(figure: Figure) -> str:
+    """A figure with its bound."""
+    text = value(figure)
+    return text if not figure.defined or math.isinf(figure.value) else f"{text} ± {bound(figure)}"
+
+
+def largest_bound(figures: Iterable[Figure]) -> str:
+    """The bound that none of several figures exceeds."""
+    known = [figure for figure in figures if figure.bound is not None and figure.defined]
+    return bound(max(known, key=lambda figure: figure.bound or 0.0)) if known else "-"
+
+
+# --- verdicts --------------------------------------------------------------------------------------------------------
+
+
+def verdict_cells(verdict: Verdict) -> list[str]:
+    """A verdict under VERDICT_HEADINGS."""
+    margin = value(verdict.margin) if verdict.margin is not None else "-"
+    return [
+        str(verdict.state),
+        verdict.requirement.study,
+        subject(verdict),
+        required(verdict),
+        "-" if verdict.figure is None else with_bound(verdict.figure),
+        margin,
+    ]
+
+
+def subject(verdict: Verdict) -> str:
+    """What was required, by its label if it has one."""
+    requirement = verdict.requirement
+    if requirement.label:
+        return requirement.label
+    if requirement.figure is None or requirement.limits is not None:
+        return requirement.wording
+    return write_expression(requirement.figure)
+
+
+def required(verdict: Verdict) -> str:
+    """The limit or limits of a verdict."""
+    if verdict.limit is None:
+        return "-"
+    if verdict.upper is not None:
+        return f"{value(verdict.limit)} to {value(verdict.upper)}"
+    relation = "<=" if verdict.requirement.limits is not None else verdict.requirement.relation
+    return f"{relation} {value(verdict.limit)}"
+
+
+def reasons(verdicts: Sequence[Verdict]) -> list[str]:
+    """Why verdicts were not decided or what must be known of them, each reason once with all it is about."""
+    found: dict[str, dict[str, None]] = {}
+    for verdict in verdicts:
+        if verdict.reason:
+            found.setdefault(verdict.reason, {})[subject(verdict)] = None
+    return [f"{', '.join(subjects)}: {reason}" for reason, subjects in found.items()]
+
+
+def unrated(names: Sequence[str]) -> list[str]:
+    """Which elements had no rating to be held against, in a line or none."""
+    return [f"no rating is given of {', '.join(names)}"] if names else []
+
+
+def closing(verdicts: Sequence[Verdict]) -> str:
+    """How many requirements came to what, in one sentence."""
+    if not verdicts:
+        return "Nothing was required."
+    counts = {state: sum(verdict.state is state for verdict in verdicts) for state in State}
+    if counts[State.HOLDS] == len(verdicts):
+        return f"All {len(verdicts)} requirements hold." if len(verdicts) > 1 else "The requirement holds."
+    return f"Of {len(verdicts)}: " + ", ".join(f"{count} {state}" for state, count in counts.items() if count) + "."
+
+
+# --- ratings and harmonics -------------------------------------------------------------------------------------------
+
+
+def bill_cells(line: BillLine) -> list[str]:
+    """A line of the bill of ratings under BILL_HEADINGS."""
+    found = f"{stress_text(line.figure)} ± {bound(line.figure)}"
+    suggested = "-" if line.suggested is None else f"{show(line.suggested, line.figure.dimension)}"
+    left = "-" if line.unused is None else percent(line.unused)
+    return [line.name, line.stress, line.study, found, line.rating_text or "-", left, suggested]
+
+
+def bill_note(lines: Sequence[BillLine]) -> str:
+    """What suggestions of a bill count on."""
+    margins = ", ".join(dict.fromkeys(percent(line.margin) for line in lines if line.suggested is not None))
+    return f"suggested: the next E12 value (IEC 60063) that leaves {margins or 'a margin'} unused" if lines else ""
+
+
+def percent(share: float) -> str:
+    """A share in per cent."""
+    return f"{100.0 * share:.3g} %"
+
+
+def harmonic_cells(row: Harmonic) -> list[str]:
+    """One harmonic under HARMONIC_HEADINGS."""
+    limit = show(row.limit.value, AMPERE)
+    margin = value(row.margin) if row.margin is not None else "-"
+    return [str(row.state), str(row.order), limit, with_bound(row.figure), margin]
