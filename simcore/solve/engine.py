@@ -25,6 +25,9 @@ _COLD_LIMIT = 100
 _LIMIT = 25
 _STEPS_AT_MOST = 2_000_000
 REST_STEP = 1e15
+_LEAST_BEND = 1e-5
+"""Least tolerance of a watched current's curvature: a tighter one meets what rounding and Newton leave in the third
+difference, which no shorter step makes smaller, so that steps would shrink to the smallest."""
 
 
 @dataclass(frozen=True)
@@ -232,7 +235,7 @@ class Engine:
             _ROOM,
             0.01 * stepping.voltage,
             self._current_floor(),
-            30.0 * stepping.tolerance,
+            max(_LEAST_BEND, 30.0 * stepping.tolerance),
             min(1e-2, math.sqrt(0.3 * stepping.tolerance)),
             stepping.kink,
         )

@@ -270,3 +270,15 @@ def test_iterations_a_cycle(name: str) -> None:
         assert course.counts.iterations / cycles <= 1.15 * wanted
         assert course.counts.iterations / course.counts.solves <= 4.0
         assert course.counts.rejected <= 0.25 * course.counts.steps
+
+
+def test_a_tight_tolerance_does_not_stall() -> None:
+    """The bridge at 1e-8: some 1500 steps a cycle, and not steps that shrink to the smallest."""
+    from simcore.design.circuit import PlannedStudy
+    from simcore.solve.course import Course
+
+    circuit = simcore.read_text(WORK["bridge"][0] + "study s: transient, duration = 1 s\n", "work").circuit
+    course = Course(PlannedStudy("s", "transient", duration=0.02), lambda changes: circuit, None, 1e-8)
+    solution, _ = course.solve()
+    assert course.counts.steps < 3000
+    assert np.min(np.diff(solution.times)) > 1e-5 * 0.02
