@@ -16,7 +16,9 @@ def main(wanted: list[str]) -> int:
         print(f"no part is called {unknown[0]}; there are {', '.join(PARTS)}", file=sys.stderr)
         return 2
     for name in wanted or PARTS:
-        print("\n".join(import_module(f"tests.benchmark.{name}").tables()), end="\n\n", flush=True)
+        for line in import_module(f"tests.benchmark.{name}").tables():
+            print(line, flush=True)
+        print()
     return 0
 
 
