@@ -57,6 +57,14 @@ def tables() -> list[str]:
             covered = "yes" if error <= figure.bound else "no"
             rows.append([asked, name, str(figure), f"{error:.1e} {figure.unit}", relative, covered])
     headings = ["accuracy", "figure", "found ± bound", "true error", "of it", "bound covers"]
-    lines = ["The settled bridge's figures without a requirement on them, by the accuracy asked for", *table(headings, rows, left=2)]
+    lines = [
+        "The settled bridge's figures without a requirement on them, by the accuracy asked for",
+        *table(headings, rows, left=2),
+    ]
     headings = ["accuracy", "s", "steps", "solves", "iterations", "periods", "with derivatives"]
-    return [*lines, "", "What it cost: CPU time of all, counts of the tighter of the last two solutions", *table(headings, costs)]
+    return [
+        *lines,
+        "",
+        "What it cost: CPU time of all, counts of the tighter of the last two solutions",
+        *table(headings, costs),
+    ]

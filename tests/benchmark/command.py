@@ -8,7 +8,7 @@ import subprocess
 import sys
 import tempfile
 import time
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -39,20 +39,33 @@ def _cases(folder: str) -> list[Case]:
     ]
 
 
-def _once(arguments: Sequence[str]) -> tuple[float, float | None]:
-    """Wall time in s and peak memory in MB (None where the system does not tell) of a Python process."""
+@dataclass(frozen=True)
+class Used:
+    """Wall and CPU time in s and peak memory in MB of a process; None where the system does not tell."""
+
+    wall: float
+    processor: float | None = None
+    memory: float | None = None
+
+
+def _once(arguments: Sequence[str]) -> Used:
     start = time.perf_counter()
     process = subprocess.Popen([sys.executable, *arguments], stdout=subprocess.DEVNULL)
     if not hasattr(os, "wait4"):
-        status, memory = process.wait(), None
+        status, used = process.wait(), Used(time.perf_counter() - start)
     else:
         _, code, usage = os.wait4(process.pid, 0)
-        unit = 1.0 if sys.platform == "darwin" else 1024.0
         process.returncode = status = os.waitstatus_to_exitcode(code)
-        memory = usage.ru_maxrss * unit / 1e6
+        unit = 1.0 if sys.platform == "darwin" else 1024.0
+        used = Used(time.perf_counter() - start, usage.ru_utime + usage.ru_stime, usage.ru_maxrss * unit / 1e6)
     if status:
         raise RuntimeError(f"{' '.join(arguments)} ended with status {status}")
-    return time.perf_counter() - start, memory
+    return used
+
+
+def _shown(values: Sequence[float | None], form: str, pick: Callable[[Sequence[float]], float]) -> str:
+    known = [value for value in values if value is not None]
+    return format(pick(known), form) if known else "not told"
 
 
 def tables() -> list[str]:
@@ -61,12 +74,11 @@ def tables() -> list[str]:
     with tempfile.TemporaryDirectory() as folder:
         for case in _cases(folder):
             runs = [_once(case.arguments) for _ in range(_TIMES)]
-            wall = [seconds for seconds, _ in runs]
-            peaks = [memory for _, memory in runs if memory is not None]
-            cells = [f"{statistics.median(wall):.2f}", f"{min(wall):.2f}"]
+            cells = [_shown([run.wall for run in runs], ".2f", statistics.median)]
+            cells.append(_shown([run.processor for run in runs], ".2f", statistics.median))
             cells.append("" if case.seconds is None else f"< {case.seconds:g}")
-            cells.append(f"{max(peaks):.0f}" if peaks else "not told")
+            cells.append(_shown([run.memory for run in runs], ".0f", max))
             cells.append("" if case.memory is None else f"< {case.memory:g}")
             rows.append([case.name, *cells])
-    headings = ["process", "median s", "least s", "target s", "peak MB", "target MB"]
-    return [f"Whole processes, {_TIMES} times each", *table(headings, rows)]
+    headings = ["process", "wall s", "CPU s", "target s", "peak MB", "target MB"]
+    return [f"Whole processes, {_TIMES} times each: median times, largest memory", *table(headings, rows)]
