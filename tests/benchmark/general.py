@@ -6,8 +6,12 @@ Each run is bounded in time; it gives times, output voltage and cost.
 from __future__ import annotations
 
 import importlib.util
+import os
+import sys
 import time
 import warnings
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 
 import numpy as np
@@ -63,6 +67,20 @@ def run_general(
     return Run(times[1:], output[1:], time.process_time() - start, len(times) - 1)
 
 
+@contextmanager
+def _silent() -> Iterator[None]:
+    """Keeps what a library prints of its failures, past Python, out of the tables."""
+    sys.stdout.flush()
+    kept, nowhere = os.dup(1), os.open(os.devnull, os.O_WRONLY)
+    try:
+        os.dup2(nowhere, 1)
+        yield
+    finally:
+        os.dup2(kept, 1)
+        os.close(kept)
+        os.close(nowhere)
+
+
 @dataclass(frozen=True)
 class _Task:
     """What to integrate, from rest: span and longest step in s, tolerances, and when to give up."""
@@ -112,5 +130,6 @@ def _ida(task: _Task) -> tuple[np.ndarray, np.ndarray] | None:
 
     limits = {"rtol": task.relative, "atol": task.absolute, "max_step": task.largest}
     solver = Solver(residual, jacfn=slopes, max_num_steps=_STEPS_AT_MOST, **limits)
-    found = solver.solve(np.array([0.0, task.span]), np.zeros(count), np.zeros(count))
+    with _silent():
+        found = solver.solve(np.array([0.0, task.span]), np.zeros(count), np.zeros(count))
     return (found.t, task.equations.output(found.y.T)) if found.success else None

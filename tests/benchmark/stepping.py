@@ -26,6 +26,8 @@ CASES: tuple[tuple[Bridge | Ladder, int], ...] = (
     (Ladder(20), 3),
     (Ladder(50), 2),
 )
+COMPILED_AT_MOST = 10
+"""Stages of a ladder up to which its run is compiled: beyond, compilation takes minutes."""
 OURS, COMPILED = "ours", "ours, compiled"
 _TOLERANCES = [10.0 ** (-exponent / 2.0) for exponent in range(4, 15)]
 _REFERENCE = 1e-10
@@ -101,7 +103,7 @@ def _measured(spec: Bridge | Ladder, cycles: int) -> dict[str, dict[float, Reach
     reference, span, period = Reference(spec, cycles), cycles / spec.frequency, 1.0 / spec.frequency
     circuit = circuit_of(spec.text)
     caches = {OURS: KernelCache()}
-    if numba_is_here() and isinstance(spec, Bridge):
+    if numba_is_here() and (isinstance(spec, Bridge) or spec.stages <= COMPILED_AT_MOST):
         caches[COMPILED] = CompiledCache()
     found = {}
     for name, cache in caches.items():
@@ -117,6 +119,8 @@ def _measured(spec: Bridge | Ladder, cycles: int) -> dict[str, dict[float, Reach
             reference,
             cycles,
         )
+    if COMPILED in caches:
+        print(f"{spec.name}: compiled in {caches[COMPILED].seconds:.1f} s of CPU time")
     return found
 
 
