@@ -30,6 +30,9 @@ _START_AGREEMENT = 1e-4
 _REST_AGAIN = (1e9, 1e3, 1.0, 1e-3)
 """Steps in s that follow it and move nothing: at the long one an inductance is so small a resistance that its current
 is lost in the rounding of its voltage, at these it comes back."""
+_LEAST_BEND = 1e-5
+"""Least tolerance of a watched current's curvature: a tighter one meets what rounding and Newton leave in the third
+difference, which no shorter step makes smaller, so that steps would shrink to the smallest."""
 
 
 @dataclass(frozen=True)
@@ -326,7 +329,7 @@ class Engine:
             _ROOM,
             0.01 * stepping.voltage,
             max(stepping.current, self._current_floor()),
-            30.0 * stepping.tolerance,
+            max(_LEAST_BEND, 30.0 * stepping.tolerance),
             min(1e-2, math.sqrt(0.3 * stepping.tolerance)),
             stepping.kink,
             stepping.event,

@@ -340,3 +340,15 @@ def test_a_wrong_current_shows_in_the_sum_and_rounding_does_not() -> None:
     off = Stretch(stretch.system, [], stretch.times, values, EXTRAPOLATION_ORDER, stretch.smooth, 1e-6)
     off._inputs |= stretch._inputs
     assert max(total / current for total, current in off.kirchhoff().values()) > 1e-3
+
+
+def test_a_tight_tolerance_does_not_stall() -> None:
+    """The bridge at 1e-8: some 1500 steps a cycle, and not steps that shrink to the smallest."""
+    from simcore.design.circuit import PlannedStudy
+    from simcore.solve.course import Course
+
+    circuit = simcore.read_text(WORK["bridge"][0] + "study s: transient, duration = 1 s\n", "work").circuit
+    course = Course(PlannedStudy("s", "transient", duration=0.02), lambda changes: circuit, None, 1e-8)
+    solution, _ = course.solve()
+    assert course.counts.steps < 3000
+    assert np.min(np.diff(solution.times)) > 1e-5 * 0.02
