@@ -164,7 +164,8 @@ class Course:
     def _engine(self, circuit: Circuit, frame: Frame, memory: Memory) -> Engine:
         kernel = self.kernels.kernel(frame, grounded(frame, circuit.references))
         rounding = rounding_current(frame, common_period(frame) or 1.0)
-        engine = Engine(kernel, list(frame.numbers), frame.waveforms, rounding, self.counts)
+        first = 1.0 / frame.sines[0][0] if frame.sines else 0.0
+        engine = Engine(kernel, list(frame.numbers), frame.waveforms, rounding, first, self.counts)
         engine.recall(memory)
         return engine
 

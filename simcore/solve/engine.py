@@ -12,12 +12,13 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from simcore.components.frame import Flag, Threshold, Waveform
+from simcore.components.frame import Waveform
 from simcore.equations.kernel import Kernel
 from simcore.equations.plain import evaluate
 from simcore.equations.run_interface import DONE, EVENT, FULL, WEAK, record_width
 from simcore.solve.corners import corner, line
 from simcore.solve.failure import Reason
+from simcore.solve.flags import Flags
 from simcore.solve.stretch import Stretch
 
 _ROOM = 40_000
@@ -88,15 +89,15 @@ Memory = dict[tuple[Hashable, ...], float]
 class Engine:
     """A kernel with its numbers and present state.
 
-    rounding: of a branch's current, in A
-    saved: the kernel's own numbers (see run_interface), the first being the time on the sources' clock in s; pending:
-    flags that change at a time to come; told: what thresholds had to tell, with the time
+    rounding: of a branch's current, in A; period: of the first sine in s, 0 where there is none
+    saved: the kernel's own numbers (see run_interface), the first being the time on the sources' clock in s 
     """
 
     kernel: Kernel
     numbers: list[float]
     waveforms: list[Waveform]
     rounding: float = 0.0
+    period: float = 0.0
     counts: Counts = field(default_factory=Counts)
 
     def __post_init__(self) -> None:
@@ -106,8 +107,7 @@ class Engine:
         self._first_step = 0.0
         self._record: list[float] = []
         self._response: list[float] | None = None
-        self.pending: list[tuple[float, Flag, bool]] = []
-        self.told: list[tuple[float, str]] = []
+        self.flags = Flags(self.kernel.system.frame, self.numbers, self.period)
 
     # --- state by name, so that it can move between forms of the equations ---
 
@@ -115,15 +115,7 @@ class Engine:
         """Write the present states and junction voltages to a memory by element."""
         for key, position in self._positions():
             memory[key] = self.saved[position]
-        frame = self.kernel.system.frame
-        for flag in frame.flags:
-            memory[(flag.element, flag.name, "flag")] = self.numbers[flag.position]
-            for up in (False, True):
-                key = (flag.element, flag.name, "pending", up)
-                memory.pop(key, None)
-                times = [time for time, other, value in self.pending if other == flag and value == up]
-                if times:
-                    memory[key] = min(times) - self.saved[0]
+        self.flags.remember(memory, self.saved[0])
 
     def recall(self, memory: Memory) -> None:
         """Take states and junction voltages from a memory; what it lacks starts at its initial value."""
@@ -132,16 +124,11 @@ class Engine:
         for key, position in self._positions():
             start = initial[position - 2] if position < 2 + self._states else 0.0
             self.saved[position] = memory.get(key, start)
-        for flag in self.kernel.system.frame.flags:
-            self.numbers[flag.position] = memory.get((flag.element, flag.name, "flag"), self.numbers[flag.position])
-            for up in (False, True):
-                key = (flag.element, flag.name, "pending", up)
-                if key in memory:
-                    self.pending.append((self.saved[0] + memory[key], flag, up))
+        self.flags.recall(memory, self.saved[0])
 
     def move(self, time: float) -> None:
         """Set the sources' clock; what is pending keeps its distance."""
-        self.pending = [(each + time - self.saved[0], flag, up) for each, flag, up in self.pending]
+        self.flags.move(time - self.saved[0])
         self.saved[0] = time
 
     def _positions(self) -> list[tuple[tuple[Hashable, ...], int]]:
@@ -238,7 +225,7 @@ class Engine:
         while self.saved[0] < end:
             time = self.saved[0]
             first, numbers = self._begun(time, stepping.begin), list(self.numbers)
-            stop = min(end, self._next_corner(time), *(instant for instant, _, _ in self.pending))
+            stop = min(end, self._next_corner(time), *(instant for instant, _, _ in self.flags.pending))
             self.saved[1] = min(stepping.largest, 1e-3 * stepping.memory, max(stop - time, stepping.smallest))
             chunks = self._to_corner(stop, stepping, record)
             if record and self.saved[0] > time:
@@ -250,57 +237,21 @@ class Engine:
     def _begun(self, time: float, step: float) -> np.ndarray:
         """A consistent start in which every flag stands as its thresholds ask. Returns the columns."""
         for _ in range(_CHANGES_AT_MOST):
-            if self._fall_due(time):
+            if self.flags.fall_due(time):
                 self._forget_guesses()
             columns = self.begin(time, step)
-            passed = self._passed()
+            passed = self.flags.passed(self.saved[len(self.saved) - len(self.kernel.system.thresholds) :])
             if passed is None:
                 return columns
-            self._change(passed, time)
+            self.flags.change(passed, time)
             self._forget_guesses()
         raise Interrupted(Reason.CHATTER, time, f"at {self.kernel.system.frame.thresholds[passed].element}")
-
-    def _fall_due(self, time: float) -> bool:
-        """Change the flags whose time has come; whether there were any."""
-        slack = 1e-12 * abs(time)
-        due = [each for each in self.pending if each[0] <= time + slack]
-        for _, flag, up in due:
-            self.numbers[flag.position] = float(up)
-        self.pending = [each for each in self.pending if each[0] > time + slack]
-        return bool(due)
 
     def _forget_guesses(self) -> None:
         """A law that has changed may not stand the voltage that its branch had: start its iteration from none."""
         first = 2 + self._states
         for position in range(first, first + self._junctions):
             self.saved[position] = min(self.saved[position], 0.0)
-
-    def _passed(self) -> int | None:
-        """The first threshold that counts and is passed at the present start."""
-        thresholds = self.kernel.system.frame.thresholds
-        reached = self.saved[len(self.saved) - len(thresholds) :]
-        for index, threshold in enumerate(thresholds):
-            if reached[index] > 0.0 and self._counts(threshold):
-                return index
-        return None
-
-    def _counts(self, threshold: Threshold) -> bool:
-        return all((self.numbers[flag.position] > 0.5) == up for flag, up in threshold.armed)
-
-    def _change(self, index: int, time: float) -> None:
-        """Change a passed threshold's flags, the first at once and the others after its delay."""
-        frame = self.kernel.system.frame
-        threshold = frame.thresholds[index]
-        delay = threshold.delay
-        if threshold.turns and frame.sines:
-            delay += threshold.turns / frame.sines[0][0]
-        for position, (flag, up) in enumerate(threshold.sets):
-            if position == 0 or delay == 0.0:
-                self.numbers[flag.position] = float(up)
-            else:
-                self.pending.append((time + delay, flag, up))
-        if threshold.tells:
-            self.told.append((time, f"{threshold.element} {threshold.tells}"))
 
     def respond(self, end: float, stepping: Stepping) -> np.ndarray | None:
         """Run to a time and give the derivative of the states there by those at the start, shape (states, states), a
@@ -340,7 +291,7 @@ class Engine:
             if record:
                 chunks.append(np.array(self._record[:written]).reshape(-1, width))
             if passed is not None:
-                self._change(passed, self.saved[0])
+                self.flags.change(passed, self.saved[0])
                 self._forget_guesses()
             if self.saved[0] >= corner or passed is not None:
                 return chunks
