@@ -51,11 +51,11 @@ def _build(frame: Frame, part: Part) -> None:
     scale = frame.parameter(lowest, positive=True) / exponent
 
     def law(voltage: Value) -> Value:
-        return exp(exponent * log(larger(voltage / single, _NOTHING))) + _LEAK * voltage
+        return exp(exponent * log(larger(voltage / single, _NOTHING)))
 
     port = part.ports[0]
     for weights in ({port.a: 1.0, port.b: -1.0}, {port.b: 1.0, port.a: -1.0}):
-        frame.nonlinear(part, weights, law, scale=scale, critical=frame.parameter(lowest, positive=True))
+        frame.nonlinear(part, weights, law, scale=scale, critical=frame.parameter(lowest, positive=True), leak=_LEAK)
 
 
 CLAMP = Kind(

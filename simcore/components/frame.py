@@ -72,7 +72,8 @@ class Carried:
 
 @dataclass(frozen=True)
 class NonlinearBranch:
-    """i = current, an expression of the input `variable`, the branch voltage less the offset, that is iterated on.
+    """i = current, an expression of the input `variable`, the branch voltage less the offset, that is iterated on, and
+    what the leak, a conductance in S, adds.
 
     scale: voltage over which the law changes by a factor e (V); critical: voltage above which steps are limited (V);
     straight: above zero while the law is a straight line, so that nothing is left to iterate
@@ -84,6 +85,7 @@ class NonlinearBranch:
     offset: Value
     variable: Value
     current: Value
+    leak: Value
     scale: Value
     critical: Value
     straight: Value
@@ -274,11 +276,12 @@ class Frame:
         critical: Value | float = UNLIMITED,
         straight: Value | float = 0.0,
         offset: Value | float = 0.0,
+        leak: Value | float = 0.0,
         port: str = "",
     ) -> None:
-        """Add a branch whose current is law(branch voltage - offset)."""
+        """Add a branch whose current is law(branch voltage - offset) and that through its leak."""
         variable = self._variable()
-        self._nonlinear(part, port, weights, offset, variable, law(variable), (scale, critical, straight), None)
+        self._nonlinear(part, port, weights, offset, variable, law(variable), (leak, scale, critical, straight), None)
 
     def carrying(
         self,
@@ -292,6 +295,7 @@ class Frame:
         scale: Value,
         critical: Value | float = UNLIMITED,
         straight: Value | float = 0.0,
+        leak: Value | float = 0.0,
         port: str = "",
     ) -> None:
         """Add a branch that carries a quantity: law(branch voltage, quantity before the step) gives its current, the
@@ -300,7 +304,7 @@ class Frame:
         before, variable = self.graph.input(f"y{count}", Level.TIME), self._variable()
         current, after, shown = law(variable, before)
         carried = Carried(quantity, self.graph.lift(initial), before, after, small, tuple(shown.items()))
-        self._nonlinear(part, port, weights, 0.0, variable, current, (scale, critical, straight), carried)
+        self._nonlinear(part, port, weights, 0.0, variable, current, (leak, scale, critical, straight), carried)
 
     def _variable(self) -> Value:
         count = sum(isinstance(branch, NonlinearBranch) for branch in self.branches)
@@ -314,15 +318,13 @@ class Frame:
         offset: Value | float,
         variable: Value,
         current: Value,
-        manner: tuple[Value | float, Value | float, Value | float],
+        manner: tuple[Value | float, Value | float, Value | float, Value | float],
         carried: Carried | None,
     ) -> None:
         lift = self.graph.lift
-        ends, (scale, critical, straight) = self._weights(weights), (lift(value) for value in manner)
+        ends, numbers = self._weights(weights), (lift(value) for value in manner)
         self.branches.append(
-            NonlinearBranch(
-                part.name, port, ends, lift(offset), variable, current, scale, critical, straight, carried
-            )
+            NonlinearBranch(part.name, port, ends, lift(offset), variable, current, *numbers, carried)
         )
 
     def sine(self, frequency: float, phase: float) -> Value:

@@ -64,6 +64,7 @@ class Junction:
         self._warming = self._warmed()
         single = frame.parameter(law.saturation_current, positive=True) * self._warming
         self.saturation = single * self.parallel
+        self._exponent = log(self.saturation)
         self.leak = LEAK + self._leak(law.saturation_current) * self._warming * (self.parallel / self.series)
         self.resistance = frame.parameter(law.series_resistance, positive=True) * self.series / self.parallel
 
@@ -102,21 +103,21 @@ class Junction:
             steep, straight = where(self._conducts - 0.5, steep, UNLIMITED), 0.5 - self._conducts
         lifetime, capacitance = self._lifetime(), self._capacitance()
         if lifetime is None and capacitance is None:
-            frame.nonlinear(part, weights, self._law, scale=self.scale, critical=steep, straight=straight)
+            frame.nonlinear(part, weights, self._law, scale=self.scale, critical=steep, straight=straight, leak=self.leak)
         else:
             small = self._small(lifetime, capacitance)
             law = self._charged(lifetime, capacitance)
-            frame.carrying(part, weights, law, quantity="charge", small=small, scale=self.scale, critical=steep)
+            manner = {"scale": self.scale, "critical": steep, "leak": self.leak}
+            frame.carrying(part, weights, law, quantity="charge", small=small, **manner)
         self._breakdown(anode, port.b)
 
     def _law(self, voltage: Value) -> Value:
-        """i = I_S (exp(v/(n V_T)) - 1), V_T = k T/q (Shockley, Bell System Technical Journal 28, 1949)."""
-        return self._conducted(voltage) + self.leak * voltage
-
-    def _conducted(self, voltage: Value) -> Value:
+        """i = I_S (exp(v/(n V_T)) - 1), V_T = k T/q (Shockley, Bell System Technical Journal 28, 1949); I_S stands in
+        the exponent, where it costs an addition."""
+        inverse = 1.0 / self.scale
         if self._conducts is not None:
-            return self._conducts * self.saturation * (exp(self._conducts * voltage / self.scale) - 1.0)
-        return self.saturation * (exp(voltage / self.scale) - 1.0)
+            return self._conducts * (exp(self._conducts * voltage * inverse + self._exponent) - self.saturation)
+        return exp(voltage * inverse + self._exponent) - self.saturation
 
     # --- charge ---
 
@@ -143,7 +144,7 @@ class Junction:
         def law(voltage: Value, before: Value) -> tuple[Value, Value, dict[str, Value]]:
             charge = self._frame.graph.zero
             if lifetime is not None:
-                charge = lifetime * self._conducted(voltage)
+                charge = lifetime * self._law(voltage)
             if capacitance is not None:
                 charge = charge + self.parallel * depletion_charge(voltage / self.series, *capacitance)
             return self._law(voltage) + (charge - before) / self._frame.step, charge, {}

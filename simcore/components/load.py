@@ -63,9 +63,8 @@ def _constant_current(frame: Frame, part: Part) -> None:
     current, knee = _over_time(frame, part, "current"), frame.graph.constant(_KNEE)
 
     def law(voltage: Value) -> Value:
-        return current * voltage / sqrt(voltage * voltage + knee * knee) + _IDLE * voltage
-
-    frame.nonlinear(part, part.across(part.ports[0]), law, scale=knee)
+        return current * voltage / sqrt(voltage * voltage + knee * knee)
+    frame.nonlinear(part, part.across(part.ports[0]), law, scale=knee, leak=_IDLE)
 
 
 def _constant_power(frame: Frame, part: Part) -> None:
@@ -77,10 +76,10 @@ def _constant_power(frame: Frame, part: Part) -> None:
 
     def law(voltage: Value) -> Value:
         taken = power * voltage / larger(voltage * voltage, least)
-        return where(running.value - 0.5, taken, 0.0) + _IDLE * voltage
+        return where(running.value - 0.5, taken, 0.0)
 
     weights = part.across(part.ports[0])
-    frame.nonlinear(part, weights, law, scale=cut_out, straight=0.5 - running.value)
+    frame.nonlinear(part, weights, law, scale=cut_out, straight=0.5 - running.value, leak=_IDLE)
     rail = frame.sensed_voltage(weights)
     starts, stops = [(running, True)], [(running, False)]
     frame.threshold(part, [rail], part.value("cut_in"), armed=stops, sets=starts, tells="starts")

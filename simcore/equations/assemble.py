@@ -151,7 +151,7 @@ class _Assembly:
         if isinstance(branch, NonlinearBranch):
             slope = derivative(branch.current, branch.variable)
             behind = branch.current - slope * branch.variable + slope * (form.known - branch.offset)
-            return Companion(form, slope, behind)
+            return Companion(form, slope + branch.leak, behind + branch.leak * form.known)
         return self._series(index, branch, form)
 
     def _series(self, index: int, branch: SeriesBranch, form: Form) -> Companion:
@@ -255,11 +255,10 @@ class _Assembly:
 
 
 def is_resistor(branch: Branch) -> bool:
-    """Whether a branch's current is its voltage over a resistance, so that it need not be recorded."""
+    """Whether a branch's current is its voltage, less that of a source, over a resistance: it need not be recorded."""
     return (
         isinstance(branch, SeriesBranch)
         and branch.resistance.constant != 0.0
         and branch.inductance.constant == 0.0
         and branch.capacitance is None
-        and branch.source.constant == 0.0
     )

@@ -185,8 +185,8 @@ class RunSource:
             return
         add(4, "if division > 1:")
         self._each(5, junctions, "n# += a# / division")
-        add(4, "count = 0", "while True:", "    count += 1")
-        add(5, f"slack, noise = ({BLOCKED!r}, 0.0) if count <= {PATIENCE} else (1e9, tolerance * floor_current)")
+        add(4, "count = 0", f"slack = {BLOCKED!r}", "noise = 0.0", "while True:", "    count += 1")
+        add(5, f"if count == {PATIENCE + 1}:", "    slack = 1e9", "    noise = tolerance * floor_current")
         self._each(5, junctions, "v# = n#")
         add(5, *self.emitter.lines["iteration"], "good = True")
         for index, junction in enumerate(self.system.junctions):
@@ -206,7 +206,7 @@ class RunSource:
             "    or (n# < 0.0 and v# < 0.0 and (-slack * w# <= d <= slack * w# or (n# < o# and v# < o#)))",
             f"    or abs(d) <= {ROUNDING!r} * abs(n#)",
             f"    or abs(d) * {self.emitter.name(junction.slope)} <= noise",
-            f"    or {straight} > 0.0" if junction.straight.constant != 0.0 else "",
+            *([f"    or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
             "):",
             "    good = False",
             "    if n# > k# and d > 0.0:",

@@ -90,7 +90,7 @@ class Engine:
     """A kernel with its numbers and present state.
 
     rounding: of a branch's current, in A; period: of the first sine in s, 0 where there is none
-    saved: the kernel's own numbers (see run_interface), the first being the time on the sources' clock in s 
+    saved: the kernel's own numbers (see run_interface), the first being the time on the sources' clock in s
     """
 
     kernel: Kernel

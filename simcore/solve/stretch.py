@@ -104,7 +104,9 @@ class Stretch:
         if isinstance(branch, CurrentBranch):
             return self._evaluate(branch.current)
         if is_resistor(branch):
-            return self.voltage(branch.weights) / self._evaluate(branch.resistance)
+            assert isinstance(branch, SeriesBranch)
+            behind = self.voltage(branch.weights) - self._evaluate(branch.source)
+            return behind / self._evaluate(branch.resistance)
         return self._forced[self.system.reduction.constraints.index(index)]
 
     def shown(self, element: str, name: str) -> np.ndarray | None:
