@@ -13,6 +13,7 @@ from typing import TypeGuard
 from grammar.description import Expression, Name
 from grammar.expressions import nearest
 from grammar.mistakes import Mistake
+from grammar.quantities import Quantity
 from grammar.reader import read_expression
 from simcore.design.circuit import Circuit
 from simcore.design.elaborate import elaborate
@@ -25,7 +26,7 @@ class Opened:
 
     project: Project
     circuit: Circuit
-    overrides: dict[str, Expression | str]
+    overrides: Mapping[str, Quantity | Expression | str]
 
 
 def open_design(file: str | Path, settings: Mapping[str, str]) -> tuple[Opened, list[Mistake]]:

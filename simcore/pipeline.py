@@ -70,10 +70,10 @@ class _Level:
 class _Proof:
     """Solves the studies of one circuit, each after those it starts from."""
 
-    def __init__(self, circuit: Circuit, variant: Callable[[Sequence], Circuit]):
+    def __init__(self, circuit: Circuit, variant: Callable[[Sequence], Circuit], kernels: KernelCache):
         self.circuit = circuit
         self.variant = variant
-        self.kernels = KernelCache()
+        self.kernels = kernels
         self.pairs: dict[str, tuple[_Level, _Level]] = {}
         self.results: dict[str, StudyResult] = {}
 
@@ -155,12 +155,14 @@ def solve_studies(
     circuit: Circuit,
     names: Sequence[str],
     overrides: Mapping[str, Quantity | Expression | str] | None = None,
+    kernels: KernelCache | None = None,
 ) -> dict[str, StudyResult]:
-    """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside.
+    """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside;
+    kernels: where runs of earlier circuits of the same form are kept.
 
     Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong.
     """
-    proof = _Proof(circuit, Variants(project, circuit, overrides))
+    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache())
     for name in names:
         proof.solve(name)
     return {name: proof.results[name] for name in names}

@@ -81,7 +81,16 @@ class Requirements:
             resolved = self._compared(figure, bound, upper, place)
         parts = [None if each is None else each.expression for each in resolved]
         return [
-            Requirement(name, claim.relation, *parts, wording, require.label, table=claim.table, span=require.span)
+            Requirement(
+                name,
+                claim.relation,
+                *parts,
+                wording,
+                require.label,
+                table=claim.table,
+                span=require.span,
+                dimension=NONE if resolved[0] is None else resolved[0].dimension,
+            )
             for name in names
         ]
 

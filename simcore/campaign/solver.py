@@ -1,0 +1,134 @@
+"""One variant after another solved and judged, each alone: nothing of one reaches the next but emitted source.
+
+It runs in this process or in any other that gets the same task.
+"""
+
+from __future__ import annotations
+
+import pickle
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+from grammar.description import Expression
+from grammar.mistakes import DescriptionError, Mistake
+from simcore.campaign.plan import Plan, Variant
+from simcore.campaign.rows import SOLVED, Claim, Row, claim_of, encode, found_figure, found_of
+from simcore.design.changes import Variants
+from simcore.design.circuit import Change, Circuit
+from simcore.design.elaborate import elaborate
+from simcore.design.soundness import contradictions
+from simcore.equations.kernel import KernelCache
+from simcore.figures.evaluate import figures_with_bounds
+from simcore.opening import Opened
+from simcore.proof import Judged, solve_and_judge
+from simcore.solve.failure import NoSolution
+
+
+@dataclass(frozen=True)
+class Task:
+    """All that solving the variants of a sweep takes.
+
+    studies: those whose requirements are judged; figures: asked for besides, of the first study unless they say `at`
+    """
+
+    opened: Opened
+    plan: Plan
+    studies: tuple[str, ...]
+    figures: tuple[Expression, ...] = ()
+
+    @property
+    def claims(self) -> list[Claim]:
+        """What is found of every variant, as far as requirements tell; with other counts of parts there may be more or fewer."""
+        return [claim_of(each) for each in self.opened.circuit.requirements if each.study in self.studies]
+
+
+class Solver:
+    """Solves variants of a task. What it keeps between them has no influence on any."""
+
+    def __init__(self, task: Task):
+        self.task = task
+        self.claims = task.claims
+        self._kernels = KernelCache()
+
+    def block(self, start: int, stop: int) -> str:
+        """The rows of the variants from an index, counted from 0, to another, as one line."""
+        return encode([self.row(index) for index in range(start, stop)], self.claims)
+
+    def row(self, index: int) -> Row:
+        """What the variant of an index, counted from 0, comes to."""
+        variant = self.task.plan.variant(index)
+        try:
+            judged = self.judged(variant)
+        except DescriptionError as error:
+            return Row(variant.number, _in_a_line(error.mistakes))
+        except NoSolution as failure:
+            return Row(variant.number, str(failure))
+        found = [found_of(verdict) for verdict in judged.verdicts]
+        asked = [(self.task.studies[0], expression) for expression in self.task.figures]
+        for (_, expression), figure in zip(asked, figures_with_bounds(asked, judged.coarse, judged.fine), strict=True):
+            found.append(found_figure(expression, figure))
+        return Row(variant.number, SOLVED, tuple(found))
+
+    def judged(self, variant: Variant) -> Judged:
+        """A variant's studies solved and its requirements judged. Raises DescriptionError, NoSolution."""
+        opened = varied(self.task.opened, variant)
+        return solve_and_judge(opened, self.task.studies, self.task.figures, self._kernels.afresh())
+
+
+def varied(opened: Opened, variant: Variant) -> Opened:
+    """The design as a variant has it. Raises DescriptionError where that is wrong or unsound."""
+    overrides = {**opened.overrides, **variant.values}
+    circuit, mistakes = elaborate(opened.project, overrides)
+    if not mistakes and variant.faults:
+        mistakes = contradictions(Variants(opened.project, circuit, overrides)(variant.faults))
+        circuit = _faulted(circuit, variant.faults)
+    if mistakes:
+        raise DescriptionError(mistakes)
+    return Opened(opened.project, circuit, overrides)
+
+
+def _faulted(circuit: Circuit, faults: tuple[Change, ...]) -> Circuit:
+    """The circuit whose studies begin with the faults; one that comes after another has them from there."""
+    studies = {
+        name: study if study.after is not None else replace(study, changes=(*faults, *study.changes))
+        for name, study in circuit.studies.items()
+    }
+    return replace(circuit, studies=studies)
+
+
+def _in_a_line(mistakes: Sequence[Mistake]) -> str:
+    """Why a variant is no sound design."""
+    return "not sound: " + "; ".join(dict.fromkeys(mistake.what for mistake in mistakes))
+
+
+# --- in other processes --------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class Packed:
+    """A task on its way to other processes; key: what it is known by there."""
+
+    key: str
+    content: bytes
+
+
+def packed(task: Task, key: str) -> Packed:
+    """A task that can be sent."""
+    return Packed(key, pickle.dumps(task))
+
+
+_KEPT: dict[str, Solver] = {}
+"""The solver of the last task that this process had a block of: what it emitted serves the next block."""
+
+
+def keep(key: str, solver: Solver) -> None:
+    """Have a solver serve the blocks of a task in this process and in those forked from it."""
+    _KEPT.clear()
+    _KEPT[key] = solver
+
+
+def solve_block(parcel: Packed, start: int, stop: int) -> str:
+    """A block of a task's variants as one line, in whichever process this runs."""
+    if parcel.key not in _KEPT:
+        keep(parcel.key, Solver(pickle.loads(parcel.content)))
+    return _KEPT[parcel.key].block(start, stop)
