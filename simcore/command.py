@@ -52,11 +52,44 @@ def _parser() -> argparse.ArgumentParser:
     )
     _add_settings(run)
     run.set_defaults(action=_run)
+    _add_sweep(commands)
     look = commands.add_parser("look", help="show the circuit as understood, and what each study will do")
     look.add_argument("file", metavar="FILE", help="a description, ending in .rect")
     _add_settings(look)
     look.set_defaults(action=_look)
     return parser
+
+
+def _add_sweep(commands: argparse._SubParsersAction) -> None:
+    sweep = commands.add_parser("sweep", help="solve the sweeps: worst cases and where they lie, pass rates, tables")
+    sweep.add_argument("files", metavar="FILE", nargs="+", help="a description, ending in .rect")
+    sweep.add_argument(
+        "--out",
+        metavar="DIR",
+        type=Path,
+        help="folder for the tables, by default results/<file's stem>; with several files one folder each in it",
+    )
+    sweep.add_argument(
+        "--sweep", metavar="NAME", action="append", default=[], help="solve this sweep only; may be repeated"
+    )
+    sweep.add_argument(
+        "--sensitivity",
+        action="store_true",
+        help="solve no sweep, but how far each requirement's figure follows each let",
+    )
+    sweep.add_argument(
+        "--workers", metavar="N", type=_count, help="processes to solve on, by default one a core; 1: in this one"
+    )
+    sweep.add_argument("--scheduler", metavar="ADDRESS", default="", help="solve on the workers of a dask scheduler")
+    sweep.add_argument("--resume", action="store_true", help="go on with an interrupted sweep")
+    _add_settings(sweep)
+    sweep.set_defaults(action=_sweep)
+
+
+def _count(text: str) -> int:
+    if not text.isdecimal() or not 1 <= int(text) <= 1024:
+        raise argparse.ArgumentTypeError(f'"{text}" is not a number of workers from 1 to 1024')
+    return int(text)
 
 
 def _add_settings(parser: argparse.ArgumentParser) -> None:
@@ -91,6 +124,18 @@ def _run(options: argparse.Namespace) -> Outcome:
     if folders is None:
         return Outcome.INPUT_WRONG
     return run_files(folders, options.study, dict(options.settings), say, complain)
+
+
+def _sweep(options: argparse.Namespace) -> Outcome:
+    from simcore.judge.outcome import worst
+    from simcore.report.sweep_session import Asked, sensitivity_of_file, sweep_file
+
+    folders = _folders(options.files, options.out)
+    if folders is None:
+        return Outcome.INPUT_WRONG
+    asked = Asked(options.sweep, dict(options.settings), options.workers, options.scheduler, options.resume)
+    call = sensitivity_of_file if options.sensitivity else sweep_file
+    return worst([call(file, folder, asked, say, complain) for file, folder in folders.items()])
 
 
 def _folders(files: Sequence[str], out: Path | None) -> dict[str, Path] | None:

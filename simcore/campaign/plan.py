@@ -72,9 +72,7 @@ class Plan:
     @cached_property
     def lets(self) -> dict[str, Dimension | None]:
         """The lets that take values, with their dimension."""
-        return {
-            let: dimension for axis in self.axes for let, dimension in zip(axis.lets, axis.dimensions, strict=True)
-        }
+        return {let: dimension for axis in self.axes for let, dimension in zip(axis.lets, axis.dimensions, strict=True)}
 
     @property
     def faulted(self) -> bool:
@@ -117,7 +115,8 @@ class Plan:
 def plan_of(sweep: PlannedSweep, lets: Mapping[str, LetValue], sentence: str = "") -> Plan:
     """The plan of a sweep of a design with these lets. Raises DescriptionError where it has too many variants."""
     seed = 0 if sweep.seed is None else sweep.seed
-    plan = Plan(sweep.name, tuple(_points(axis, lets, [seed, place]) for place, axis in enumerate(sweep.axes)), sentence)
+    axes = tuple(_points(axis, lets, [seed, place]) for place, axis in enumerate(sweep.axes))
+    plan = Plan(sweep.name, axes, sentence)
     if len(plan) > MOST_VARIANTS:
         what = f"sweep {sweep.name} has {len(plan)} variants"
         raise DescriptionError([Mistake(what, f"At most {MOST_VARIANTS}: give its axes fewer points.", sweep.span)])

@@ -38,7 +38,7 @@ class Task:
 
     @property
     def claims(self) -> list[Claim]:
-        """What is found of every variant, as far as requirements tell; with other counts of parts there may be more or fewer."""
+        """The requirements of the design; a variant with other counts of parts may have more or fewer."""
         return [claim_of(each) for each in self.opened.circuit.requirements if each.study in self.studies]
 
 
@@ -121,14 +121,14 @@ _KEPT: dict[str, Solver] = {}
 """The solver of the last task that this process had a block of: what it emitted serves the next block."""
 
 
-def keep(key: str, solver: Solver) -> None:
+def keep(key: str, solver: Solver) -> Solver:
     """Have a solver serve the blocks of a task in this process and in those forked from it."""
     _KEPT.clear()
     _KEPT[key] = solver
+    return solver
 
 
 def solve_block(parcel: Packed, start: int, stop: int) -> str:
     """A block of a task's variants as one line, in whichever process this runs."""
-    if parcel.key not in _KEPT:
-        keep(parcel.key, Solver(pickle.loads(parcel.content)))
-    return _KEPT[parcel.key].block(start, stop)
+    solver = _KEPT.get(parcel.key) or keep(parcel.key, Solver(pickle.loads(parcel.content)))
+    return solver.block(start, stop)

@@ -98,8 +98,8 @@ class Requirement:
     """One requirement on one study (repeats, `each study` and `each KIND` spread out).
 
     relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at
-    other studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for reports;
-    dimension: of the figure
+    other studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for
+    reports; dimension: of the figure
     """
 
     study: str
