@@ -6,7 +6,7 @@ It knows tasks, workers and journals, and neither circuits nor what the rows say
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Generator, Iterator, Sequence
 from contextlib import closing
 from dataclasses import dataclass
 
@@ -112,7 +112,7 @@ def _earlier(keeping: Keeping, task: Task) -> dict[Block, str]:
 
 def _solved_now(
     task: Task, parcel: Packed, crew: Crew, done: Sequence[Block], size: int | None
-) -> Iterator[tuple[Block, str]]:
+) -> Generator[tuple[Block, str], None, None]:
     """The blocks between those that are done already."""
     total = len(task.plan)
     if size is None:

@@ -13,7 +13,7 @@ import threading
 import time
 import warnings
 from collections import Counter, deque
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Generator, Iterator, Sequence
 from concurrent.futures import FIRST_COMPLETED, BrokenExecutor, Executor, Future, ProcessPoolExecutor, wait
 from contextlib import contextmanager
 from typing import Any, Protocol
@@ -136,7 +136,7 @@ class WorkersLost(Exception):
 
 def solved_blocks(
     work: Callable[[int, int], tuple[Callable, tuple]], blocks: Sequence[Block], crew: Crew
-) -> Iterator[tuple[Block, str]]:
+) -> Generator[tuple[Block, str], None, None]:
     """Each block with its line, as they are finished; blocks whose worker died are done again.
 
     work: block -> function and arguments to be called wherever it is solved
@@ -154,7 +154,7 @@ def _until_lost(
     tried: Counter[Block],
     crew: Crew,
     executor: Executor,
-) -> Iterator[tuple[Block, str]]:
+) -> Generator[tuple[Block, str], None, None]:
     """Work off the blocks that wait; where a worker is lost, those at work wait again and this ends."""
     busy: dict[Future, Block] = {}
     try:

@@ -149,8 +149,10 @@ def _unknown(name: str, known: Mapping[str, PlannedSweep], file: str) -> Mistake
     return Mistake(f"no sweep is called {name}", cure, file=file)
 
 
-def _solve(sweep: PlannedSweep, task: Task, crew: Crew, folder: Path, resume: bool, say: Say, complain: Say) -> Outcome:
-    """Solve one sweep; its table is written once all of it is there."""
+def _solve(
+    sweep: PlannedSweep, task: Task, crew: Crew, folder: Path, resume: bool, say: Say, complain: Say
+) -> tuple[Outcome, Journal]:
+    """Solve one sweep; its table is written once all of it is there, and its journal kept."""
     start = time.perf_counter()
     journal = Journal(folder / f"{sweep.name}.journal", fingerprint(task))
     path = folder / f"{sweep.name}.csv"

@@ -10,6 +10,7 @@ import math
 from collections.abc import Sequence
 from pathlib import Path
 
+from grammar.quantities import quantity, show
 from simcore.campaign.results import CONFIDENCE, SOURCE, PassRate, Results, Worst, let_lines, variant_words
 from simcore.campaign.rows import Found
 from simcore.campaign.sensitivity import Sensitivity
@@ -71,7 +72,8 @@ def _found_cells(found: Found) -> list[str]:
 def _amount(value: float, unit: str, digits: int = _DIGITS) -> str:
     if math.isnan(value):
         return "-"
-    return f"{value:.{digits}g} {unit}".rstrip()
+    held = quantity(value, unit)
+    return show(held.value, held.dimension, digits)
 
 
 def _variants(results: Results, worst: Sequence[Worst]) -> list[str]:
@@ -150,7 +152,11 @@ def sensitivity_lines(found: Sequence[Sensitivity]) -> list[str]:
     lines = ["", "Relative sensitivity: by how many per cent a figure rises where a let rises by one per cent"]
     for heading in dict.fromkeys(each.claim.heading for each in found):
         mine = [each for each in found if each.claim.heading == heading]
-        cells = [[each.let, _amount(each.value, "", 3), _amount(each.bound, "", 2)] for each in mine]
+        cells = [[each.let, _share(each.value, 3), _share(each.bound, 2)] for each in mine]
         lines += ["", f"{INDENT}{heading}", *table(["let", "sensitivity", "±"], cells)]
         lines += [f"{INDENT}{each.let}: {each.reason}" for each in mine if each.reason]
     return lines
+
+
+def _share(value: float, digits: int) -> str:
+    return "-" if math.isnan(value) else f"{value:.{digits}g}"
