@@ -5,9 +5,13 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Hashable, Sequence
 from functools import cached_property
+from typing import Any
+
+import numpy as np
 
 from simcore.components.frame import Frame
 from simcore.equations.assemble import System, assemble
+from simcore.equations.compiled import CompiledRun, seconds_for
 from simcore.equations.run_source import RunSource, saved_count, watched_columns
 
 Run = Callable[[list[float], list[float], list[float], tuple[float, ...]], tuple[int, ...]]
@@ -23,6 +27,7 @@ class Equations:
 
     def __init__(self, frame: Frame, references: Sequence[Hashable]):
         self._frame, self._references = frame, references
+        self._functions: dict[str, Callable] = {}
         self.emitted_size = len(frame.graph.values)
 
     @cached_property
@@ -38,14 +43,37 @@ class Equations:
         return RunSource(self.system).source
 
     @cached_property
+    def responding_source(self) -> str:
+        """The emitted text of the run that also carries the derivative of the states (see run_source)."""
+        return RunSource(self.system, responses=True).source
+
+    @property
     def run(self) -> Run:
         """The emitted run."""
-        return compile_function(self.source, "run")
+        return self._function("run", self.source)
 
-    @cached_property
+    @property
     def responding_run(self) -> Callable:
-        """The emitted run that also carries the derivative of the states (see run_source)."""
-        return compile_function(RunSource(self.system, responses=True).source, "run")
+        """The emitted run that also carries the derivative of the states."""
+        return self._function("responding run", self.responding_source)
+
+    def _function(self, name: str, source: str) -> Callable:
+        if name not in self._functions:
+            self._functions[name] = compile_function(source, "run")
+        return self._functions[name]
+
+    @property
+    def compilation(self) -> float:
+        """About how many seconds compiling the runs that have been used would take."""
+        sources = {"run": self.source, "responding run": self.responding_source} if self._functions else {}
+        return sum(seconds_for(source) for name, source in sources.items() if name in self._functions)
+
+    def compile(self) -> None:
+        """Turn the runs that have been used into machine code. It gives the same bits."""
+        for name in self._functions:
+            responses = name == "responding run"
+            source = self.responding_source if responses else self.source
+            self._functions[name] = CompiledRun(source, responses)
 
     @cached_property
     def sparse(self) -> tuple[System, Run]:
@@ -74,6 +102,10 @@ class Kernel:
             return
         self.source = self.equations.source
         self.run: Run = self.equations.run
+
+    def room(self, count: int) -> Any:
+        """Somewhere for the run to record so many numbers."""
+        return np.zeros(count) if isinstance(self.run, CompiledRun) else [0.0] * count
 
     @property
     def responding_run(self) -> Callable | None:
@@ -105,6 +137,16 @@ class KernelCache:
         """A cache that shares what was emitted, and in which no kernel has gone over to the sparse LU: what one variant
         needed must not change the next."""
         return KernelCache(self._equations)
+
+    @property
+    def compilation(self) -> float:
+        """About how many seconds compiling what has been used would take."""
+        return sum(equations.compilation for equations in self._equations.values())
+
+    def compile(self) -> None:
+        """Turn the runs that have been used into machine code, as the extra `fast` can. It gives the same bits."""
+        for equations in self._equations.values():
+            equations.compile()
 
     def kernel(self, frame: Frame, references: Sequence[Hashable]) -> Kernel:
         key = (frame.signature(), tuple(references))

@@ -90,7 +90,7 @@ class Engine:
         self.saved = [0.0] * self.kernel.saved_count
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
-        self._record: list[float] = []
+        self._record: Sequence[float] | None = None
         self._response: list[float] | None = None
 
     # --- state by name, so that it can move between forms of the equations ---
@@ -261,8 +261,8 @@ class Engine:
     def _call(self, controls: tuple[float, ...]) -> int:
         """Run the kernel once; returns how many numbers it recorded. A pivot that shrank to rounding is answered by
         going back and on with the sparse LU, which may pivot."""
-        if not self._record:
-            self._record = [0.0] * (_ROOM + record_width(self.kernel.system))
+        if self._record is None:
+            self._record = self.kernel.room(_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
         result = self._run(controls)
         if (result is None or result[-1]) and self.kernel.source:
