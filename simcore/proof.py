@@ -102,8 +102,8 @@ def solve_and_judge(
     others = dict.fromkeys(study for part in (*parts, *more) for study in _studies_named(part))
     needed = [name for name in circuit.studies if name in names or name in others]
     solved = solve_studies(opened.project, circuit, needed, opened.overrides, kernels)
-    fine = {name: Record(result.solution) for name, result in solved.items()}
-    coarse = {name: Record(result.coarse) for name, result in solved.items()}
+    fine = {name: result.fine for name, result in solved.items()}
+    coarse = {name: result.coarse for name, result in solved.items()}
     return Judged(solved, fine, coarse, judge(requirements, coarse, fine))
 
 

@@ -16,7 +16,7 @@ from simcore.equations.run_source import CONTROLS
 
 _WHOLE = ("order", "limit", "room")
 SECONDS_A_LINE = 0.018
-"""What compiling a line of the emitted source takes, measured from 250 to 1090 lines (half-wave to six-pulse bridge)."""
+"""What compiling a line of the emitted source takes, measured on sources of 250 to 1090 lines."""
 
 
 def available() -> bool:
@@ -30,7 +30,7 @@ def seconds_for(source: str) -> float:
 
 
 class CompiledRun:
-    """An emitted run as machine code; call it like the emitted function. s, and m where it has one, are written back."""
+    """An emitted run as machine code; call it like the emitted function, with an array for what it records."""
 
     def __init__(self, source: str, responses: bool):
         from numba import njit, types

@@ -132,6 +132,8 @@ class KernelCache:
     def __init__(self, equations: dict[tuple, Equations] | None = None) -> None:
         self._equations: dict[tuple, Equations] = {} if equations is None else equations
         self._kernels: dict[tuple, Kernel] = {}
+        self._frames: dict[tuple[int, float], tuple[Any, Frame]] = {}
+        self._of_frames: dict[int, tuple[Frame, Kernel]] = {}
 
     def afresh(self) -> KernelCache:
         """A cache that shares what was emitted, and in which no kernel has gone over to the sparse LU: what one variant
@@ -148,7 +150,20 @@ class KernelCache:
         for equations in self._equations.values():
             equations.compile()
 
+    def frame(self, circuit: Any, moment: float, build: Callable[[], Frame]) -> Frame:
+        """The frame of a circuit (told by identity) from a moment of a study on, built once."""
+        key = (id(circuit), moment)
+        if key not in self._frames:
+            self._frames[key] = (circuit, build())
+        return self._frames[key][1]
+
     def kernel(self, frame: Frame, references: Sequence[Hashable]) -> Kernel:
+        """The kernel of a frame with its references; a frame has one for good."""
+        if id(frame) not in self._of_frames:
+            self._of_frames[id(frame)] = (frame, self._kernel(frame, references))
+        return self._of_frames[id(frame)][1]
+
+    def _kernel(self, frame: Frame, references: Sequence[Hashable]) -> Kernel:
         key = (frame.signature(), tuple(references))
         if key not in self._kernels:
             if key not in self._equations:
