@@ -6,15 +6,17 @@ It runs in this process or in any other that gets the same task.
 from __future__ import annotations
 
 import pickle
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from grammar.description import Expression
 from grammar.mistakes import DescriptionError, Mistake
+from grammar.quantities import Quantity
 from simcore.campaign.plan import Plan, Variant
 from simcore.campaign.rows import SOLVED, Claim, Row, claim_of, encode, found_figure, found_of
 from simcore.design.changes import Variants
 from simcore.design.circuit import Change, Circuit
+from simcore.design.depends import asked_names, structure
 from simcore.design.elaborate import elaborate
 from simcore.design.soundness import contradictions
 from simcore.equations.kernel import KernelCache
@@ -49,6 +51,7 @@ class Solver:
         self.task = task
         self.claims = task.claims
         self._kernels = KernelCache()
+        self._elaborator = Elaborator(task.opened)
 
     def block(self, start: int, stop: int) -> str:
         """The rows of the variants from an index, counted from 0, to another, as one line."""
@@ -71,20 +74,44 @@ class Solver:
 
     def judged(self, variant: Variant) -> Judged:
         """A variant's studies solved and its requirements judged. Raises DescriptionError, NoSolution."""
-        opened = varied(self.task.opened, variant)
+        opened = self._elaborator.varied(variant)
         return solve_and_judge(opened, self.task.studies, self.task.figures, self._kernels.afresh())
 
 
-def varied(opened: Opened, variant: Variant) -> Opened:
-    """The design as a variant has it. Raises DescriptionError where that is wrong or unsound."""
-    overrides = {**opened.overrides, **variant.values}
-    circuit, mistakes = elaborate(opened.project, overrides)
-    if not mistakes and variant.faults:
-        mistakes = contradictions(Variants(opened.project, circuit, overrides)(variant.faults))
-        circuit = _faulted(circuit, variant.faults)
-    if mistakes:
-        raise DescriptionError(mistakes)
-    return Opened(opened.project, circuit, overrides)
+class Elaborator:
+    """Variants of a design as circuits. What a variant's values can't change is taken over from the design itself."""
+
+    def __init__(self, opened: Opened):
+        self._opened = opened
+        self._asked = asked_names(opened.project)
+        self._structure = structure(opened.circuit)
+
+    def varied(self, variant: Variant) -> Opened:
+        """The design as a variant has it. Raises DescriptionError where that is wrong or unsound."""
+        project, overrides = self._opened.project, {**self._opened.overrides, **variant.values}
+        circuit = self._with_values(variant, overrides)
+        if variant.faults:
+            mistakes = contradictions(Variants(project, circuit, overrides)(variant.faults))
+            if mistakes:
+                raise DescriptionError(mistakes)
+            circuit = _faulted(circuit, variant.faults)
+        return Opened(project, circuit, overrides)
+
+    def _with_values(self, variant: Variant, overrides: Mapping[str, Quantity | Expression | str]) -> Circuit:
+        base = self._opened.circuit
+        if not any(_word(let) in self._asked for let in variant.values):
+            circuit, mistakes = elaborate(self._opened.project, overrides, again=True)
+            if not mistakes and structure(circuit) == self._structure:
+                return replace(circuit, studies=base.studies, requirements=base.requirements, sweeps=base.sweeps)
+        circuit, mistakes = elaborate(self._opened.project, overrides)
+        if mistakes:
+            raise DescriptionError(mistakes)
+        return circuit
+
+
+def _word(let: str) -> str:
+    """The last word of a let's full name, without its indices."""
+    return let.rpartition(".")[2].partition("[")[0]
 
 
 def _faulted(circuit: Circuit, faults: tuple[Change, ...]) -> Circuit:
