@@ -79,6 +79,11 @@ class Plan:
         """Whether any axis has faults."""
         return any(axis.faults for axis in self.axes)
 
+    @property
+    def alike(self) -> int:
+        """How many variants have no fault, or the same one: those that may share emitted equations."""
+        return prod(len(axis) for axis in self.axes if not axis.faults)
+
     def place(self, index: int) -> tuple[int, ...]:
         """The point of each axis at which the variant of an index, counted from 0, lies."""
         found = []

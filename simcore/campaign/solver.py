@@ -6,6 +6,7 @@ It runs in this process or in any other that gets the same task.
 from __future__ import annotations
 
 import pickle
+import time
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
@@ -19,11 +20,18 @@ from simcore.design.circuit import Change, Circuit
 from simcore.design.depends import asked_names, structure
 from simcore.design.elaborate import elaborate
 from simcore.design.soundness import contradictions
+from simcore.equations.compiled import available
 from simcore.equations.kernel import KernelCache
 from simcore.figures.evaluate import figures_with_bounds
 from simcore.opening import Opened
 from simcore.proof import Judged, solve_and_judge
 from simcore.solve.failure import NoSolution
+
+COUNT_WORTH_TIMING = 20
+"""Variants a worker from which timing the first one is worth its while."""
+PAYS = 2.0
+"""Time of plain runs ahead, over that of compiling them, from which they are compiled. A bridge supply's variant took
+87 ms plain and 15 ms compiled, so that compiling breaks even at 1.2; what more is asked covers a poor estimate."""
 
 
 @dataclass(frozen=True)
@@ -71,6 +79,25 @@ class Solver:
         for (_, expression), figure in zip(asked, figures_with_bounds(asked, judged.coarse, judged.fine), strict=True):
             found.append(found_figure(expression, figure))
         return Row(variant.number, SOLVED, tuple(found))
+
+    def compiles(self, left: int, workers: int) -> bool:
+        """Compile the emitted runs, where numba is there and it pays for the variants that are left: the first one,
+        solved once to emit and once to time, tells how long plain runs would take. The rows are the same either way."""
+        count = min(self.task.plan.alike, left) // workers
+        if count < COUNT_WORTH_TIMING or not available():
+            return False
+        for _ in range(2):
+            start = time.process_time()
+            self.row(0)
+            if (time.process_time() - start) * count < PAYS * self._kernels.compilation:
+                return False
+        self._kernels.compile()
+        return True
+
+    def compile(self) -> None:
+        """Compile the emitted runs that the first variant needs."""
+        self.row(0)
+        self._kernels.compile()
 
     def judged(self, variant: Variant) -> Judged:
         """A variant's studies solved and its requirements judged. Raises DescriptionError, NoSolution."""
@@ -133,15 +160,16 @@ def _in_a_line(mistakes: Sequence[Mistake]) -> str:
 
 @dataclass(frozen=True)
 class Packed:
-    """A task on its way to other processes; key: what it is known by there."""
+    """A task on its way to other processes; key: what it is known by there; compiled: whether compiling pays."""
 
     key: str
     content: bytes
+    compiled: bool
 
 
-def packed(task: Task, key: str) -> Packed:
+def packed(task: Task, key: str, compiled: bool) -> Packed:
     """A task that can be sent."""
-    return Packed(key, pickle.dumps(task))
+    return Packed(key, pickle.dumps(task), compiled)
 
 
 _KEPT: dict[str, Solver] = {}
@@ -157,5 +185,9 @@ def keep(key: str, solver: Solver) -> Solver:
 
 def solve_block(parcel: Packed, start: int, stop: int) -> str:
     """A block of a task's variants as one line, in whichever process this runs."""
-    solver = _KEPT.get(parcel.key) or keep(parcel.key, Solver(pickle.loads(parcel.content)))
+    solver = _KEPT.get(parcel.key)
+    if solver is None:
+        solver = keep(parcel.key, Solver(pickle.loads(parcel.content)))
+        if parcel.compiled:
+            solver.compile()
     return solver.block(start, stop)

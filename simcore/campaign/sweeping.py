@@ -68,14 +68,17 @@ def solved_rows(
     finished block had, and whether it was solved now
     Raises DescriptionError for a journal that does not fit, WorkersLost.
     """
-    parcel = packed(task, fingerprint(task))
-    claims = keep(parcel.key, Solver(task)).claims
+    key, solver = fingerprint(task), Solver(task)
+    claims = solver.claims
     waiting: dict[int, list[Row]] = {}
     earlier = _earlier(keeping, task) if keeping is not None else {}
     for span, line in earlier.items():
         waiting[span[0]] = decode(line, claims)
         if tell is not None:
             tell(span[1] - span[0], False)
+    left = len(task.plan) - sum(last - first for first, last in earlier)
+    parcel = packed(task, key, solver.compiles(left, crew.count))
+    keep(key, solver)
     due = 0
     with closing(_solved_now(task, parcel, crew, list(earlier), block)) as lines:
         while True:

@@ -30,7 +30,10 @@ def seconds_for(source: str) -> float:
 
 
 class CompiledRun:
-    """An emitted run as machine code; call it like the emitted function, with an array for what it records."""
+    """An emitted run as machine code; call it like the emitted function, with an array for what it records.
+
+    responses: the source is of the run that carries derivatives, which then serves for both
+    """
 
     def __init__(self, source: str, responses: bool):
         from numba import njit, types
@@ -41,16 +44,17 @@ class CompiledRun:
         names = _functions()
         exec(compile(source, "<emitted>", "exec"), names)  # noqa: S102
         self._run = njit(signature, error_model="python")(names["run"])
+        self._responses = responses
 
     def __call__(
         self, p: list[float], s: list[float], out: np.ndarray, c: tuple[float, ...], m: list[float] | None = None
     ) -> tuple[int, ...]:
         saved = np.array(s)
         controls = tuple(int(x) if n in _WHOLE else float(x) for n, x in zip(CONTROLS, c, strict=True))
-        responses = [] if m is None else [np.array(m)]
+        responses = [np.array(m or [], dtype=float)] if self._responses else []
         result = self._run(np.array(p), saved, out, controls, *responses)
         s[:] = saved.tolist()
-        if m is not None:
+        if m:
             m[:] = responses[0].tolist()
         return result
 

@@ -65,15 +65,18 @@ class Equations:
     @property
     def compilation(self) -> float:
         """About how many seconds compiling the runs that have been used would take."""
-        sources = {"run": self.source, "responding run": self.responding_source} if self._functions else {}
-        return sum(seconds_for(source) for name, source in sources.items() if name in self._functions)
+        return seconds_for(self._source_of_all) if self._functions else 0.0
+
+    @property
+    def _source_of_all(self) -> str:
+        """The source that serves for all runs that have been used."""
+        return self.responding_source if "responding run" in self._functions else self.source
 
     def compile(self) -> None:
         """Turn the runs that have been used into machine code. It gives the same bits."""
-        for name in self._functions:
-            responses = name == "responding run"
-            source = self.responding_source if responses else self.source
-            self._functions[name] = CompiledRun(source, responses)
+        if self._functions:
+            compiled = CompiledRun(self._source_of_all, "responding run" in self._functions)
+            self._functions = dict.fromkeys(self._functions, compiled)
 
     @cached_property
     def sparse(self) -> tuple[System, Run]:

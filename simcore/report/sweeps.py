@@ -118,7 +118,7 @@ def _rates(rates: Sequence[PassRate]) -> list[str]:
     for rate in shown:
         where = f" at {rate.at}" if rate.at else ""
         lines.append(
-            f"Pass rate{where}: {_percent(rate.passing / rate.drawn)}, with {CONFIDENCE:.0%} confidence between "
+            f"Pass rate{where}: {_percent(rate.passing / rate.drawn)}, with {100.0 * CONFIDENCE:.0f} % confidence between "
             f"{_percent(rate.low)} and {_percent(rate.high)} ({SOURCE})"
         )
     if len(shown) < len(rates):
