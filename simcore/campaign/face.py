@@ -5,6 +5,7 @@ It puts what a caller gives into a task; how that is solved and what comes of it
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
@@ -81,6 +82,10 @@ def _points(opened: Opened, lets: tuple[str, ...], rows: Sequence[tuple[Given | 
     texts = {(let, cell): None for row in rows for let, cell in zip(lets, row, strict=True) if isinstance(cell, str)}
     read = {(let, text): _read(opened, held[let], text) for let, text in texts}
     cells = [tuple(_cell(read, let, cell) for let, cell in zip(lets, row, strict=True)) for row in rows]
+    for row in cells:
+        for let, cell in zip(lets, row, strict=True):
+            if isinstance(cell, float) and not math.isfinite(cell):
+                raise _wrong(f"{let} = {cell} is no number", "", [], opened)
     return Points(lets, dimensions, cells)
 
 
@@ -96,11 +101,7 @@ def _read(opened: Opened, let: LetValue, text: str) -> Cell:
     if mistakes:
         raise DescriptionError(mistakes)
     value = found.circuit.lets[let.name].value
-    if isinstance(value, str) or isinstance(let.value, str):
-        return value if isinstance(value, str) else value.value
-    if value.dimension != let.value.dimension:
-        raise _wrong(f"{let.name} = {text} is in another unit than its value", "", [], opened)
-    return value.value
+    return value if isinstance(value, str) else value.value
 
 
 def _figure(text: str) -> Expression:
@@ -112,5 +113,7 @@ def _figure(text: str) -> Expression:
 
 def _wrong(what: str, name: str, known: Sequence[str], opened: Opened) -> DescriptionError:
     near = nearest(name, known)
-    cure = f"Did you mean {near}?" if near else f"There are: {', '.join(known) or 'none'}."
+    cure = (
+        f"Did you mean {near}?" if near else f"There are: {', '.join(known)}." if known else "Check what it is given."
+    )
     return DescriptionError([Mistake(what, cure, file=opened.project.name)])

@@ -44,9 +44,12 @@ class Journal:
         for number, line in enumerate(lines[1:], 2):
             try:
                 first, last, rows = line.split(" ", 2)
-                blocks[int(first), int(last)] = rows
+                block = int(first), int(last)
             except ValueError as fault:
                 raise self._wrong(f"line {number} holds no block of variants") from fault
+            if block in blocks:
+                raise self._wrong(f"line {number} holds a block that was there before")
+            blocks[block] = rows
         with whole_file(self.path) as file:
             file.writelines(_checked(line) for line in lines)
         return blocks

@@ -117,10 +117,8 @@ def _rates(rates: Sequence[PassRate]) -> list[str]:
     lines = []
     for rate in shown:
         where = f" at {rate.at}" if rate.at else ""
-        lines.append(
-            f"Pass rate{where}: {_percent(rate.passing / rate.drawn)}, with {100.0 * CONFIDENCE:.0f} % confidence between "
-            f"{_percent(rate.low)} and {_percent(rate.high)} ({SOURCE})"
-        )
+        sure = f"with {100.0 * CONFIDENCE:.0f} % confidence between {_percent(rate.low)} and {_percent(rate.high)}"
+        lines.append(f"Pass rate{where}: {_percent(rate.passing / rate.drawn)}, {sure} ({SOURCE})")
     if len(shown) < len(rates):
         lines.append(f"These are the {len(shown)} lowest of {len(rates)} pass rates.")
     return lines

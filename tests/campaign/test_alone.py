@@ -21,7 +21,6 @@ WORKED = {
     "bench_supply": (["full_load"], {"V_sec": (10.0, 14.0), "C_res": (1e-3, 1e-2), "R_load": (8.0, 60.0)}),
     "doubler_half_wave": (None, None),
     "centre_tap": (None, None),
-    "choke_input": (None, None),
 }
 
 
