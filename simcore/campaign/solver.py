@@ -6,6 +6,7 @@ It runs in this process or in any other that gets the same task.
 from __future__ import annotations
 
 import pickle
+import threading
 import time
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
@@ -174,6 +175,8 @@ def packed(task: Task, key: str, compiled: bool) -> Packed:
 
 _KEPT: dict[str, Solver] = {}
 """The solver of the last task that this process had a block of: what it emitted serves the next block."""
+_ONE_AT_A_TIME = threading.Lock()
+"""A process solves one variant at a time, however many threads an engine gives it."""
 
 
 def keep(key: str, solver: Solver) -> Solver:
@@ -185,9 +188,10 @@ def keep(key: str, solver: Solver) -> Solver:
 
 def solve_block(parcel: Packed, start: int, stop: int) -> str:
     """A block of a task's variants as one line, in whichever process this runs."""
-    solver = _KEPT.get(parcel.key)
-    if solver is None:
-        solver = keep(parcel.key, Solver(pickle.loads(parcel.content)))
-        if parcel.compiled:
-            solver.compile()
-    return solver.block(start, stop)
+    with _ONE_AT_A_TIME:
+        solver = _KEPT.get(parcel.key)
+        if solver is None:
+            solver = keep(parcel.key, Solver(pickle.loads(parcel.content)))
+            if parcel.compiled:
+                solver.compile()
+        return solver.block(start, stop)

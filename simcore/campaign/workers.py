@@ -104,16 +104,19 @@ class Cluster:
             cure = 'Install it with `pip install "bulkrail[cluster]"`, or leave --scheduler out.'
             raise DescriptionError([Mistake(what, cure, file="--scheduler")]) from fault
         try:
-            self._client = distributed.Client(address, timeout="10s")
+            with distributed.Client(address, timeout="10s") as client:
+                self.count = max(1, sum(client.nthreads().values()))
         except (OSError, ValueError) as fault:
             cure = "Check its address, such as tcp://host:8786, and that it runs the same version of this tool."
             raise DescriptionError([Mistake(f"the scheduler does not answer: {fault}", cure, file=address)]) from fault
-        self.count = max(1, sum(self._client.nthreads().values()))
+        self._address = address
         self.lost: tuple[type[BaseException], ...] = (distributed.KilledWorker,)
 
     @contextmanager
     def hired(self) -> Iterator[Executor]:
-        with self._client.get_executor(pure=False) as executor:
+        import distributed
+
+        with distributed.Client(self._address) as client, client.get_executor(pure=False) as executor:
             yield executor
 
 
