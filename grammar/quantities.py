@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 import re
 from dataclasses import dataclass
+from functools import lru_cache
 
 _BASE = ("V", "A", "s", "K", "rad")
 
@@ -115,6 +116,7 @@ def _scaled(number: float, scale: float) -> float:
     return number / round(inverse) if exact else number * scale
 
 
+@lru_cache(maxsize=1024)
 def _unit(text: str) -> tuple[float, Dimension]:
     scale, dimension, over = 1.0, NONE, False
     for piece in re.split(r"([/ ])", text):

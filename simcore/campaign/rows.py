@@ -86,9 +86,8 @@ class Row:
 
 def claim_of(requirement: Requirement) -> Claim:
     """What is found of a requirement."""
-    figure = "" if requirement.figure is None else write_expression(requirement.figure)
     unit = unit_of(requirement.dimension)
-    return Claim(requirement.study, figure, unit, requirement.wording, requirement.label or "")
+    return Claim(requirement.study, requirement.written, unit, requirement.wording, requirement.label or "")
 
 
 def found_of(verdict: Verdict) -> Found:

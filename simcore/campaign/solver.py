@@ -32,7 +32,7 @@ COUNT_WORTH_TIMING = 20
 """Variants a worker from which timing the first one is worth its while."""
 PAYS = 2.0
 """Time of plain runs ahead, over that of compiling them, from which they are compiled. A bridge supply's variant took
-87 ms plain and 15 ms compiled, so that compiling breaks even at 1.2; what more is asked covers a poor estimate."""
+86 ms plain and 11 ms compiled, so that compiling breaks even at 1.15; what more is asked covers a poor estimate."""
 
 
 @dataclass(frozen=True)

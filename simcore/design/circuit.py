@@ -99,7 +99,7 @@ class Requirement:
 
     relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at
     other studies; elements: those that `ratings` is about, () for all; wording: the text as tidy writes it, for
-    reports; dimension: of the figure
+    reports; dimension: of the figure; written: the figure as the text has it, "" where there is none
     """
 
     study: str
@@ -114,6 +114,7 @@ class Requirement:
     table: str | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
     dimension: Dimension = NONE
+    written: str = ""
 
 
 @dataclass(frozen=True)

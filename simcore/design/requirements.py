@@ -74,7 +74,8 @@ class Requirements:
 
         figure, bound, upper = put(claim.figure), put(claim.bound), put(claim.upper)
         assert figure is not None
-        wording = _wording(claim, *(self._indexed(each, place) for each in (figure, bound, upper)))
+        indexed = [self._indexed(each, place) for each in (figure, bound, upper)]
+        wording = _wording(claim, *indexed)
         if claim.relation == "within":
             resolved: list[Resolved | None] = [self._tabled(figure, place), None, None]
         else:
@@ -90,6 +91,7 @@ class Requirements:
                 table=claim.table,
                 span=require.span,
                 dimension=NONE if resolved[0] is None else resolved[0].dimension,
+                written="" if indexed[0] is None else write_expression(indexed[0]),
             )
             for name in names
         ]

@@ -14,7 +14,7 @@ import numpy as np
 
 from simcore.equations.run_source import CONTROLS
 
-_WHOLE = ("order", "limit", "room")
+_CASTS = tuple(int if name in ("order", "limit", "room") else float for name in CONTROLS)
 SECONDS_A_LINE = 0.018
 """What compiling a line of the emitted source takes, measured on sources of 250 to 1090 lines."""
 
@@ -39,7 +39,7 @@ class CompiledRun:
         from numba import njit, types
 
         numbers = types.Array(types.float64, 1, "C")
-        controls = types.Tuple([types.int64 if name in _WHOLE else types.float64 for name in CONTROLS])
+        controls = types.Tuple([types.int64 if cast is int else types.float64 for cast in _CASTS])
         signature = (numbers, numbers, numbers, controls, *([numbers] if responses else []))
         names = _functions()
         exec(compile(source, "<emitted>", "exec"), names)  # noqa: S102
@@ -50,7 +50,7 @@ class CompiledRun:
         self, p: list[float], s: list[float], out: np.ndarray, c: tuple[float, ...], m: list[float] | None = None
     ) -> tuple[int, ...]:
         saved = np.array(s)
-        controls = tuple(int(x) if n in _WHOLE else float(x) for n, x in zip(CONTROLS, c, strict=True))
+        controls = tuple(cast(number) for cast, number in zip(_CASTS, c, strict=True))
         responses = [np.array(m or [], dtype=float)] if self._responses else []
         result = self._run(np.array(p), saved, out, controls, *responses)
         s[:] = saved.tolist()

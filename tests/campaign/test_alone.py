@@ -6,6 +6,7 @@ import random
 from pathlib import Path
 
 import pytest
+from small_design import DESIGN
 
 import simcore
 from simcore.campaign.results import exact
@@ -66,6 +67,35 @@ def test_a_fault_is_what_a_study_that_begins_with_it_gives(design: simcore.Desig
         except simcore.NoSolution as failure:
             alone = Row(number + 1, str(failure))
         assert encode([rows.rows[number]], []) == encode([alone], [])
+
+
+def test_what_is_asked_follows_the_values_of_the_variant() -> None:
+    """Limits, durations and figures that a let stands behind, through another let, are those of the variant."""
+    text = (
+        DESIGN.replace("duration = 40 ms", "duration = span")
+        + """
+let share = 80 %
+let floor = share * V
+let span = 40 ms
+require work: mean(u_out) >= floor
+require start: time_until_above(u_out, floor) <= span
+"""
+    )
+    design = simcore.read_text(text)
+    variants = [{"V": "6 V"}, {"share": "50 %"}, {"span": "15 ms"}, {"R_load": "90 Ohm", "share": "91 %"}]
+    results = design.sweep(variants, studies=["work", "start"], workers=1)
+    assert [name for name in results.columns if "until" in name] == [
+        "start: time_until_above(u_out, floor) [s]",
+        "start: time_until_above(u_out, floor), bound [s]",
+        "start: time_until_above(u_out, floor) <= span",
+    ]
+    rows, states = results.rows, set()
+    for values, row in zip(variants, rows, strict=True):
+        alone = design.variant(**values)
+        found = [found_of(verdict) for study in ("work", "start") for verdict in alone.run(study).verdicts]
+        assert sorted(map(repr, row.found)) == sorted(map(repr, found)) and len(found) == 6
+        states.add(tuple(each.state for each in row.found))
+    assert len(states) > 2, "the variants should differ in what holds"
 
 
 def test_neither_blocks_nor_workers_show(spread: Task) -> None:
