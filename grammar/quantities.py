@@ -83,6 +83,7 @@ UNITS = {
     "K": KELVIN,
 }
 _PLAIN_UNITS = {
+    "1": (1.0, NONE),
     "min": (60.0, SECOND),
     "h": (3600.0, SECOND),
     "deg": (math.pi / 180.0, ANGLE),

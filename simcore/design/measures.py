@@ -6,12 +6,13 @@ their place. It knows the catalogue of signals and figures, and computes none.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 
 from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Observe, Span
 from grammar.expressions import FUNCTIONS
-from grammar.quantities import NONE, Dimension, Quantity, unit_of
+from grammar.quantities import ANGLE, NONE, Dimension, Quantity, unit_of
 from simcore.design.circuit import Element
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, named, span_of, suggest
 from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure
@@ -347,7 +348,8 @@ class Measures:
 
 
 def _number(quantity: Quantity, span: Span | None) -> Number:
-    return Number(quantity.value, unit_of(quantity.dimension), span)
+    value = math.degrees(quantity.value) if quantity.dimension == ANGLE else quantity.value
+    return Number(value, unit_of(quantity.dimension), span)
 
 
 _WORDS = {
