@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 import re
 from dataclasses import dataclass
+from functools import lru_cache
 
 _BASE = ("V", "A", "s", "K", "rad")
 
@@ -82,6 +83,7 @@ UNITS = {
     "K": KELVIN,
 }
 _PLAIN_UNITS = {
+    "1": (1.0, NONE),
     "min": (60.0, SECOND),
     "h": (3600.0, SECOND),
     "deg": (math.pi / 180.0, ANGLE),
@@ -116,6 +118,7 @@ def _scaled(number: float, scale: float) -> float:
     return number / round(inverse) if exact else number * scale
 
 
+@lru_cache(maxsize=1024)
 def _unit(text: str) -> tuple[float, Dimension]:
     if len(text) > _LONGEST_UNIT:
         raise ValueError(f"a unit has up to {_LONGEST_UNIT} characters")

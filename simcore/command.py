@@ -9,11 +9,11 @@ import argparse
 import sys
 from collections.abc import Callable, Sequence
 
-from simcore.commands import baseline, draw, look, run, size, tidy
+from simcore.commands import baseline, draw, look, run, size, sweep, tidy
 from simcore.commands.speaking import complain
 from simcore.judge.outcome import Outcome
 
-VERBS = (run, look, size, baseline, draw, tidy)
+VERBS = (run, sweep, size, baseline, look, draw, tidy)
 
 INTERRUPTED = 130
 """Exit status after an interrupt from the keyboard, as shells have it: 128 + signal number."""

@@ -6,7 +6,7 @@ It holds what a caller sees and works nothing out itself.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 from pathlib import Path
@@ -34,6 +34,10 @@ from simcore.report.traces import traces
 
 if TYPE_CHECKING:
     import networkx
+
+    from simcore.campaign.face import What
+    from simcore.campaign.results import Results
+    from simcore.campaign.rows import Row
 
 
 def read(path: str | Path) -> Design:
@@ -121,6 +125,55 @@ class Design:
     def prove(self) -> Proof:
         """Solve all studies and judge all requirements."""
         return prove(self._opened, self.studies)
+
+    def sweep(
+        self,
+        what: What,
+        *,
+        studies: Sequence[str] = (),
+        figures: Sequence[str] = (),
+        workers: int | None = None,
+    ) -> Results:
+        """Solve many variants: a sweep of the description by its name, arrays of values by let (every combination), or
+        variants one by one, as mappings of lets to values.
+
+        A value is text as the language has it, or a number in the let's own SI unit. studies: those whose requirements
+        are judged, by default the sweep's; figures: found besides what is required, of the first study unless they say
+        `at`; workers: processes, by default one a core. A variant that can't be solved has a row that says why.
+
+        >>> import simcore
+        >>> bridge = simcore.read(simcore.library_folder() / "bench_supply.rect")
+        >>> loads = bridge.sweep({"R_load": [10.0, 20.0]}, studies=["full_load"], figures=["rms(u_out)"], workers=1)
+        >>> [round(value, 1) for value in loads.columns["rms(u_out) [V]"]]
+        [11.8, 12.9]
+        >>> loads.table["R_load [Ohm]"].tolist()
+        [10.0, 20.0]
+        """
+        from simcore.campaign import face
+
+        return face.sweep(face.sweep_task(self._opened, what, studies, figures), workers)
+
+    def sweep_rows(
+        self,
+        what: What,
+        *,
+        studies: Sequence[str] = (),
+        figures: Sequence[str] = (),
+        workers: int | None = None,
+    ) -> Iterator[Row]:
+        """The same one row after another, in the order of the variants and as soon as each is there.
+
+        >>> import simcore
+        >>> bridge = simcore.read(simcore.library_folder() / "bench_supply.rect")
+        >>> loads = ({"R_load": f"{ohms} Ohm"} for ohms in (8, 15))
+        >>> for row in bridge.sweep_rows(loads, studies=["full_load"], workers=1):
+        ...     print(row.number, row.ended, row.passes)
+        1 solved False
+        2 solved True
+        """
+        from simcore.campaign import face
+
+        return face.rows(face.sweep_task(self._opened, what, studies, figures), workers)
 
 
 @dataclass(frozen=True)

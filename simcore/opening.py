@@ -5,7 +5,7 @@ The one way in, for the command and for Python alike. It solves nothing.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TypeGuard
@@ -13,6 +13,7 @@ from typing import TypeGuard
 from grammar.description import Expression, Name
 from grammar.expressions import nearest
 from grammar.mistakes import Mistake
+from grammar.quantities import Quantity, unit_of
 from grammar.reader import read_expression
 from simcore.design.circuit import Circuit
 from simcore.design.elaborate import elaborate
@@ -25,7 +26,7 @@ class Opened:
 
     project: Project
     circuit: Circuit
-    overrides: dict[str, Expression | str]
+    overrides: Mapping[str, Quantity | Expression | str]
 
 
 def open_design(file: str | Path, settings: Mapping[str, str]) -> tuple[Opened, list[Mistake]]:
@@ -48,7 +49,28 @@ def open_project(project: Project, settings: Mapping[str, str]) -> tuple[Opened,
     mistakes += more
     if project.sound and not more:
         mistakes += [_unknown(name, circuit, project.name) for name in overrides if name not in circuit.lets]
+    if overrides and not mistakes:
+        mistakes = _unlike(project, circuit, overrides)
     return Opened(project, circuit, overrides), mistakes
+
+
+def _unlike(project: Project, circuit: Circuit, names: Iterable[str]) -> list[Mistake]:
+    """A let that is set keeps its dimension, and a data sheet stays one."""
+    written, _ = elaborate(project, {}, again=True)
+    found = []
+    for name in names:
+        old, new = (each.lets[name].value for each in (written, circuit) if name in each.lets)
+        if _sort(old) != _sort(new):
+            cure = f"Give {name} a value of the sort it has in the description."
+            what = f"{name} is {_sort(old)}, and what it is set to is {_sort(new)}"
+            found.append(Mistake(what, cure, file=project.name))
+    return found
+
+
+def _sort(value: Quantity | str) -> str:
+    if isinstance(value, str):
+        return "a data sheet"
+    return f"in {unit_of(value.dimension)}" if unit_of(value.dimension) else "a plain number"
 
 
 def _names_sheet(expression: Expression) -> TypeGuard[Name]:

@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
@@ -51,20 +52,26 @@ _LOOSEST, _TIGHTEST = 1e-2, 1e-8
 
 @dataclass(frozen=True)
 class StudyResult:
-    """A study's solution and the one at the looser tolerance before it; reached: whether the accuracy asked for was
-    met."""
+    """A study's solution with its record, and the record of the one at the looser tolerance before it; reached: whether
+    the accuracy asked for was met."""
 
     solution: Solution
-    coarse: Solution
+    fine: Record
+    coarse: Record
     reached: bool
 
 
 @dataclass(frozen=True)
 class _Level:
-    """One solution of a study and where it left the circuit."""
+    """One solution of a study, its record, and where it left the circuit."""
 
     solution: Solution
     left: Reached
+
+    @cached_property
+    def record(self) -> Record:
+        """Its signals and figures, each formed once."""
+        return Record(self.solution)
 
     @property
     def heavy(self) -> bool:
@@ -75,10 +82,10 @@ class _Level:
 class _Proof:
     """Solves the studies of one circuit, each after those it starts from."""
 
-    def __init__(self, circuit: Circuit, variant: Callable[[Sequence], Circuit]):
+    def __init__(self, circuit: Circuit, variant: Callable[[Sequence], Circuit], kernels: KernelCache):
         self.circuit = circuit
         self.variant = variant
-        self.kernels = KernelCache()
+        self.kernels = kernels
         self.pairs: dict[str, tuple[_Level, _Level]] = {}
         self.results: dict[str, StudyResult] = {}
 
@@ -101,18 +108,18 @@ class _Proof:
         ):
             tolerance = max(tolerance / min(max(RATIO, 2.0 * excess), LARGEST_RATIO), _TIGHTEST)
             levels.append(self._level(study, tolerance, 1, levels[-1]))
-            excess = self._excess(study, levels[-2].solution, levels[-1].solution)
+            excess = self._excess(study, levels[-2], levels[-1])
         if note is not None:
             levels[-1].solution.notes.append(note)
         self.pairs[name] = (levels[-2], levels[-1])
-        self.results[name] = StudyResult(levels[-1].solution, levels[-2].solution, excess <= 1.0)
+        self.results[name] = StudyResult(levels[-1].solution, levels[-1].record, levels[-2].record, excess <= 1.0)
 
     def _at_worst(self, study: PlannedStudy, figure: Expression, tolerance: float) -> PlannedStudy:
         """The study at the phase that makes a figure highest."""
 
         def at(angle: float) -> float:
             level = self._level(replace(study, angle=angle, worst=None), tolerance, 0, None)
-            value = figure_of(figure, study.name, {study.name: Record(level.solution)}).value
+            value = figure_of(figure, study.name, {study.name: level.record}).value
             return value if not math.isnan(value) else -math.inf
 
         return replace(study, angle=worst_angle(at), worst=None)
@@ -129,17 +136,17 @@ class _Proof:
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
         return _Level(solution, left)
 
-    def _excess(self, study: PlannedStudy, coarse: Solution, fine: Solution) -> float:
+    def _excess(self, study: PlannedStudy, coarse: _Level, fine: _Level) -> float:
         """The worst bound over what the accuracy allows, of the figures required of the study, else of what is
-        observed; with neither, nothing asks for accuracy."""
-        records = ({study.name: Record(coarse)}, {study.name: Record(fine)})
+        observed; with neither, nothing asks for accuracy. Where it is not above 1 it may be less than this says."""
+        records = ({study.name: coarse.record}, {study.name: fine.record})
         mine = [requirement for requirement in self.circuit.requirements if requirement.study == study.name]
         asked = [figure for requirement in mine for figure in _asked(requirement, self.circuit)]
         figures = [bounded(*(figure(study.name, record) for record in records)) for figure in asked]
         if not asked and self.circuit.observes:
-            rows = signal_rows(records[1][study.name], records[0][study.name])
+            rows = signal_rows(fine.record, coarse.record)
             figures = [figure for row in rows for figure in row.figures.values()]
-        floors = _floors(fine)
+        floors = _Floors(fine.solution)
         return max((_share(figure, study.accuracy, floors) for figure in figures), default=0.0)
 
 
@@ -161,20 +168,42 @@ def _stress(element: Element, stress: Stress) -> _Asked:
     return lambda study, records: stress.compute(records[study], element, element.name)
 
 
-def _floors(solution: Solution) -> dict[Dimension, float]:
+class _Floors:
     """What counts as nothing in a circuit, by dimension: a share of its largest voltage, current and power."""
-    ports = [(element, port) for element in solution.circuit.elements.values() for port in element.ports]
-    voltage = max((float(np.max(np.abs(solution.voltage(port.a, port.b)))) for _, port in ports), default=0.0)
-    current = max((float(np.max(np.abs(solution.current(each.name, port.name)))) for each, port in ports), default=0.0)
-    sizes = {VOLT: voltage, AMPERE: current, WATT: voltage * current, JOULE: voltage * current * solution.times[-1]}
-    return {dimension: ABSENT * size for dimension, size in sizes.items()}
+
+    def __init__(self, solution: Solution):
+        self._solution = solution
+        self._ports = [(element, port) for element in solution.circuit.elements.values() for port in element.ports]
+
+    @cached_property
+    def _voltage(self) -> float:
+        sizes = (np.max(np.abs(self._solution.voltage(port.a, port.b))) for _, port in self._ports)
+        return max(map(float, sizes), default=0.0)
+
+    @cached_property
+    def _current(self) -> float:
+        sizes = (np.max(np.abs(self._solution.current(each.name, port.name))) for each, port in self._ports)
+        return max(map(float, sizes), default=0.0)
+
+    def of(self, dimension: Dimension) -> float:
+        """The floor of a dimension; zero where it has none."""
+        if dimension == VOLT:
+            return ABSENT * self._voltage
+        if dimension == AMPERE:
+            return ABSENT * self._current
+        if dimension in (WATT, JOULE):
+            span = float(self._solution.times[-1]) if dimension == JOULE else 1.0
+            return ABSENT * (self._voltage * self._current * span)
+        return 0.0
 
 
-def _share(figure: Figure, accuracy: float, floors: Mapping[Dimension, float]) -> float:
-    """A figure's bound over the one allowed."""
+def _share(figure: Figure, accuracy: float, floors: _Floors) -> float:
+    """A figure's bound over the one allowed; what counts as nothing is looked up only where it can decide."""
     if figure.bound is None or not figure.defined or figure.bound <= figure.rounding:
         return 0.0
-    size = max(abs(figure.value), NOTHING * figure.scale, floors.get(figure.dimension, 0.0))
+    size = max(abs(figure.value), NOTHING * figure.scale)
+    if figure.bound > accuracy * size + figure.rounding:
+        size = max(size, floors.of(figure.dimension))
     return figure.bound / (accuracy * size + figure.rounding)
 
 
@@ -183,12 +212,14 @@ def solve_studies(
     circuit: Circuit,
     names: Sequence[str],
     overrides: Mapping[str, Quantity | Expression | str] | None = None,
+    kernels: KernelCache | None = None,
 ) -> dict[str, StudyResult]:
-    """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside.
+    """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside;
+    kernels: where runs of earlier circuits of the same form are kept.
 
     Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong.
     """
-    proof = _Proof(circuit, Variants(project, circuit, overrides))
+    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache())
     for name in names:
         proof.solve(name)
     return {name: proof.results[name] for name in names}

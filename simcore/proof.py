@@ -6,20 +6,21 @@ The one way from a design to its result, for the command and for Python alike. I
 from __future__ import annotations
 
 import time
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
 from grammar.description import Binary, Call, Expression, Negative
 from grammar.expressions import nearest
 from grammar.mistakes import Mistake
 from simcore.design.circuit import Circuit, PlannedStudy
+from simcore.equations.kernel import KernelCache
 from simcore.figures.overview import Balance, Row, balance, diode_rows, signal_rows
 from simcore.figures.record import Record
 from simcore.judge.outcome import Outcome, outcome_of
 from simcore.judge.ratings import unrated
 from simcore.judge.verdict import Verdict, judge
 from simcore.opening import Opened
-from simcore.pipeline import solve_studies
+from simcore.pipeline import StudyResult, solve_studies
 from simcore.solve.solution import Solution
 
 TAKEN = ("figures", "verdicts", "bill", "size")
@@ -85,23 +86,41 @@ def _unknown(name: str, circuit: Circuit, file: str) -> Mistake:
     return Mistake(f"no study is called {name}", cure, file=file)
 
 
+@dataclass(frozen=True)
+class Judged:
+    """Studies solved and requirements judged: the records at the tighter and at the looser tolerance, by study."""
+
+    solved: Mapping[str, StudyResult]
+    fine: Mapping[str, Record]
+    coarse: Mapping[str, Record]
+    verdicts: list[Verdict]
+
+
+def solve_and_judge(
+    opened: Opened, names: Sequence[str], more: Iterable[Expression] = (), kernels: KernelCache | None = None
+) -> Judged:
+    """Solve the named studies, and those that their requirements and the figures in `more` take figures from, and judge
+    the requirements on them; kernels: where runs of earlier circuits are kept. Raises NoSolution where a study can't be
+    solved."""
+    circuit = opened.circuit
+    requirements = [requirement for requirement in circuit.requirements if requirement.study in names]
+    parts = [part for each in requirements for part in (each.figure, each.bound, each.upper)]
+    others = dict.fromkeys(study for part in (*parts, *more) for study in _studies_named(part))
+    needed = [name for name in circuit.studies if name in names or name in others]
+    solved = solve_studies(opened.project, circuit, needed, opened.overrides, kernels)
+    fine = {name: result.fine for name, result in solved.items()}
+    coarse = {name: result.coarse for name, result in solved.items()}
+    return Judged(solved, fine, coarse, judge(requirements, coarse, fine))
+
+
 def prove(opened: Opened, names: Sequence[str]) -> Proof:
     """Solve the named studies and judge the requirements on them. Raises NoSolution where one can't be solved."""
     start = time.perf_counter()
     circuit = opened.circuit
-    requirements = [requirement for requirement in circuit.requirements if requirement.study in names]
-    others = dict.fromkeys(
-        study
-        for requirement in requirements
-        for part in (requirement.figure, requirement.bound, requirement.upper)
-        for study in _studies_named(part)
-    )
-    needed = [name for name in circuit.studies if name in names or name in others]
-    solved = solve_studies(opened.project, circuit, needed, opened.overrides)
-    fine = {name: Record(result.solution) for name, result in solved.items()}
-    coarse = {name: Record(result.coarse) for name, result in solved.items()}
+    judged = solve_and_judge(opened, names)
+    fine, coarse, solved = judged.fine, judged.coarse, judged.solved
     studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name].solution) for name in names}
-    return Proof(circuit, studies, coarse, judge(requirements, coarse, fine), time.perf_counter() - start)
+    return Proof(circuit, studies, coarse, judged.verdicts, time.perf_counter() - start)
 
 
 def _studies_named(expression: Expression | None) -> Iterator[str]:

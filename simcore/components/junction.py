@@ -102,12 +102,12 @@ class Junction:
         if self._conducts is not None:
             steep, straight = where(self._conducts - 0.5, steep, UNLIMITED), 0.5 - self._conducts
         lifetime, capacitance = self._lifetime(), self._capacitance()
+        manner = {"scale": self.scale, "critical": steep, "leak": self.leak}
         if lifetime is None and capacitance is None:
-            frame.nonlinear(part, weights, self._law, scale=self.scale, critical=steep, straight=straight, leak=self.leak)
+            frame.nonlinear(part, weights, self._law, straight=straight, **manner)
         else:
             small = self._small(lifetime, capacitance)
             law = self._charged(lifetime, capacitance)
-            manner = {"scale": self.scale, "critical": steep, "leak": self.leak}
             frame.carrying(part, weights, law, quantity="charge", small=small, **manner)
         self._breakdown(anode, port.b)
 

@@ -32,12 +32,20 @@ class Variants:
         self.circuit = circuit
         self.overrides = dict(overrides or {})
         self._set: dict[tuple[tuple[str, Quantity | str], ...], Circuit] = {}
+        self._made: dict[tuple[Change, ...], Circuit] = {}
 
     def __call__(self, changes: Sequence[Change]) -> Circuit:
         """The circuit after changes, in their order: the last one of a target holds.
 
-        Raises DescriptionError where a set value makes the design wrong, such as a count below zero.
+        The same changes give the same object. Raises DescriptionError where a set value makes the design wrong, such as
+        a count below zero.
         """
+        key = tuple(changes)
+        if key not in self._made:
+            self._made[key] = self._changed(key)
+        return self._made[key]
+
+    def _changed(self, changes: Sequence[Change]) -> Circuit:
         values: dict[str, Quantity | str] = {}
         states: dict[str, str] = {}
         for change in changes:

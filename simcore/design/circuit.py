@@ -9,7 +9,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from grammar.description import Expression, Sweep
-from grammar.quantities import Quantity
+from grammar.quantities import NONE, Dimension, Quantity
 from grammar.spans import Span
 from simcore.design.limits import LimitTable
 
@@ -101,7 +101,8 @@ class Requirement:
 
     relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at
     other studies; elements: those that `ratings` is about, () for all; limits: the table that `within` names; wording:
-    the text as tidy writes it, for reports
+    the text as tidy writes it, for reports; dimension: of the figure; written: the figure as the text has it, "" where
+    there is none
     """
 
     study: str
@@ -115,6 +116,8 @@ class Requirement:
     margin: float = 0.0
     limits: LimitTable | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
+    dimension: Dimension = NONE
+    written: str = ""
 
 
 @dataclass(frozen=True)
@@ -130,6 +133,67 @@ class LetValue:
 
 
 @dataclass(frozen=True)
+class PlannedRange:
+    """`LET from first to last in count steps`: count values, both ends among them."""
+
+    let: str
+    first: Quantity
+    last: Quantity
+    count: int
+    logarithmic: bool
+
+
+@dataclass(frozen=True)
+class PlannedList:
+    """`LET over [...]`: quantities, or names of data sheets."""
+
+    let: str
+    values: tuple[Quantity | str, ...]
+
+
+@dataclass(frozen=True)
+class PlannedExtremes:
+    """Every corner of the lets' tolerances, and the nominal."""
+
+    lets: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class PlannedSamples:
+    """Draws of lets from their tolerances."""
+
+    lets: tuple[str, ...]
+    count: int
+
+
+@dataclass(frozen=True)
+class PlannedFaults:
+    """The sound circuit, then each of the elements (or windings, `T1.w2`) under each of the faults, open or short."""
+
+    faults: tuple[str, ...]
+    elements: tuple[str, ...]
+
+
+PlannedAxis = PlannedRange | PlannedList | PlannedExtremes | PlannedSamples | PlannedFaults
+
+
+@dataclass(frozen=True)
+class PlannedSweep:
+    """A sweep with its names in full and its values in SI units; every combination of its axes is a variant.
+
+    studies: those it is limited to, () for all; seed: of its samples, None where it draws none
+    """
+
+    name: str
+    axes: tuple[PlannedAxis, ...]
+    studies: tuple[str, ...] = ()
+    seed: int | None = None
+    label: str | None = None
+    written: Sweep | None = field(default=None, compare=False, repr=False)
+    span: Span | None = field(default=None, compare=False, repr=False)
+
+
+@dataclass(frozen=True)
 class Circuit:
     """A flat circuit. Elements, observes, studies and requirements in the order written; blocks: copy -> block."""
 
@@ -142,7 +206,7 @@ class Circuit:
     observes: dict[str, Observed]
     studies: dict[str, PlannedStudy]
     requirements: tuple[Requirement, ...]
-    sweeps: tuple[Sweep, ...] = ()
+    sweeps: tuple[PlannedSweep, ...] = ()
     blocks: dict[str, str] = field(default_factory=dict)
 
     def nodes(self) -> list[str]:

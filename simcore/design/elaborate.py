@@ -24,7 +24,7 @@ from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, at_word,
 from simcore.design.sensing import NotLinear, sensed
 from simcore.design.soundness import unsound
 from simcore.design.studies import Studies, moved_lets
-from simcore.design.sweeps import check_sweeps
+from simcore.design.sweeps import planned_sweeps
 from simcore.design.unused import check_unused
 from simcore.design.values import EXPRESSIONS, LATER, Reader, Values, clash, is_current
 
@@ -133,7 +133,7 @@ class _Builder:
         planned = studies.planned()
         requirements = Requirements(self.scope, measures, studies.studies)
         found = [each for require, place in flat.requires for each in requirements.spread(require, place)]
-        sweeps = check_sweeps(self.scope, measures, studies, flat, circuit)
+        sweeps = planned_sweeps(self.scope, measures, studies, flat, circuit)
         return replace(circuit, studies=planned, requirements=tuple(found), sweeps=sweeps)
 
     # --- elements ------------------------------------------------------------------------------------------------

@@ -6,17 +6,18 @@ their place. It knows the catalogue of signals and figures, and computes none.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import suppress
 from dataclasses import dataclass, replace
 
 from grammar.description import Binary, Branch, Call, Each, Expression, Name, Negative, Number, Observe
 from grammar.expressions import FUNCTIONS, names_in
-from grammar.quantities import NONE, Dimension, Quantity, unit_of
+from grammar.quantities import ANGLE, NONE, Dimension, Quantity, unit_of
 from grammar.spans import Span
 from simcore.design.circuit import Element
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, in_turn, named, span_of, suggest
-from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure
+from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure, example_of, form_of
 
 JUNCTIONS = ("diode", "thyristor")
 SOURCES = ("source", "three_phase")
@@ -246,7 +247,7 @@ class Measures:
             raise Poisoned
         self._study(call, signal)
         if len(call.arguments) != len(measure.arguments) and not (measure.optional and not call.arguments):
-            self._wrong(f"{call.name} takes {_form(measure)}", f"Write `{call.name}({_example(measure)})`.", call.span)
+            self._wrong(f"{call.name} takes {form_of(measure)}", f"Write `{call.name}({example_of(measure)})`.", call.span)
             raise Poisoned
         arguments, dimension = [], NONE
         for sort, argument in zip(measure.arguments, call.arguments, strict=False):
@@ -296,8 +297,8 @@ class Measures:
             ends = [self.node(end, place) for end in (argument.start, argument.end)]
             return Branch(named(ends[0], argument.start.span), named(ends[1], argument.end.span), argument.span)
         if not isinstance(argument, Name):
-            cure = f"Write `{measure.name}({_example(measure)})`."
-            self._wrong(f"{measure.name} takes {_form(measure)}", cure, span_of(argument))
+            cure = f"Write `{measure.name}({example_of(measure)})`."
+            self._wrong(f"{measure.name} takes {form_of(measure)}", cure, span_of(argument))
             raise Poisoned
         local = self.scope.local(argument, place)
         if sort == "place":
@@ -378,25 +379,5 @@ class Measures:
 
 
 def _number(quantity: Quantity, span: Span | None) -> Number:
-    return Number(quantity.value, unit_of(quantity.dimension), span)
-
-
-_WORDS = {
-    "place": ("a node, a branch or an element", "a -> b"),
-    "branch": ("an element, a winding or a phase", "X"),
-    "element": ("an element", "X"),
-    "junction": ("a diode", "D1"),
-    "source": ("a source", "SOURCE"),
-    "signal": ("a signal", "x"),
-    "signal or branch": ("a current or an element", "X"),
-    "level": ("a level", "level"),
-    "count": ("the order of a harmonic", "n"),
-}
-
-
-def _form(measure: Measure) -> str:
-    return " and ".join(_WORDS[argument][0] for argument in measure.arguments)
-
-
-def _example(measure: Measure) -> str:
-    return ", ".join(_WORDS[argument][1] for argument in measure.arguments)
+    value = math.degrees(quantity.value) if quantity.dimension == ANGLE else quantity.value
+    return Number(value, unit_of(quantity.dimension), span)

@@ -95,7 +95,7 @@ def describe(circuit: Circuit) -> Overview:
         {name: f"{write_expression(seen.value)} [{seen.unit}]" for name, seen in circuit.observes.items()},
         {name: sentence(study) for name, study in circuit.studies.items()},
         tuple((each.study, each.wording, each.label or "") for each in circuit.requirements),
-        {sweep.name: _sweep(sweep) for sweep in circuit.sweeps},
+        {sweep.name: in_words(sweep.written) for sweep in circuit.sweeps if sweep.written is not None},
     )
 
 
@@ -218,7 +218,8 @@ def _amount(value: Quantity | str | None) -> str:
     return show(value.value, value.dimension) if isinstance(value, Quantity) else str(value)
 
 
-def _sweep(sweep: Sweep) -> str:
+def in_words(sweep: Sweep) -> str:
+    """What a sweep varies."""
     return ", for each of ".join(_axis(axis) for axis in sweep.axes)
 
 

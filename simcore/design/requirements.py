@@ -93,7 +93,8 @@ class Requirements:
 
         figure, bound, upper = put(claim.figure), put(claim.bound), put(claim.upper)
         assert figure is not None
-        wording = _wording(claim, *(self._indexed(each, place) for each in (figure, bound, upper)))
+        indexed = [self._indexed(each, place) for each in (figure, bound, upper)]
+        wording = _wording(claim, *indexed)
         limits = None
         if claim.relation == "within":
             resolved: list[Resolved | None] = [self._tabled(figure, place), None, None]
@@ -102,7 +103,17 @@ class Requirements:
             resolved = self._compared(figure, bound, upper, place)
         parts = [None if each is None else each.expression for each in resolved]
         return [
-            Requirement(name, claim.relation, *parts, wording, require.label, limits=limits, span=require.span)
+            Requirement(
+                name,
+                claim.relation,
+                *parts,
+                wording,
+                require.label,
+                limits=limits,
+                span=require.span,
+                dimension=NONE if resolved[0] is None else resolved[0].dimension,
+                written="" if indexed[0] is None else write_expression(indexed[0]),
+            )
             for name in names
         ]
 

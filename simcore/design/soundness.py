@@ -24,10 +24,15 @@ def unsound(
     reference."""
     mistakes = _shorted(circuit) + _used_once(circuit, spans) + _references(circuit, spans, reference_spans)
     if not mistakes:
-        mistakes = _voltage_loops(circuit) + _current_cuts(circuit, spans)
+        mistakes = contradictions(circuit)
     if not mistakes:
         mistakes = _singular(circuit)
     return mistakes
+
+
+def contradictions(circuit: Circuit) -> list[Mistake]:
+    """What ideal elements force against one another. A part that something taken out leaves alone is no mistake."""
+    return _voltage_loops(circuit) + _current_cuts(circuit)
 
 
 def parts_of(circuit: Circuit) -> list[list[str]]:
@@ -166,7 +171,7 @@ def _loop(branches: Sequence[tuple[Element, Port]]) -> Mistake:
 # --- forced currents -------------------------------------------------------------------------------------------------
 
 
-def _current_cuts(circuit: Circuit, spans: Mapping[str, Span | None]) -> list[Mistake]:
+def _current_cuts(circuit: Circuit) -> list[Mistake]:
     """A current source needs a way back that is neither a current source nor an inductor."""
     import networkx
 

@@ -80,6 +80,8 @@ class RunSource:
     def _prologue(self, states: int, junctions: int) -> None:
         add = self._add
         add(0, "def run(p, s, out, c, m):" if self._responses else "def run(p, s, out, c):")
+        if self._responses:
+            add(1, "square = len(m) // 4")
         self._each(1, len(self.system.frame.numbers), "p# = p[#]")
         add(1, *(f"{name} = c[{index}]" for index, name in enumerate(CONTROLS)))
         add(1, *self.emitter.lines["variant"])
@@ -140,7 +142,7 @@ class RunSource:
             add(
                 3,
                 f"base = division * {states * states}",
-                f"for k in range({states * states}):",
+                "for k in range(square):",
                 "    m[base + k] = m[k]",
             )
         add(3, "part = 1", "while part <= division:")
@@ -172,7 +174,7 @@ class RunSource:
     def _respond(self, states: int) -> None:
         """Carry each direction's change of the states over the solve just made, with its factors."""
         add = self._add
-        add(4, f"for k in range(base, base + {states * states}, {states}):")
+        add(4, f"for k in range(base, base + square, {states}):")
         self._each(5, states, "e# = m[k + #]")
         add(5, *self.emitter.lines["response"])
         add(5, *(f"m[k + {i}] = {self.emitter.name(value)}" for i, value in enumerate(self.system.responses)))
@@ -298,7 +300,7 @@ class RunSource:
         if self._responses:
             size = states * states
             sums = " + ".join(f"take{division} * m[{division * size} + k]" for division in (1, 2, 3))
-            add(2, f"for k in range({size}):", f"    m[k] = {sums}")
+            add(2, "for k in range(square):", f"    m[k] = {sums}")
         for index, column in enumerate(self.watched):
             self._watch(index, column)
         self._each(

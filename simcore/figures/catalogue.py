@@ -86,3 +86,26 @@ FIGURES = _table(
 
 TABLED = ("harmonics",)
 """What stands before `within` only: compared with a table of limits, no number of its own."""
+
+
+_WORDS = {
+    "place": ("a node, a branch or an element", "a -> b"),
+    "branch": ("an element, a winding or a phase", "X"),
+    "element": ("an element", "X"),
+    "junction": ("a diode", "D1"),
+    "source": ("a source", "SOURCE"),
+    "signal": ("a signal", "x"),
+    "signal or branch": ("a current or an element", "X"),
+    "level": ("a level", "level"),
+    "count": ("the order of a harmonic", "n"),
+}
+
+
+def form_of(measure: Measure) -> str:
+    """What a measure takes, in words."""
+    return " and ".join(_WORDS[argument][0] for argument in measure.arguments)
+
+
+def example_of(measure: Measure) -> str:
+    """What may stand between its parentheses."""
+    return ", ".join(_WORDS[argument][1] for argument in measure.arguments)

@@ -74,6 +74,12 @@ def _record(study: str, records: Records) -> Record:
 
 
 def _figure_call(call: Call, record: Record) -> Figure:
+    if call not in record.figures:
+        record.figures[call] = _computed(call, record)
+    return record.figures[call]
+
+
+def _computed(call: Call, record: Record) -> Figure:
     declared = FIGURES[call.name].arguments
     arguments = [_argument(kind, argument, record) for kind, argument in zip(declared, call.arguments, strict=False)]
     return COMPUTE[call.name](record, *arguments)

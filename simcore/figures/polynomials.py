@@ -165,6 +165,9 @@ def roots(rows: Array) -> tuple[NDArray[np.int64], Array]:
     coefficients are left at once, so the cost is that of the few rows which may have a root. A touching (double) root
     may be given twice, or not at all where rounding lifts it; a row that is zero throughout has none.
     """
+    if rows.shape[1] == 2:
+        straight = np.flatnonzero(np.sign(rows[:, 0] - rows[:, 1]) * np.sign(rows[:, 0] + rows[:, 1]) < 0.0)
+        return straight, -rows[straight, 0] / rows[straight, 1]
     inside = np.flatnonzero(_has_both_signs(bernstein(rows)))
     coefficients = bernstein(rows[inside])
     low, width = np.full(len(inside), -1.0), 2.0

@@ -14,6 +14,7 @@ import numpy as np
 
 from grammar.quantities import AMPERE, KELVIN, VOLT
 from simcore.design.circuit import Circuit, Element, PlannedStudy, Port
+from simcore.figures.figure import Figure
 from simcore.figures.polynomials import Array
 from simcore.figures.signal import Signal
 
@@ -70,7 +71,8 @@ class Part:
 
 
 class Record:
-    """The signals of one solution. Signals run over the whole study; `window` and `periods` cut them."""
+    """The signals of one solution, over the whole study; `window` and `periods` cut them. figures: those worked out,
+    by what was asked."""
 
     def __init__(self, solution: Solved):
         self.solution = solution
@@ -80,6 +82,7 @@ class Record:
         self.rough = np.stack([self.times[:-1][rough], self.times[1:][rough]], axis=1)
         self.nodes = dict.fromkeys((*self.circuit.nodes(), *self.circuit.references))
         self._kept: dict[object, Signal] = {}
+        self.figures: dict[object, Figure] = {}
 
     def keep(self, key: object, form: Callable[[], Signal]) -> Signal:
         """The signal kept under a key, formed at the first asking."""

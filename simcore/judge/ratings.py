@@ -37,7 +37,10 @@ def _claims(circuit: Circuit, requirement: Requirement) -> list[_Claim]:
     for element in rated_elements(circuit, requirement):
         claims = [
             _Claim(
-                _worded(requirement, f"{element.name}: {stress.title} ({_rated(element, stress)})"),
+                replace(
+                    _worded(requirement, f"{element.name}: {stress.title} ({_rated(element, stress)})"),
+                    dimension=KINDS[element.kind].key[stress.rating].dimension,
+                ),
                 element,
                 stress,
                 value,
@@ -101,7 +104,7 @@ def _rated(element: Element, stress: Stress) -> str:
 def _worded(requirement: Requirement, text: str) -> Requirement:
     """The requirement as one of its ratings."""
     label = f"{requirement.label}: {text}" if requirement.label else None
-    return replace(requirement, relation="<=", wording=text, label=label)
+    return replace(requirement, relation="<=", wording=text, label=label, written=text)
 
 
 def rating_text(key: Key, element: Element) -> str:

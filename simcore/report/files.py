@@ -11,7 +11,7 @@ import math
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from pathlib import Path
 
-from grammar.quantities import Quantity, unit_of
+from grammar.quantities import ANGLE, Quantity, unit_of
 from simcore.figures.figure import Figure
 from simcore.judge.bill import BillLine
 from simcore.judge.cautions import cautions
@@ -119,7 +119,9 @@ def _numbers(figure: Figure | None) -> tuple[float | None, str | None, float | N
     """Value, unit and bound, each None where there is none."""
     if figure is None:
         return None, None, None
-    return _finite(figure.value), unit_of(figure.dimension), _finite(figure.bound)
+    in_unit = math.degrees(1.0) if figure.dimension == ANGLE else 1.0
+    bound = None if figure.bound is None else figure.bound * in_unit
+    return _finite(figure.value * in_unit), unit_of(figure.dimension), _finite(bound)
 
 
 def _finite(number: float | None) -> float | None:
@@ -177,7 +179,10 @@ def summaries(proofs: Mapping[str, tuple[Outcome, Proof | None]]) -> str:
 
 
 def _value(value: Quantity | str) -> object:
-    return value if isinstance(value, str) else {"value": value.value, "unit": unit_of(value.dimension)}
+    if isinstance(value, str):
+        return value
+    number = math.degrees(value.value) if value.dimension == ANGLE else value.value
+    return {"value": number, "unit": unit_of(value.dimension)}
 
 
 def _study_summary(study: ProvedStudy) -> dict[str, object]:

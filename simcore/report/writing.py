@@ -75,3 +75,11 @@ def _force_folder(folder: Path) -> None:
         os.fsync(handle)
     finally:
         os.close(handle)
+
+
+def append_forced(path: Path, text: str) -> None:
+    """Put text at the end of a file, on disk when this returns. An interruption may leave the beginning of it."""
+    with open(path, "a", encoding="utf-8", newline="") as file:
+        file.write(text)
+        file.flush()
+        os.fsync(file.fileno())

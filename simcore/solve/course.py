@@ -71,7 +71,7 @@ class Course:
 
     def _rest(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
         circuit = self.variant(changes)
-        frame = build_frame(circuit)
+        frame = self._frame(circuit, 0.0)
         engine = self._engine(circuit, frame, {})
         clock = clock_at_phase(frame, self.study.angle)
         stretch = self._guard(lambda: engine.rest(clock), clock)
@@ -82,7 +82,7 @@ class Course:
 
     def _settled(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
         circuit = self.variant(changes)
-        frame = build_frame(circuit, math.inf)
+        frame = self._frame(circuit, math.inf)
         period = self.study.period or common_period(frame)
         if period is None:
             raise NoSolution(self.study.name, Reason.NO_PERIOD)
@@ -110,7 +110,7 @@ class Course:
             while events and events[0][0] <= now:
                 changes = (*changes, events.pop(0)[1])
             circuit = self.variant(changes)
-            frame = build_frame(circuit, moment + now)
+            frame = self._frame(circuit, moment + now)
             if not stretches:
                 clock = self._first_clock(circuit, frame, memory)
                 period = self.study.period or common_period(frame)
@@ -153,13 +153,16 @@ class Course:
         if self.study.angle is None:
             return clock
         earlier = self.variant(self.before.changes)
-        frame = build_frame(earlier, self.before.moment)
+        frame = self._frame(earlier, self.before.moment)
         period = common_period(frame)
         if period is None:
             return clock
         ahead = (clock_at_phase(frame, self.study.angle) - clock) % period
         self._piece(earlier, frame, memory, clock, clock + ahead)
         return clock + ahead
+
+    def _frame(self, circuit: Circuit, moment: float) -> Frame:
+        return self.kernels.frame(circuit, moment, lambda: build_frame(circuit, moment))
 
     def _engine(self, circuit: Circuit, frame: Frame, memory: Memory) -> Engine:
         kernel = self.kernels.kernel(frame, grounded(frame, circuit.references))

@@ -105,7 +105,7 @@ class Engine:
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
         self._first_step = 0.0
-        self._record: list[float] = []
+        self._record: Sequence[float] | None = None
         self._response: list[float] | None = None
         self.flags = Flags(self.kernel.system.frame, self.numbers, self.period)
 
@@ -313,8 +313,8 @@ class Engine:
     def _call(self, controls: tuple[float, ...]) -> tuple[int, int | None]:
         """Run the kernel once; returns how many numbers it recorded and the threshold that ended it, if one did. A
         pivot that shrank to rounding is answered by going back and on with the sparse LU, which may pivot."""
-        if not self._record:
-            self._record = [0.0] * (_ROOM + record_width(self.kernel.system))
+        if self._record is None:
+            self._record = self.kernel.room(_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
         result = self._run(controls)
         if (result is None or result[WEAK]) and self.kernel.source:

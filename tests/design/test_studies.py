@@ -227,7 +227,7 @@ def test_observes_of_observes_in_any_order_are_bounded() -> None:
         "open each diode",
         "open or short each element",
         "short each of D[2..2], R1",
-        "R_x over [1 Ohm] by open each diode by extremes of each let, studies = [s, r]",
+        "open each diode by extremes of each let, studies = [s, r]",
     ],
 )
 def test_sweeps(axes: str) -> None:

@@ -1,0 +1,183 @@
+"""A call of `bulkrail sweep`: opens a description, solves its sweeps, writes their tables and says what was found.
+
+Everything wrong with the description is said before anything is solved.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Iterator, Mapping, Sequence
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+
+from grammar.expressions import nearest
+from grammar.mistakes import DescriptionError, Mistake, render
+from simcore.campaign.journal import Journal
+from simcore.campaign.plan import Plan, plan_of
+from simcore.campaign.results import Results
+from simcore.campaign.rows import Row
+from simcore.campaign.sensitivity import sensitivities
+from simcore.campaign.solver import Task
+from simcore.campaign.sweeping import Keeping, fingerprint, solved_rows
+from simcore.campaign.workers import Crew, WorkersLost, crew_of
+from simcore.design.circuit import Circuit, PlannedSweep
+from simcore.design.overview import in_words
+from simcore.judge.cautions import GENERAL
+from simcore.judge.outcome import Outcome, worst
+from simcore.opening import Opened, open_design
+from simcore.proof import TAKEN
+from simcore.report.progress import progress
+from simcore.report.session import Say
+from simcore.report.sweeps import sensitivity_lines, sweep_lines, write_sensitivities, write_sweep
+from simcore.report.terminal import show_seconds
+
+_CAUTIONS = ("Cautions", *(f"  {line}" for line in GENERAL))
+
+
+@dataclass(frozen=True)
+class Asked:
+    """What a call asks for: the sweeps, none for all; lets with other values; workers, None for one a core; a
+    scheduler's address, "" for none; whether to go on with an interrupted sweep."""
+
+    sweeps: Sequence[str]
+    settings: Mapping[str, str]
+    workers: int | None = None
+    scheduler: str = ""
+    resume: bool = False
+
+
+def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
+    """Solve the sweeps of a description and write their tables to a folder."""
+    opened, mistakes = open_design(file, asked.settings)
+    try:
+        if mistakes:
+            raise DescriptionError(mistakes)
+        sweeps = _chosen(opened.circuit, asked.sweeps, file)
+        tasks = [(sweep, task_of(opened, sweep)) for sweep in sweeps]
+        crew = crew_of(asked.workers, asked.scheduler)
+        say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
+        solved = [_solve(sweep, task, crew, folder, asked.resume, say, complain) for sweep, task in tasks]
+        for _, journal in solved:
+            journal.end()
+    except DescriptionError as error:
+        complain(render(error.mistakes).rstrip("\n"))
+        return Outcome.INPUT_WRONG
+    except WorkersLost as fault:
+        complain(f"{file}: {fault}")
+        complain("    cure: give it fewer --workers, if memory is short; what is finished is kept, --resume goes on")
+        return Outcome.NO_SOLUTION
+    say("\n".join(["", *_CAUTIONS, ""]))
+    return worst(outcome for outcome, _ in solved)
+
+
+def sensitivity_of_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
+    """Find how far each required figure follows each let, and write the table to a folder."""
+    opened, mistakes = open_design(file, asked.settings)
+    path = folder / "sensitivity.csv"
+    try:
+        if mistakes:
+            raise DescriptionError(mistakes)
+        studies = judged_studies(opened.circuit, (), file)
+        crew = crew_of(asked.workers, asked.scheduler)
+
+        def solve(plan: Plan) -> list[Row]:
+            with progress(plan.name, len(plan), complain) as tell:
+                return list(solved_rows(Task(opened, plan, studies), crew, tell=tell))
+
+        nominal, found = sensitivities(opened.circuit.lets, solve)
+        if not nominal.solved:
+            complain(f"{file}: {nominal.ended}")
+            return Outcome.NO_SOLUTION
+        with writing(folder):
+            write_sensitivities(found, path)
+    except DescriptionError as error:
+        complain(render(error.mistakes).rstrip("\n"))
+        return Outcome.INPUT_WRONG
+    except WorkersLost as fault:
+        complain(f"{file}: {fault}\n    cure: give it fewer --workers, if memory is short")
+        return Outcome.NO_SOLUTION
+    title = [opened.circuit.purpose, file] if opened.circuit.purpose else [file]
+    say("\n".join([*title, *sensitivity_lines(found), "", f"  Table: {path}.", "", *_CAUTIONS, ""]))
+    return Outcome.ALL_HOLD if nominal.passes else Outcome.NOT_ALL_HOLD
+
+
+def task_of(opened: Opened, sweep: PlannedSweep) -> Task:
+    """What solving a sweep takes. Raises DescriptionError where nothing is required of its studies."""
+    studies = judged_studies(opened.circuit, sweep.studies, f"sweep {sweep.name}")
+    sentence = in_words(sweep.written) if sweep.written is not None else ""
+    return Task(opened, plan_of(sweep, opened.circuit.lets, sentence), studies)
+
+
+def judged_studies(circuit: Circuit, wanted: Sequence[str], where: str) -> tuple[str, ...]:
+    """Those of the wanted studies, or of all, on which anything is required. Raises DescriptionError for none."""
+    judged = {requirement.study for requirement in circuit.requirements}
+    names = wanted or tuple(circuit.studies)
+    studies = tuple(name for name in circuit.studies if name in names and name in judged)
+    if not studies:
+        cure = "Add a `require` line for one of its studies; its limits may be wide."
+        raise DescriptionError([Mistake("nothing is required, so there is nothing to find", cure, file=where)])
+    return studies
+
+
+@contextmanager
+def writing(folder: Path) -> Iterator[None]:
+    """Turns what the system says of files that can't be written into a mistake."""
+    try:
+        yield
+    except OSError as error:
+        cure = "Name a folder that can be written to with --out."
+        what = f"the results can't be written: {error.strerror}"
+        raise DescriptionError([Mistake(what, cure, file=str(folder))]) from error
+
+
+def _chosen(circuit: Circuit, wanted: Sequence[str], file: str) -> list[PlannedSweep]:
+    known = {sweep.name: sweep for sweep in circuit.sweeps}
+    mistakes = [_unknown(name, known, file) for name in wanted if name not in known]
+    if not known:
+        cure = "Add one, such as `sweep corners: extremes of each let`."
+        mistakes.append(Mistake("there is no sweep in it", cure, file=file))
+    for name, sweep in known.items():
+        if name in (*TAKEN, *circuit.studies):
+            what = f"the table of sweep {name} would take the place of {name}.csv of a run"
+            mistakes.append(Mistake(what, "Give the sweep another name.", sweep.span))
+    if mistakes:
+        raise DescriptionError(mistakes)
+    return [sweep for name, sweep in known.items() if not wanted or name in wanted]
+
+
+def _unknown(name: str, known: Mapping[str, PlannedSweep], file: str) -> Mistake:
+    near = nearest(name, known)
+    cure = f"Did you mean {near}?" if near else f"Its sweeps: {', '.join(known) or 'none'}."
+    return Mistake(f"no sweep is called {name}", cure, file=file)
+
+
+def _solve(
+    sweep: PlannedSweep, task: Task, crew: Crew, folder: Path, resume: bool, say: Say, complain: Say
+) -> tuple[Outcome, Journal]:
+    """Solve one sweep; its table is written once all of it is there, and its journal kept."""
+    start = time.perf_counter()
+    journal = Journal(folder / f"{sweep.name}.journal", fingerprint(task))
+    path = folder / f"{sweep.name}.csv"
+    try:
+        with writing(folder):
+            keeping = Keeping(journal, _goes_on(journal, resume))
+            with progress(sweep.name, len(task.plan), complain) as tell:
+                rows = list(solved_rows(task, crew, keeping, tell=tell))
+            results = Results(task.plan, rows, task.claims)
+            write_sweep(results, path)
+    except KeyboardInterrupt:
+        complain(f"what is finished of {sweep.name} is kept in {journal.path}; run it again with --resume to go on")
+        raise
+    seconds = show_seconds(time.perf_counter() - start)
+    say("\n".join(["", *sweep_lines(results, sweep.label), f"  Table: {path}. Solved in {seconds}."]))
+    return results.outcome, journal
+
+
+def _goes_on(journal: Journal, resume: bool) -> bool:
+    """Whether a sweep goes on with its journal. Finished work is not thrown away unasked."""
+    left = journal.left_by()
+    if left and not resume:
+        cure = "Add --resume to go on with it, or delete the file to start over."
+        raise DescriptionError([Mistake("an interrupted run of this sweep is here", cure, file=str(journal.path))])
+    return resume and journal.path.exists()

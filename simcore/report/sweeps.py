@@ -1,0 +1,160 @@
+"""What a sweep leaves: its table as CSV by RFC 4180, and what a person reads of it.
+
+Knows the results of sweeps and works nothing out.
+"""
+
+from __future__ import annotations
+
+import csv
+import math
+from collections.abc import Sequence
+from pathlib import Path
+
+from grammar.quantities import quantity, show
+from simcore.campaign.results import CONFIDENCE, SOURCE, PassRate, Results, Worst, let_lines, variant_words
+from simcore.campaign.rows import Found
+from simcore.campaign.sensitivity import Sensitivity
+from simcore.report.tables import INDENT, table
+from simcore.report.writing import whole_file
+
+_REASONS = 5
+_RATES = 24
+_DIGITS = 5
+
+
+def write_sweep(results: Results, path: Path) -> None:
+    """The table of a sweep: one row a variant, an empty cell where a figure has no finite value."""
+    columns = results.columns
+    with whole_file(path) as file:
+        writer = csv.writer(file)
+        writer.writerow(columns)
+        writer.writerows([_cell(value) for value in row] for row in zip(*columns.values(), strict=True))
+
+
+def _cell(value: object) -> str:
+    if isinstance(value, float):
+        return repr(value) if math.isfinite(value) else ""
+    return str(value)
+
+
+def sweep_lines(results: Results, label: str | None = None) -> list[str]:
+    """What one sweep found."""
+    plan = results.plan
+    title = f"{plan.name} ({label})" if label else plan.name
+    lines = [f"{title}: {plan.sentence}" if plan.sentence else title]
+    lines += [INDENT + axis.note for axis in plan.axes if axis.note]
+    worst = results.worst
+    if worst:
+        lines += ["", INDENT + "The worst case of each requirement, and the variant where it lies"]
+        headings = ["verdict", "study", "requirement", "found", "±", "margin", "variant"]
+        lines += table(headings, [_worst_cells(each) for each in worst], left=3)
+        lines += ["", *_variants(results, worst)]
+    lines += _unsolved(results)
+    lines.append(INDENT + counted(results))
+    return lines + [INDENT + text for text in _rates(results.pass_rates)]
+
+
+def _worst_cells(worst: Worst) -> list[str]:
+    claim, found = worst.claim, worst.found
+    subject = f"{claim.label} ({claim.requirement})" if claim.label else claim.requirement
+    if found is None or worst.row is None:
+        return ["not solved", claim.study, subject, "-", "-", "-", "-"]
+    return [found.state, claim.study, subject, *_found_cells(found), str(worst.row.number)]
+
+
+def _found_cells(found: Found) -> list[str]:
+    unit = found.claim.unit
+    value = "never" if math.isinf(found.value) else _amount(found.value, unit)
+    bound = "-" if math.isnan(found.bound) else _amount(found.bound, unit, 2)
+    return [value, bound, _amount(found.margin, unit)]
+
+
+def _amount(value: float, unit: str, digits: int = _DIGITS) -> str:
+    if math.isnan(value):
+        return "-"
+    held = quantity(value, unit)
+    return show(held.value, held.dimension, digits)
+
+
+def _variants(results: Results, worst: Sequence[Worst]) -> list[str]:
+    """The variants in which worst cases lie, as lines to paste."""
+    numbers = sorted({each.row.number for each in worst if each.row is not None})
+    lines = []
+    for number in numbers:
+        pasted = let_lines(results.plan.variant(number - 1)) or ["# as described"]
+        lines += [f"{INDENT}variant {number}:", *(INDENT * 2 + line for line in pasted)]
+    return lines + [""] if lines else []
+
+
+def _unsolved(results: Results) -> list[str]:
+    """Why variants were not solved, the first few."""
+    failed = [row for row in results.rows if not row.solved]
+    lines = []
+    for row in failed[:_REASONS]:
+        words = ", ".join(variant_words(results.plan.variant(row.number - 1))) or "as described"
+        lines.append(f"{INDENT}variant {row.number} ({words}) was not solved: {row.ended}")
+    if len(failed) > _REASONS:
+        lines.append(f"{INDENT}and {len(failed) - _REASONS} more: see the column `ended` of the table")
+    return lines + [""] if lines else []
+
+
+def counted(results: Results) -> str:
+    """How many variants came to what, in one sentence."""
+    passing, failing, unsolved = results.counts
+    total = len(results)
+    hold = "hold every requirement" if passing != 1 else "holds every requirement"
+    parts = [f"{passing} {hold}"] if results.required else [f"{passing} solved, nothing was required"]
+    if failing:
+        parts.append(f"{failing} {'do' if failing != 1 else 'does'} not")
+    if unsolved:
+        parts.append(f"{unsolved} {'were' if unsolved != 1 else 'was'} not solved")
+    return f"Of {total} variant{'s' if total != 1 else ''}: {', '.join(parts)}."
+
+
+def _rates(rates: Sequence[PassRate]) -> list[str]:
+    """The pass rates of draws; the lowest first where there are too many for all."""
+    shown = rates if len(rates) <= _RATES else sorted(rates, key=lambda rate: rate.passing / rate.drawn)[:_RATES]
+    lines = []
+    for rate in shown:
+        where = f" at {rate.at}" if rate.at else ""
+        sure = f"with {100.0 * CONFIDENCE:.0f} % confidence between {_percent(rate.low)} and {_percent(rate.high)}"
+        lines.append(f"Pass rate{where}: {_percent(rate.passing / rate.drawn)}, {sure} ({SOURCE})")
+    if len(shown) < len(rates):
+        lines.append(f"These are the {len(shown)} lowest of {len(rates)} pass rates.")
+    return lines
+
+
+def _percent(share: float) -> str:
+    return f"{100.0 * share:.2f} %"
+
+
+# --- sensitivities ---------------------------------------------------------------------------------------------------
+
+SENSITIVITY_COLUMNS = ("study", "figure", "let", "relative sensitivity", "bound", "step", "note")
+
+
+def write_sensitivities(found: Sequence[Sensitivity], path: Path) -> None:
+    """One row for each figure and let, none of its numbers with a unit: shares over shares."""
+    with whole_file(path) as file:
+        writer = csv.writer(file)
+        writer.writerow(SENSITIVITY_COLUMNS)
+        for each in found:
+            cells = (each.claim.study, each.claim.figure, each.let, each.value, each.bound, each.step, each.reason)
+            writer.writerow([_cell(value) for value in cells])
+
+
+def sensitivity_lines(found: Sequence[Sensitivity]) -> list[str]:
+    """The lets that each figure follows, the largest first."""
+    if not found:
+        return ["", "No let has a value that could be moved, or nothing that was required has a figure."]
+    lines = ["", "Relative sensitivity: by how many per cent a figure rises where a let rises by one per cent"]
+    for heading in dict.fromkeys(each.claim.heading for each in found):
+        mine = [each for each in found if each.claim.heading == heading]
+        cells = [[each.let, _share(each.value, 3), _share(each.bound, 2)] for each in mine]
+        lines += ["", f"{INDENT}{heading}", *table(["let", "sensitivity", "±"], cells)]
+        lines += [f"{INDENT}{each.let}: {each.reason}" for each in mine if each.reason]
+    return lines
+
+
+def _share(value: float, digits: int) -> str:
+    return "-" if math.isnan(value) else f"{value:.{digits}g}"
