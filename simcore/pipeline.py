@@ -26,8 +26,9 @@ from simcore.figures.figure import Figure, bounded
 from simcore.figures.overview import signal_rows
 from simcore.figures.record import Record
 from simcore.figures.stresses import Stress, rated_elements, rated_stresses
-from simcore.solve.course import Course, Reached
+from simcore.solve.course import Reached
 from simcore.solve.failure import NoSolution, Reason
+from simcore.solve.heating import solve_warm
 from simcore.solve.solution import Solution
 from simcore.solve.worst import worst_angle
 
@@ -130,7 +131,7 @@ class _Proof:
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
             before = earlier.left if before is None else before
-        solution, left = Course(study, self.variant, before, tolerance, self.kernels).solve()
+        solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels)
         if not solution.kirchhoff <= LARGEST_SUM:
             detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)

@@ -1,7 +1,4 @@
-"""The component kinds, one module each, in the order of the language reference.
-
-A kind whose `build` is None, and a key that is not `available`, is understood but not solved in this version.
-"""
+"""The component kinds, one module each, in the order of the language reference."""
 
 from __future__ import annotations
 

@@ -45,7 +45,6 @@ class Key:
     rating: bool = False
     whole: bool = False
     bare: bool = False
-    available: bool = True
     alternatives: tuple[Dimension, ...] = ()
 
 
@@ -56,7 +55,7 @@ class Kind:
     form: which terminals it takes: "branch", "set" or "windings"
     value_key: the key that the unnamed value stands for; sheet: whether a data sheet may (or must) stand there
     check: further rules over several keys; gets the given keys, returns (key at fault or None, what, cure) triples
-    build: adds the component's equations to a frame; None while the kind is not available in this version
+    build: adds the component's equations to a frame
     instants: from the given keys, the times of a study in s at which the component changes by itself
     describe: from the given keys, what was worked out from them, in words
     """
@@ -65,9 +64,9 @@ class Kind:
     meaning: str
     form: str
     keys: tuple[Key, ...]
+    build: Callable[[Frame, Part], None]
     value_key: str | None = None
     check: Callable[[dict[str, object]], list[tuple[str | None, str, str]]] | None = None
-    build: Callable[[Frame, Part], None] | None = None
     instants: Callable[[dict[str, object]], list[float]] | None = None
     describe: Callable[[dict[str, object]], list[str]] | None = None
     key: dict[str, Key] = field(init=False, repr=False, compare=False)

@@ -7,11 +7,13 @@ from __future__ import annotations
 
 import math
 from itertools import pairwise
+from typing import Any
 
 from grammar.quantities import AMPERE, ANGLE, HENRY, HERTZ, NONE, OHM, SECOND, VOLT
 from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
+from simcore.components.recorded import spectrum
 from simcore.equations.values import Value
 
 WAVEFORM_KEYS = (
@@ -43,9 +45,14 @@ WAVEFORM_KEYS = (
         alternatives=(AMPERE,),
     ),
     Key("period", "time after which the points repeat", SECOND, low=0.0, open_low=True),
-    Key("samples", "file with a recorded trace", NONE, form="text", available=False),
-    Key("column", "column of the recorded trace", NONE, form="text", available=False),
-    Key("scale", "factor on the recorded trace", NONE, default=1.0, available=False),
+    Key(
+        "samples",
+        "CSV file with a recorded trace; with a period its harmonics up to the 50th, else joined by straight lines",
+        NONE,
+        form="text",
+    ),
+    Key("column", "column of the recorded trace, by default the second", NONE, form="text"),
+    Key("scale", "factor on the recorded trace", NONE, default=1.0),
 )
 
 IMPEDANCE_KEYS = (
@@ -57,15 +64,20 @@ IMPEDANCE_KEYS = (
 def check_waveform(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
     """The rules between the keys of a waveform, which a three-phase set shares."""
     faults: list[tuple[str | None, str, str]] = []
-    if not any(key in given for key in ("sine", "constant", "points")):
-        faults.append((None, "it has no waveform", "Give `sine`, `constant` or `points`."))
+    if not any(key in given for key in ("sine", "constant", "points", "samples")):
+        faults.append((None, "it has no waveform", "Give `sine`, `constant`, `points` or `samples`."))
     if "sine" in given and "frequency" not in given:
         faults.append(("sine", "its sine has no frequency", "Add `frequency = 50 Hz`, or the frequency you have."))
     for key in ("frequency", "phase", "harmonics"):
         if key in given and "sine" not in given:
             faults.append((key, f"{key} is given without a sine", f"Add `sine`, or leave {key} out."))
-    if "period" in given and "points" not in given:
+    if "period" in given and not ("points" in given or "samples" in given):
         faults.append(("period", "a period is given without points", "It repeats `points`: add them or leave it out."))
+    if "points" in given and "samples" in given:
+        faults.append(("samples", "samples are given beside points", "Give the one or the other."))
+    for key in ("column", "scale"):
+        if key in given and "samples" not in given:
+            faults.append((key, f"{key} is given without samples", f"Add `samples`, or leave {key} out."))
     return faults + check_points("points", given) + _check_harmonics(given)
 
 
@@ -113,7 +125,29 @@ def waveform(frame: Frame, part: Part, factor: float = 1.0, delay: float = 0.0, 
             total = total + frame.parameter(share * peak) * wave
     if part.given("points") is not None:
         total = total + frame.waveform(part.given("points"), part.given("period"))
+    if part.given("samples") is not None:
+        total = total + _recorded(frame, part, factor, delay)
     return total
+
+
+def _recorded(frame: Frame, part: Part, factor: float, delay: float) -> Value:
+    """A recorded trace: its mean and harmonics where it repeats, else straight lines between its points."""
+    points, scale, period = part.given("samples"), part.given("scale") * factor, part.given("period")
+    if period is None:
+        return frame.waveform([(time, scale * value) for time, value in points], None)
+    found = spectrum(points, period)
+    total = frame.parameter(scale * found.mean)
+    for order, peak, phase in found.harmonics:
+        total = total + frame.parameter(scale * peak) * frame.sine(order / period, phase - order * delay)
+    return total
+
+
+def describe(given: dict[str, Any]) -> list[str]:
+    """For `look`: what was made of a recorded period."""
+    if "samples" not in given or "period" not in given:
+        return []
+    found = spectrum(given["samples"], given["period"])
+    return [f"{len(found.harmonics)} harmonics kept, which miss at most {100.0 * found.missed:.2g} % of its peak"]
 
 
 def _build(frame: Frame, part: Part) -> None:
@@ -146,4 +180,5 @@ SOURCE = Kind(
     WAVEFORM_KEYS + IMPEDANCE_KEYS,
     check=_check,
     build=_build,
+    describe=describe,
 )

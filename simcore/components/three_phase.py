@@ -12,7 +12,7 @@ from grammar.quantities import NONE, WATT
 from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
-from simcore.components.source import IMPEDANCE_KEYS, WAVEFORM_KEYS, check_waveform, waveform
+from simcore.components.source import IMPEDANCE_KEYS, WAVEFORM_KEYS, check_waveform, describe, waveform
 
 _IN_VOLTS = tuple(replace(key, alternatives=()) for key in WAVEFORM_KEYS)
 
@@ -98,4 +98,5 @@ THREE_PHASE = Kind(
     _IN_VOLTS + IMPEDANCE_KEYS + _SET_KEYS,
     check=_check,
     build=_build,
+    describe=describe,
 )

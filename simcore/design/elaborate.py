@@ -16,17 +16,18 @@ from simcore.components import KINDS
 from simcore.components.kind import Kind
 from simcore.design.circuit import Circuit, LetValue, Observed, Port
 from simcore.design.circuit import Element as Component
-from simcore.design.files import Project
+from simcore.design.files import Project, read_beside
 from simcore.design.flatten import Flat, Flattener, TooLarge, is_dotted
 from simcore.design.measures import Measures
+from simcore.design.recorded import Unreadable, trace_of
 from simcore.design.requirements import Requirements
-from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, at_word, rename_cure, span_of
+from simcore.design.scopes import Place, Poisoned, Scope, Sheet, Value, rename_cure, span_of
 from simcore.design.sensing import NotLinear, sensed
 from simcore.design.soundness import unsound
 from simcore.design.studies import Studies, moved_lets
 from simcore.design.sweeps import planned_sweeps
 from simcore.design.unused import check_unused
-from simcore.design.values import EXPRESSIONS, LATER, Reader, Values, clash, is_current
+from simcore.design.values import EXPRESSIONS, Reader, Values, clash, is_current
 
 ROOM = 298.15
 
@@ -146,15 +147,33 @@ class _Builder:
         except Poisoned:
             self.scope.tear(node.name, *node.terminals.nodes, node.terminals.star)
             return
-        if kind.build is None:
-            where = at_word(node.span, node.kind, node.terminals.span)
-            self.scope.wrong(f"{kind.name} is not available in this version", LATER, where)
-            self._enter(full, node, ports, Values())
-            return
         values = self.reader.element(node, kind, place)
+        self._trace(values)
         self._enter(full, node, ports, values)
         self.placed[full] = place
         self._fits(node, kind, ports, values)
+
+    def _trace(self, values: Values) -> None:
+        """A recorded trace that an element names, read from beside the description."""
+        name, span = values.given.get("samples"), values.spans.get("samples")
+        if not isinstance(name, str):
+            return
+        try:
+            points, dimension = trace_of(read_beside(self.project.folder, name), values.given.get("column"))
+        except Unreadable as fault:
+            self.scope.wrong(f'"{name}": {fault}', fault.cure, span)
+        except (ValueError, OSError) as fault:
+            reason = fault.strerror if isinstance(fault, OSError) else str(fault)
+            self.scope.wrong(f'"{name}" can\'t be read: {reason}', "Put the file beside the description.", span)
+        else:
+            period = values.given.get("period")
+            if isinstance(period, float) and points[-1][0] - points[0][0] < 0.98 * period:
+                cure = "Record a whole period, or leave `period` out."
+                self.scope.wrong(f'"{name}" is shorter than the period', cure, span)
+            values.given["samples"], values.units["samples"] = points, dimension
+            return
+        del values.given["samples"]
+        values.failed = True
 
     def _enter(self, full: str, node: Element, ports: tuple[Port, ...], values: Values) -> None:
         unit = ""

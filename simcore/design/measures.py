@@ -242,9 +242,6 @@ class Measures:
     def _measure(self, call: Call, place: Place) -> Resolved:
         signal = call.name in SIGNALS
         measure = SIGNALS[call.name] if signal else FIGURES[call.name]
-        if not measure.available:
-            self._wrong(f"{call.name} is not available in this version", "Leave it out.", call.span)
-            raise Poisoned
         self._study(call, signal)
         if len(call.arguments) != len(measure.arguments) and not (measure.optional and not call.arguments):
             cure = f"Write `{call.name}({example_of(measure)})`."

@@ -137,6 +137,8 @@ def _worked_out(element: Element) -> list[str]:
 def value_text(key: Key, value: Any, unit: str = "") -> str:
     """A given value in words, with its unit."""
     dimension = AMPERE if key.alternatives and unit == "A" else key.dimension
+    if key.form in ("text", "word") and isinstance(value, tuple):
+        return f"{len(value)} points from {show(value[0][0], SECOND)} to {show(value[-1][0], SECOND)}"
     if key.form in ("text", "word"):
         return str(value)
     if key.form == "expression":

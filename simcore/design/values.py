@@ -36,8 +36,6 @@ from simcore.design.scopes import Place, Poisoned, Scope, Sheet, span_of, sugges
 
 EXPRESSIONS = (Number, Name, Negative, Binary, Branch, Each, Call)
 
-LATER = "Leave it out: a later version will have it."
-
 
 @dataclass
 class Values:
@@ -67,7 +65,6 @@ class Reader:
         if node.value is not None:
             settings += self._unnamed(node, kind, place, found)
         found = self._settings(settings, kind, place, found)
-        self._unavailable(found, kind)
         if not found.failed:
             self._together(node, kind, found)
         return found
@@ -120,9 +117,6 @@ class Reader:
                 continue
             written[setting.key] = setting
             found.spans[key.name] = setting.span
-            if not key.available:
-                found.given[key.name] = None
-                continue
             try:
                 found.given[key.name] = self._given(key, setting, place, found)
             except Poisoned:
@@ -142,12 +136,6 @@ class Reader:
             self._wrong("the temperature at which this law holds is not said", cure, span_of(value), found)
         elif "temperature" in found.given:
             found.given.setdefault("data_temperature", found.given["temperature"])
-
-    def _unavailable(self, found: Values, kind: Kind) -> None:
-        for name in [name for name in found.given if not kind.key[name].available]:
-            del found.given[name]
-            what = f"{name} of a {kind.name} is not available in this version"
-            self._wrong(what, LATER, found.spans[name], found)
 
     def _together(self, node: Element, kind: Kind, found: Values) -> None:
         """The rules over several keys."""

@@ -39,7 +39,6 @@ class Measure:
     meaning: str
     wants: Dimension | None = None
     optional: bool = False
-    available: bool = True
 
 
 def _table(*measures: Measure) -> dict[str, Measure]:

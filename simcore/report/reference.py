@@ -27,13 +27,12 @@ _TERMINALS = {
     "set": "`(a, b, c): {0}` or `(a, b, c) -> star: {0}`",
     "windings": "`(a -> b) : (c -> d): {}`, any number of windings",
 }
-_NOT_YET = "*not in this version*"
 
 
 def reference() -> str:
     """The whole section as Markdown. ValueError where a declaration has no meaning."""
     lines = ["## Reference: element kinds and their keys", ""]
-    lines.append(f"A key that is left out has its default. What is {_NOT_YET} is understood, and named as a mistake.")
+    lines.append("A key that is left out has its default.")
     told: list[Kind] = []
     for kind in KINDS.values():
         lines += ["", *_kind(kind, told)]
@@ -62,8 +61,6 @@ def _kind(kind: Kind, told: Sequence[Kind]) -> list[str]:
     words = [f"{_TERMINALS[kind.form].format(kind.name + ' NAME')}: {_said(kind.meaning, kind.name)}."]
     if kind.value_key is not None:
         words.append(f"Its value is `{kind.value_key}`.")
-    if kind.build is None:
-        words.append(f"The whole kind is {_NOT_YET}.")
     if shared is not None:
         words.append(f"It has the keys of {shared.name}, and:")
     rows = [[f"`{key.name}`", _takes(key, kind), _default(key), _range(key), _meaning(key, kind)] for key in own]
@@ -82,8 +79,7 @@ def _said(meaning: str, name: str) -> str:
 
 def _meaning(key: Key, kind: Kind) -> str:
     rating = "rating: " if key.rating else ""
-    missing = "" if key.available else f"; {_NOT_YET}"
-    return rating + _said(key.meaning, f"{kind.name}.{key.name}") + missing
+    return rating + _said(key.meaning, f"{kind.name}.{key.name}")
 
 
 def _takes(key: Key, kind: Kind) -> str:
@@ -169,9 +165,8 @@ def _measure(measure: Measure) -> list[str]:
     same = measure.result(VOLT) == VOLT and measure.result(AMPERE) == AMPERE
     unit = "the signal's" if same else unit_of(measure.result(NONE))
     whole = "; with no argument, of the whole circuit" if measure.optional else ""
-    missing = "" if measure.available else f"; {_NOT_YET}"
     written = f"`{measure.name}({', '.join(measure.arguments)})`"
-    return [written, unit, _said(measure.meaning, measure.name) + whole + missing]
+    return [written, unit, _said(measure.meaning, measure.name) + whole]
 
 
 def _table(headings: Sequence[str], rows: Iterable[Sequence[str]]) -> list[str]:

@@ -7,12 +7,13 @@ Knows studies, circuits and the engine; circuits under changes come from a funct
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from typing import TypeVar
 
 import numpy as np
 
+from grammar.quantities import SECOND, show
 from simcore.components.build import build_frame, instants
 from simcore.components.frame import Frame
 from simcore.design.circuit import Change, Circuit, PlannedStudy
@@ -31,19 +32,22 @@ EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
 _KINKS_A_PERIOD = 100
 _BEGIN = 1e-7
+_TOLD = 6
+"""Changes by thresholds that are told one by one."""
 _EVENT = 1e-3
 """Largest step in which a threshold is passed, over the largest with a kink."""
 
 
 @dataclass(frozen=True)
 class Reached:
-    """Where a study left the circuit: states by element, the sources' clock and the elements' own time in s, and the
-    changes."""
+    """Where a study left the circuit: states by element, the sources' clock and the elements' own time in s, the
+    changes, and the temperatures in K of what its own loss heats."""
 
     memory: Memory
     clock: float
     moment: float
     changes: tuple[Change, ...]
+    temperatures: Mapping[str, float] = field(default_factory=dict)
 
 
 @dataclass
@@ -60,6 +64,7 @@ class Course:
     tolerance: float
     kernels: KernelCache = field(default_factory=KernelCache)
     counts: Counts = field(default_factory=Counts)
+    told: list[tuple[float, str]] = field(default_factory=list)
 
     def solve(self) -> tuple[Solution, Reached]:
         """The solution, and where it left the circuit."""
@@ -91,7 +96,9 @@ class Course:
         clock = clock_at_phase(frame, self.study.angle)
         stepping = self._stepping(frame, period)
         found = self._guard(lambda: settle(engine, clock, period, stepping), clock)
+        engine.flags.told.clear()
         stretches = self._guard(lambda: engine.advance(clock + period, stepping, record=True), clock)
+        self.told += engine.flags.told
         engine.remember(memory)
         solution = self._solution(self._valued(changes, stretches), stretches, clock, period, period)
         solution.notes.append(found.how)
@@ -129,6 +136,7 @@ class Course:
         engine.move(start)
         stepping = self._stepping(frame, self.study.duration)
         recorded = self._guard(lambda: engine.advance(end, stepping, record=True), start)
+        self.told += engine.flags.told
         self._forget(memory)
         engine.remember(memory)
         return recorded
@@ -220,5 +228,8 @@ class Course:
             "iterations": counts.iterations,
             "weak pivots": counts.weak,
         }
+        notes = [f"{what} at {show(time - clock, SECOND)}" for time, what in self.told[:_TOLD]]
+        if len(self.told) > _TOLD:
+            notes.append(f"and {len(self.told) - _TOLD} more such changes")
         whole = self.variant(())
-        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, [], statistics)
+        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, notes, statistics)

@@ -32,6 +32,10 @@ class Reason(Enum):
         "the currents at a node do not add up to zero",
         "ask for more accuracy, or look for parts whose values lie far out of proportion to the others",
     )
+    RUNAWAY = (
+        "a junction finds no temperature at which its loss is carried away",
+        "give it a smaller thermal_resistance, less leakage or less voltage",
+    )
     WORK = (
         "the work bound was reached",
         "shorten the duration or ask for a looser accuracy",

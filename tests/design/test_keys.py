@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-from dataclasses import replace
 from typing import Any
 
 import pytest
@@ -11,7 +10,6 @@ import pytest
 from grammar.description import Datasheet
 from grammar.scanner import tokens_of
 from simcore.components import KINDS
-from simcore.components.kind import Kind
 from simcore.design.files import load_text
 from simcore.design.scopes import Scope, Sheet
 from simcore.design.values import Reader, Values
@@ -155,9 +153,7 @@ def given(kind: str, key: str, text: str) -> tuple[Values, list[str]]:
     (node,) = project.top.description.statements
     assert isinstance(node, Datasheet)
     scope = Scope(project, {})
-    asked = KINDS[kind]
-    able: Kind = replace(asked, keys=tuple(replace(each, available=True) for each in asked.keys))
-    return Reader(scope).sheet(Sheet(project.top, node), able), [mistake.what for mistake in scope.mistakes]
+    return Reader(scope).sheet(Sheet(project.top, node), KINDS[kind]), [mistake.what for mistake in scope.mistakes]
 
 
 def near(found: Any, wanted: Any) -> bool:
