@@ -80,13 +80,19 @@ class _Level:
         return self.solution.statistics["solves"] * len(self.solution.stretches[0].system.columns) > WORK
 
 
+Doubtful = Callable[[str, Mapping[str, Record], Mapping[str, Record]], bool]
+
+
 class _Proof:
     """Solves the studies of one circuit, each after those it starts from."""
 
-    def __init__(self, circuit: Circuit, variant: Callable[[Sequence], Circuit], kernels: KernelCache):
+    def __init__(
+        self, circuit: Circuit, variant: Callable[[Sequence], Circuit], kernels: KernelCache, doubtful: Doubtful
+    ):
         self.circuit = circuit
         self.variant = variant
         self.kernels = kernels
+        self.doubtful = doubtful
         self.pairs: dict[str, tuple[_Level, _Level]] = {}
         self.results: dict[str, StudyResult] = {}
 
@@ -103,17 +109,21 @@ class _Proof:
             study = self._at_worst(study, study.worst, tolerance)
             note = f"worst phase: {show(study.angle or 0.0, ANGLE)} of the first sine"
         levels = [self._level(study, tolerance, 0, None)]
-        excess = RATIO
-        while (
-            excess > 1.0 and len(levels) <= ROUNDS and tolerance > _TIGHTEST and not (levels[1:] and levels[-1].heavy)
-        ):
+        excess, going = RATIO, True
+        while going and len(levels) <= ROUNDS and tolerance > _TIGHTEST and not (levels[1:] and levels[-1].heavy):
             tolerance = max(tolerance / min(max(RATIO, 2.0 * excess), LARGEST_RATIO), _TIGHTEST)
             levels.append(self._level(study, tolerance, 1, levels[-1]))
             excess = self._excess(study, levels[-2], levels[-1])
+            going = excess > 1.0 or self._in_doubt(name, levels[-2], levels[-1])
         if note is not None:
             levels[-1].solution.notes.append(note)
         self.pairs[name] = (levels[-2], levels[-1])
         self.results[name] = StudyResult(levels[-1].solution, levels[-1].record, levels[-2].record, excess <= 1.0)
+
+    def _in_doubt(self, name: str, coarse: _Level, fine: _Level) -> bool:
+        """Whether the studies solved so far leave a question open that this one may close."""
+        records = [{key: getattr(each, which) for key, each in self.results.items()} for which in ("coarse", "fine")]
+        return self.doubtful(name, records[0] | {name: coarse.record}, records[1] | {name: fine.record})
 
     def _at_worst(self, study: PlannedStudy, figure: Expression, tolerance: float) -> PlannedStudy:
         """The study at the phase that makes a figure highest."""
@@ -214,13 +224,15 @@ def solve_studies(
     names: Sequence[str],
     overrides: Mapping[str, Quantity | Expression | str] | None = None,
     kernels: KernelCache | None = None,
+    doubtful: Doubtful = lambda name, coarse, fine: False,
 ) -> dict[str, StudyResult]:
     """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside;
-    kernels: where runs of earlier circuits of the same form are kept.
+    kernels: where runs of earlier circuits of the same form are kept; doubtful: from a study and the records of all
+    solved so far, at the looser and the tighter tolerance, whether it should be solved still more tightly.
 
     Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong.
     """
-    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache())
+    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache(), doubtful)
     for name in names:
         proof.solve(name)
     return {name: proof.results[name] for name in names}

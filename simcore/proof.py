@@ -12,11 +12,11 @@ from dataclasses import dataclass
 from grammar.description import Binary, Call, Expression, Negative
 from grammar.expressions import nearest
 from grammar.mistakes import Mistake
-from simcore.design.circuit import Circuit, PlannedStudy
+from simcore.design.circuit import Circuit, PlannedStudy, Requirement
 from simcore.equations.kernel import KernelCache
 from simcore.figures.overview import Balance, Row, balance, diode_rows, signal_rows
 from simcore.figures.record import Record
-from simcore.judge.outcome import Outcome, outcome_of
+from simcore.judge.outcome import Outcome, State, outcome_of
 from simcore.judge.ratings import unrated
 from simcore.judge.verdict import Verdict, judge
 from simcore.opening import Opened
@@ -104,10 +104,17 @@ def solve_and_judge(
     solved."""
     circuit = opened.circuit
     requirements = [requirement for requirement in circuit.requirements if requirement.study in names]
-    parts = [part for each in requirements for part in (each.figure, each.bound, each.upper)]
-    others = dict.fromkeys(study for part in (*parts, *more) for study in _studies_named(part))
+    others = dict.fromkeys(study for each in requirements for study in _taken(each))
+    others |= dict.fromkeys(study for part in more for study in _studies_named(part))
     needed = [name for name in circuit.studies if name in names or name in others]
-    solved = solve_studies(opened.project, circuit, needed, opened.overrides, kernels)
+
+    def doubtful(name: str, coarse: Mapping[str, Record], fine: Mapping[str, Record]) -> bool:
+        """Whether a verdict that a study takes part in lies within its bound of the limit."""
+        pairs = [(each, _taken(each)) for each in requirements]
+        asked = [each for each, taken in pairs if name in taken and all(part in fine for part in taken)]
+        return any(verdict.state is State.UNDECIDED for verdict in judge(asked, coarse, fine))
+
+    solved = solve_studies(opened.project, circuit, needed, opened.overrides, kernels, doubtful)
     fine = {name: result.fine for name, result in solved.items()}
     coarse = {name: result.coarse for name, result in solved.items()}
     return Judged(solved, fine, coarse, judge(requirements, coarse, fine))
@@ -121,6 +128,12 @@ def prove(opened: Opened, names: Sequence[str]) -> Proof:
     fine, coarse, solved = judged.fine, judged.coarse, judged.solved
     studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name].solution) for name in names}
     return Proof(circuit, studies, coarse, judged.verdicts, time.perf_counter() - start)
+
+
+def _taken(requirement: Requirement) -> list[str]:
+    """The studies that a requirement takes figures from."""
+    parts = (requirement.figure, requirement.bound, requirement.upper)
+    return [requirement.study, *(study for part in parts for study in _studies_named(part))]
 
 
 def _studies_named(expression: Expression | None) -> Iterator[str]:

@@ -10,6 +10,7 @@ import pytest
 
 import simcore
 from simcore.face import Result
+from simcore.judge.outcome import State
 from simcore.solve.course import EXTRAPOLATION_ORDER
 from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.solution import Solution
@@ -352,3 +353,13 @@ def test_a_tight_tolerance_does_not_stall() -> None:
     solution, _ = course.solve()
     assert course.counts.steps < 3000
     assert np.min(np.diff(solution.times)) > 1e-5 * 0.02
+
+
+def test_a_verdict_near_its_limit_is_solved_more_tightly() -> None:
+    """1.00002 times the true mean as the limit: 0.1 % of accuracy leaves it open, and refinement decides it."""
+    text = "a -> g: source e, sine = 10 V peak, frequency = 50 Hz, constant = 5 V\na -> b: resistor R, 1 kOhm\nb -> g: capacitor C, 1 uF\nreference g\nstudy s: settled\nrequire s: {claim}\n"
+    exact = math.sqrt(25.0 + 50.0 / (1.0 + (2.0 * math.pi * 50.0 * 1e-3) ** 2))
+    for factor, state in ((1.00002, State.HOLDS), (0.99998, State.FAILS)):
+        claim = f"rms(voltage(b)) <= {exact * factor!r} V"
+        (verdict,) = simcore.read_text(text.format(claim=claim), "x").run("s").verdicts
+        assert verdict.state is state
