@@ -14,7 +14,7 @@ from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 from simcore.design.sensing import SensedTerm
-from simcore.equations.values import Graph, Level, Value, sin, where
+from simcore.equations.values import Graph, Level, Value, derivative, sin, where
 
 if TYPE_CHECKING:
     from simcore.components.part import Part
@@ -76,7 +76,8 @@ class NonlinearBranch:
     what the leak, a conductance in S, adds.
 
     scale: voltage over which the law changes by a factor e (V); critical: voltage above which steps are limited (V);
-    straight: above zero while the law is a straight line, so that nothing is left to iterate
+    straight: above zero while the law is a straight line, so that nothing is left to iterate; slope: of the law, or
+    what Newton takes for it: never below zero, so that elimination only adds
     """
 
     element: str
@@ -89,6 +90,7 @@ class NonlinearBranch:
     scale: Value
     critical: Value
     straight: Value
+    slope: Value
     carried: Carried | None
 
 
@@ -277,11 +279,15 @@ class Frame:
         straight: Value | float = 0.0,
         offset: Value | float = 0.0,
         leak: Value | float = 0.0,
+        slope: Callable[[Value], Value] | None = None,
         port: str = "",
     ) -> None:
-        """Add a branch whose current is law(branch voltage - offset) and that through its leak."""
+        """Add a branch whose current is law(branch voltage - offset) and that through its leak; slope: of the law, or
+        what Newton should take for it, where its derivative is not known to rise (see NonlinearBranch)."""
         variable = self._variable()
-        self._nonlinear(part, port, weights, offset, variable, law(variable), (leak, scale, critical, straight), None)
+        current = law(variable)
+        rise = derivative(current, variable) if slope is None else slope(variable)
+        self._nonlinear(part, port, weights, offset, variable, current, (leak, scale, critical, straight, rise), None)
 
     def carrying(
         self,
@@ -296,15 +302,18 @@ class Frame:
         critical: Value | float = UNLIMITED,
         straight: Value | float = 0.0,
         leak: Value | float = 0.0,
+        slope: Callable[[Value, Value], Value] | None = None,
         port: str = "",
     ) -> None:
         """Add a branch that carries a quantity: law(branch voltage, quantity before the step) gives its current, the
-        quantity after the step and what is shown of it (see Carried)."""
+        quantity after the step and what is shown of it (see Carried); slope: as of a nonlinear branch."""
         count = sum(isinstance(branch, NonlinearBranch) and branch.carried is not None for branch in self.branches)
         before, variable = self.graph.input(f"y{count}", Level.TIME), self._variable()
         current, after, shown = law(variable, before)
         carried = Carried(quantity, self.graph.lift(initial), before, after, small, tuple(shown.items()))
-        self._nonlinear(part, port, weights, 0.0, variable, current, (leak, scale, critical, straight), carried)
+        rise = derivative(current, variable) if slope is None else slope(variable, before)
+        manner = (leak, scale, critical, straight, rise)
+        self._nonlinear(part, port, weights, 0.0, variable, current, manner, carried)
 
     def _variable(self) -> Value:
         count = sum(isinstance(branch, NonlinearBranch) for branch in self.branches)
@@ -318,7 +327,7 @@ class Frame:
         offset: Value | float,
         variable: Value,
         current: Value,
-        manner: tuple[Value | float, Value | float, Value | float, Value | float],
+        manner: tuple[Value | float, ...],
         carried: Carried | None,
     ) -> None:
         lift = self.graph.lift

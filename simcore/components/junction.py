@@ -11,8 +11,8 @@ from collections.abc import Callable, Hashable
 from simcore.components.forward_fit import ForwardLaw, fit
 from simcore.components.frame import UNLIMITED, Frame
 from simcore.components.part import Part
-from simcore.components.physics import BOLTZMANN_OVER_CHARGE, depletion_charge
-from simcore.equations.values import Value, exp, larger, log, where
+from simcore.components.physics import BOLTZMANN_OVER_CHARGE, depletion_capacitance, depletion_charge
+from simcore.equations.values import Value, derivative, exp, larger, log, where
 
 LEAK = 1e-12
 """Conductance in S across every junction, so that a node between blocked diodes stays defined."""
@@ -107,8 +107,8 @@ class Junction:
             frame.nonlinear(part, weights, self._law, straight=straight, **manner)
         else:
             small = self._small(lifetime, capacitance)
-            law = self._charged(lifetime, capacitance)
-            frame.carrying(part, weights, law, quantity="charge", small=small, **manner)
+            law, rises = self._charged(lifetime, capacitance), self._rises(lifetime, capacitance)
+            frame.carrying(part, weights, law, quantity="charge", small=small, slope=rises, **manner)
         self._breakdown(anode, port.b)
 
     def _law(self, voltage: Value) -> Value:
@@ -150,6 +150,20 @@ class Junction:
             return self._law(voltage) + (charge - before) / self._frame.step, charge, {}
 
         return law
+
+    def _rises(self, lifetime: Value | None, capacitance: Capacitance | None) -> Callable[[Value, Value], Value]:
+        """The slope of the charged law, written so that it is known not to fall."""
+
+        def slope(voltage: Value, before: Value) -> Value:
+            rise = derivative(self._law(voltage), voltage)
+            if lifetime is not None:
+                rise = rise * (1.0 + lifetime / self._frame.step)
+            if capacitance is not None:
+                layer = depletion_capacitance(voltage / self.series, *capacitance)
+                rise = rise + self.parallel / self.series * layer / self._frame.step
+            return rise
+
+        return slope
 
     def _small(self, lifetime: Value | None, capacitance: Capacitance | None) -> Value:
         small = self._frame.graph.zero

@@ -16,6 +16,9 @@ _TAKES = ("power", "current", "resistance")
 _IDLE = 1e-12
 """Conductance in S of a load that is off, so that its nodes stay defined."""
 
+_CLOSE = 1e-3
+"""Share of the cut-out voltage that stands for the law's scale: its error is of first order."""
+
 _KNEE = 0.01
 """Voltage in V about which a load of constant current lets go: it takes none from 0 V."""
 
@@ -60,11 +63,15 @@ def _build(frame: Frame, part: Part) -> None:
 
 def _constant_current(frame: Frame, part: Part) -> None:
     """i = I v / sqrt(v^2 + V_k^2): the current from some V_k = 10 mV on, and nothing from a dead rail."""
-    current, knee = _over_time(frame, part, "current"), frame.graph.constant(_KNEE)
+    current, knee = larger(_over_time(frame, part, "current"), 0.0), frame.graph.constant(_KNEE)
 
     def law(voltage: Value) -> Value:
         return current * voltage / sqrt(voltage * voltage + knee * knee)
-    frame.nonlinear(part, part.across(part.ports[0]), law, scale=knee, leak=_IDLE)
+    def slope(voltage: Value) -> Value:
+        square = voltage * voltage + knee * knee
+        return current * (knee * knee / (square * sqrt(square)))
+
+    frame.nonlinear(part, part.across(part.ports[0]), law, scale=knee, leak=_IDLE, slope=slope)
 
 
 def _constant_power(frame: Frame, part: Part) -> None:
@@ -79,7 +86,13 @@ def _constant_power(frame: Frame, part: Part) -> None:
         return where(running.value - 0.5, taken, 0.0)
 
     weights = part.across(part.ports[0])
-    frame.nonlinear(part, weights, law, scale=cut_out, straight=0.5 - running.value, leak=_IDLE)
+    scale = _CLOSE * cut_out
+
+    def slope(voltage: Value) -> Value:
+        """None: it would fall. The load is a current source whose value is found again at each iterate."""
+        return 0.0 * voltage
+
+    frame.nonlinear(part, weights, law, scale=scale, straight=0.5 - running.value, leak=_IDLE, slope=slope)
     rail = frame.sensed_voltage(weights)
     starts, stops = [(running, True)], [(running, False)]
     frame.threshold(part, [rail], part.value("cut_in"), armed=stops, sets=starts, tells="starts")

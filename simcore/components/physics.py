@@ -22,3 +22,10 @@ def depletion_charge(voltage: Value, capacitance: Value, built_in: Value, expone
     beyond = larger(voltage - _KNEE * built_in, 0.0)
     knee = capacitance * exp(-(exponent * log(capacitance.graph.constant(_KNEE))))
     return below + knee * beyond * (1.0 + exponent * beyond / built_in)
+
+
+def depletion_capacitance(voltage: Value, capacitance: Value, built_in: Value, exponent: Value) -> Value:
+    """What a depletion layer's charge grows by with the voltage, in F; see depletion_charge."""
+    share = larger(1.0 - voltage / built_in, _KNEE)
+    beyond = larger(voltage - _KNEE * built_in, 0.0)
+    return capacitance * exp(-(exponent * log(share))) * (1.0 + 2.0 * exponent * beyond / built_in)

@@ -37,12 +37,17 @@ class Saturation:
         """Current in A at a flux in V s."""
         return flux / self.inductance * (1.0 + self._excess / self._power * self._rise(flux))
 
+    def rise(self, flux: Value) -> Value:
+        """Current over flux, in A/(V s): one over the inductance left."""
+        return (1.0 + self._excess * self._rise(flux)) / self.inductance
+
     def energy(self, flux: Value) -> Value:
         """Energy in J in the field, the integral of the current over the flux."""
         share = 2.0 * self._excess / (self._power * (self._power + 1.0))
         return flux * flux / (2.0 * self.inductance) * (1.0 + share * self._rise(flux))
 
     def _rise(self, flux: Value) -> Value:
+        """(flux / flux_s)^(m-1), a product of squares."""
         ratio = flux / self._flux
         square, result = ratio * ratio, self._frame.graph.one
         for _ in range((self._power - 1) // 2):
@@ -56,11 +61,22 @@ class Saturation:
             flux = before + self._frame.step * voltage
             return self.current(flux), flux, {"energy": self.energy(flux)}
 
+        def slope(voltage: Value, before: Value) -> Value:
+            return self._frame.step * self.rise(before + self._frame.step * voltage)
+
         frame = self._frame
         small = self.inductance * frame.small_current
         initial = frame.parameter(self.flux_at(start))
         frame.carrying(
-            part, weights, law, quantity="flux", small=small, initial=initial, scale=frame.small_voltage, port=port
+            part,
+            weights,
+            law,
+            quantity="flux",
+            small=small,
+            initial=initial,
+            scale=frame.small_voltage,
+            slope=slope,
+            port=port,
         )
 
     def flux_at(self, current: float) -> float:

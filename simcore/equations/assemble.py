@@ -149,7 +149,7 @@ class _Assembly:
         if isinstance(branch, CurrentBranch):
             return Companion(form, self.graph.zero, branch.current)
         if isinstance(branch, NonlinearBranch):
-            slope = derivative(branch.current, branch.variable)
+            slope = branch.slope
             behind = branch.current - slope * branch.variable + slope * (form.known - branch.offset)
             return Companion(form, slope + branch.leak, behind + branch.leak * form.known)
         return self._series(index, branch, form)

@@ -40,7 +40,7 @@ class Value:
     """One scalar of the graph. Arithmetic with values and floats gives values.
 
     operation: "constant", "input" or a key of the operation table; arguments: values, or the payload of a leaf
-    positive: known to be above zero whatever the inputs are, by construction
+    positive: known not to be below zero whatever the inputs are, by construction
     """
 
     __slots__ = ("graph", "operation", "arguments", "level", "positive", "index")
@@ -100,7 +100,7 @@ class Graph:
 
     def constant(self, number: float) -> Value:
         number = float(number)
-        return self._make("constant", (number,), Level.DESIGN, number > 0.0)
+        return self._make("constant", (number,), Level.DESIGN, number >= 0.0)
 
     def input(self, name: str, level: Level, positive: bool = False) -> Value:
         return self._make("input", (name,), level, positive)
@@ -153,7 +153,7 @@ class Graph:
             return self.negate(b)
         if b.constant == -1.0:
             return self.negate(a)
-        return self._apply("*", (a, b), a.positive and b.positive)
+        return self._apply("*", (a, b), (a.positive and b.positive) or a is b)
 
     def divide(self, a: Value, b: Value) -> Value:
         if a.constant == 0.0:
@@ -170,14 +170,15 @@ class Graph:
         return self._apply("neg", (a,), False)
 
     def call(self, function: str, a: Value) -> Value:
-        return self._apply(function, (a,), function == "exp" or (function == "sqrt" and a.positive))
+        return self._apply(function, (a,), function in ("exp", "sqrt"))
 
-    def choose(self, decides: Value, a: Value, b: Value) -> Value:
-        """a where `decides` is above zero, else b; both are computed, so neither may fail where it is not chosen."""
+    def choose(self, decides: Value, a: Value, b: Value, positive: bool) -> Value:
+        """a where `decides` is above zero, else b; both are computed, so neither may fail where it is not chosen.
+        positive: as of a value."""
         if decides.constant is not None or a is b:
             return a if a is b or decides.arguments[0] > 0.0 else b
         level = max(decides.level, a.level, b.level)
-        return self._make("where", (decides, a, b), level, a.positive and b.positive)
+        return self._make("where", (decides, a, b), level, positive)
 
     def total(self, terms: list[Value]) -> Value:
         """Sum of terms, slow levels first, so that a partial sum is computed as seldom as its inputs change."""
@@ -189,13 +190,14 @@ class Graph:
 
 def where(decides: Value, a: Value | float, b: Value | float) -> Value:
     """a where `decides` is above zero, else b."""
-    graph = decides.graph
-    return graph.choose(decides, graph.lift(a), graph.lift(b))
+    first, second = decides.graph.lift(a), decides.graph.lift(b)
+    return decides.graph.choose(decides, first, second, first.positive and second.positive)
 
 
 def larger(a: Value, b: Value | float) -> Value:
     """The larger of two."""
-    return where(a - b, a, b)
+    other = a.graph.lift(b)
+    return a.graph.choose(a - other, a, other, a.positive or other.positive)
 
 
 def exp(a: Value) -> Value:
