@@ -192,30 +192,33 @@ class RunSource:
         self._each(5, junctions, "v# = n#")
         add(5, *self.emitter.lines["iteration"], "good = True")
         for index, junction in enumerate(self.system.junctions):
-            add(5, f"n{index} = {self.emitter.name(junction.new)}", f"d = n{index} - v{index}")
+            add(5, f"n{index} = {self.emitter.name(junction.new)}")
             self._limit(index)
         add(5, "if good or count >= limit:", "    break")
         add(4, "iterations += count", "if not good:", "    failed = True", "    break")
 
     def _limit(self, index: int) -> None:
-        """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not.
+        """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not. What
+        is true most often is asked first.
         A voltage that rises past the critical one moves by the logarithm of the step (common practice, no source)."""
         junction = self.system.junctions[index]
         straight = self.emitter.name(junction.straight)
         lines = (
-            "if not (",
-            "    -b# <= d <= b#",
-            "    or (n# < 0.0 and v# < 0.0 and (-slack * w# <= d <= slack * w# or (n# < o# and v# < o#)))",
-            f"    or abs(d) <= {ROUNDING!r} * abs(n#)",
-            f"    or abs(d) * {self.emitter.name(junction.slope)} <= noise",
-            *([f"    or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
-            "):",
-            "    good = False",
-            "    if n# > k# and d > 0.0:",
-            "        if v# > 0.0:",
-            "            n# = v# + w# * log(1.0 + d / w#)",
-            "        else:",
-            "            n# = w# * log(n# / w#)",
+            "if not (n# < o# and v# < o#):",
+            "    d = n# - v#",
+            "    if not (",
+            "        -b# <= d <= b#",
+            "        or (n# < 0.0 and v# < 0.0 and -slack * w# <= d <= slack * w#)",
+            f"        or abs(d) <= {ROUNDING!r} * abs(n#)",
+            f"        or abs(d) * {self.emitter.name(junction.slope)} <= noise",
+            *([f"        or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
+            "    ):",
+            "        good = False",
+            "        if n# > k# and d > 0.0:",
+            "            if v# > 0.0:",
+            "                n# = v# + w# * log(1.0 + d / w#)",
+            "            else:",
+            "                n# = w# * log(n# / w#)",
         )
         self._add(5, *(line.replace("#", str(index)) for line in lines))
 
