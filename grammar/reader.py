@@ -17,6 +17,7 @@ from grammar.expressions import nearest
 from grammar.mistakes import ENOUGH, Mistake, first_of
 from grammar.scanner import Piece, Token, pieces_of, tokens_of
 from grammar.spans import Source, Span
+from grammar.tables import parser
 from grammar.wording import FORMS, NEVER_NAMES, expected, near_keyword, no_unit, strange
 
 if TYPE_CHECKING:
@@ -118,12 +119,9 @@ class _Grammar:
 
 @lru_cache(maxsize=1)
 def _grammar() -> _Grammar:
-    from lark import Lark
-
-    rules = Path(__file__).with_name("bulkrail.lark").read_text("utf-8")
-    parser = Lark(rules, parser="lalr", lexer="basic", start=list(FORMS), propagate_positions=True)
-    literals = {terminal.name: str(terminal.pattern.value) for terminal in parser.terminals if terminal.pattern}
-    return _Grammar(parser, literals, {text: name for name, text in literals.items()})
+    made = parser()
+    literals = {terminal.name: str(terminal.pattern.value) for terminal in made.terminals if terminal.pattern}
+    return _Grammar(made, literals, {text: name for name, text in literals.items()})
 
 
 class _Reading:

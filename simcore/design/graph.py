@@ -5,6 +5,7 @@ It knows elements and ports, and no equations.
 
 from __future__ import annotations
 
+from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING
 
 from simcore.design.circuit import Circuit, Element, Port
@@ -27,6 +28,29 @@ def graph_of(circuit: Circuit) -> networkx.MultiDiGraph:
             name = port_name(element, port)
             graph.add_edge(port.a, port.b, key=name, element=element.name, port=port.name, kind=element.kind)
     return graph
+
+
+def joined(nodes: Sequence[str], branches: Iterable[tuple[str, str]]) -> list[list[str]]:
+    """The connected components that branches make of nodes, each and all of them in the nodes' order. (Of graph_of's
+    graph networkx tells the same; importing it takes longer than reading a description.)"""
+    near: dict[str, list[str]] = {node: [] for node in nodes}
+    for a, b in branches:
+        near[a].append(b)
+        near[b].append(a)
+    rank = {node: index for index, node in enumerate(near)}
+    seen: set[str] = set()
+    parts = []
+    for node in near:
+        if node in seen:
+            continue
+        part = [node]
+        seen.add(node)
+        for each in part:
+            fresh = [other for other in dict.fromkeys(near[each]) if other not in seen]
+            seen.update(fresh)
+            part += fresh
+        parts.append(sorted(part, key=rank.__getitem__))
+    return parts
 
 
 def port_name(element: Element, port: Port) -> str:

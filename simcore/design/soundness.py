@@ -6,12 +6,12 @@ force what, and no component laws.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 
 from grammar.mistakes import Mistake
 from grammar.spans import Span
 from simcore.design.circuit import Circuit, Element, Port
-from simcore.design.graph import forces_voltage, graph_of, is_current_source, is_inductive, port_name
+from simcore.design.graph import forces_voltage, is_current_source, is_inductive, joined, port_name
 
 SHOWN = 6
 LARGEST_RANK = 150
@@ -37,15 +37,8 @@ def contradictions(circuit: Circuit) -> list[Mistake]:
 
 def parts_of(circuit: Circuit) -> list[list[str]]:
     """The nodes of each part of the circuit; windings join no parts."""
-    import networkx
-
-    return [list(part) for part in _ordered(circuit.nodes(), networkx.weakly_connected_components(graph_of(circuit)))]
-
-
-def _ordered(nodes: Sequence[str], parts: Iterable[Iterable[str]]) -> list[list[str]]:
-    """Sets of nodes as lists in the circuit's own order, so that every output is the same each time."""
-    rank = {node: index for index, node in enumerate(nodes)}
-    return sorted((sorted(part, key=rank.__getitem__) for part in parts), key=lambda part: rank[part[0]])
+    ports = (port for element in circuit.elements.values() for port in element.ports)
+    return joined(circuit.nodes(), ((port.a, port.b) for port in ports))
 
 
 def _shorted(circuit: Circuit) -> list[Mistake]:
@@ -173,30 +166,24 @@ def _loop(branches: Sequence[tuple[Element, Port]]) -> Mistake:
 
 def _current_cuts(circuit: Circuit) -> list[Mistake]:
     """A current source needs a way back that is neither a current source nor an inductor."""
-    import networkx
-
     found: list[Mistake] = []
     for with_inductors in (False, True):
-        graph = networkx.Graph()
-        graph.add_nodes_from(circuit.nodes())
+        ways: list[tuple[str, str]] = []
         removed: list[tuple[Element, Port]] = []
         for element in circuit.elements.values():
             for port in element.ports:
                 if is_current_source(element) or (with_inductors and is_inductive(element, port)):
                     removed.append((element, port))
                 else:
-                    graph.add_edge(port.a, port.b)
-        found = _cuts(circuit, networkx.connected_components(graph), removed)
+                    ways.append((port.a, port.b))
+        found = _cuts(joined(circuit.nodes(), ways), removed)
         if found:
             return found
     return found
 
 
-def _cuts(
-    circuit: Circuit, components: Iterable[Iterable[str]], removed: Sequence[tuple[Element, Port]]
-) -> list[Mistake]:
-    side = {}
-    parts = _ordered(circuit.nodes(), components)
+def _cuts(parts: Sequence[Sequence[str]], removed: Sequence[tuple[Element, Port]]) -> list[Mistake]:
+    side: dict[str, int] = {}
     for index, part in enumerate(parts):
         side.update(dict.fromkeys(part, index))
     found: list[Mistake] = []

@@ -6,22 +6,26 @@ No text of a description reaches the source.
 
 from __future__ import annotations
 
+import re
+
 from simcore.equations.values import FUNCTIONS, Level, Value, ancestors
 
 _INLINE_DEPTH = 6
+_NAMES_AT_HAND = 200
 
 
 class Emitter:
     """Assigns values to stages and writes each stage's lines; a value used once, by its own stage, is written in
     place."""
 
-    def __init__(self, stages: dict[str, list[Value]]):
+    def __init__(self, stages: dict[str, list[Value]], names: dict[int, str] | None = None):
         """stages: name -> targets that must be known after it. The names "variant", "step", "time" and "response" take
         the values of those levels; one that changes at every iteration belongs to the first other stage that needs it,
-        else to "after"."""
+        else to "after". names: what some targets are to be called, by index."""
         self._stage: dict[int, str] = {}
         self._depth: dict[int, int] = {}
         self._text: dict[int, str] = {}
+        self._names = names or {}
         self._kept = {target.index for targets in stages.values() for target in targets}
         self.lines: dict[str, list[str]] = {name: [] for name in stages}
         fixed = {level: level.name.lower() for level in (Level.VARIANT, Level.STEP, Level.TIME, Level.RESPONSE)}
@@ -54,7 +58,7 @@ class Emitter:
             self._text[value.index] = expression if value.operation in FUNCTIONS else f"({expression})"
             self._depth[value.index] = depth
             return
-        name = f"x{value.index}"
+        name = self._names.get(value.index, f"x{value.index}")
         self.lines[stage].append(f"{name} = {expression}")
         self._text[value.index] = name
         self._depth[value.index] = 0
@@ -73,6 +77,19 @@ class Emitter:
     def name(self, value: Value) -> str:
         """How a target is called in the source."""
         return self._text[value.index]
+
+
+def names_first(function: list[str], often: list[str]) -> list[str]:
+    """A function's lines, where it has many numbered names with those of its lines that run most often first: CPython
+    numbers local names in the order of their first use, and from 256 on each use costs a further instruction."""
+    if len(_names(function)) <= _NAMES_AT_HAND:
+        return function
+    return [function[0], *(f"    {name} = 0.0" for name in _names(often)), *function[1:]]
+
+
+def _names(lines: list[str]) -> dict[str, None]:
+    """The names of numbers that lines use or set; of those without a number behind them only d, which is used most."""
+    return dict.fromkeys(re.findall(r"\b(?:[a-z]\w*\d|d)\b", "\n".join(lines)))
 
 
 def _leaf(value: Value) -> str:

@@ -12,7 +12,7 @@ The function's face is told in run_interface.
 from __future__ import annotations
 
 from simcore.equations.assemble import System
-from simcore.equations.emit import Emitter
+from simcore.equations.emit import Emitter, names_first
 from simcore.equations.run_interface import (
     BLOCKED,
     CONTROLS,
@@ -26,7 +26,7 @@ from simcore.equations.run_interface import (
     saved_groups,
     watched_columns,
 )
-from simcore.equations.values import Value
+from simcore.equations.values import Level, Value
 
 _WEAK_PIVOT = 1e-10
 
@@ -38,10 +38,11 @@ class RunSource:
         self.system = system
         self._responses = responses
         self.watched = watched_columns(system)
-        self.emitter = Emitter(self._stages())
+        self.emitter = Emitter(self._stages(), self._iterates())
         self._lines: list[str] = []
+        self._often: list[str] = []
         self._build()
-        self.source = "\n".join(self._lines) + "\n"
+        self.source = "\n".join(names_first(self._lines, self._often)) + "\n"
 
     def _stages(self) -> dict[str, list[Value]]:
         system = self.system
@@ -57,6 +58,11 @@ class RunSource:
             "after": after,
             "response": system.responses if self._responses else [],
         }
+
+    def _iterates(self) -> dict[int, str]:
+        """The voltages that an iteration gives, called what the next one starts from."""
+        numbered = [(f"n{index}", junction.new) for index, junction in enumerate(self.system.junctions)]
+        return {new.index: name for name, new in reversed(numbered) if new.level is Level.ITERATION}
 
     def _add(self, indent: int, *lines: str) -> None:
         self._lines.extend("    " * indent + line for line in lines)
@@ -187,35 +193,42 @@ class RunSource:
             return
         add(4, "if division > 1:")
         self._each(5, junctions, "n# += a# / division")
+        start = len(self._lines)
         add(4, "count = 0", f"slack = {BLOCKED!r}", "noise = 0.0", "while True:", "    count += 1")
         add(5, f"if count == {PATIENCE + 1}:", "    slack = 1e9", "    noise = tolerance * floor_current")
         self._each(5, junctions, "v# = n#")
         add(5, *self.emitter.lines["iteration"], "good = True")
         for index, junction in enumerate(self.system.junctions):
-            add(5, f"n{index} = {self.emitter.name(junction.new)}", f"d = n{index} - v{index}")
+            if self.emitter.name(junction.new) != f"n{index}":
+                add(5, f"n{index} = {self.emitter.name(junction.new)}")
+        for index in range(junctions):
             self._limit(index)
         add(5, "if good or count >= limit:", "    break")
+        self._often = self._lines[start:]
         add(4, "iterations += count", "if not good:", "    failed = True", "    break")
 
     def _limit(self, index: int) -> None:
-        """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not.
+        """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not. What
+        is true most often is asked first.
         A voltage that rises past the critical one moves by the logarithm of the step (common practice, no source)."""
         junction = self.system.junctions[index]
         straight = self.emitter.name(junction.straight)
         lines = (
-            "if not (",
-            "    -b# <= d <= b#",
-            "    or (n# < 0.0 and v# < 0.0 and (-slack * w# <= d <= slack * w# or (n# < o# and v# < o#)))",
-            f"    or abs(d) <= {ROUNDING!r} * abs(n#)",
-            f"    or abs(d) * {self.emitter.name(junction.slope)} <= noise",
-            *([f"    or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
-            "):",
-            "    good = False",
-            "    if n# > k# and d > 0.0:",
-            "        if v# > 0.0:",
-            "            n# = v# + w# * log(1.0 + d / w#)",
-            "        else:",
-            "            n# = w# * log(n# / w#)",
+            "if not (n# < o# and v# < o#):",
+            "    d = n# - v#",
+            "    if not (",
+            "        -b# <= d <= b#",
+            "        or (n# < 0.0 and v# < 0.0 and -slack * w# <= d <= slack * w#)",
+            f"        or abs(d) <= {ROUNDING!r} * abs(n#)",
+            f"        or abs(d) * {self.emitter.name(junction.slope)} <= noise",
+            *([f"        or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
+            "    ):",
+            "        good = False",
+            "        if n# > k# and d > 0.0:",
+            "            if v# > 0.0:",
+            "                n# = v# + w# * log(1.0 + d / w#)",
+            "            else:",
+            "                n# = w# * log(n# / w#)",
         )
         self._add(5, *(line.replace("#", str(index)) for line in lines))
 
@@ -242,6 +255,8 @@ class RunSource:
     def _control(self, states: int) -> None:
         add = self._add
         add(2, "kink = 0.0")
+        for index, column in enumerate(self.watched):
+            add(2, f"q{index} = {_end(column)}")
         for index in range(len(self.system.junctions)):
             add(2, f"if (u{index} > g{index}) != (n{index} > g{index}):", "    kink = 1.0")
         add(2, "if kink > 0.0 and order > 1 and size > 1.01 * kink_size and size > smallest:")
@@ -282,7 +297,7 @@ class RunSource:
         """What a quadratic misses of a watched current, over its tolerance: 0.0481 of the third difference, which is
         taken over 1/3, 1/2, 2/3 and 1 of the step, each moved to second order by the differences of the divisions."""
         first, second, third = (f"c{division}_{column}" for division in (1, 2, 3))
-        end = f"9.0 * (take1 * {first} + take2 * {second} + take3 * {third})"
+        end = f"9.0 * q{index}"
         inside = f"d_{index} + 72.0 * m2_{column} - 22.5 * ({third} - {first}) + 36.0 * ({second} - {first})"
         return f"r = 0.0481 * abs({end} + {inside}) / (max(j{index}, floor_current) * watch_tolerance)"
 
@@ -301,8 +316,8 @@ class RunSource:
             size = states * states
             sums = " + ".join(f"take{division} * m[{division * size} + k]" for division in (1, 2, 3))
             add(2, "for k in range(square):", f"    m[k] = {sums}")
-        for index, column in enumerate(self.watched):
-            self._watch(index, column)
+        for index in range(len(self.watched)):
+            self._watch(index)
         self._each(
             2,
             junctions,
@@ -327,18 +342,17 @@ class RunSource:
             self._add(4, "if d < wish:", "    wish = max(0.6 * event_size, d)")
             self._add(2, f"f{index} = r")
 
-    def _watch(self, index: int, column: int) -> None:
+    def _watch(self, index: int) -> None:
         """A watched current's end and peak; where it falls, the next step ends where the chord meets zero: turn-off
         cut."""
         lines = (
-            f"r = take1 * c1_{column} + take2 * c2_{column} + take3 * c3_{column}",
-            "if 0.0 < r < h# and u# > g#:",
-            "    d = r * size / (h# - r)",
+            "if 0.0 < q# < h# and u# > g#:",
+            "    d = q# * size / (h# - q#)",
             "    if max(0.2 * wish, smallest) < d < wish:",
             "        wish = d",
             "        landing = 1.0",
-            "h# = r",
-            "j# = max(abs(r), j# * weight)",
+            "h# = q#",
+            "j# = max(abs(q#), j# * weight)",
         )
         self._add(2, *(line.replace("#", str(index)) for line in lines))
 
@@ -350,9 +364,10 @@ class RunSource:
         add(2, "if record > 0.0:", "    out[position] = now")
         for i in columns:
             mean = f"mean1 * c1_{i} + mean2 * (m2_{i} + c2_{i}) + mean3 * (m3_{i} + c3_{i})"
+            known = f"q{self.watched.index(i)}" if i in self.watched else _end(i)
             add(
                 3,
-                f"r = take1 * c1_{i} + take2 * c2_{i} + take3 * c3_{i}",
+                f"r = {known}",
                 f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)",
             )
             add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")
@@ -366,3 +381,8 @@ class RunSource:
             position += count
         event = "event" if self.system.thresholds else "0"
         self._add(1, f"return status, position, steps, rejected, solves, iterations, weak, {event}")
+
+
+def _end(column: int) -> str:
+    """A column's extrapolated value at the end of a step."""
+    return f"take1 * c1_{column} + take2 * c2_{column} + take3 * c3_{column}"

@@ -66,8 +66,8 @@ def displacement_factor(record: Record, name: str) -> Figure:
     part = record.part(name)
     power, apparent, total = 0.0, 0.0, 0.0
     for port in part.ports:
-        voltage = record.between(port.a, port.b).restrict(*span)
-        current = record.port_current(part.element, port).restrict(*span)
+        voltage = record.cut(record.between(port.a, port.b), *span)
+        current = record.cut(record.port_current(part.element, port), *span)
         first, second = (measure.phasor(signal, record.frequency) for signal in (voltage, current))
         power += (first * second.conjugate()).real
         apparent += abs(first) * abs(second)
@@ -131,7 +131,7 @@ def _periodic(
     span = record.whole_periods()
     if span is None:
         return undefined(dimension, _no_period(record))
-    return figure(signal.restrict(*span), record.frequency)
+    return figure(record.cut(signal, *span), record.frequency)
 
 
 def _no_period(record: Record) -> str:

@@ -82,6 +82,7 @@ class Record:
         self.rough = np.stack([self.times[:-1][rough], self.times[1:][rough]], axis=1)
         self.nodes = dict.fromkeys((*self.circuit.nodes(), *self.circuit.references))
         self._kept: dict[object, Signal] = {}
+        self._cuts: dict[tuple[int, float, float], tuple[Signal, Signal]] = {}
         self.figures: dict[object, Figure] = {}
 
     def keep(self, key: object, form: Callable[[], Signal]) -> Signal:
@@ -163,8 +164,15 @@ class Record:
     # --- windows -----------------------------------------------------------------------------------------------------
 
     def window(self, signal: Signal) -> Signal:
-        """The part of a signal in the judged window."""
-        return signal.restrict(*self.solution.window)
+        """The part of a signal in the judged window, cut once."""
+        return self.cut(signal, *self.solution.window)
+
+    def cut(self, signal: Signal, start: float, end: float) -> Signal:
+        """The part of a signal from start to end in s, kept with it: what figures find in it is found once."""
+        key = (id(signal), start, end)
+        if key not in self._cuts:
+            self._cuts[key] = (signal, signal.restrict(start, end))
+        return self._cuts[key][1]
 
     def whole_periods(self) -> tuple[float, float] | None:
         """Start and end in s of the whole periods that end with the window; None where it holds none."""

@@ -220,7 +220,20 @@ class Signal:
         return float(np.sum(left.widths * polynomials.product_means(left.coefficients, right.coefficients)))
 
     def highest(self) -> float:
-        """The largest value; only pieces whose Bernstein form leaves room for more than the ends show are searched."""
+        """The largest value."""
+        return self._highest
+
+    def lowest(self) -> float:
+        """The smallest value."""
+        return -self._negated.highest()
+
+    @cached_property
+    def _negated(self) -> Signal:
+        return -self
+
+    @cached_property
+    def _highest(self) -> float:
+        """Only pieces whose Bernstein form leaves room for more than the ends show are searched."""
         start, end = self.piece_ends
         best = max(float(start.max()), float(end.max()))
         room = (polynomials.bernstein(self.coefficients).max(axis=1) > best) & self._smooth_pieces()
@@ -237,10 +250,6 @@ class Signal:
         middle = 0.5 * (self.times[1:] + self.times[:-1])
         before = np.searchsorted(self.rough[:, 0], middle, side="right") - 1
         return (before < 0) | (middle > self.rough[np.maximum(before, 0), 1])
-
-    def lowest(self) -> float:
-        """The smallest value."""
-        return -(-self).highest()
 
     def largest_magnitude(self) -> float:
         """The largest absolute value."""

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+import random
+
+import networkx
 import pytest
 from understood import BASE, circuit_of, understood, whats
 
+from simcore.design.graph import joined
 from simcore.design.overview import describe
 from simcore.design.soundness import parts_of
 
@@ -70,6 +74,20 @@ def test_what_only_the_rank_shows() -> None:
 )
 def test_sound_circuits_that_look_alike(added: str) -> None:
     assert whats(PLAIN + added) == []
+
+
+@pytest.mark.parametrize("seed", range(20))
+def test_connected_components_are_those_of_the_graph(seed: int) -> None:
+    draw = random.Random(seed)
+    nodes = [f"n{index}" for index in range(12)]
+    draw.shuffle(nodes)
+    branches = [(draw.choice(nodes), draw.choice(nodes)) for _ in range(seed)]
+    graph = networkx.Graph(branches)
+    graph.add_nodes_from(nodes)
+    parts = joined(nodes, branches)
+    assert {frozenset(part) for part in parts} == {frozenset(part) for part in networkx.connected_components(graph)}
+    assert all(part == sorted(part, key=nodes.index) for part in parts)
+    assert parts == sorted(parts, key=lambda part: nodes.index(part[0]))
 
 
 def test_parts_and_the_overview() -> None:
