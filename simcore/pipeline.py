@@ -8,6 +8,7 @@ and figures, and no text.
 from __future__ import annotations
 
 import math
+from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
@@ -53,12 +54,13 @@ _LOOSEST, _TIGHTEST = 1e-2, 1e-8
 @dataclass(frozen=True)
 class StudyResult:
     """A study's solution with its record, and the record of the one at the looser tolerance before it; reached: whether
-    the accuracy asked for was met."""
+    the accuracy asked for was met; cost: what all its solutions cost together, by what is counted."""
 
     solution: Solution
     fine: Record
     coarse: Record
     reached: bool
+    cost: Mapping[str, float]
 
 
 @dataclass(frozen=True)
@@ -88,6 +90,7 @@ class _Proof:
         self.kernels = kernels
         self.pairs: dict[str, tuple[_Level, _Level]] = {}
         self.results: dict[str, StudyResult] = {}
+        self.costs: dict[str, Counter[str]] = {}
 
     def solve(self, name: str) -> None:
         """Solve a study, and first the one it starts from."""
@@ -112,7 +115,8 @@ class _Proof:
         if note is not None:
             levels[-1].solution.notes.append(note)
         self.pairs[name] = (levels[-2], levels[-1])
-        self.results[name] = StudyResult(levels[-1].solution, levels[-1].record, levels[-2].record, excess <= 1.0)
+        last = levels[-1]
+        self.results[name] = StudyResult(last.solution, last.record, levels[-2].record, excess <= 1.0, self.costs[name])
 
     def _at_worst(self, study: PlannedStudy, figure: Expression, tolerance: float) -> PlannedStudy:
         """The study at the phase that makes a figure highest."""
@@ -134,6 +138,7 @@ class _Proof:
         if not solution.kirchhoff <= LARGEST_SUM:
             detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
+        self.costs.setdefault(study.name, Counter()).update({"solutions": 1, **solution.statistics})
         return _Level(solution, left)
 
     def _excess(self, study: PlannedStudy, coarse: _Level, fine: _Level) -> float:
