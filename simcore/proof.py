@@ -21,7 +21,6 @@ from simcore.judge.ratings import unrated
 from simcore.judge.verdict import Verdict, judge
 from simcore.opening import Opened
 from simcore.pipeline import StudyResult, solve_studies
-from simcore.solve.solution import Solution
 
 TAKEN = ("figures", "verdicts", "bill", "size")
 """Names of result files that a study's trace would take the place of."""
@@ -29,7 +28,8 @@ TAKEN = ("figures", "verdicts", "bill", "size")
 
 @dataclass(frozen=True)
 class ProvedStudy:
-    """A solved study and its tables, with bounds from a second solution at a looser tolerance."""
+    """A solved study and its tables, with bounds from a second solution at a looser tolerance; statistics: what all of
+    its solutions cost."""
 
     study: PlannedStudy
     record: Record
@@ -126,7 +126,7 @@ def prove(opened: Opened, names: Sequence[str]) -> Proof:
     circuit = opened.circuit
     judged = solve_and_judge(opened, names)
     fine, coarse, solved = judged.fine, judged.coarse, judged.solved
-    studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name].solution) for name in names}
+    studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name]) for name in names}
     return Proof(circuit, studies, coarse, judged.verdicts, time.perf_counter() - start)
 
 
@@ -150,7 +150,8 @@ def _studies_named(expression: Expression | None) -> Iterator[str]:
         yield from _studies_named(expression.operand)
 
 
-def _proved(study: PlannedStudy, fine: Record, coarse: Record, solution: Solution) -> ProvedStudy:
+def _proved(study: PlannedStudy, fine: Record, coarse: Record, solved: StudyResult) -> ProvedStudy:
+    solution = solved.solution
     return ProvedStudy(
         study,
         fine,
@@ -158,6 +159,6 @@ def _proved(study: PlannedStudy, fine: Record, coarse: Record, solution: Solutio
         diode_rows(fine, coarse),
         balance(fine),
         solution.kirchhoff,
-        solution.statistics,
+        solved.cost,
         solution.notes,
     )

@@ -17,6 +17,7 @@ from simcore.solve.engine import Engine, Interrupted, Stepping
 from simcore.solve.failure import Reason
 
 _AGREEMENT = 1e-6
+"""Newton's correction, over the states' sizes, at which the state is settled."""
 _ROUNDS = 30
 _FIRST = 4.0
 _SHORTEST = 0.25
@@ -35,13 +36,12 @@ _STANDING = 4
 @dataclass(frozen=True)
 class Settled:
     """How a settled state was reached: words for the report, periods followed (those that carry derivatives counted
-    apart), and the largest multiplier, the share of a disturbance that is left after a period (None where not
-    known)."""
+    apart), and the largest multiplier, the share of a disturbance that is left after a period."""
 
     how: str
     periods: int
     responding: int
-    multiplier: float | None
+    multiplier: float
 
 
 class _Map:
@@ -103,10 +103,6 @@ def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> S
     return found or _by_following(way, start)
 
 
-def _goal(stepping: Stepping) -> float:
-    return max(_AGREEMENT, 0.3 * stepping.tolerance)
-
-
 @dataclass(frozen=True)
 class _Point:
     """States, what a period adds to them (residual), its derivative (slope) and what Newton would add (rest), all but
@@ -157,9 +153,9 @@ def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
         if base is None or best is None:
             return None
         rough = since >= _STANDING and best.size <= 3.0 * way.stepping.tolerance
-        if best.distance <= _goal(way.stepping) or rough:
+        if best.distance <= _AGREEMENT or rough:
             way.finish(best.corrected())
-            return _described(way, best.slope)
+            return _described(way, best)
         point = _point(way, way.follow(base.corrected(pseudo)))
         if point is None:
             return None
@@ -180,20 +176,25 @@ def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
     return across.T @ shares
 
 
-def _described(way: _Map, scaled: np.ndarray) -> Settled | None:
+def _described(way: _Map, point: _Point) -> Settled | None:
     """The words for a state found by Newton; None where it is one that the circuit leaves by itself."""
-    largest = float(np.max(np.abs(np.linalg.eigvals(scaled))))
+    largest = float(np.max(np.abs(np.linalg.eigvals(point.slope))))
     if largest > _LEAVES:
         return None
-    how = f"settled by Newton on the period map; of a disturbance {largest:.3g} is left after a period"
+    how = f"settled by Newton on the period map to {max(point.distance, _AGREEMENT):.0e} of its states; {_left(largest)}"
     if 1.0 - largest < _FREE:
         how += "; what nothing in the circuit fixes (a multiplier of 1) is as reached from rest"
     return Settled(how, way.plain, way.responding, largest)
 
 
+def _left(multiplier: float) -> str:
+    """What the largest multiplier says."""
+    return f"largest multiplier {multiplier:.3g}, the share of a disturbance that is left after a period"
+
+
 def _by_following(way: _Map, start: np.ndarray) -> Settled:
     """Period after period until the distance, the rest of a geometric series, is small."""
-    goal = _goal(way.stepping)
+    goal = max(_AGREEMENT, 0.3 * way.stepping.tolerance)
     states, changes = start, []
     kept: list[np.ndarray] = []
     while way.plain < _MOST_PERIODS:
@@ -204,7 +205,7 @@ def _by_following(way: _Map, start: np.ndarray) -> Settled:
         distance, ratio = _distance(changes)
         if max(changes[-1], distance) <= goal:
             way.finish(states)
-            how = f"settled by following {way.plain} periods; of a disturbance {ratio:.3g} is left after a period"
+            how = f"settled by following {way.plain} periods to {goal:.0e} of its states; {_left(ratio)}"
             return Settled(how, way.plain, way.responding, ratio)
         kept = [*kept[-_LONGEST_REPEAT:], after]
         moves = changes[-1] > 10.0 * goal

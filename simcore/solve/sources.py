@@ -13,6 +13,9 @@ from simcore.equations.plain import evaluate
 _MOST_PERIODS = 1000
 _SAMPLES = 64
 _ROUNDING = 3e-15
+_LEAST_CURRENT = 1e-18
+"""In A, far below what any current is told to: a scale that nothing is divided by as zero, where no resistance gives
+one."""
 
 
 def common_period(frame: Frame) -> float | None:
@@ -61,4 +64,4 @@ def rounding_current(frame: Frame, span: float) -> float:
     inputs = {f"p{index}": np.float64(number) for index, number in enumerate(frame.numbers)} | {"t": np.float64(0.0)}
     series = [branch.resistance for branch in frame.branches if isinstance(branch, SeriesBranch)]
     resistances = [float(value) for value in evaluate([value for value in series if value.constant != 0.0], inputs)]
-    return _ROUNDING * largest_voltage(frame, span) / min(resistances, default=math.inf)
+    return max(_ROUNDING * largest_voltage(frame, span) / min(resistances, default=math.inf), _LEAST_CURRENT)

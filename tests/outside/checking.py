@@ -44,16 +44,18 @@ def solved(text: str, study: str = "s") -> Result:
     return design(text).run(study)
 
 
-def close(result: Result, figure: str, expected: float, relative: float, absolute: float = 0.0) -> None:
+def close(
+    result: Result, figure: str, expected: float, relative: float, absolute: float = 0.0, exact_to: float | None = None
+) -> None:
     """A figure (SI unit, angles in deg) agrees with an outside value; its own bound is judged for honesty where the outside
-    value is exact for the very circuit solved (no absolute allowance for a model's difference)."""
+    value is exact for the very circuit solved (no absolute allowance for a model's difference), or exact to what is given."""
     found = result.figure(figure)
     error = abs(found.value - expected)
     assert error <= relative * abs(expected) + absolute, (
         f"{figure}: {found.value!r} against {expected!r}, {found.shown}"
     )
-    if absolute == 0.0:
-        printed = 1e-8 * abs(expected)
+    if absolute == 0.0 or exact_to is not None:
+        printed = 1e-8 * abs(expected) + (exact_to or 0.0)
         LEDGER.compared += 1
         LEDGER.covered += error <= found.bound + printed
         if error > found.bound + printed:
