@@ -12,7 +12,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
-from grammar.quantities import unit_of
+from grammar.quantities import ANGLE, unit_of
 from simcore.figures.figure import Figure
 from simcore.proof import Proof
 from simcore.report import words
@@ -73,8 +73,10 @@ def figures_to_keep(proof: Proof) -> dict[Key, Kept]:
 
 
 def _kept(figure: Figure) -> Kept:
+    """A figure in the unit that stands beside it: an angle, which figures have in radians, in degrees."""
+    scale = math.degrees(1.0) if figure.dimension == ANGLE else 1.0
     bound = 0.0 if figure.bound is None else figure.bound
-    return Kept(float(figure.value), unit_of(figure.dimension), float(bound))
+    return Kept(float(figure.value) * scale, unit_of(figure.dimension), float(bound) * scale)
 
 
 def write_kept(path: Path, figures: Mapping[Key, Kept]) -> None:

@@ -11,16 +11,20 @@ from collections.abc import Sequence
 import matplotlib
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
+from matplotlib.patches import Polygon, Rectangle
 from matplotlib.ticker import FuncFormatter, NullLocator
 
 from simcore.figures.polynomials import Array
 from simcore.judge.outcome import State
-from simcore.report.panels import Bars, Panel, Picture, any_conducts, decades
+from simcore.report.diagram import BOX_HEIGHT, BOX_WIDTH, FAINT, LINE_HEIGHT, Diagram
+from simcore.report.panels import Bars, Panel, Picture, decades, shades
 from simcore.report.svg import COLOURS, DASHES, INK, LIMIT, SHADE, number, spread, value_range
 
 WIDTH, PANEL, STRIP, EDGES = 8.0, 2.2, 0.16, 1.1
 """In inches: of the picture, the height of a panel and of a diode's strip, and what titles and axes need."""
 DOTS = 150
+DOTS_AN_INCH = 100.0
+"""Of a diagram's own."""
 MOST_STRIPS = 12
 LABEL_POINTS = 11.0
 
@@ -63,7 +67,7 @@ def _panel(axes: Axes, panel: Panel, picture: Picture) -> None:
     axes.set_ylabel(panel.title)
     axes.grid(axis="y", color="#dddddd", linewidth=0.6)
     axes.set_axisbelow(True)
-    for start, end in any_conducts(picture.conduction):
+    for start, end in shades(picture):
         axes.axvspan(start, end, color=SHADE, zorder=0.0, linewidth=0.0)
     if picture.judged is not None:
         for time in picture.judged:
@@ -114,6 +118,38 @@ def bars_bytes(bars: Bars, form: str) -> bytes:
         axes.set_xlabel("order of the harmonic")
         axes.set_ylabel("current in A rms")
         axes.set_title(bars.title, loc="left", fontsize=9.0)
+        return _saved(figure, form)
+
+
+def diagram_bytes(diagram: Diagram, form: str) -> bytes:
+    """The circuit as a picture file; form: "png" or "svg"."""
+    with matplotlib.rc_context(_STYLE):
+        figure = Figure(figsize=(diagram.width / DOTS_AN_INCH, diagram.height / DOTS_AN_INCH))
+        axes = figure.add_axes((0.0, 0.0, 1.0, 1.0))
+        axes.set_axis_off()
+        axes.set_xlim(0.0, diagram.width)
+        axes.set_ylim(diagram.height, 0.0)
+        for stroke in diagram.strokes:
+            xs, ys = zip(stroke.start, stroke.end, strict=True)
+            if not stroke.heavy:
+                axes.plot(xs, ys, color="white", linewidth=3.5, zorder=1.0)
+            axes.plot(xs, ys, color=INK, linewidth=1.4 if stroke.heavy else 0.8, zorder=1.0)
+        for x, y in diagram.joints:
+            axes.plot(x, y, "o", color=INK, markersize=3.6, zorder=2.0)
+        for each in diagram.boxes:
+            x, y = each.middle
+            corner = x - BOX_WIDTH / 2.0, y - BOX_HEIGHT / 2.0
+            axes.add_patch(
+                Rectangle(corner, BOX_WIDTH, BOX_HEIGHT, facecolor=SHADE, edgecolor=INK, linewidth=0.8, zorder=3.0)
+            )
+            if each.wedge:
+                axes.add_patch(Polygon(each.wedge, facecolor=INK, zorder=3.0))
+            for place, words in enumerate(each.words):
+                height = y + (place - (len(each.words) - 1) / 2.0) * LINE_HEIGHT
+                colour = INK if place == 0 else FAINT
+                axes.text(x, height, words, ha="center", va="center", color=colour, fontsize=7.5, zorder=4.0)
+        for x, y, words in diagram.names:
+            axes.text(x, y, words, fontsize=7.5, zorder=4.0)
         return _saved(figure, form)
 
 

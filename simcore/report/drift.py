@@ -10,6 +10,7 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 
 from grammar.mistakes import Mistake
+from grammar.quantities import quantity, show
 from simcore.judge.outcome import Outcome, worst
 from simcore.proof import Proof
 from simcore.report.baseline import (
@@ -28,8 +29,9 @@ from simcore.report.screen import Screen, present_screen
 from simcore.report.session import Say, open_jobs, proved, rendered, written
 from simcore.report.tables import INDENT, table
 
-HEADINGS = ("study", "of", "figure", "was", "is", "moved", "bounds allow")
-_DIGITS = 8
+HEADINGS = ("study", "figure", "was", "is", "moved", "bounds allow")
+MOST_SHOWN = 30
+"""Figures that drifted: more are counted, and all are in the test report."""
 
 
 def keep_files(files: Sequence[str], say: Say, complain: Say) -> Outcome:
@@ -87,38 +89,58 @@ def _one(file: str, was: Mapping[Key, Kept], proof: Proof, screen: Screen) -> tu
     drifted, missing, new = compared(was, now)
     same = len(was) - len(drifted) - len(missing)
     lines = [f"{file}: {same} figures as kept, {len(drifted)} drifted, {len(missing)} missing, {len(new)} new"]
-    changed = [*drifted, *missing, *new]
-    if changed:
-        lines += table(HEADINGS, [_cells(drift) for drift in changed], 3, screen.width)
-    if missing or new:
-        lines.append(f"{INDENT}`bulkrail keep {file}` takes today's figures, once they are right")
+    if drifted:
+        shown = sorted(drifted, key=_share, reverse=True)[:MOST_SHOWN]
+        lines += table(HEADINGS, [_cells(drift) for drift in shown], 2, screen.width)
+        if len(drifted) > len(shown):
+            left = f"and {len(drifted) - len(shown)} more that moved by a smaller share; `--junit FILE.xml` lists all"
+            lines.append(INDENT + left)
+    lines += [*_gathered("missing", missing), *_gathered("new", new)]
+    if drifted or missing or new:
+        lines.append(f"{INDENT}if this is right: `bulkrail keep {file}` takes today's figures")
     bad = {drift.key: drift for drift in (*drifted, *missing)}
     cases = [_case(key, bad.get(key)) for key in dict.fromkeys((*was, *now))]
     outcome = Outcome.NOT_ALL_HOLD if bad else Outcome.ALL_HOLD
     return outcome, "\n".join(screen.fitted(lines)), Suite(file, cases, "", proof.seconds)
 
 
+def _share(drift: Drift) -> float:
+    """By how much of itself a figure moved; what became or ceased to be a number moved most."""
+    if drift.was is None or drift.now is None or not math.isfinite(drift.now.value - drift.was.value):
+        return math.inf
+    return abs(drift.now.value - drift.was.value) / max(abs(drift.was.value), abs(drift.now.value))
+
+
+def _gathered(what: str, drifts: Sequence[Drift]) -> list[str]:
+    """Figures that stand on one side only, one line for all of one signal or diode of a study."""
+    found: dict[tuple[str, str], list[str]] = {}
+    for drift in drifts:
+        study, subject, title = drift.key
+        found.setdefault((study, subject), []).append(title)
+    return [f"{INDENT}{what} in {study}: {subject}, {', '.join(titles)}" for (study, subject), titles in found.items()]
+
+
 def _cells(drift: Drift) -> list[str]:
+    study, subject, title = drift.key
+    unit = (drift.now or drift.was or _NOTHING).unit
     moved = "-"
     if drift.was is not None and drift.now is not None:
-        moved = _number(Kept(drift.now.value - drift.was.value, drift.now.unit, 0.0), 3)
-    allowed = _number(Kept(drift.allowed, (drift.now or drift.was or _NOTHING).unit, 0.0), 3)
-    return [*drift.key, _kept(drift.was), _kept(drift.now), moved, allowed]
+        moved = _number(drift.now.value - drift.was.value, unit, 3)
+    figures = [_number((each or _NOTHING).value, unit) for each in (drift.was, drift.now)]
+    return [study, f"{subject}, {title}", *figures, moved, _number(drift.allowed, unit, 2)]
 
 
 _NOTHING = Kept(math.nan, "", 0.0)
 
 
-def _kept(kept: Kept | None) -> str:
-    return "none" if kept is None else _number(kept, _DIGITS)
-
-
-def _number(kept: Kept, digits: int) -> str:
-    if math.isnan(kept.value):
+def _number(value: float, unit: str, digits: int = 6) -> str:
+    """A number with the prefix that suits it."""
+    if math.isnan(value):
         return "undefined"
-    if math.isinf(kept.value):
+    if math.isinf(value):
         return "never"
-    return f"{kept.value:.{digits}g} {kept.unit}".rstrip()
+    held = quantity(value, unit)
+    return show(held.value, held.dimension, digits)
 
 
 def _case(key: Key, drift: Drift | None) -> Case:
@@ -126,5 +148,5 @@ def _case(key: Key, drift: Drift | None) -> Case:
     failure = ""
     if drift is not None:
         failure = "missing" if drift.now is None else "drifted"
-    text = "" if drift is None else ", ".join(f"{a} {b}" for a, b in zip(HEADINGS[3:], _cells(drift)[3:], strict=True))
-    return Case(study, f"{subject} {title}", failure, text)
+    text = "" if drift is None else ", ".join(f"{a} {b}" for a, b in zip(HEADINGS[2:], _cells(drift)[2:], strict=True))
+    return Case(study, f"{subject}, {title}", failure, text)

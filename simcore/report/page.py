@@ -18,21 +18,31 @@ from simcore.judge.cautions import cautions
 from simcore.judge.outcome import State
 from simcore.proof import Proof, ProvedStudy
 from simcore.report import words
+from simcore.report.diagram import diagram_of, diagram_svg
 from simcore.report.panels import bars_of, picture_of
 from simcore.report.svg import bars_svg, picture_svg
 from simcore.report.terminal import DIODE_HEADINGS, cost_line, energy_line, row_name
 from simcore.report.writing import whole_file
 
 _STYLE = """
-body { font: 15px/1.45 sans-serif; color: #222; background: #fff; max-width: 60em; margin: 2em auto; padding: 0 1em; }
-h1 { font-size: 1.5em; } h2 { font-size: 1.15em; margin-top: 2em; border-bottom: 1px solid #bbb; }
-h3 { font-size: 1em; } table { border-collapse: collapse; margin: 0.6em 0; font-size: 0.9em; display: block;
-overflow-x: auto; } th, td { padding: 0.2em 0.8em 0.2em 0; text-align: left; vertical-align: top; }
+body { font: 15px/1.45 sans-serif; color: #222; background: #fff; max-width: 72em; margin: 2em auto; padding: 0 1em; }
+h1 { font-size: 1.5em; } h3 { font-size: 1em; } p, li { max-width: 60em; }
+h2 { font-size: 1.15em; margin-top: 2em; border-bottom: 1px solid #bbb; }
+table { border-collapse: collapse; margin: 0.6em 0 1em; font-size: 0.87em; display: block; overflow-x: auto; }
+th, td { padding: 0.2em 1.3em 0.2em 0; text-align: left; vertical-align: top; }
 th { border-bottom: 1px solid #888; font-weight: 600; } td.number, th.number { text-align: right; white-space: nowrap; }
 .fails { color: #8a1f11; font-weight: 700; } .holds { color: #2b5d34; } .open { color: #7a5a00; font-weight: 600; }
-pre { background: #f6f6f4; padding: 0.8em; overflow-x: auto; font-size: 0.85em; } svg { width: 100%; height: auto; }
-@media print { body { margin: 0; max-width: none; } h2 { break-after: avoid; } svg { break-inside: avoid; } }
+pre { background: #f6f6f4; padding: 0.8em; overflow-x: auto; font-size: 0.85em; }
+svg { width: 100%; height: auto; } .trace { max-width: 60em; }
+.wide { overflow-x: auto; } .wide div { max-width: 100%; }
+@media print {
+  body { margin: 0; max-width: none; } h2 { break-after: avoid; } svg { break-inside: avoid; }
+  .wide div { min-width: 0 !important; }
+}
 """
+
+SMALLEST = 0.55
+"""Of its size: what a diagram is scaled down to before it has to be scrolled."""
 
 _SURE = (
     "Every figure is an integral or an extremum of the solution, not of samples. What follows ± bounds its numerical "
@@ -59,7 +69,9 @@ def page(proof: Proof, project: Project) -> str:
         *_required(proof),
         "<h2>How sure this is</h2>",
         f"<p>{escape(_SURE)}</p>",
+        *_circuit(proof),
         *_found(proof),
+        *_harmonics(proof),
         *_bill(proof),
         "<h2>Cautions</h2>",
         _list(cautions(proof)),
@@ -86,8 +98,25 @@ def _required(proof: Proof) -> Iterator[str]:
     notes = [*words.reasons(proof.verdicts), *words.unrated(proof.unrated)]
     if notes:
         yield _list(notes)
+
+
+def _circuit(proof: Proof) -> Iterator[str]:
+    diagram = diagram_of(proof.circuit)
+    if diagram is not None:
+        yield "<h2>The circuit</h2>"
+        sizes = f"width: {diagram.width:.0f}px; min-width: {SMALLEST * diagram.width:.0f}px"
+        yield f'<div class="wide"><div style="{sizes}">{diagram_svg(diagram)}</div></div>'
+
+
+def _framed(picture: str) -> str:
+    """A picture no wider than it is good for."""
+    return f'<div class="trace">{picture}</div>'
+
+
+def _harmonics(proof: Proof) -> Iterator[str]:
     for bars in bars_of(proof):
-        yield bars_svg(bars)
+        yield f"<h2>{escape(bars.title)}</h2>"
+        yield _framed(bars_svg(bars))
         yield _table(words.HARMONIC_HEADINGS, [words.harmonic_cells(row) for row in bars.rows], 1)
 
 
@@ -98,7 +127,7 @@ def _found(proof: Proof) -> Iterator[str]:
         yield f"<p>{escape(sentence(study.study))}</p>"
         picture = picture_of(name, study)
         if picture is not None:
-            yield picture_svg(picture)
+            yield _framed(picture_svg(picture))
         yield from _figures(study)
         yield _list([energy_line(study.balance), cost_line(study), *study.notes])
 

@@ -171,6 +171,15 @@ def any_conducts(conduction: dict[str, Array]) -> list[tuple[float, float]]:
     return joined
 
 
+def shades(picture: Picture) -> list[tuple[float, float]]:
+    """The spans to shade, in which some diode conducts: none where one always does, since shade would then say
+    nothing."""
+    joined, (first, last) = any_conducts(picture.conduction), picture.span
+    edge = 1e-6 * (last - first)
+    always = len(joined) == 1 and joined[0][0] <= first + edge and joined[0][1] >= last - edge
+    return [] if always else joined
+
+
 def bars_of(proof: Proof) -> list[Bars]:
     """Each requirement on harmonics that can be judged, with every order."""
     found = []

@@ -10,6 +10,7 @@ from pathlib import Path
 
 from simcore.judge.outcome import Outcome
 from simcore.proof import Proof
+from simcore.report.diagram import diagram_of
 from simcore.report.panels import bars_of, picture_of
 from simcore.report.session import Say, open_jobs, proved, written
 from simcore.report.writing import whole_bytes
@@ -54,9 +55,12 @@ def draw_file(
 
 def _pictures(proof: Proof, form: str) -> dict[str, bytes]:
     """File stem -> content."""
-    from simcore.report.drawing import bars_bytes, picture_bytes
+    from simcore.report.drawing import bars_bytes, diagram_bytes, picture_bytes
 
     found = {}
+    diagram = diagram_of(proof.circuit)
+    if diagram is not None:
+        found[f"{Path(proof.circuit.name).stem}.circuit"] = diagram_bytes(diagram, form)
     for name, study in proof.studies.items():
         picture = picture_of(name, study)
         if picture is not None:

@@ -113,9 +113,10 @@ def run_files(
 
         say(summaries({each.job.file: (each.outcome, each.proof) for each in ended}))
     elif len(jobs) > 1 and not wishes.quiet:
+        from simcore.report.screen import present_screen
         from simcore.report.terminal import summary
 
-        say(summary({each.job.file: (each.outcome, each.proof) for each in ended}))
+        say(summary({each.job.file: (each.outcome, each.proof) for each in ended}, present_screen().width))
     outcomes = [each.outcome for each in ended]
     if wishes.junit is not None and not _report_tests(wishes.junit, ended, complain):
         outcomes.append(Outcome.INPUT_WRONG)

@@ -10,36 +10,40 @@ from collections.abc import Sequence
 from html import escape
 
 from simcore.judge.outcome import State
-from simcore.report.panels import Bars, Curve, Panel, Picture, any_conducts, decades, ticks
+from simcore.report.panels import Bars, Curve, Panel, Picture, decades, shades, ticks
 
 INK, GRID, SHADE, LIMIT = "#333333", "#dddddd", "#f3efe6", "#8a3b2e"
 COLOURS = ("#1f3d5c", "#b0722c", "#5f8f80", "#7a5a86", "#8d8d8d", "#33261d")
 """Muted, each of another lightness, so that they stay apart in grey."""
 DASHES = ("", "7 3", "2 2", "9 3 2 3", "5 2", "1 2")
 
-WIDTH, LEFT, RIGHT, HEIGHT, GAP, TOP, STRIP = 760, 74, 120, 170, 26, 34, 12
+WIDTH, LEFT, RIGHT, HEIGHT, GAP, TOP, STRIP = 760, 74, 120, 170, 26, 12, 12
 LABEL_GAP = 13.0
 
 
-def _text(x: float, y: float, words: str, anchor: str = "start", colour: str = INK, turn: bool = False) -> str:
+def text(x: float, y: float, words: str, anchor: str = "start", colour: str = INK, turn: bool = False) -> str:
+    """Words at a point; turn: upwards."""
     turned = f' transform="rotate(-90 {x:.1f} {y:.1f})"' if turn else ""
     return f'<text x="{x:.1f}" y="{y:.1f}" text-anchor="{anchor}" fill="{colour}"{turned}>{escape(words)}</text>'
 
 
-def _line(x1: float, y1: float, x2: float, y2: float, colour: str, more: str = "") -> str:
+def line(x1: float, y1: float, x2: float, y2: float, colour: str, more: str = "") -> str:
+    """A straight line; more: attributes."""
     return f'<line x1="{x1:.1f}" y1="{y1:.1f}" x2="{x2:.1f}" y2="{y2:.1f}" stroke="{colour}"{more}/>'
 
 
-def _box(x: float, y: float, width: float, height: float, colour: str) -> str:
+def box(x: float, y: float, width: float, height: float, colour: str) -> str:
+    """A filled rectangle."""
     return f'<rect x="{x:.1f}" y="{y:.1f}" width="{max(width, 0.3):.1f}" height="{height:.1f}" fill="{colour}"/>'
 
 
-def _document(height: float, title: str, parts: Sequence[str]) -> str:
+def document(width: float, height: float, title: str, parts: Sequence[str]) -> str:
+    """The whole of a picture."""
     head = (
-        f'<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 {WIDTH} {height:.0f}" role="img" '
+        f'<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 {width:.0f} {height:.0f}" role="img" '
         f'font-family="sans-serif" font-size="11"><title>{escape(title)}</title>'
     )
-    ground = f'<rect width="{WIDTH}" height="{height:.0f}" fill="#ffffff"/>'
+    ground = f'<rect width="{width:.0f}" height="{height:.0f}" fill="#ffffff"/>'
     return "\n".join([head, ground, *parts, "</svg>"])
 
 
@@ -53,24 +57,24 @@ def number(value: float) -> str:
 
 def picture_svg(picture: Picture) -> str:
     """The traces of a study: one panel a unit, shaded where diodes conduct, and below which of them do."""
-    parts = [_text(LEFT, 20, picture.title)]
+    parts = []
     top = float(TOP)
-    shades = any_conducts(picture.conduction)
+    shaded = shades(picture)
     for panel in picture.panels:
-        parts += _panel(panel, picture, shades, top)
+        parts += _panel(panel, picture, shaded, top)
         top += HEIGHT + GAP
     conducting = list(picture.conduction.items()) if len(picture.conduction) <= 12 else []
     for place, (name, spans) in enumerate(conducting):
         y = top + place * STRIP
-        parts.append(_text(LEFT - 6, y + 8, name, "end"))
+        parts.append(text(LEFT - 6, y + 8, name, "end"))
         for start, end in spans:
             left, right = _x(float(start), picture), _x(float(end), picture)
-            parts.append(_box(left, y, right - left, STRIP - 4, "#9a917f"))
+            parts.append(box(left, y, right - left, STRIP - 4, "#9a917f"))
     if conducting:
-        parts.append(_text(WIDTH - RIGHT + 6, top + 8, "conducts"))
+        parts.append(text(WIDTH - RIGHT + 6, top + 8, "conducts"))
     top += len(conducting) * STRIP + 6
     parts += _time_axis(picture, top)
-    return _document(top + 36, picture.title, parts)
+    return document(WIDTH, top + 36, picture.title, parts)
 
 
 def _x(time: float, picture: Picture) -> float:
@@ -79,11 +83,11 @@ def _x(time: float, picture: Picture) -> float:
 
 
 def _time_axis(picture: Picture, top: float) -> list[str]:
-    parts = [_line(LEFT, top, WIDTH - RIGHT, top, INK)]
+    parts = [line(LEFT, top, WIDTH - RIGHT, top, INK)]
     for tick in ticks(*picture.span, count=8):
         x = _x(tick, picture)
-        parts += [_line(x, top, x, top + 4, INK), _text(x, top + 16, number(tick), "middle")]
-    return [*parts, _text((LEFT + WIDTH - RIGHT) / 2.0, top + 31, picture.time_title, "middle")]
+        parts += [line(x, top, x, top + 4, INK), text(x, top + 16, number(tick), "middle")]
+    return [*parts, text((LEFT + WIDTH - RIGHT) / 2.0, top + 31, picture.time_title, "middle")]
 
 
 def value_range(curves: Sequence[Curve]) -> tuple[float, float]:
@@ -94,25 +98,25 @@ def value_range(curves: Sequence[Curve]) -> tuple[float, float]:
     return low - air, high + air
 
 
-def _panel(panel: Panel, picture: Picture, shades: Sequence[tuple[float, float]], top: float) -> list[str]:
+def _panel(panel: Panel, picture: Picture, shaded: Sequence[tuple[float, float]], top: float) -> list[str]:
     low, high = value_range(panel.curves)
 
     def y(value: float) -> float:
         return top + (high - value) / (high - low) * HEIGHT
 
     parts = []
-    for start, end in shades:
-        parts.append(_box(_x(start, picture), top, _x(end, picture) - _x(start, picture), HEIGHT, SHADE))
+    for start, end in shaded:
+        parts.append(box(_x(start, picture), top, _x(end, picture) - _x(start, picture), HEIGHT, SHADE))
     for tick in ticks(low, high):
-        parts += [_line(LEFT, y(tick), WIDTH - RIGHT, y(tick), GRID), _text(LEFT - 6, y(tick) + 4, number(tick), "end")]
+        parts += [line(LEFT, y(tick), WIDTH - RIGHT, y(tick), GRID), text(LEFT - 6, y(tick) + 4, number(tick), "end")]
     parts += [
-        _line(LEFT, top, LEFT, top + HEIGHT, INK),
-        _text(18, top + HEIGHT / 2.0, panel.title, "middle", INK, True),
+        line(LEFT, top, LEFT, top + HEIGHT, INK),
+        text(18, top + HEIGHT / 2.0, panel.title, "middle", INK, True),
     ]
     if picture.judged is not None:
         for time in picture.judged:
-            parts.append(_line(_x(time, picture), top, _x(time, picture), top + HEIGHT, INK, ' stroke-dasharray="2 3"'))
-        parts.append(_text(_x(picture.judged[0], picture) + 3, top + 10, "judged"))
+            parts.append(line(_x(time, picture), top, _x(time, picture), top + HEIGHT, INK, ' stroke-dasharray="2 3"'))
+        parts.append(text(_x(picture.judged[0], picture) + 3, top + 10, "judged"))
     for place, curve in enumerate(panel.curves):
         points = " ".join(
             f"{_x(float(time), picture):.1f},{y(float(value)):.1f}"
@@ -122,7 +126,7 @@ def _panel(panel: Panel, picture: Picture, shades: Sequence[tuple[float, float]]
         parts.append(f'<polyline points="{points}" fill="none" stroke="{COLOURS[place]}" stroke-width="1.3"{dash}/>')
     heights = spread([y(float(curve.values[-1])) for curve in panel.curves], LABEL_GAP)
     for place, (curve, height) in enumerate(zip(panel.curves, heights, strict=True)):
-        parts.append(_text(WIDTH - RIGHT + 6, height + 4, curve.label, "start", COLOURS[place]))
+        parts.append(text(WIDTH - RIGHT + 6, height + 4, curve.label, "start", COLOURS[place]))
     return parts
 
 
@@ -148,25 +152,25 @@ def bars_svg(bars: Bars) -> str:
         return top + (1.0 - share) * height
 
     step = (WIDTH - LEFT - RIGHT) / len(bars.rows)
-    parts = [_text(LEFT, 20, bars.title)]
+    parts = []
     for decade in range(bottom, top_decade + 1):
         level = y(10.0**decade)
         parts += [
-            _line(LEFT, level, WIDTH - RIGHT, level, GRID),
-            _text(LEFT - 6, level + 4, f"{10.0**decade:g}", "end"),
+            line(LEFT, level, WIDTH - RIGHT, level, GRID),
+            text(LEFT - 6, level + 4, f"{10.0**decade:g}", "end"),
         ]
     for place, row in enumerate(bars.rows):
         x = LEFT + step * place
         colour = LIMIT if row.state is State.FAILS else COLOURS[2]
         tip = y(row.figure.value)
-        parts.append(_box(x + 0.2 * step, tip, 0.6 * step, top + height - tip, colour))
+        parts.append(box(x + 0.2 * step, tip, 0.6 * step, top + height - tip, colour))
         parts.append(
-            _line(x + 0.05 * step, y(row.limit.value), x + 0.95 * step, y(row.limit.value), INK, ' stroke-width="2"')
+            line(x + 0.05 * step, y(row.limit.value), x + 0.95 * step, y(row.limit.value), INK, ' stroke-width="2"')
         )
         if len(bars.rows) <= 20 or place % 2 == 1:
-            parts.append(_text(x + 0.5 * step, top + height + 14, str(row.order), "middle"))
+            parts.append(text(x + 0.5 * step, top + height + 14, str(row.order), "middle"))
     last = y(bars.rows[-1].limit.value)
-    parts += [_text(WIDTH - RIGHT + 6, last + 4, "limit"), _line(LEFT, top, LEFT, top + height, INK)]
-    parts.append(_text(18, top + height / 2.0, "current in A rms", "middle", INK, True))
-    parts.append(_text((LEFT + WIDTH - RIGHT) / 2.0, top + height + 30, "order of the harmonic", "middle"))
-    return _document(top + height + 40, bars.title, parts)
+    parts += [text(WIDTH - RIGHT + 6, last + 4, "limit"), line(LEFT, top, LEFT, top + height, INK)]
+    parts.append(text(18, top + height / 2.0, "current in A rms", "middle", INK, True))
+    parts.append(text((LEFT + WIDTH - RIGHT) / 2.0, top + height + 30, "order of the harmonic", "middle"))
+    return document(WIDTH, top + height + 40, bars.title, parts)

@@ -28,7 +28,10 @@ def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1,
     longest = max(range(left), key=lambda column: widths[column], default=0)
     if width is not None and left:
         beside = len(INDENT) + sum(each + len(GAP) for each in widths[:left]) - widths[longest] - len(GAP)
-        room = width - beside - max((each + len(GAP) for each in widths[left:]), default=0)
+        numbers = [each + len(GAP) for each in widths[left:]]
+        room = width - beside - sum(numbers)
+        if room < min(NARROWEST, widths[longest]):
+            room = width - beside - max(numbers, default=0)
         widths[longest] = min(widths[longest], max(room, NARROWEST))
     broken = [part for row in cells for part in _broken(row, longest, widths)]
     head = len(_broken(cells[0], longest, widths))

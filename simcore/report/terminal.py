@@ -62,11 +62,18 @@ def figure_table(subject: str, rows: Sequence[Row], wording: Mapping[str, str], 
     cells = [[row_name(row), *(words.value(row.figures[column]) for column in columns)] for row in rows]
     bounds = [words.largest_bound(row.figures[column] for row in rows) for column in columns]
     headings = [subject, *(wording.get(column, column) for column in columns)]
-    notes = dict.fromkeys(
-        f"{row.name}, {column}: {figure.note}" for row in rows for column, figure in row.figures.items() if figure.note
-    )
     lines = table(headings, [*cells, ["± at most", *bounds]], width=width)
-    return lines + [INDENT + note for note in notes]
+    return lines + [INDENT + note for note in _notes(rows)]
+
+
+def _notes(rows: Sequence[Row]) -> list[str]:
+    """What must be known of figures, once for all rows that it is true of."""
+    found: dict[tuple[str, str], list[str]] = {}
+    for row in rows:
+        for column, figure in row.figures.items():
+            if figure.note:
+                found.setdefault((column, figure.note), []).append(row.name)
+    return [f"{column} of {', '.join(names)}: {note}" for (column, note), names in found.items()]
 
 
 def row_name(row: Row) -> str:
@@ -130,10 +137,10 @@ def show_seconds(seconds: float) -> str:
 # --- several files ---------------------------------------------------------------------------------------------------
 
 
-def summary(outcomes: Mapping[str, tuple[Outcome, Proof | None]]) -> str:
+def summary(outcomes: Mapping[str, tuple[Outcome, Proof | None]], width: int | None = None) -> str:
     """One line a description, for a run over several."""
     rows = [
         [description, outcome.sentence if proof is None else words.closing(proof.verdicts)]
         for description, (outcome, proof) in outcomes.items()
     ]
-    return "\n".join(["Summary", *table(["description", "outcome"], rows, left=2)])
+    return "\n".join(["Summary", *table(["description", "outcome"], rows, 2, width)])

@@ -8,7 +8,8 @@ from __future__ import annotations
 import math
 from collections.abc import Iterable, Sequence
 
-from grammar.quantities import AMPERE, show
+from grammar.description import Call
+from grammar.quantities import AMPERE, KELVIN, show
 from grammar.writer import write_expression
 from simcore.figures.figure import Figure
 from simcore.judge.bill import BillLine
@@ -65,7 +66,7 @@ def verdict_cells(verdict: Verdict) -> list[str]:
         verdict.requirement.study,
         subject(verdict),
         required(verdict),
-        "-" if verdict.figure is None else with_bound(verdict.figure),
+        "-" if verdict.figure is None else _amount(verdict, verdict.figure, sure=True),
         margin,
     ]
 
@@ -85,9 +86,19 @@ def required(verdict: Verdict) -> str:
     if verdict.limit is None:
         return "-"
     if verdict.upper is not None:
-        return f"{value(verdict.limit)} to {value(verdict.upper)}"
+        return f"{_amount(verdict, verdict.limit)} to {_amount(verdict, verdict.upper)}"
     relation = "<=" if verdict.requirement.limits is not None else verdict.requirement.relation
-    return f"{relation} {value(verdict.limit)}"
+    return f"{relation} {_amount(verdict, verdict.limit)}"
+
+
+def _amount(verdict: Verdict, figure: Figure, sure: bool = False) -> str:
+    """A figure or limit of a verdict; sure: with its bound. A temperature, which is no difference of two, in degC."""
+    asked = verdict.requirement.figure
+    whole = asked is None or (isinstance(asked, Call) and asked.name == "junction_temperature")
+    if figure.dimension != KELVIN or not figure.defined or not whole:
+        return with_bound(figure) if sure else value(figure)
+    text = stress_text(figure)
+    return f"{text} ± {bound(figure)}" if sure else text
 
 
 def reasons(verdicts: Sequence[Verdict]) -> list[str]:

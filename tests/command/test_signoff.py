@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import json
+import re
 import sys
 from collections.abc import Callable
 from dataclasses import dataclass
@@ -128,11 +129,38 @@ def test_kept_figures_and_what_drifts_from_them(folder: Path, bulkrail: Call) ->
     )
     drifted = bulkrail("compare", "d.rect", "--junit", "j.xml", folder=folder)
     assert drifted.returncode == 1 and "5 new" in drifted.stdout and "bounds allow" in drifted.stdout
+    assert "\n  new in s: u_rail, mean, rms, peak, valley, ripple\n" in drifted.stdout
+    ripple = next(line for line in drifted.stdout.splitlines() if "u_out, ripple" in line)
+    assert re.fullmatch(r"  s +u_out, ripple +[\d.]+ V +[\d.]+ V +-[\d.]+ mV +[\d.]+ uV", ripple), ripple
     (suite,) = ElementTree.parse(folder / "j.xml").getroot()
     assert 0 < int(suite.attrib["failures"]) < int(suite.attrib["tests"])
     (folder / "d.rect").write_text(TEXT.replace("observe u_out", "observe u_rail").replace("u_out", "u_rail"))
     renamed = bulkrail("compare", "d.rect", folder=folder)
     assert renamed.returncode == 1 and "0 drifted, 5 missing, 5 new" in renamed.stdout
+
+
+def test_what_drifted_most_stands_first_and_the_rest_is_counted(
+    folder: Path, bulkrail: Call, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("simcore.report.drift.MOST_SHOWN", 3)
+    bulkrail("keep", "d.rect", folder=folder)
+    (folder / "d.rect").write_text(TEXT.replace("100 Ohm", "110 Ohm"))
+    done = bulkrail("compare", "d.rect", folder=folder)
+    count = int(re.search(r"(\d+) drifted", done.stdout)[1])  # type: ignore[index]
+    rows = [line for line in done.stdout.splitlines() if line.startswith("  s ")]
+    assert done.returncode == 1 and len(rows) == 3 and f"and {count - 3} more that moved" in done.stdout
+
+    def share(row: str) -> float:
+        was, now = (show_to_number(each) for each in re.findall(r"[\d.]+ [mu]?[AVW]|[\d.]+ deg", row)[:2])
+        return abs(now - was) / max(now, was)
+
+    assert [share(row) for row in rows] == sorted((share(row) for row in rows), reverse=True)
+
+
+def show_to_number(text: str) -> float:
+    """A shown value in its SI unit."""
+    number, unit = text.split()
+    return float(number) * {"m": 1e-3, "u": 1e-6}.get(unit[0], 1.0)
 
 
 def test_a_looser_accuracy_is_no_drift(folder: Path, bulkrail: Call) -> None:
@@ -191,7 +219,7 @@ def test_two_lets_give_their_trade_off(folder: Path, bulkrail: Call, monkeypatch
 def test_pictures_go_beside_the_results(folder: Path, bulkrail: Call) -> None:
     pytest.importorskip("matplotlib", reason="the extra `view` is not installed")
     done = bulkrail("draw", "d.rect", "--format", "svg", "--out", "p", folder=folder)
-    assert done.returncode == 0 and [path.name for path in (folder / "p").iterdir()] == ["s.svg"]
+    assert done.returncode == 0 and sorted(path.name for path in (folder / "p").iterdir()) == ["d.circuit.svg", "s.svg"]
 
 
 def test_pictures_without_matplotlib_are_a_message(

@@ -10,6 +10,7 @@ from pathlib import Path
 import pytest
 
 import simcore
+from simcore.report.baseline import figures_to_keep
 from simcore.report.files import write_results
 
 TEXT = """
@@ -33,5 +34,7 @@ def test_angles_are_in_degrees(tmp_path: Path) -> None:
     assert row["unit"] == verdict["unit"] == "deg" and 160.0 < float(row["value"]) < 180.0
     assert verdict["value"] == row["value"] and float(verdict["limit"]) == pytest.approx(180.0)
     assert float(verdict["margin"]) == pytest.approx(180.0 - float(row["value"])) and float(row["bound"]) < 1.0
+    kept = figures_to_keep(simcore.read_text(TEXT).prove())["s", "D1", "conduction angle"]
+    assert kept.unit == "deg" and kept.value == float(row["value"]) and kept.bound == float(row["bound"])
     lets = json.loads((tmp_path / "summary.json").read_text())["lets"]
     assert lets["turn"]["unit"] == "deg" and math.isclose(lets["turn"]["value"], 90.0)
