@@ -50,8 +50,9 @@ WORK = 1e7
 LARGEST_SUM = 1e-3
 """Sum of the currents at a node, over the largest one there, above which a solution is none."""
 _LOOSEST, _TIGHTEST = 5e-4, 1e-8
-"""Tolerances of a step. Of 124 settled figures worked out outside, the difference of two solutions at 5e-4 and an eighth
-of it covers the true error of 97 %; at 8e-3 and 1e-3 only of 80 %, since there errors do not yet fall as they should."""
+"""Tolerances of a step. Of 124 settled figures worked out outside, the difference of two solutions at 5e-4 and an
+eighth of it covers the true error of 97 %; at 8e-3 and 1e-3 only of 80 %, since errors do not yet fall there as they
+should."""
 
 
 @dataclass(frozen=True)

@@ -6,6 +6,7 @@ end; y0, y1 ... the states before it; v0, v1 ... the nonlinear branches' voltage
 
 from __future__ import annotations
 
+import math
 from collections.abc import Hashable, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
@@ -84,6 +85,22 @@ class System:
     companions: list[Companion] = field(default_factory=list)
 
     @cached_property
+    def branches_of_element(self) -> dict[str, list[int]]:
+        """Positions of the branches of each element."""
+        found: dict[str, list[int]] = {}
+        for index, branch in enumerate(self.frame.branches):
+            found.setdefault(branch.element, []).append(index)
+        return found
+
+    @cached_property
+    def branches_of(self) -> dict[tuple[str, str], list[int]]:
+        """Positions of the branches of each element's port."""
+        found: dict[tuple[str, str], list[int]] = {}
+        for index, branch in enumerate(self.frame.branches):
+            found.setdefault((branch.element, branch.port), []).append(index)
+        return found
+
+    @cached_property
     def responses(self) -> list[Value]:
         """How the states after a step change with those before it, along a direction given by the inputs e0, e1 ...;
         the nonlinear branches' slopes are those of the last iteration, so this is exact once Newton has converged."""
@@ -101,17 +118,21 @@ class Companion:
     offset: Value
 
 
-def assemble(frame: Frame, references: Sequence[Hashable], eliminate: bool = True) -> System:
+def assemble(
+    frame: Frame, references: Sequence[Hashable], eliminate: bool = True, most: float = math.inf
+) -> System:
     """The equations of one step; without elimination the free unknowns are inputs s0, s1 ... of what follows from them.
 
-    Raises reduce.ContradictoryLoop where ideal voltages close a loop.
+    Raises reduce.ContradictoryLoop where ideal voltages close a loop, eliminate.TooLarge where the elimination takes
+    the graph beyond `most` values.
     """
-    return _Assembly(frame, references, eliminate).system
+    return _Assembly(frame, references, eliminate, most).system
 
 
 class _Assembly:
-    def __init__(self, frame: Frame, references: Sequence[Hashable], eliminate: bool):
+    def __init__(self, frame: Frame, references: Sequence[Hashable], eliminate: bool, most: float):
         self.graph = frame.graph
+        self._most = most
         self.step = frame.step
         self.rate = 1.0 / self.step
         reduction = Reduction(self.graph, frame.branches, references)
@@ -131,7 +152,7 @@ class _Assembly:
         self.system.thresholds = [self._sensed(threshold, solution) for threshold in frame.thresholds]
 
     def _eliminated(self) -> dict[Hashable, Value]:
-        elimination = Elimination(self.graph, list(self.system.reduction.free))
+        elimination = Elimination(self.graph, list(self.system.reduction.free), self._most)
         for companion in self.system.companions:
             elimination.stamp(companion.form.weights, companion.conductance, companion.offset)
         solution = elimination.solve()

@@ -14,7 +14,7 @@ import numpy as np
 
 from simcore.equations.run_interface import CONTROLS
 
-_CASTS = tuple(int if name in ("order", "limit", "room") else float for name in CONTROLS)
+_CASTS = tuple(int if name in ("order", "limit", "room", "attempts") else float for name in CONTROLS)
 SECONDS_A_LINE = 0.018
 """What compiling a line of the emitted source takes, measured on sources of 250 to 1090 lines."""
 

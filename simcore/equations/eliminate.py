@@ -12,8 +12,10 @@ Order: nodes first, then unknowns whose row changes seldom, then fewest neighbou
 
 from __future__ import annotations
 
+import math
 from collections.abc import Hashable
 from dataclasses import dataclass, field
+from heapq import heapify, heappop, heappush
 
 from simcore.equations.values import Graph, Level, Value
 
@@ -44,11 +46,15 @@ class Guard:
     start: Value
 
 
-class Elimination:
-    """Conductance stamps in, unknowns as graph values out."""
+class TooLarge(Exception):
+    """An elimination whose operations would be too many to be emitted."""
 
-    def __init__(self, graph: Graph, unknowns: list[Hashable]):
-        self._graph = graph
+
+class Elimination:
+    """Conductance stamps in, unknowns as graph values out; most: values in the graph, beyond which it is given up."""
+
+    def __init__(self, graph: Graph, unknowns: list[Hashable], most: float = math.inf):
+        self._graph, self._most = graph, most
         self._rows: dict[Hashable, _Row] = {unknown: _Row(sums=_is_node(unknown)) for unknown in unknowns}
         self.guards: list[Guard] = []
 
@@ -72,17 +78,26 @@ class Elimination:
                     row.mutual.setdefault(other, []).append(-(conductance * weight * other_weight))
 
     def solve(self) -> dict[Hashable, Value]:
-        """Eliminate all unknowns and give each as a value; the stamps are used up."""
+        """Eliminate all unknowns and give each as a value; the stamps are used up. Raises TooLarge."""
         steps = []
-        remaining = dict.fromkeys(self._rows)
-        ranks = {unknown: self._rank(unknown) for unknown in remaining}
-        while remaining:
-            pivot = min(remaining, key=lambda unknown: ranks[unknown])
-            del remaining[pivot]
+        places = {unknown: place for place, unknown in enumerate(self._rows)}
+        ranks = {unknown: self._rank(unknown) for unknown in places}
+        queue = [(rank, places[unknown], unknown) for unknown, rank in ranks.items()]
+        heapify(queue)
+        while queue:
+            rank, _, pivot = heappop(queue)
+            if ranks.get(pivot) != rank:
+                continue
+            del ranks[pivot]
             neighbours = list(self._rows[pivot].mutual)
             steps.append(self._eliminate(pivot))
+            if len(self._graph.values) > self._most:
+                raise TooLarge
             for unknown in neighbours:
-                ranks[unknown] = self._rank(unknown)
+                rank = self._rank(unknown)
+                if ranks[unknown] != rank:
+                    ranks[unknown] = rank
+                    heappush(queue, (rank, places[unknown], unknown))
         solution: dict[Hashable, Value] = {}
         for step in reversed(steps):
             terms = [factor * solution[other] for other, factor in step.factors.items()]

@@ -12,6 +12,7 @@ import numpy as np
 from simcore.components.frame import Frame
 from simcore.equations.assemble import System, assemble
 from simcore.equations.compiled import CompiledRun, seconds_for
+from simcore.equations.eliminate import TooLarge
 from simcore.equations.run_interface import saved_count, watched_columns
 from simcore.equations.run_source import RunSource
 
@@ -29,14 +30,20 @@ class Equations:
     def __init__(self, frame: Frame, references: Sequence[Hashable]):
         self._frame, self._references = frame, references
         self._functions: dict[str, Callable] = {}
-        self.emitted_size = len(frame.graph.values)
 
     @cached_property
+    def eliminated(self) -> System | None:
+        """The equations with the free unknowns eliminated; None where that would be too large to be emitted."""
+        try:
+            system = assemble(self._frame, self._references, most=EMITTED_AT_MOST)
+        except TooLarge:
+            return None
+        return system if len(self._frame.graph.values) <= EMITTED_AT_MOST else None
+
+    @property
     def system(self) -> System:
-        """The equations with the free unknowns eliminated."""
-        system = assemble(self._frame, self._references)
-        self.emitted_size = len(self._frame.graph.values)
-        return system
+        """These, or where there are none those without elimination."""
+        return self.eliminated or self.sparse[0]
 
     @cached_property
     def source(self) -> str:
@@ -101,7 +108,7 @@ class Kernel:
         self.system = self.equations.system
         self.watched, self.saved_count = watched_columns(self.system), saved_count(self.system)
         self.source = ""
-        if self.equations.emitted_size > EMITTED_AT_MOST:
+        if self.equations.eliminated is None:
             self.use_sparse()
             return
         self.source = self.equations.source

@@ -58,7 +58,12 @@ class Reduction:
             self._eliminate(branches[index])
         mentioned = dict.fromkeys(unknown for branch in branches for unknown, _ in branch.weights)
         self.unknowns = [unknown for unknown in mentioned if unknown not in self._fixed]
+        self._known = frozenset(self.unknowns)
         self.free = [unknown for unknown in self.unknowns if unknown not in self._forms]
+
+    def knows(self, unknown: Hashable) -> bool:
+        """Whether an unknown is one of these branches' and no reference."""
+        return unknown in self._known
 
     def form(self, weights: Weights) -> Form:
         """A branch voltage as a sum of free unknowns and a known part."""

@@ -7,10 +7,14 @@ at the end of a step, each column's middle and end value, 1 where a nonlinear br
 it (a kink or jump lies inside), else 0.
 c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of
 states: the derivative of the states by those at the start, direction by direction, and room for three more. Returns
-(status, numbers written, steps, rejected, solves, iterations, weak pivots, threshold passed + 1 or 0).
+(status, numbers written, steps, rejected, solves, iterations, weak pivots, which). After so many attempts at a step as
+the controls allow it answers FULL, so that its caller may bound the work. which: after an EVENT the threshold passed
++ 1; after NO_CONVERGENCE what is nearest to the trouble (see nearest); else 0.
 """
 
 from __future__ import annotations
+
+from collections.abc import Hashable
 
 from simcore.components.frame import NonlinearBranch
 from simcore.equations.assemble import System
@@ -25,6 +29,7 @@ CONTROLS = (
     "fade",
     "record",
     "room",
+    "attempts",
     "floor_voltage",
     "floor_current",
     "watch_tolerance",
@@ -44,6 +49,18 @@ BLOCKED, PATIENCE = 0.01, 8
 """Agreement, over the law's scale, of a branch that blocks, and the iterations after which any will do: the rounding of
 the large voltages around such a branch is all that moves it, and while it blocks it errs by less than its leakage. A
 branch that carries next to nothing needs no better then than the least error that the control of the step sees."""
+
+
+def nearest(system: System, which: int) -> str:
+    """The element or node that a run told to be nearest to what stopped it: above zero the nonlinear branch + 1, below
+    zero the negative of the state + 1, or of all states and the column + 1; "" for zero."""
+    if which == 0:
+        return ""
+    owners: list[Hashable] = [system.frame.branches[state.branch].element for state in system.states]
+    for column in system.columns:
+        owners.append(column.unknown if column.branch is None else system.frame.branches[column.branch].element)
+    found = system.frame.branches[system.junctions[which - 1].branch].element if which > 0 else owners[-which - 1]
+    return f"near {found[0] if isinstance(found, tuple) else found}"
 
 
 def watched_columns(system: System) -> list[int]:

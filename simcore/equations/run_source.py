@@ -116,7 +116,7 @@ class RunSource:
         add(1, "if order == 3:", "    take1, take2, take3, miss1, miss2, miss3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
         add(1, "mean1, mean2, mean3 = 1.5 * take1, 0.75 * take2, 0.5 * take3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
-        add(1, "failures = 0", "landing = 0.0", "kink = 0.0")
+        add(1, "failures = 0", "landing = 0.0", "kink = 0.0", "stuck = 0")
 
     def _choose_size(self) -> None:
         self._add(
@@ -125,6 +125,9 @@ class RunSource:
             "if left <= 0.0:",
             "    break",
             f"if record > 0.0 and position + {record_width(self.system)} > room:",
+            f"    status = {FULL}",
+            "    break",
+            "if steps + rejected >= attempts:",
             f"    status = {FULL}",
             "    break",
             "size = min(wish, largest)",
@@ -224,6 +227,7 @@ class RunSource:
             *([f"        or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
             "    ):",
             "        good = False",
+            f"        stuck = {index + 1}",
             "        if n# > k# and d > 0.0:",
             "            if v# > 0.0:",
             "                n# = v# + w# * log(1.0 + d / w#)",
@@ -261,21 +265,21 @@ class RunSource:
             add(2, f"if (u{index} > g{index}) != (n{index} > g{index}):", "    kink = 1.0")
         add(2, "if kink > 0.0 and order > 1 and size > 1.01 * kink_size and size > smallest:")
         add(3, "rejected += 1", "wish = kink_size", "continue")
-        add(2, "error = 0.0")
+        add(2, "error = 0.0", "largest_error = 0")
         for index, state in enumerate(self.system.states):
             floor = self.emitter.name(state.small)
             add(2, f"r = abs(miss1 * e1_{index} + miss2 * e2_{index} + miss3 * e3_{index}) / max(i{index}, {floor})")
-            add(2, "if not r <= error:", "    error = r")
+            add(2, "if not r <= error:", "    error = r if r < 1e300 else 1e300", f"    largest_error = {-index - 1}")
         add(2, "error /= tolerance")
         if self.watched:
             add(2, "if order == 3:")
         for index, column in enumerate(self.watched):
-            add(3, self._bend(index, column), "if not r <= error:", "    error = r")
+            add(3, self._bend(index, column), "if not r <= error:", "    error = r if r < 1e300 else 1e300")
         add(2, "if order > 1:", "    if error < 1e-3:", "        factor = 2.0", "    else:")
         add(4, "factor = 0.9 * error ** (-1.0 / order)")
         add(3, "if not error <= 1.0 and size > smallest:", "    rejected += 1")
         add(4, "wish = size * max(0.2, factor) if factor > 0.0 else size * 0.2", "continue")
-        add(3, "if not error < 1e30:", f"    status = {NO_CONVERGENCE}", "    break")
+        add(3, "if not error < 1e30:", f"    status = {NO_CONVERGENCE}", "    stuck = largest_error", "    break")
         self._crossings()
         add(3, "wish = size if 0.9 <= factor <= 1.2 else max(smallest, size * min(2.0, max(0.2, factor)))")
 
@@ -379,8 +383,9 @@ class RunSource:
         for letter, count in saved_groups(self.system):
             self._add(1, *(f"s[{position + index}] = {letter}{index}" for index in range(count)))
             position += count
-        event = "event" if self.system.thresholds else "0"
-        self._add(1, f"return status, position, steps, rejected, solves, iterations, weak, {event}")
+        event = f"event if status == {EVENT} else " if self.system.thresholds else ""
+        which = f"{event}(stuck if status == {NO_CONVERGENCE} else 0)"
+        self._add(1, f"return status, position, steps, rejected, solves, iterations, weak, {which}")
 
 
 def _end(column: int) -> str:

@@ -27,6 +27,8 @@ from simcore.equations.run_interface import (
 )
 from simcore.equations.values import Value
 
+_DECOMPOSED = 500
+"""Unknowns up to which a singular matrix is decomposed to name one."""
 _WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
 _ERRORS = {1: (0.0, 0.0, 0.0), 2: (-1.0, 1.0, 0.0), 3: (0.5, -2.0, 1.5)}
 
@@ -78,7 +80,7 @@ class _Attempt:
         self.z, self.u, self.peaks, self.watched_peaks, self.ends, self.passed = parts
         armed = [threshold.armed for threshold in run._system.frame.thresholds]
         self.armed = np.array([all((p[flag.position] > 0.5) == up for flag, up in each) for each in armed], dtype=bool)
-        self.event = 0
+        self.event = self.stuck = 0
         inputs = {f"p{index}": number for index, number in enumerate(p)}
         inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
         fixed = [value for each in run._system.junctions for value in (each.scale, each.critical, each.straight)]
@@ -113,6 +115,9 @@ class _Attempt:
             if c["record"] > 0.0 and self.position + width > c["room"]:
                 status = FULL
                 break
+            if self.steps + self.rejected >= c["attempts"]:
+                status = FULL
+                break
             size = min(self.wish, c["largest"])
             last = size >= left * 0.999999
             size = left if last else (0.5 * left if size > 0.5 * left else size)
@@ -127,12 +132,13 @@ class _Attempt:
                 if self.event:
                     status = EVENT
                     break
-            elif not np.isfinite(self._error) and size <= c["smallest"]:
-                status = NO_CONVERGENCE
+            elif not self._error < 1e30 and size <= c["smallest"]:
+                status, self.stuck = NO_CONVERGENCE, self._most_wrong()
                 break
         groups = (self.z, self.u, self.peaks, self.watched_peaks, self.ends, self.passed)
         self.saved[:] = [self.now, self.wish, *(float(number) for group in groups for number in group)]
-        return status, self.position, self.steps, self.rejected, self.solves, self.iterations, 0, self.event
+        which = self.event if status == EVENT else self.stuck if status == NO_CONVERGENCE else 0
+        return status, self.position, self.steps, self.rejected, self.solves, self.iterations, 0, which
 
     def _extrapolated(self, size: float, stop: float) -> list[tuple[np.ndarray, list[np.ndarray], np.ndarray]] | None:
         """States, columns at each part and junction voltages, for each division; None where Newton fails."""
@@ -167,6 +173,7 @@ class _Attempt:
             try:
                 factors = splu(matrix)
             except RuntimeError:
+                self.stuck = -1 - states - _loosest(matrix)
                 return None
             x = factors.solve(right)
             x += factors.solve(right - matrix @ x)
@@ -193,7 +200,9 @@ class _Attempt:
             inside = v + self.scale * np.log1p(step / self.scale)
             entering = self.scale * np.log(n / self.scale)
         limited = np.where(limit, np.where(v > 0.0, inside, entering), n)
-        return limited, not bool(np.any(moving))
+        if moving.any():
+            self.stuck = int(np.flatnonzero(moving)[-1]) + 1
+        return limited, not bool(moving.any())
 
     def _failed(self, size: float) -> bool:
         self.rejected += 1
@@ -219,6 +228,7 @@ class _Attempt:
             scale = np.maximum(self.watched_peaks, self.c["floor_current"]) * self.c["watch_tolerance"]
             errors = np.concatenate([errors, self._bend(found) / scale])
         self._error = error = float(np.max(errors, initial=0.0))
+        self._errors = errors
         factor = 2.0 if error < 1e-3 else 0.9 * error ** (-1.0 / order)
         if not error <= 1.0 and size > self.c["smallest"]:
             self.rejected += 1
@@ -234,6 +244,11 @@ class _Attempt:
             return False
         self.wish = size if 0.9 <= factor <= 1.2 else max(self.c["smallest"], size * min(2.0, max(0.2, factor)))
         return True
+
+    def _most_wrong(self) -> int:
+        """The state or watched current whose error is largest, or no number, as `nearest` takes it."""
+        states, worst = self.run._counts[0], int(np.argmax(self._errors))
+        return -1 - (worst if worst < states else states + int(self.run._watched[worst - states]))
 
     def _reached(self, found: list) -> np.ndarray:
         """How far each threshold is passed at the end of a step."""
@@ -287,6 +302,14 @@ class _Attempt:
             if max(0.05 * self.wish, self.c["smallest"]) < ahead < self.wish:
                 self.wish, self.landing = float(ahead), True
         self.u = n
+
+
+def _loosest(matrix: Any) -> int:
+    """Of a singular matrix, the unknown that it leaves most free: the largest of its null vector, or the weakest
+    diagonal where it is too large to be decomposed."""
+    if matrix.shape[0] > _DECOMPOSED or not np.all(np.isfinite(matrix.data)):
+        return int(np.argmin(np.nan_to_num(np.abs(matrix.diagonal()))))
+    return int(np.argmax(np.abs(np.linalg.svd(matrix.toarray())[2][-1])))
 
 
 def _combine(weights: tuple[float, float, float], values: list[np.ndarray]) -> np.ndarray:

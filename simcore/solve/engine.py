@@ -15,7 +15,7 @@ import numpy as np
 from simcore.components.frame import Waveform
 from simcore.equations.kernel import Kernel
 from simcore.equations.plain import evaluate
-from simcore.equations.run_interface import DONE, EVENT, FULL, WEAK, record_width
+from simcore.equations.run_interface import DONE, EVENT, FULL, WEAK, nearest, record_width
 from simcore.solve.corners import corner, line
 from simcore.solve.failure import Reason
 from simcore.solve.flags import Flags
@@ -25,6 +25,10 @@ _ROOM = 40_000
 _COLD_LIMIT = 100
 _LIMIT = 25
 _STEPS_AT_MOST = 2_000_000
+_WORK_AT_MOST = 1e9
+"""Solved systems times their branches and columns, of one solution of a study: minutes, whatever the circuit."""
+_WORK_A_CALL = 3e6
+_ATTEMPTS = 100
 REST_STEP = 1e15
 _CHANGES_AT_MOST = 200
 _START_AGREEMENT = 1e-4
@@ -64,14 +68,17 @@ class Counts:
     solves: int = 0
     iterations: int = 0
     weak: int = 0
+    work: int = 0
 
-    def add(self, result: tuple[int, ...]) -> None:
+    def add(self, result: tuple[int, ...], size: int) -> None:
+        """Add the answer of a run on so many branches and columns."""
         _, _, steps, rejected, solves, iterations, weak, _ = result
         self.steps += steps
         self.rejected += rejected
         self.solves += solves
         self.iterations += iterations
         self.weak += weak
+        self.work += max(solves, iterations) * size
 
 
 class Interrupted(Exception):
@@ -104,6 +111,8 @@ class Engine:
         self.saved = [0.0] * self.kernel.saved_count
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
+        self._size = len(self.kernel.system.columns) + len(self.kernel.system.frame.branches)
+        self._attempts = max(_ATTEMPTS, int(_WORK_A_CALL / self._size))
         self._first_step = 0.0
         self._record: Sequence[float] | None = None
         self._response: list[float] | None = None
@@ -169,7 +178,8 @@ class Engine:
             try:
                 for step in (*steps, *_REST_AGAIN):
                     record = self._single(time, step)
-            except Interrupted:
+            except Interrupted as stop:
+                failure = stop
                 continue
             values = np.stack([record, record, record])[None]
             return Stretch(
@@ -182,7 +192,7 @@ class Engine:
                 shortest=_REST_AGAIN[-1],
                 held=True,
             )
-        raise Interrupted(Reason.NO_CONVERGENCE, time)
+        raise Interrupted(failure.reason, time, failure.detail)
 
     def begin(self, time: float, step: float) -> np.ndarray:
         """Values just after a time, from the states as they are: steps too short to move them, extrapolated to none.
@@ -194,14 +204,14 @@ class Engine:
             try:
                 twice = self._from(states, time, 2.0 * step * shorter)
                 once = self._from(states, time, step * shorter)
-            except Interrupted:
-                self.saved = keep
+            except Interrupted as stop:
+                self.saved, failure = keep, stop
                 continue
             self.set_states(states)
             self.saved[0] = time
             self._first_step = step * shorter
             return 2.0 * once - twice
-        raise Interrupted(Reason.NO_CONVERGENCE, time)
+        raise Interrupted(failure.reason, time, failure.detail)
 
     def _from(self, states: list[float], time: float, step: float) -> np.ndarray:
         self.set_states(states)
@@ -212,7 +222,7 @@ class Engine:
         self.saved[0], self.saved[1] = time - step, step
         floors = (1.0, self.rounding)
         limits = (1.0, _START_AGREEMENT, math.inf, math.inf)
-        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, *floors, *limits)
+        controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, _ATTEMPTS, *floors, *limits)
         if self.saved[0] == time:
             raise Interrupted(Reason.NO_CONVERGENCE, time)
         written, _ = self._call(controls)
@@ -278,6 +288,7 @@ class Engine:
             0.5 / stepping.memory,
             1.0 if record else 0.0,
             _ROOM,
+            self._attempts,
             0.01 * stepping.voltage,
             max(stepping.current, self._current_floor()),
             max(_LEAST_BEND, 30.0 * stepping.tolerance),
@@ -295,8 +306,6 @@ class Engine:
                 self._forget_guesses()
             if self.saved[0] >= corner or passed is not None:
                 return chunks
-            if self.counts.steps > _STEPS_AT_MOST:
-                raise Interrupted(Reason.WORK, self.saved[0])
 
     def _current_floor(self) -> float:
         """One per cent of the largest current the run has seen."""
@@ -313,6 +322,8 @@ class Engine:
     def _call(self, controls: tuple[float, ...]) -> tuple[int, int | None]:
         """Run the kernel once; returns how many numbers it recorded and the threshold that ended it, if one did. A
         pivot that shrank to rounding is answered by going back and on with the sparse LU, which may pivot."""
+        if self.counts.steps > _STEPS_AT_MOST or self.counts.work > _WORK_AT_MOST:
+            raise Interrupted(Reason.WORK, self.saved[0])
         if self._record is None:
             self._record = self.kernel.room(_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
@@ -323,9 +334,9 @@ class Engine:
             result = self._run(controls)
         if result is None:
             raise Interrupted(Reason.SINGULAR, self.saved[0])
-        self.counts.add(result)
+        self.counts.add(result, self._size)
         if result[0] not in (DONE, FULL, EVENT):
-            raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0])
+            raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0], nearest(self.kernel.system, result[-1]))
         return result[1], result[-1] - 1 if result[0] == EVENT else None
 
     def _run(self, controls: tuple[float, ...]) -> tuple[int, ...] | None:

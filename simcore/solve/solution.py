@@ -49,11 +49,10 @@ class Solution:
     @staticmethod
     def _port_current(stretch: Stretch, element: str, port: str, first: str) -> np.ndarray:
         total = np.zeros(stretch.shape)
-        for index, branch in enumerate(stretch.system.frame.branches):
-            if branch.element == element and branch.port == port:
-                weight = dict(branch.weights).get(first)
-                if weight is not None:
-                    total = total + weight.constant * stretch.current(index)
+        for index in stretch.system.branches_of.get((element, port), ()):
+            weight = dict(stretch.system.frame.branches[index].weights).get(first)
+            if weight is not None:
+                total = total + weight.constant * stretch.current(index)
         return total
 
     def series(self, element: str) -> list[np.ndarray]:
@@ -61,8 +60,10 @@ class Solution:
         found: dict[tuple[str, int], list[np.ndarray]] = {}
         for place, stretch in enumerate(self.stretches):
             seen: dict[str, int] = {}
-            for index, branch in enumerate(stretch.system.frame.branches):
-                if branch.element == element and isinstance(branch, SeriesBranch):
+            branches = stretch.system.frame.branches
+            for index in stretch.system.branches_of_element.get(element, ()):
+                branch = branches[index]
+                if isinstance(branch, SeriesBranch):
                     seen[branch.port] = seen.get(branch.port, 0) + 1
                     blank = [np.zeros((5, *other.shape)) for other in self.stretches]
                     found.setdefault((branch.port, seen[branch.port]), blank)[place] = stretch.series(index)

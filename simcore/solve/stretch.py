@@ -87,7 +87,7 @@ class Stretch:
 
     def node(self, name: Hashable) -> np.ndarray:
         """A node's voltage to its reference, shape (n, 3); zero where the node is not part of the circuit."""
-        if name not in self.system.reduction.unknowns:
+        if not self.system.reduction.knows(name):
             return np.zeros(self.shape)
         return self.voltage(((name, self.system.frame.graph.one),))
 

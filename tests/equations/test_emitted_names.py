@@ -101,6 +101,6 @@ def test_a_diode_that_sees_a_known_voltage_keeps_it_through_the_extrapolation(fr
     text = "a -> g: source e, sine = 0.9 V peak, frequency = 50 Hz\na -> g: diode D, saturation_current = 1 nA, ideality_factor = 1.8\n"
     kernel = Kernel(*frame_of(text + "a -> b: resistor R, 1 kOhm\nb -> g: capacitor C, 1 uF\nreference g\n"))
     saved = [0.0, 1e-5, *[0.0] * (kernel.saved_count - 2)]
-    controls = (4e-3, 1e-4, 1e-11, 1e-4, 3, 25, 25.0, 0.0, 0, 0.006, 1e-9, 0.03, 0.005, 2e-4, 2e-7)
+    controls = (4e-3, 1e-4, 1e-11, 1e-4, 3, 25, 25.0, 0.0, 0, 10_000, 0.006, 1e-9, 0.03, 0.005, 2e-4, 2e-7)
     assert kernel.run(list(kernel.system.frame.numbers), saved, [], controls)[0] == 0
     assert saved[2 + len(kernel.system.states)] == pytest.approx(0.9 * math.sin(0.4 * math.pi), rel=1e-12)

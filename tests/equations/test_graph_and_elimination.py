@@ -182,7 +182,7 @@ def test_emitted_equals_plain_evaluation_to_the_bit(name: str, named_frame) -> N
     step = 1e-6
     saved[1] = step
     out = [0.0] * 10_000
-    controls = (step, math.inf, 0.0, 1.0, 1, 100, 0.0, 1.0, len(out), 1.0, 1.0, 1.0, 1e-6, math.inf, math.inf)
+    controls = (step, math.inf, 0.0, 1.0, 1, 100, 0.0, 1.0, len(out), 100, 1.0, 1.0, 1.0, 1e-6, math.inf, math.inf)
     result = kernel.run(list(frame.numbers), saved, out, controls)
     assert result[0] == 0
     system = kernel.system
@@ -243,7 +243,7 @@ def test_compiled_run_takes_the_same_steps(named_frame) -> None:
     names = {"exp": math.exp, "log": math.log, "sqrt": math.sqrt, "sin": math.sin, "cos": math.cos}
     exec(compile(kernel.source, "<emitted>", "exec"), names)
     compiled = numba.njit(names["run"], error_model="numpy")
-    controls = (0.02, 1e-3, 1e-11, 1e-3, 3, 25, 25.0, 0.0, 0, 0.17, 1e-9, 0.03, 0.01, 2e-4, 2e-7)
+    controls = (0.02, 1e-3, 1e-11, 1e-3, 3, 25, 25.0, 0.0, 0, 10**6, 0.17, 1e-9, 0.03, 0.01, 2e-4, 2e-7)
     results = []
     for run, wrap in ((kernel.run, list), (compiled, np.array)):
         saved = wrap([0.0, 1e-6, *[0.0] * (kernel.saved_count - 2)])
