@@ -18,8 +18,10 @@ _SMALL = 1.0
 def _build(frame: Frame, part: Part) -> None:
     """R = R_25 exp(B (1/T - 1/298.15 K)), C dT/dt = v i - D (T - T_ambient).
 
-    R is that of the temperature before each step, T that after it (linearly implicit; its error is extrapolated away
-    like that of the step). Source: the exponential law and heat balance of IEC 60539-1 (from memory).
+    A step takes R at the temperature before it, and the heat balance linearised there at the step's current (linearly
+    implicit; the error is extrapolated away like that of the step). Along that line heat falls with temperature, so
+    that steps of any length end at the rest state wherever that is stable, whatever is in series. Source: the
+    exponential law and heat balance of IEC 60539-1 (from memory).
     """
     cold, sensitivity = part.value("cold_resistance"), part.value("sensitivity")
     ambient = frame.parameter(part.temperature(), positive=True)
@@ -28,7 +30,9 @@ def _build(frame: Frame, part: Part) -> None:
 
     def law(voltage: Value, before: Value) -> tuple[Value, Value, dict[str, Value]]:
         current = voltage / (cold * exp(sensitivity * (1.0 / before - 1.0 / _COLD)))
-        after = (before + rate * (voltage * current + dissipation * ambient)) / (1.0 + rate * dissipation)
+        heat = voltage * current
+        slope = dissipation + heat * sensitivity / (before * before)
+        after = before + rate * (heat - dissipation * (before - ambient)) / (1.0 + rate * slope)
         return current, after, {"temperature": after}
 
     small = frame.graph.constant(_SMALL)

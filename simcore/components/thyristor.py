@@ -52,7 +52,7 @@ THYRISTOR = Kind(
         ),
         Key(
             "firing_reference",
-            "voltage whose upward zero crossing the angle counts from",
+            "voltage whose upward zero crossing the angle counts from; of more than 1 % of the circuit's largest",
             VOLT,
             form="expression",
             required=True,

@@ -80,7 +80,8 @@ def structure(circuit: Circuit) -> tuple:
 
 
 def _shape(element: Element) -> tuple:
-    given = tuple((key, value if key == "turns" else _zeros(value)) for key, value in element.given.items())
+    ratios = ("turns", "rated_voltage")
+    given = tuple((key, value if key in ratios else _zeros(value)) for key, value in element.given.items())
     return element.name, element.kind, element.ports, element.unit, given
 
 

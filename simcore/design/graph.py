@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING
 
+from simcore.components.transformer import windings_of
 from simcore.design.circuit import Circuit, Element, Port
 
 if TYPE_CHECKING:
@@ -72,16 +73,13 @@ def forces_voltage(element: Element, port: Port) -> bool:
         impedance = any(given.get(key) for key in ("series_resistance", "series_inductance", "short_circuit_power"))
         return not is_current_source(element) and not impedance
     if element.kind == "transformer":
-        return not any(_of(given.get(key), port.index) for key in ("leakage", "resistance"))
+        windings = windings_of(given)
+        return not (windings.leakage[port.index] or windings.resistance[port.index])
     return False
 
 
 def is_inductive(element: Element, port: Port) -> bool:
     """Whether a port's current can't jump because an inductance is in series with it."""
     if element.kind == "transformer":
-        return bool(_of(element.given.get("leakage"), port.index))
+        return windings_of(element.given).leakage[port.index] > 0.0
     return element.kind == "inductor"
-
-
-def _of(values: object, index: int) -> float:
-    return float(values[index]) if isinstance(values, tuple) and index < len(values) else 0.0

@@ -10,6 +10,7 @@ from collections.abc import Mapping, Sequence
 
 from grammar.mistakes import Mistake
 from grammar.spans import Span
+from simcore.components.transformer import windings_of
 from simcore.design.circuit import Circuit, Element, Port
 from simcore.design.graph import forces_voltage, is_current_source, is_inductive, joined, port_name
 
@@ -115,7 +116,7 @@ def weights_of(element: Element, port: Port) -> dict[str, float]:
     """A port's voltage as a sum of unknowns: its two nodes and, for a winding, the volts per turn of its core."""
     weights = {port.a: 1.0, port.b: -1.0}
     if element.kind == "transformer":
-        turns = element.given["turns"]
+        turns = windings_of(element.given).turns
         weights[f"{element.name} core"] = -turns[port.index] / max(turns)
     return weights
 
@@ -258,7 +259,7 @@ def _matrix(circuit: Circuit, unknowns: Mapping[str, int]):  # type: ignore[no-u
     matrix = numpy.zeros((len(unknowns), len(unknowns)))
     count = 0
     for element in circuit.elements.values():
-        if element.given.get("magnetising") is not None:
+        if element.kind == "transformer" and windings_of(element.given).magnetising is not None:
             core = unknowns[f"{element.name} core"]
             matrix[core, core] += 1.0
         for port in element.ports:

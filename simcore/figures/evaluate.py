@@ -87,12 +87,16 @@ def _computed(call: Call, record: Record) -> Figure:
 
 def _argument(kind: str, argument: Expression, record: Record) -> Signal | str | float | int:
     """One argument as the computation takes it; see COMPUTE."""
+    if kind == "signal or branch" and isinstance(argument, Name) and name_text(argument) not in record.circuit.observes:
+        return record.current(name_text(argument))
     if kind in ("signal", "signal or branch"):
         return signal_of(argument, record)
-    if kind in ("level", "count"):
+    if kind == "level":
+        return _figure(argument, "", {}).value
+    if kind == "count":
         if not isinstance(argument, Number):
             raise UnknownName("this figure takes a number")
-        return quantity_of(argument).value if kind == "level" else _order(quantity_of(argument))
+        return _order(quantity_of(argument))
     if not isinstance(argument, Name):
         raise UnknownName("this figure takes the name of an element")
     return name_text(argument)

@@ -35,6 +35,8 @@ _START_AGREEMENT = 1e-4
 _REST_AGAIN = (1e9, 1e3, 1.0, 1e-3)
 """Steps in s that follow it and move nothing: at the long one an inductance is so small a resistance that its current
 is lost in the rounding of its voltage, at these it comes back."""
+_REST_AT_MOST, _STILL = 200, 1e-9
+"""Long steps of an operating point at most, and the relative change of a column below which it stands still."""
 _LEAST_BEND = 1e-5
 """Least tolerance of a watched current's curvature: a tighter one meets what rounding and Newton leave in the third
 difference, which no shorter step makes smaller, so that steps would shrink to the smallest."""
@@ -168,15 +170,18 @@ class Engine:
     # --- running ---
 
     def rest(self, time: float) -> Stretch:
-        """The operating point with the sources at their value at a time: one step long enough for every state to
-        settle, and where that does not converge, steps from short to long (pseudo-transient continuation; Kelley and
-        Keyes, 1998)."""
+        """The operating point with the sources at their value at a time: a step long enough for every state to
+        settle, again while it still moves something (a temperature on which a resistance depends), and where that does
+        not converge, steps from short to long (pseudo-transient continuation; Kelley and Keyes, 1998)."""
         self._follow(time)
         start = list(self.saved)
         for steps in ([REST_STEP], [10.0**exponent for exponent in range(-12, 16)]):
             self.saved = list(start)
             try:
-                for step in (*steps, *_REST_AGAIN):
+                for step in steps:
+                    self._single(time, step)
+                self._stand_still(time)
+                for step in _REST_AGAIN:
                     record = self._single(time, step)
             except Interrupted as stop:
                 failure = stop
@@ -193,6 +198,16 @@ class Engine:
                 held=True,
             )
         raise Interrupted(failure.reason, time, failure.detail)
+
+    def _stand_still(self, time: float) -> None:
+        """Long steps until one changes no column."""
+        last = self._single(time, REST_STEP)
+        for _ in range(_REST_AT_MOST):
+            record = self._single(time, REST_STEP)
+            if np.allclose(record, last, rtol=_STILL, atol=_STILL**2 + _STILL * self.rounding):
+                return
+            last = record
+        raise Interrupted(Reason.NO_CONVERGENCE, time)
 
     def begin(self, time: float, step: float) -> np.ndarray:
         """Values just after a time, from the states as they are: steps too short to move them, extrapolated to none.

@@ -9,7 +9,10 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 import simcore
+from grammar.reader import read_expression
 from simcore.face import Design, Result
+from simcore.figures.expressions import signal_of
+from simcore.figures.signal import Signal
 
 DIODE = "saturation_current = 1 nA, ideality_factor = 1.8, temperature = 300.15 K"
 """The exponential diode of most rows: I_S = 1 nA, n = 1.8 at 300.15 K."""
@@ -42,6 +45,13 @@ def design(text: str) -> Design:
 def solved(text: str, study: str = "s") -> Result:
     """A study of a text, solved."""
     return design(text).run(study)
+
+
+def course(result: Result, signal: str) -> Signal:
+    """A signal of a result as the polynomials it is made of."""
+    expression, mistakes = read_expression(signal, signal)
+    assert expression is not None and not mistakes
+    return signal_of(expression, result.solved.record)
 
 
 def close(

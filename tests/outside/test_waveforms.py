@@ -8,7 +8,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from checking import DIODE, close, solved
+from checking import DIODE, close, course, solved
 
 FOLDER = Path(__file__).with_name("waveforms")
 
@@ -81,6 +81,16 @@ study s: transient, duration = DURATION, accuracy = 0.01 %
 study settled: settled, accuracy = 0.01 %
 """
 
+STORED = f"""
+a -> g: source e, sine = 50 V peak, frequency = 50 kHz
+a -> k: resistor R, 100 Ohm
+k -> g: diode D, {DIODE}, carrier_lifetime = 0.5 us
+k -> g: capacitor C_p, 50 pF
+reference g
+study s: transient, duration = DURATION, accuracy = 0.01 %
+study settled: settled, accuracy = 0.01 %
+"""
+
 # The name of a column in the file -> what it is in the circuit.
 CASES = {
     "bridge-reservoir": (BRIDGE, "", {"u_out_V": "voltage(plus)", "i_D1_A": "current(D1)", "i_D2_A": "current(D2)"}),
@@ -93,6 +103,7 @@ CASES = {
     "cascade-doubler": (CASCADE, "", {"v_C1_V": "voltage(C1)", "u_out_V": "voltage(out)", "i_D2_A": "current(D2)"}),
     "half-wave-reservoir": (HALF_WAVE, "", {"u_out_V": "voltage(out)", "i_D_A": "current(D)"}),
     "half-wave-inductive": (INDUCTIVE, "", {"i_A": "current(L)", "v_D_V": "voltage(D)"}),
+    "stored-charge-recovery": (STORED, "", {"v_D_V": "voltage(k)", "i_A": "current(R)"}),
     "six-pulse-reservoir": (SIX_PULSE, "", {"u_out_V": "voltage(plus)", "i_L1_A": "-current(e.L1)"}),
 }
 
@@ -110,16 +121,23 @@ def test_transient_follows_the_waveform(name: str) -> None:
     text, angle, columns = CASES[name]
     wanted = table(name)
     text = text.replace("DURATION", f"{float(wanted['t_s'][-1])!r} s").replace("ANGLE", angle)
-    record = solved(text).solved.record
-    from simcore.face import _expression
-    from simcore.figures.expressions import signal_of
-
+    result = solved(text)
     assert len(wanted["t_s"]) >= 19
     for column, signal in columns.items():
-        found = signal_of(_expression(signal), record).value(wanted["t_s"])
+        found = course(result, signal).value(wanted["t_s"])
         crest = np.abs(wanted[column]).max()
         worst = np.abs(found - wanted[column]).max() / crest
         assert worst < 2e-3, f"{signal}: {worst:.2e} of the crest"
+
+
+def test_reverse_recovery_settled() -> None:
+    """W5 settled: mean and rms of the voltage and the current, and the reverse peak of the recovered charge. T2."""
+    result = solved(STORED.replace("DURATION", "20 us"), "settled")
+    close(result, "mean(voltage(k))", -15.3739712, 3e-4)
+    close(result, "rms(voltage(k))", 25.0009956, 3e-4)
+    close(result, "rms(current(R))", 0.244289362, 3e-4)
+    close(result, "peak(current(R))", 0.49069489, 3e-4)
+    close(result, "valley(current(R))", -0.075012935, 1e-3)
 
 
 SETTLED = {
