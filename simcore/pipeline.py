@@ -117,6 +117,9 @@ class _Proof:
         if note is not None:
             levels[-1].solution.notes.append(note)
         self.pairs[name] = (levels[-2], levels[-1])
+        if excess > 1.0:
+            short = f"a bound is {excess:.2g} times what the accuracy of {100.0 * study.accuracy:g} % allows"
+            levels[-1].solution.notes.append(f"{short}; no tighter solution was worth its work")
         last = levels[-1]
         self.results[name] = StudyResult(last.solution, last.record, levels[-2].record, excess <= 1.0, self.costs[name])
 
@@ -172,7 +175,7 @@ def _asked(requirement: Requirement, circuit: Circuit) -> list[_Asked]:
 
 
 def _stress(element: Element, stress: Stress) -> _Asked:
-    return lambda study, records: stress.compute(records[study], element, element.name)
+    return lambda study, records: stress.of(records[study], element, element.name)
 
 
 class _Floors:

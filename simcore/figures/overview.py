@@ -105,7 +105,7 @@ def _of_element(figure: Callable[[Record, str], Figure], name: str) -> Callable[
 
 def _with_bound(figure: Callable[[Record], Figure], fine: Record, coarse: Record | None) -> Figure:
     try:
-        value = figure(fine)
+        value = fine.granted(figure(fine))
         return value if coarse is None else bounded(figure(coarse), value)
     except (SignalError, UnknownName) as fault:
         return undefined(NONE, str(fault))

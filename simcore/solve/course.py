@@ -29,9 +29,9 @@ Answer = TypeVar("Answer")
 Variant = Callable[[tuple[Change, ...]], Circuit]
 EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
-_KINKS_A_PERIOD = 100
+_KINKS_A_PERIOD = 200
 _BEGIN = 1e-7
-_EVENT = 1e-3
+_EVENT = 2e-3
 """Largest step in which a threshold is passed, over the largest with a kink."""
 
 
@@ -95,6 +95,7 @@ class Course:
         engine.remember(memory)
         solution = self._solution(self._valued(changes, stretches), stretches, clock, period, period)
         solution.notes.append(found.how)
+        solution.multiplier = found.multiplier
         solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
         return solution, Reached(memory, clock, math.inf, changes)
 
@@ -221,4 +222,6 @@ class Course:
             "weak pivots": counts.weak,
         }
         whole = self.variant(())
-        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, [], statistics)
+        return Solution(
+            whole, self.study, times, stretches, valued, period, window, self.tolerance, first_event, [], statistics
+        )
