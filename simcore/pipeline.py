@@ -11,7 +11,7 @@ import math
 from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from functools import cached_property
+from functools import cached_property, partial
 
 import numpy as np
 
@@ -48,9 +48,12 @@ WORK = 1e7
 """Solves times recorded columns of a solution after which none tighter is tried."""
 LARGEST_SUM = 1e-3
 """Sum of the currents at a node, over the largest one there, above which a solution is none."""
+Watch = Callable[[str, float | None], None]
+"""Told the study that is being solved and how much of it in s, None once it is solved."""
 _LOOSEST, _TIGHTEST = 5e-4, 1e-8
-"""Tolerances of a step. Of 124 settled figures worked out outside, the difference of two solutions at 5e-4 and an eighth
-of it covers the true error of 97 %; at 8e-3 and 1e-3 only of 80 %, since there errors do not yet fall as they should."""
+"""Tolerances of a step. Of 123 settled figures worked out outside, the difference of two solutions at 5e-4 and an
+eighth of it covers the true error of 97 %; at 8e-3 and 1e-3 only of 80 %, since there errors do not yet fall as they
+should."""
 
 
 @dataclass(frozen=True)
@@ -83,10 +86,25 @@ class _Level:
         return self.solution.statistics["solves"] * len(self.solution.stretches[0].system.columns) > WORK
 
 
+class Stopped(KeyboardInterrupt):
+    """An interrupt from the keyboard; solved: the studies that were solved before."""
+
+    def __init__(self, solved: dict[str, StudyResult]):
+        super().__init__()
+        self.solved = solved
+
+
 class _Proof:
     """Solves the studies of one circuit, each after those it starts from."""
 
-    def __init__(self, circuit: Circuit, variant: Callable[[Sequence], Circuit], kernels: KernelCache):
+    def __init__(
+        self,
+        circuit: Circuit,
+        variant: Callable[[Sequence], Circuit],
+        kernels: KernelCache,
+        watch: Watch | None = None,
+    ):
+        self.watch = watch
         self.circuit = circuit
         self.variant = variant
         self.kernels = kernels
@@ -121,6 +139,8 @@ class _Proof:
             short = f"a bound is {excess:.2g} times what the accuracy of {100.0 * study.accuracy:g} % allows"
             levels[-1].solution.notes.append(f"{short}; no tighter solution was worth its work")
         last = levels[-1]
+        if self.watch is not None:
+            self.watch(name, None)
         self.results[name] = StudyResult(last.solution, last.record, levels[-2].record, excess <= 1.0, self.costs[name])
 
     def _at_worst(self, study: PlannedStudy, figure: Expression, tolerance: float) -> PlannedStudy:
@@ -139,7 +159,11 @@ class _Proof:
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
             before = earlier.left if before is None else before
-        solution, left = Course(study, self.variant, before, tolerance, self.kernels).solve()
+        course = Course(study, self.variant, before, tolerance, self.kernels)
+        if self.watch is not None:
+            self.watch(study.name, 0.0)
+            course.watch = partial(self.watch, study.name)
+        solution, left = course.solve()
         if not solution.kirchhoff <= LARGEST_SUM:
             detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
@@ -223,13 +247,18 @@ def solve_studies(
     names: Sequence[str],
     overrides: Mapping[str, Quantity | Expression | str] | None = None,
     kernels: KernelCache | None = None,
+    watch: Watch | None = None,
 ) -> dict[str, StudyResult]:
     """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside;
-    kernels: where runs of earlier circuits of the same form are kept.
+    kernels: where runs of earlier circuits of the same form are kept; watch: who wants to know how far it is.
 
-    Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong.
+    Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong, and
+    Stopped at an interrupt from the keyboard.
     """
-    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache())
-    for name in names:
-        proof.solve(name)
+    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache(), watch)
+    try:
+        for name in names:
+            proof.solve(name)
+    except KeyboardInterrupt:
+        raise Stopped(proof.results) from None
     return {name: proof.results[name] for name in names}

@@ -247,7 +247,8 @@ class Measures:
             raise Poisoned
         self._study(call, signal)
         if len(call.arguments) != len(measure.arguments) and not (measure.optional and not call.arguments):
-            self._wrong(f"{call.name} takes {form_of(measure)}", f"Write `{call.name}({example_of(measure)})`.", call.span)
+            cure = f"Write `{call.name}({example_of(measure)})`."
+            self._wrong(f"{call.name} takes {form_of(measure)}", cure, call.span)
             raise Poisoned
         arguments, dimension = [], NONE
         for sort, argument in zip(measure.arguments, call.arguments, strict=False):

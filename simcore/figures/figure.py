@@ -18,8 +18,8 @@ CHANCE = 3e-7
 """Share of a figure that its bound is never below: two solutions can agree better than either is right."""
 
 CHANCE_OF_STEPS = 0.5
-"""The same over the tolerance of a step. Of 1800 settled figures worked out outside, two solutions agreed by chance in a
-few: their errors were up to 2.7 times the tolerance, their difference next to nothing."""
+"""The same over the tolerance of a step. Of 1800 settled figures worked out outside, two solutions agreed by chance in
+a few: their errors were up to 2.7 times the tolerance, their difference next to nothing."""
 
 SAFETY = 2.0
 """Bound over the difference of two solutions.

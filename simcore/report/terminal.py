@@ -36,6 +36,8 @@ def report(
     if bill:
         lines += ["", *bill_lines(bill, width)]
     lines += ["", *verdict_lines(proof.verdicts, width), *(INDENT + line for line in words.unrated(proof.unrated)), ""]
+    if proof.unsolved:
+        lines.append(f"Interrupted: {', '.join(proof.unsolved)} not solved. Of what was solved:")
     lines.append(f"{words.closing(proof.verdicts)} Solved in {show_seconds(proof.seconds)}.")
     lines.append(f"Files in {files[0].parent}: {', '.join(path.name for path in files)}")
     lines += ["", "Cautions", *(INDENT + caution for caution in cautions(proof))]

@@ -27,6 +27,8 @@ from simcore.solve.stretch import Stretch
 
 Answer = TypeVar("Answer")
 Variant = Callable[[tuple[Change, ...]], Circuit]
+Watch = Callable[[float], None]
+"""Told how much of a study is solved, in s."""
 EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
 _KINKS_A_PERIOD = 200
@@ -51,7 +53,7 @@ class Course:
     """Solves one study at one tolerance.
 
     variant: the circuit under changes; before: where the study starts, None for rest; tolerance: relative error of a
-    step Raises NoSolution.
+    step; watch: who wants to know how far it is. Raises NoSolution.
     """
 
     study: PlannedStudy
@@ -60,6 +62,7 @@ class Course:
     tolerance: float
     kernels: KernelCache = field(default_factory=KernelCache)
     counts: Counts = field(default_factory=Counts)
+    watch: Watch | None = None
 
     def solve(self) -> tuple[Solution, Reached]:
         """The solution, and where it left the circuit."""
@@ -116,7 +119,7 @@ class Course:
                 clock = self._first_clock(circuit, frame, memory)
                 period = self.study.period or common_period(frame)
             end = self._next_change(circuit, moment, now, events)
-            piece = self._piece(circuit, frame, memory, clock + now, clock + end)
+            piece = self._piece(circuit, frame, memory, clock + now, clock + end, now)
             stretches += piece
             valued += self._valued(changes, piece)
             now = end
@@ -125,9 +128,14 @@ class Course:
 
     # --- pieces ---
 
-    def _piece(self, circuit: Circuit, frame: Frame, memory: Memory, start: float, end: float) -> list[Stretch]:
+    def _piece(
+        self, circuit: Circuit, frame: Frame, memory: Memory, start: float, end: float, done: float = 0.0
+    ) -> list[Stretch]:
         engine = self._engine(circuit, frame, memory)
         engine.move(start)
+        if self.watch is not None:
+            watch = self.watch
+            engine.watch = lambda time: watch(done + time - start)
         stepping = self._stepping(frame, self.study.duration)
         recorded = self._guard(lambda: engine.advance(end, stepping, record=True), start)
         self._forget(memory)

@@ -18,9 +18,9 @@ _ALIKE = 1e-4
 def worst_angle(figure: Callable[[float], float]) -> float:
     """The angle in rad, 0 to 2 pi, at which a figure is highest.
 
-    Of several alike the first one. The best of 24 even trials are each improved between their neighbours by Brent's bounded search (Brent, Algorithms
-    for Minimization without Derivatives, 1973) to 0.05 deg. A peak narrower than 15 deg that no trial touches is
-    missed.
+    The best of 24 even trials are each improved between their neighbours by Brent's bounded search (Brent, Algorithms
+    for Minimization without Derivatives, 1973) to 0.05 deg; of several alike the first counts. A peak narrower than
+    15 deg that no trial touches is missed.
     """
     from scipy.optimize import minimize_scalar
 
