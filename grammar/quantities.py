@@ -186,7 +186,7 @@ def show(value: float, dimension: Dimension, digits: int = _SHOWN_DIGITS) -> str
 
 def _plain(value: float, digits: int) -> str:
     """Rounded to digits, without an exponent for the sizes that a prefix leaves."""
-    rounded = float(f"{value:.{digits}g}")
+    rounded = float(f"{value:.{digits}g}") + 0.0
     whole = 10.0 ** (digits - 1) <= abs(rounded) < 1e6
     return f"{rounded:.0f}" if whole else f"{rounded:.{digits}g}"
 

@@ -167,7 +167,8 @@ class _Proof:
         if not solution.kirchhoff <= LARGEST_SUM:
             detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
-        self.costs.setdefault(study.name, Counter()).update({"solutions": 1, **solution.statistics})
+        cost = self.costs.setdefault(study.name, Counter({"solutions": 0}))
+        cost.update({"solutions": 1, **solution.statistics})
         return _Level(solution, left)
 
     def _excess(self, study: PlannedStudy, coarse: _Level, fine: _Level) -> float:

@@ -132,5 +132,6 @@ def bounded(coarse: Figure, fine: Figure) -> Figure:
         note = "it comes in one of two solutions only"
         return replace(fine, bound=math.inf, beyond=None, note=note)
     difference = abs(fine.value - coarse.value)
-    chance = fine.chance * max(abs(fine.value), abs(coarse.value)) if difference > 0.0 else 0.0
-    return replace(fine, bound=SAFETY * difference + chance + coarse.rounding + fine.rounding)
+    rounding = coarse.rounding + fine.rounding
+    chance = fine.chance * max(abs(fine.value), abs(coarse.value)) if difference > rounding else 0.0
+    return replace(fine, bound=SAFETY * difference + chance + rounding)

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import sys
 import time
+from collections import Counter
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 
@@ -79,6 +80,7 @@ class _Studies:
         self._name, self._circuit, self._studies, self._complain = name, circuit, studies, complain
         self._every, self._clock, self._told = every, clock, clock()
         self._solved: set[str] = set()
+        self._solutions: Counter[str] = Counter()
 
     @property
     def count(self) -> int:
@@ -86,10 +88,12 @@ class _Studies:
         return len(self._solved)
 
     def tell(self, study: str, reached: float | None) -> None:
-        """Told the study at work and the s of it that are solved; None once all of it is."""
+        """Told the study at work and the s of it that are solved, 0 as each of its solutions begins; None once all of
+        it is."""
         if reached is None:
             self._solved |= {study} & set(self._studies)
             return
+        self._solutions[study] += reached == 0.0
         moment = self._clock()
         if moment - self._told < self._every:
             return
@@ -97,7 +101,7 @@ class _Studies:
         duration = self._circuit.studies[study].duration
         of = f" at {show(reached, SECOND, 3)} of {show(duration, SECOND)}" if duration else ""
         before = f"{self._name}: {self.count} of {len(self._studies)} studies solved, now " if self._name else ""
-        self._complain(f"{before}{study}{of}")
+        self._complain(f"{before}{study}, solution {self._solutions[study]}{of}")
 
 
 def _say_nothing(count: int, now: bool) -> None:

@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 
+from grammar.quantities import Dimension
 from simcore.design.overview import sentence
 from simcore.figures.figure import Figure
 from simcore.figures.overview import Balance, Row
@@ -59,16 +60,25 @@ def study_lines(name: str, study: ProvedStudy, width: int | None = None) -> list
 
 
 def figure_table(subject: str, rows: Sequence[Row], wording: Mapping[str, str], width: int | None = None) -> list[str]:
-    """A table of figures, with the largest bound of each column below it."""
+    """A table of figures, with the largest bound of each column below it: one line for what is in V, one for what is in
+    A, and so on."""
     columns = list(rows[0].figures)
-    cells = [[row_name(row), *(words.value(row.figures[column]) for column in columns)] for row in rows]
-    bounds = [words.largest_bound(row.figures[column] for row in rows) for column in columns]
+    cells = [[row_name(row), *(words.row_value(row, column) for column in columns)] for row in rows]
+    alike: dict[tuple[Dimension, ...], list[Row]] = {}
+    for row in rows:
+        alike.setdefault(tuple(figure.dimension for figure in row.figures.values()), []).append(row)
+    bounds = [
+        ["± at most", *(words.largest_bound(row.figures[column] for row in group) for column in columns)]
+        for group in alike.values()
+    ]
     headings = [subject, *(wording.get(column, column) for column in columns)]
-    notes = dict.fromkeys(
-        f"{row.name}, {column}: {figure.note}" for row in rows for column, figure in row.figures.items() if figure.note
-    )
-    lines = table(headings, [*cells, ["± at most", *bounds]], width=width)
-    return lines + [INDENT + note for note in notes]
+    about: dict[str, list[str]] = {}
+    for row in rows:
+        for column, figure in row.figures.items():
+            if figure.note:
+                about.setdefault(f"{column}: {figure.note}", []).append(row.name)
+    lines = table(headings, [*cells, *bounds], width=width)
+    return lines + [f"{INDENT}{', '.join(names)}, {note}" for note, names in about.items()]
 
 
 def row_name(row: Row) -> str:
@@ -88,12 +98,12 @@ def energy_line(balance: Balance) -> str:
 
 
 def _share(figure: Figure) -> str:
-    return f"{figure.value:.1e} of it"
+    return f"{figure.value:.1e} of what flowed"
 
 
 def cost_line(study: ProvedStudy) -> str:
     """What a study cost, and the worst sum of currents."""
-    counts = ", ".join(f"{name} {count:.0f}" for name, count in study.statistics.items() if count)
+    counts = ", ".join(f"{count:.0f} {name}" for name, count in study.statistics.items() if count)
     return f"cost: {counts}; worst Kirchhoff sum {study.kirchhoff:.1e} of the currents at its node"
 
 

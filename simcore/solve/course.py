@@ -224,7 +224,7 @@ class Course:
         counts = self.counts
         statistics = {
             "steps": counts.steps,
-            "rejected": counts.rejected,
+            "rejected steps": counts.rejected,
             "solves": counts.solves,
             "iterations": counts.iterations,
             "weak pivots": counts.weak,
