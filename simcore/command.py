@@ -15,9 +15,6 @@ from simcore.judge.outcome import Outcome
 
 VERBS = (run, sweep, size, baseline, look, draw, tidy)
 
-INTERRUPTED = 130
-"""Exit status after an interrupt from the keyboard, as shells have it: 128 + signal number."""
-
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command with the given arguments, by default those of the process; returns the exit status."""
@@ -30,7 +27,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return action(options).status
     except KeyboardInterrupt:
         complain("interrupted; no file is half written")
-        return INTERRUPTED
+        return Outcome.INTERRUPTED.status
 
 
 def _parser() -> argparse.ArgumentParser:

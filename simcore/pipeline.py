@@ -11,7 +11,7 @@ import math
 from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from functools import cached_property
+from functools import cached_property, partial
 
 import numpy as np
 
@@ -49,9 +49,11 @@ WORK = 1e7
 """Solves times recorded columns of a solution after which none tighter is tried."""
 LARGEST_SUM = 1e-3
 """Sum of the currents at a node, over the largest one there, above which a solution is none."""
+Watch = Callable[[str, float | None], None]
+"""Told the study that is being solved and how much of it in s, None once it is solved."""
 _LOOSEST, _TIGHTEST = 5e-4, 1e-8
-"""Tolerances of a step. Of 124 settled figures worked out outside, the difference of two solutions at 5e-4 and an
-eighth of it covers the true error of 97 %; at 8e-3 and 1e-3 only of 80 %, since errors do not yet fall there as they
+"""Tolerances of a step. Of 123 settled figures worked out outside, the difference of two solutions at 5e-4 and an
+eighth of it covers the true error of 97 %; at 8e-3 and 1e-3 only of 80 %, since there errors do not yet fall as they
 should."""
 
 
@@ -86,14 +88,26 @@ class _Level:
 
 
 Doubtful = Callable[[str, Mapping[str, Record], Mapping[str, Record]], bool]
+class Stopped(KeyboardInterrupt):
+    """An interrupt from the keyboard; solved: the studies that were solved before."""
+
+    def __init__(self, solved: dict[str, StudyResult]):
+        super().__init__()
+        self.solved = solved
 
 
 class _Proof:
     """Solves the studies of one circuit, each after those it starts from."""
 
     def __init__(
-        self, circuit: Circuit, variant: Callable[[Sequence], Circuit], kernels: KernelCache, doubtful: Doubtful
+        self,
+        circuit: Circuit,
+        variant: Callable[[Sequence], Circuit],
+        kernels: KernelCache,
+        doubtful: Doubtful,
+        watch: Watch | None = None,
     ):
+        self.watch = watch
         self.circuit = circuit
         self.variant = variant
         self.kernels = kernels
@@ -124,7 +138,12 @@ class _Proof:
         if note is not None:
             levels[-1].solution.notes.append(note)
         self.pairs[name] = (levels[-2], levels[-1])
+        if excess > 1.0:
+            short = f"a bound is {excess:.2g} times what the accuracy of {100.0 * study.accuracy:g} % allows"
+            levels[-1].solution.notes.append(f"{short}; no tighter solution was worth its work")
         last = levels[-1]
+        if self.watch is not None:
+            self.watch(name, None)
         self.results[name] = StudyResult(last.solution, last.record, levels[-2].record, excess <= 1.0, self.costs[name])
 
     def _in_doubt(self, name: str, coarse: _Level, fine: _Level) -> bool:
@@ -148,11 +167,15 @@ class _Proof:
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
             before = earlier.left if before is None else before
-        solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels)
+        if self.watch is not None:
+            self.watch(study.name, 0.0)
+        watch = None if self.watch is None else partial(self.watch, study.name)
+        solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels, watch)
         if not solution.kirchhoff <= LARGEST_SUM:
             detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
-        self.costs.setdefault(study.name, Counter()).update({"solutions": 1, **solution.statistics})
+        cost = self.costs.setdefault(study.name, Counter({"solutions": 0}))
+        cost.update({"solutions": 1, **solution.statistics})
         return _Level(solution, left)
 
     def _excess(self, study: PlannedStudy, coarse: _Level, fine: _Level) -> float:
@@ -184,7 +207,7 @@ def _asked(requirement: Requirement, circuit: Circuit) -> list[_Asked]:
 
 
 def _stress(element: Element, stress: Stress) -> _Asked:
-    return lambda study, records: stress.compute(records[study], element, element.name)
+    return lambda study, records: stress.of(records[study], element, element.name)
 
 
 class _Floors:
@@ -233,14 +256,20 @@ def solve_studies(
     overrides: Mapping[str, Quantity | Expression | str] | None = None,
     kernels: KernelCache | None = None,
     doubtful: Doubtful = lambda name, coarse, fine: False,
+    watch: Watch | None = None,
 ) -> dict[str, StudyResult]:
     """The named studies of a circuit, solved to their accuracy; overrides: the lets that were set from outside;
     kernels: where runs of earlier circuits of the same form are kept; doubtful: from a study and the records of all
-    solved so far, at the looser and the tighter tolerance, whether it should be solved still more tightly.
+    solved so far, at the looser and the tighter tolerance, whether it should be solved still more tightly; watch: who
+    wants to know how far it is.
 
-    Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong.
+    Raises NoSolution where one cannot be solved, DescriptionError where a value set in it makes the design wrong, and
+    Stopped at an interrupt from the keyboard.
     """
-    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache(), doubtful)
-    for name in names:
-        proof.solve(name)
+    proof = _Proof(circuit, Variants(project, circuit, overrides), kernels or KernelCache(), doubtful, watch)
+    try:
+        for name in names:
+            proof.solve(name)
+    except KeyboardInterrupt:
+        raise Stopped(proof.results) from None
     return {name: proof.results[name] for name in names}

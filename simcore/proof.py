@@ -20,7 +20,7 @@ from simcore.judge.outcome import Outcome, State, outcome_of
 from simcore.judge.ratings import unrated
 from simcore.judge.verdict import Verdict, judge
 from simcore.opening import Opened
-from simcore.pipeline import StudyResult, solve_studies
+from simcore.pipeline import Stopped, StudyResult, Watch, solve_studies
 
 TAKEN = ("figures", "verdicts", "bill", "size")
 """Names of result files that a study's trace would take the place of."""
@@ -46,7 +46,8 @@ class Proof:
     """What a design came to.
 
     studies: in the order solved; coarse: all solved studies at the looser tolerance that the bounds come from;
-    verdicts: of the requirements on them, in the order written, of `ratings` one a rating; seconds: wall-clock time
+    verdicts: of the requirements on them, in the order written, of `ratings` one a rating; seconds: wall-clock time;
+    unsolved: studies that an interrupt left out
     """
 
     circuit: Circuit
@@ -54,10 +55,13 @@ class Proof:
     coarse: Mapping[str, Record]
     verdicts: list[Verdict]
     seconds: float
+    unsolved: Sequence[str] = ()
 
     @property
     def outcome(self) -> Outcome:
         """What the verdicts come to together."""
+        if self.unsolved:
+            return Outcome.INTERRUPTED
         return outcome_of(verdict.state for verdict in self.verdicts)
 
     @property
@@ -97,7 +101,11 @@ class Judged:
 
 
 def solve_and_judge(
-    opened: Opened, names: Sequence[str], more: Iterable[Expression] = (), kernels: KernelCache | None = None
+    opened: Opened,
+    names: Sequence[str],
+    more: Iterable[Expression] = (),
+    kernels: KernelCache | None = None,
+    watch: Watch | None = None,
 ) -> Judged:
     """Solve the named studies, and those that their requirements and the figures in `more` take figures from, and judge
     the requirements on them; kernels: where runs of earlier circuits are kept. Raises NoSolution where a study can't be
@@ -114,20 +122,47 @@ def solve_and_judge(
         asked = [each for each, taken in pairs if name in taken and all(part in fine for part in taken)]
         return any(verdict.state is State.UNDECIDED for verdict in judge(asked, coarse, fine))
 
-    solved = solve_studies(opened.project, circuit, needed, opened.overrides, kernels, doubtful)
+    solved = solve_studies(opened.project, circuit, needed, opened.overrides, kernels, doubtful, watch)
+    return _judged(requirements, solved)
+
+
+def _judged(requirements: Sequence[Requirement], solved: Mapping[str, StudyResult]) -> Judged:
     fine = {name: result.fine for name, result in solved.items()}
     coarse = {name: result.coarse for name, result in solved.items()}
     return Judged(solved, fine, coarse, judge(requirements, coarse, fine))
 
 
-def prove(opened: Opened, names: Sequence[str]) -> Proof:
-    """Solve the named studies and judge the requirements on them. Raises NoSolution where one can't be solved."""
+class PartProved(KeyboardInterrupt):
+    """An interrupt from the keyboard after some of the studies; proof: of those, which says what is missing."""
+
+    def __init__(self, proof: Proof):
+        super().__init__()
+        self.proof = proof
+
+
+def prove(opened: Opened, names: Sequence[str], watch: Watch | None = None) -> Proof:
+    """Solve the named studies and judge the requirements on them; watch: who wants to know how far it is. Raises
+    NoSolution where one can't be solved, PartProved at an interrupt from the keyboard after the first of them."""
     start = time.perf_counter()
-    circuit = opened.circuit
-    judged = solve_and_judge(opened, names)
+    try:
+        judged = solve_and_judge(opened, names, watch=watch)
+    except Stopped as stop:
+        there = [name for name in names if name in stop.solved]
+        if not there:
+            raise
+        requirements = [each for each in opened.circuit.requirements if each.study in there]
+        judged = _judged(requirements, stop.solved)
+        unsolved = [name for name in names if name not in there]
+        raise PartProved(_proof(opened.circuit, there, judged, time.perf_counter() - start, unsolved)) from None
+    return _proof(opened.circuit, names, judged, time.perf_counter() - start)
+
+
+def _proof(
+    circuit: Circuit, names: Sequence[str], judged: Judged, seconds: float, unsolved: Sequence[str] = ()
+) -> Proof:
     fine, coarse, solved = judged.fine, judged.coarse, judged.solved
     studies = {name: _proved(circuit.studies[name], fine[name], coarse[name], solved[name]) for name in names}
-    return Proof(circuit, studies, coarse, judged.verdicts, time.perf_counter() - start)
+    return Proof(circuit, studies, coarse, judged.verdicts, seconds, unsolved)
 
 
 def _taken(requirement: Requirement) -> list[str]:

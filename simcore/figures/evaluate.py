@@ -82,7 +82,7 @@ def _figure_call(call: Call, record: Record) -> Figure:
 def _computed(call: Call, record: Record) -> Figure:
     declared = FIGURES[call.name].arguments
     arguments = [_argument(kind, argument, record) for kind, argument in zip(declared, call.arguments, strict=False)]
-    return COMPUTE[call.name](record, *arguments)
+    return record.granted(COMPUTE[call.name](record, *arguments))
 
 
 def _argument(kind: str, argument: Expression, record: Record) -> Signal | str | float | int:

@@ -17,6 +17,10 @@ ROUNDING = 1e-12
 CHANCE = 3e-7
 """Share of a figure that its bound is never below: two solutions can agree better than either is right."""
 
+CHANCE_OF_STEPS = 0.5
+"""The same over the tolerance of a step. Of 1800 settled figures worked out outside, two solutions agreed by chance in
+a few: their errors were up to 2.7 times the tolerance, their difference next to nothing."""
+
 SAFETY = 2.0
 """Bound over the difference of two solutions.
 
@@ -37,6 +41,7 @@ class Figure:
     note: what the reader must know, "" where there is nothing
     beyond: the value is known to be larger than this, where it is inf
     scale: magnitude of what the figure was formed from, for rounding
+    chance: share of it that two solutions may both be off by
     """
 
     value: float
@@ -45,6 +50,7 @@ class Figure:
     note: str = ""
     beyond: float | None = None
     scale: float = 0.0
+    chance: float = CHANCE
 
     @property
     def defined(self) -> bool:
@@ -104,16 +110,16 @@ def formed(value: float, dimension: Dimension, parts: Sequence[Figure], scale: f
         return undefined(dimension, "a function or power has no finite value there")
     if scale is None:
         scale = max(_size(part) for part in parts)
-    return Figure(value, dimension, note="; ".join(notes), scale=scale)
+    chance = max(part.chance for part in parts)
+    return Figure(value, dimension, note="; ".join(notes), scale=scale, chance=chance)
 
 
 def bounded(coarse: Figure, fine: Figure) -> Figure:
     """The fine figure with the bound that its difference from the coarse one and rounding leave.
 
     coarse, fine: the same figure on solutions of the same study at a tolerance and at a tighter one
-    Returns the fine value with bound SAFETY |fine - coarse| + CHANCE |fine| + rounding. Where only one of the two has a
-    finite value,
-    the bound is infinite: nothing is known. An instant that comes in neither is returned as it is.
+    Returns the fine value with bound SAFETY |fine - coarse| + chance |fine| + rounding. Where only one of the two has a
+    finite value, the bound is infinite: nothing is known. An instant that comes in neither is returned as it is.
     Source: common practice, no source; the factor is reasoned at SAFETY.
     """
     if coarse.defined != fine.defined:
@@ -126,5 +132,6 @@ def bounded(coarse: Figure, fine: Figure) -> Figure:
         note = "it comes in one of two solutions only"
         return replace(fine, bound=math.inf, beyond=None, note=note)
     difference = abs(fine.value - coarse.value)
-    chance = CHANCE * max(abs(fine.value), abs(coarse.value)) if difference > 0.0 else 0.0
-    return replace(fine, bound=SAFETY * difference + chance + coarse.rounding + fine.rounding)
+    rounding = coarse.rounding + fine.rounding
+    chance = fine.chance * max(abs(fine.value), abs(coarse.value)) if difference > rounding else 0.0
+    return replace(fine, bound=SAFETY * difference + chance + rounding)

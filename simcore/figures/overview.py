@@ -9,6 +9,7 @@ from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from functools import partial
 
+from grammar.description import Call
 from grammar.quantities import JOULE, NONE, SECOND, show
 from simcore.design.circuit import Element
 from simcore.figures import element_figures, measure
@@ -41,11 +42,13 @@ DIODE_COLUMNS: dict[str, Callable[[Record, str], Figure]] = {
 
 @dataclass(frozen=True)
 class Row:
-    """One line of a table: the name as the language writes it, its wording if any, and its figures by column."""
+    """One line of a table: the name as the language writes it, its wording if any, its figures by column, and whether
+    they are of a temperature."""
 
     name: str
     label: str | None
     figures: dict[str, Figure]
+    temperature: bool = False
 
 
 def shown_signals(record: Record) -> dict[str, tuple[Callable[[Record], Signal], str | None]]:
@@ -80,8 +83,13 @@ def signal_rows(fine: Record, coarse: Record | None = None) -> list[Row]:
         figures = {}
         for column, figure in SIGNAL_COLUMNS.items():
             figures[column] = _with_bound(_of_signal(figure, form), fine, coarse)
-        rows.append(Row(name, label, figures))
+        rows.append(Row(name, label, figures, _is_temperature(fine, name)))
     return rows
+
+
+def _is_temperature(record: Record, name: str) -> bool:
+    observe = record.circuit.observes.get(name)
+    return observe is not None and isinstance(observe.value, Call) and observe.value.name == "temperature"
 
 
 def _of_signal(figure: Callable[[Signal], Figure], form: Callable[[Record], Signal]) -> Callable[[Record], Figure]:
@@ -105,7 +113,7 @@ def _of_element(figure: Callable[[Record, str], Figure], name: str) -> Callable[
 
 def _with_bound(figure: Callable[[Record], Figure], fine: Record, coarse: Record | None) -> Figure:
     try:
-        value = figure(fine)
+        value = fine.granted(figure(fine))
         return value if coarse is None else bounded(figure(coarse), value)
     except (SignalError, UnknownName) as fault:
         return undefined(NONE, str(fault))

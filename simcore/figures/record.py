@@ -7,14 +7,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Protocol
 
 import numpy as np
 
 from grammar.quantities import AMPERE, KELVIN, VOLT
 from simcore.design.circuit import Circuit, Element, PlannedStudy, Port
-from simcore.figures.figure import Figure
+from simcore.figures.figure import CHANCE, CHANCE_OF_STEPS, Figure
 from simcore.figures.polynomials import Array
 from simcore.figures.signal import Signal
 
@@ -30,6 +30,7 @@ class Solved(Protocol):
     times: Array
     period: float | None
     window: tuple[float, float]
+    tolerance: float
     first_event: float | None
 
     @property
@@ -90,6 +91,10 @@ class Record:
         if key not in self._kept:
             self._kept[key] = form()
         return self._kept[key]
+
+    def granted(self, figure: Figure) -> Figure:
+        """A figure of this solution, granted the error that the tolerance of its steps may leave by chance."""
+        return replace(figure, chance=max(CHANCE, CHANCE_OF_STEPS * self.solution.tolerance))
 
     # --- names -----------------------------------------------------------------------------------------------------
 

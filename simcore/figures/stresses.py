@@ -34,6 +34,10 @@ class Stress:
     rating: str = ""
     ports: bool = False
 
+    def of(self, record: Record, element: Element, name: str) -> Figure:
+        """The figure of an element, or of one of its windings or phases."""
+        return record.granted(self.compute(record, element, name))
+
 
 def _array(element: Element, key: str) -> float:
     """How many diodes of an array share a voltage or current."""

@@ -86,7 +86,7 @@ def _everywhere(proof: Proof, element: Element, stress: Stress, name: str) -> It
 
 
 def _bounded(coarse: Record, fine: Record, element: Element, stress: Stress, name: str) -> Figure:
-    return bounded(stress.compute(coarse, element, name), stress.compute(fine, element, name))
+    return bounded(stress.of(coarse, element, name), stress.of(fine, element, name))
 
 
 def _line(

@@ -34,6 +34,12 @@ class Outcome(Enum):
         "A study has no solution that could be found.",
         "The message names the study and the instant: look for a short, an open end or a value out of proportion.",
     )
+    INTERRUPTED = (
+        130,
+        "Interrupted before all was solved.",
+        "What had been solved is there; run again for the rest.",
+    )
+    """128 + the number of the signal, as shells have it."""
 
     def __init__(self, status: int, sentence: str, cure: str):
         self.status = status

@@ -90,7 +90,7 @@ def _judged(claim: _Claim, coarse: Record, fine: Record) -> Verdict:
     key = KINDS[element.kind].key[stress.rating]
     if key.dimension == KELVIN and not knows_temperature(element):
         return Verdict(requirement, State.NOT_JUDGED, reason=NO_TEMPERATURE)
-    figure = Pair.of(lambda record: stress.compute(record, element, element.name), coarse, fine)
+    figure = Pair.of(lambda record: stress.of(record, element, element.name), coarse, fine)
     base = base_of(key, element, fine.circuit)
     limit = Pair.exact(plain(base + (1.0 - requirement.margin) * (claim.rating - base), key.dimension))
     state, margin, reason = side(figure, limit, 1.0, False)

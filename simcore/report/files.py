@@ -159,6 +159,7 @@ def _summary(proof: Proof, description: str) -> dict[str, object]:
         "description": description,
         "purpose": circuit.purpose,
         "outcome": {"status": proof.outcome.status, "sentence": proof.outcome.sentence},
+        "unsolved": list(proof.unsolved),
         "lets": {name: _value(let.value) for name, let in circuit.lets.items()},
         "studies": {name: _study_summary(study) for name, study in proof.studies.items()},
         "unrated": proof.unrated,

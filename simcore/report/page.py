@@ -141,7 +141,7 @@ def _figures(study: ProvedStudy) -> Iterator[str]:
 
 
 def _figure_cells(row: Row) -> list[str]:
-    return [row_name(row), *(words.with_bound(figure) for figure in row.figures.values())]
+    return [row_name(row), *(words.row_with_bound(row, column) for column in row.figures)]
 
 
 def _bill(proof: Proof) -> Iterator[str]:

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 from grammar.mistakes import DescriptionError, Mistake, render
 from simcore.judge.outcome import Outcome, worst
 from simcore.opening import Opened, open_design
-from simcore.proof import Proof, chosen_studies, prove
+from simcore.proof import PartProved, Proof, chosen_studies, prove
 from simcore.report.writing import why_unwritable
 from simcore.solve.failure import NoSolution
 
@@ -83,8 +83,11 @@ def open_jobs(
 
 def proved(job: Job, complain: Say) -> Ended:
     """Prove one description; what stops that is said."""
+    from simcore.report.progress import watching
+
     try:
-        proof = prove(job.opened, job.studies)
+        with watching(job.file, job.opened.circuit, job.studies, complain) as watch:
+            proof = prove(job.opened, job.studies, watch)
     except DescriptionError as error:
         complain(rendered(error.mistakes))
         return Ended(job, Outcome.INPUT_WRONG, why=str(error))
@@ -124,14 +127,23 @@ def run_files(
 
 
 def _run(job: Job, wishes: Wishes, say: Say, complain: Say) -> Ended:
-    """Prove one description; its files are written only once all of it is there."""
+    """Prove one description; its files are written only once all of it is there, or an interrupt ends it after some of
+    its studies. Then it goes on as an interrupt."""
+    try:
+        ended = proved(job, complain)
+    except PartProved as part:
+        _tell(Ended(job, part.proof.outcome, part.proof), wishes, say, complain)
+        raise
+    return ended if ended.proof is None else _tell(ended, wishes, say, complain)
+
+
+def _tell(ended: Ended, wishes: Wishes, say: Say, complain: Say) -> Ended:
+    """Write the files of a proof, and say what was found."""
     from simcore.report.screen import present_screen
     from simcore.report.terminal import failures, report
 
-    ended = proved(job, complain)
-    proof = ended.proof
-    if proof is None:
-        return ended
+    job, proof = ended.job, ended.proof
+    assert proof is not None
     bill: list[BillLine] = []
     files: list[Path] = []
     if wishes.bill:

@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 
+from grammar.quantities import Dimension
 from simcore.design.overview import sentence
 from simcore.figures.figure import Figure
 from simcore.figures.overview import Balance, Row
@@ -36,6 +37,8 @@ def report(
     if bill:
         lines += ["", *bill_lines(bill, width)]
     lines += ["", *verdict_lines(proof.verdicts, width), *(INDENT + line for line in words.unrated(proof.unrated)), ""]
+    if proof.unsolved:
+        lines.append(f"Interrupted: {', '.join(proof.unsolved)} not solved. Of what was solved:")
     lines.append(f"{words.closing(proof.verdicts)} Solved in {show_seconds(proof.seconds)}.")
     lines.append(f"Files in {files[0].parent}: {', '.join(path.name for path in files)}")
     lines += ["", "Cautions", *(INDENT + caution for caution in cautions(proof))]
@@ -57,12 +60,19 @@ def study_lines(name: str, study: ProvedStudy, width: int | None = None) -> list
 
 
 def figure_table(subject: str, rows: Sequence[Row], wording: Mapping[str, str], width: int | None = None) -> list[str]:
-    """A table of figures, with the largest bound of each column below it."""
+    """A table of figures, with the largest bound of each column below it: one line for what is in V, one for what is in
+    A, and so on."""
     columns = list(rows[0].figures)
-    cells = [[row_name(row), *(words.value(row.figures[column]) for column in columns)] for row in rows]
-    bounds = [words.largest_bound(row.figures[column] for row in rows) for column in columns]
+    cells = [[row_name(row), *(words.row_value(row, column) for column in columns)] for row in rows]
+    alike: dict[tuple[Dimension, ...], list[Row]] = {}
+    for row in rows:
+        alike.setdefault(tuple(figure.dimension for figure in row.figures.values()), []).append(row)
+    bounds = [
+        ["± at most", *(words.largest_bound(row.figures[column] for row in group) for column in columns)]
+        for group in alike.values()
+    ]
     headings = [subject, *(wording.get(column, column) for column in columns)]
-    lines = table(headings, [*cells, ["± at most", *bounds]], width=width)
+    lines = table(headings, [*cells, *bounds], width=width)
     return lines + [INDENT + note for note in _notes(rows)]
 
 
@@ -93,12 +103,12 @@ def energy_line(balance: Balance) -> str:
 
 
 def _share(figure: Figure) -> str:
-    return f"{figure.value:.1e} of it"
+    return f"{figure.value:.1e} of what flowed"
 
 
 def cost_line(study: ProvedStudy) -> str:
     """What a study cost, and the worst sum of currents."""
-    counts = ", ".join(f"{name} {count:.0f}" for name, count in study.statistics.items() if count)
+    counts = ", ".join(f"{count:.0f} {name}" for name, count in study.statistics.items() if count)
     return f"cost: {counts}; worst Kirchhoff sum {study.kirchhoff:.1e} of the currents at its node"
 
 

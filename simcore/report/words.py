@@ -11,7 +11,9 @@ from collections.abc import Iterable, Sequence
 from grammar.description import Call
 from grammar.quantities import AMPERE, KELVIN, show
 from grammar.writer import write_expression
+from simcore.design.circuit import Requirement
 from simcore.figures.figure import Figure
+from simcore.figures.overview import Row
 from simcore.judge.bill import BillLine
 from simcore.judge.harmonics import Harmonic
 from simcore.judge.held import Verdict
@@ -19,19 +21,32 @@ from simcore.judge.outcome import State
 from simcore.judge.ratings import stress_text
 
 BOUND_DIGITS = 2
+CELSIUS = 273.15
+"""K at 0 degC."""
 
 VERDICT_HEADINGS = ("verdict", "study", "requirement", "required", "found", "margin")
 BILL_HEADINGS = ("element", "stress", "worst in", "found", "rated", "unused", "suggested")
 HARMONIC_HEADINGS = ("verdict", "order", "limit", "found", "margin")
 
 
-def value(figure: Figure) -> str:
-    """A figure without its bound."""
+ABSOLUTE = ("mean", "peak", "valley")
+"""Figures of a temperature that are temperatures and no differences of such."""
+
+
+def value(figure: Figure, absolute: bool = False) -> str:
+    """A figure without its bound; absolute: in K it is a temperature, which is shown in degC."""
     if not figure.defined:
         return "undefined"
+    if absolute and figure.dimension == KELVIN:
+        return f"{figure.value - CELSIUS:.5g} degC"
     if math.isinf(figure.value):
         return "never" if figure.beyond is None else f"later than {show(figure.beyond, figure.dimension)}"
     return show(figure.value, figure.dimension)
+
+
+def row_value(row: Row, column: str) -> str:
+    """A figure of a table's row without its bound."""
+    return value(row.figures[column], row.temperature and column in ABSOLUTE)
 
 
 def bound(figure: Figure) -> str:
@@ -43,10 +58,15 @@ def bound(figure: Figure) -> str:
     return show(figure.bound, figure.dimension, BOUND_DIGITS)
 
 
-def with_bound(figure: Figure) -> str:
-    """A figure with its bound."""
-    text = value(figure)
+def with_bound(figure: Figure, absolute: bool = False) -> str:
+    """A figure with its bound; absolute: see value."""
+    text = value(figure, absolute)
     return text if not figure.defined or math.isinf(figure.value) else f"{text} ± {bound(figure)}"
+
+
+def row_with_bound(row: Row, column: str) -> str:
+    """A figure of a table's row with its bound."""
+    return with_bound(row.figures[column], row.temperature and column in ABSOLUTE)
 
 
 def largest_bound(figures: Iterable[Figure]) -> str:
@@ -66,9 +86,19 @@ def verdict_cells(verdict: Verdict) -> list[str]:
         verdict.requirement.study,
         subject(verdict),
         required(verdict),
-        "-" if verdict.figure is None else _amount(verdict, verdict.figure, sure=True),
+        "-" if verdict.figure is None else with_bound(verdict.figure, _absolute(verdict.requirement)),
         margin,
     ]
+
+
+def _absolute(requirement: Requirement) -> bool:
+    """Whether what is in K is a temperature: a rating, or a figure that is one."""
+    figure = requirement.figure
+    if not isinstance(figure, Call):
+        return requirement.relation == "ratings"
+    argument = figure.arguments[0] if figure.arguments else None
+    of_one = isinstance(argument, Call) and argument.name == "temperature"
+    return figure.name == "junction_temperature" or (figure.name in ABSOLUTE and of_one)
 
 
 def subject(verdict: Verdict) -> str:
@@ -85,20 +115,11 @@ def required(verdict: Verdict) -> str:
     """The limit or limits of a verdict."""
     if verdict.limit is None:
         return "-"
+    absolute = _absolute(verdict.requirement)
     if verdict.upper is not None:
-        return f"{_amount(verdict, verdict.limit)} to {_amount(verdict, verdict.upper)}"
+        return f"{value(verdict.limit, absolute)} to {value(verdict.upper, absolute)}"
     relation = "<=" if verdict.requirement.limits is not None else verdict.requirement.relation
-    return f"{relation} {_amount(verdict, verdict.limit)}"
-
-
-def _amount(verdict: Verdict, figure: Figure, sure: bool = False) -> str:
-    """A figure or limit of a verdict; sure: with its bound. A temperature, which is no difference of two, in degC."""
-    asked = verdict.requirement.figure
-    whole = asked is None or (isinstance(asked, Call) and asked.name == "junction_temperature")
-    if figure.dimension != KELVIN or not figure.defined or not whole:
-        return with_bound(figure) if sure else value(figure)
-    text = stress_text(figure)
-    return f"{text} ± {bound(figure)}" if sure else text
+    return f"{relation} {value(verdict.limit, absolute)}"
 
 
 def reasons(verdicts: Sequence[Verdict]) -> list[str]:

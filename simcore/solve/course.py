@@ -28,13 +28,15 @@ from simcore.solve.stretch import Stretch
 
 Answer = TypeVar("Answer")
 Variant = Callable[[tuple[Change, ...]], Circuit]
+Watch = Callable[[float], None]
+"""Told how much of a study is solved, in s."""
 EXTRAPOLATION_ORDER = 3
 _STEPS_A_PERIOD = 16
-_KINKS_A_PERIOD = 100
+_KINKS_A_PERIOD = 200
 _BEGIN = 1e-7
 _TOLD = 6
 """Changes by thresholds that are told one by one."""
-_EVENT = 1e-3
+_EVENT = 2e-3
 """Largest step in which a threshold is passed, over the largest with a kink."""
 
 
@@ -55,7 +57,7 @@ class Course:
     """Solves one study at one tolerance.
 
     variant: the circuit under changes; before: where the study starts, None for rest; tolerance: relative error of a
-    step Raises NoSolution.
+    step; watch: who wants to know how far it is. Raises NoSolution.
     """
 
     study: PlannedStudy
@@ -65,6 +67,7 @@ class Course:
     kernels: KernelCache = field(default_factory=KernelCache)
     counts: Counts = field(default_factory=Counts)
     told: list[tuple[float, str]] = field(default_factory=list)
+    watch: Watch | None = None
 
     def solve(self) -> tuple[Solution, Reached]:
         """The solution, and where it left the circuit."""
@@ -102,6 +105,7 @@ class Course:
         engine.remember(memory)
         solution = self._solution(self._valued(changes, stretches), stretches, clock, period, period)
         solution.notes.append(found.how)
+        solution.multiplier = found.multiplier
         solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
         return solution, Reached(memory, clock, math.inf, changes)
 
@@ -122,7 +126,7 @@ class Course:
                 clock = self._first_clock(circuit, frame, memory)
                 period = self.study.period or common_period(frame)
             end = self._next_change(circuit, moment, now, events)
-            piece = self._piece(circuit, frame, memory, clock + now, clock + end)
+            piece = self._piece(circuit, frame, memory, clock + now, clock + end, now)
             stretches += piece
             valued += self._valued(changes, piece)
             now = end
@@ -131,9 +135,14 @@ class Course:
 
     # --- pieces ---
 
-    def _piece(self, circuit: Circuit, frame: Frame, memory: Memory, start: float, end: float) -> list[Stretch]:
+    def _piece(
+        self, circuit: Circuit, frame: Frame, memory: Memory, start: float, end: float, done: float = 0.0
+    ) -> list[Stretch]:
         engine = self._engine(circuit, frame, memory)
         engine.move(start)
+        if self.watch is not None:
+            watch = self.watch
+            engine.watch = lambda time: watch(done + time - start)
         stepping = self._stepping(frame, self.study.duration)
         recorded = self._guard(lambda: engine.advance(end, stepping, record=True), start)
         self.told += engine.flags.told
@@ -223,7 +232,7 @@ class Course:
         counts = self.counts
         statistics = {
             "steps": counts.steps,
-            "rejected": counts.rejected,
+            "rejected steps": counts.rejected,
             "solves": counts.solves,
             "iterations": counts.iterations,
             "weak pivots": counts.weak,
@@ -232,4 +241,6 @@ class Course:
         if len(self.told) > _TOLD:
             notes.append(f"and {len(self.told) - _TOLD} more such changes")
         whole = self.variant(())
-        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, notes, statistics)
+        return Solution(
+            whole, self.study, times, stretches, valued, period, window, self.tolerance, first_event, notes, statistics
+        )

@@ -7,7 +7,7 @@ Times here are on the sources' clock. Knows kernels and their controls, and noth
 from __future__ import annotations
 
 import math
-from collections.abc import Hashable, Sequence
+from collections.abc import Callable, Hashable, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -100,6 +100,7 @@ class Engine:
 
     rounding: of a branch's current, in A; period: of the first sine in s, 0 where there is none
     saved: the kernel's own numbers (see run_interface), the first being the time on the sources' clock in s
+    watch: told the time it has come to, now and then
     """
 
     kernel: Kernel
@@ -108,6 +109,7 @@ class Engine:
     rounding: float = 0.0
     period: float = 0.0
     counts: Counts = field(default_factory=Counts)
+    watch: Callable[[float], None] | None = None
 
     def __post_init__(self) -> None:
         self.saved = [0.0] * self.kernel.saved_count
@@ -314,6 +316,8 @@ class Engine:
         chunks = []
         while True:
             written, passed = self._call(controls)
+            if self.watch is not None:
+                self.watch(self.saved[0])
             if record:
                 chunks.append(np.array(self._record[:written]).reshape(-1, width))
             if passed is not None:

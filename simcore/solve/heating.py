@@ -14,7 +14,7 @@ import numpy as np
 from simcore.components.part import temperature_of
 from simcore.design.circuit import Change, Circuit, Element, PlannedStudy
 from simcore.equations.kernel import KernelCache
-from simcore.solve.course import Course, Reached, Variant
+from simcore.solve.course import Course, Reached, Variant, Watch
 from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.solution import Solution
 
@@ -33,9 +33,15 @@ _WEIGHTS = np.array([5.0, 8.0, 5.0]) / 18.0
 
 
 def solve_warm(
-    study: PlannedStudy, variant: Variant, before: Reached | None, tolerance: float, kernels: KernelCache
+    study: PlannedStudy,
+    variant: Variant,
+    before: Reached | None,
+    tolerance: float,
+    kernels: KernelCache,
+    watch: Watch | None = None,
 ) -> tuple[Solution, Reached]:
-    """A study's solution and where it left the circuit, in thermal balance where the study stands still or repeats.
+    """A study's solution and where it left the circuit, in thermal balance where the study stands still or repeats;
+    watch: who wants to know how far it is.
 
     Fixed point of T = ambient + thermal resistance * mean loss(T) for each junction, by secant steps one by one
     (Steffensen 1933). Raises NoSolution, with Reason.RUNAWAY where the loss grows faster than it is carried away.
@@ -47,7 +53,9 @@ def solve_warm(
         if round_ == _PATIENCE:
             enough *= 10.0
         warm = _Warm(variant, dict(balance.temperatures))
-        solution, left = Course(study, warm, before, tolerance, kernels).solve()
+        course = Course(study, warm, before, tolerance, kernels)
+        course.watch = watch
+        solution, left = course.solve()
         left = replace(left, temperatures=dict(balance.temperatures))
         if study.kind == "transient" or not balance.update(solution, enough):
             return solution, left

@@ -181,8 +181,8 @@ def _described(way: _Map, point: _Point) -> Settled | None:
     largest = float(np.max(np.abs(np.linalg.eigvals(point.slope))))
     if largest > _LEAVES:
         return None
-    near = max(point.distance, _AGREEMENT)
-    how = f"settled by Newton on the period map to {near:.0e} of its states; {_left(largest)}"
+    reached = max(point.distance, _AGREEMENT)
+    how = f"settled by Newton on the period map to {reached:.0e} of its states; {_left(largest)}"
     if 1.0 - largest < _FREE:
         how += "; what nothing in the circuit fixes (a multiplier of 1) is as reached from rest"
     return Settled(how, way.plain, way.responding, largest)

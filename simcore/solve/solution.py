@@ -22,8 +22,10 @@ class Solution:
     times: breakpoints in s of the study's own clock, shape (n + 1,)
     valued: for each stretch, the circuit with the values its lets had then, nothing opened or shorted
     period: of the sources in s, None where there is none; window: (start, end) in s of what is judged
+    tolerance: relative error of a step
     first_event: time in s of the study's first event, None where it has none
     notes: what a reader must know of how it was solved; statistics: steps, solves, iterations, rejected, periods
+    multiplier: of a settled state the largest one, the share of a disturbance that is left after a period
     """
 
     circuit: Circuit
@@ -33,9 +35,11 @@ class Solution:
     valued: list[Circuit]
     period: float | None
     window: tuple[float, float]
+    tolerance: float
     first_event: float | None = None
     notes: list[str] = field(default_factory=list)
     statistics: dict[str, float] = field(default_factory=dict)
+    multiplier: float | None = None
 
     def voltage(self, a: str, b: str) -> np.ndarray:
         """u of node a against node b in V, shape (n, 3): at start, middle and end of each step."""

@@ -16,7 +16,7 @@ from simcore.campaign.solver import Solver, Task, packed, solve_block
 from simcore.campaign.sweeping import solved_rows
 from simcore.campaign.workers import Cluster, Here, Processes, WorkersLost, solved_blocks
 from simcore.equations.compiled import available
-from simcore.report.progress import _Lines, progress
+from simcore.report.progress import _Lines, _Studies, progress, watching
 
 
 def dies_once(mark: Path, first: int, last: int) -> str:
@@ -104,9 +104,26 @@ def test_progress_says_how_long_it_will_take() -> None:
     assert said == ["spread: 600 of 1000 variants, about 40 s left", "spread: 700 of 1000 variants, about 30 s left"]
 
 
+def test_a_run_says_which_study_it_is_at() -> None:
+    text = "a -> g: source e, constant = 1 V\na -> g: resistor R, 1 Ohm\nreference g\n"
+    text += "study rest: operating_point\nstudy long: transient, duration = 2 s"
+    said: list[str] = []
+    clock = iter([0.0, 1.0, 6.0, 7.0, 12.0])
+    studies = _Studies("x.rect", simcore.read_text(text).circuit, ["rest", "long"], said.append, 5.0, lambda: next(clock))
+    for study, reached in [("rest", 0.0), ("rest", None), ("long", 0.0), ("long", 1.0), ("long", 0.0)]:
+        studies.tell(study, reached)
+    assert studies.count == 1
+    assert said == [
+        "x.rect: 1 of 2 studies solved, now long, solution 1 at 0 s of 2 s",
+        "x.rect: 1 of 2 studies solved, now long, solution 2 at 0 s of 2 s",
+    ]
+
+
 def test_no_progress_where_nobody_watches(monkeypatch: pytest.MonkeyPatch) -> None:
     said: list[str] = []
     monkeypatch.setattr(sys.stderr, "isatty", lambda: False, raising=False)
     with progress("spread", 10, said.append) as tell:
         tell(10, True)
+    with watching("x.rect", None, ["s"], said.append) as watch:
+        assert watch is None
     assert not said

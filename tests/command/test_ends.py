@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import os
 import signal
 import subprocess
@@ -67,6 +68,26 @@ def test_an_interrupt_while_it_solves_is_one_line_and_leaves_no_file(good: Path)
     status, out, err = ended(process)
     assert status == 130 and out == "" and err == "interrupted; no file is half written\n"
     assert sorted(path.name for path in good.iterdir()) == ["good.rect", "long.rect"]
+
+
+def test_an_interrupt_keeps_the_studies_that_were_solved(good: Path) -> None:
+    """Of two studies the first is written and judged, and all that is said and written names the other as missing."""
+    text = GOOD + "study long: transient, duration = 10 min\nrequire long: mean(u_out) >= 5 V\n"
+    (good / "long.rect").write_text(text + "require s: mean(u_out) - mean(u_out) at long <= 1 V\n")
+    process = start(good, "run", "long.rect", program=("-c", STARTED.replace('"solving"', "course.study.name")))
+    assert process.stdout is not None
+    while process.stdout.readline() != "long\n":
+        assert process.poll() is None
+    process.send_signal(signal.SIGINT)
+    status, out, err = ended(process)
+    assert status == 130 and err == "interrupted; no file is half written\n"
+    assert "Interrupted: long not solved." in out and "All" not in out
+    results = good / "results" / "long"
+    assert sorted(path.name for path in results.iterdir()) == ["figures.csv", "s.csv", "summary.json", "verdicts.csv"]
+    summary = json.loads((results / "summary.json").read_text())
+    assert summary["unsolved"] == ["long"] and summary["outcome"]["status"] == 130
+    states = {verdict["requirement"]: verdict["verdict"] for verdict in summary["verdicts"]}
+    assert sorted(states.values()) == ["holds", "undecided"]
 
 
 @pytest.mark.parametrize("arguments", [("run", "good.rect"), ("look", "good.rect"), ("--help",), ("--version",)])

@@ -29,6 +29,7 @@ class FakeSolution:
     currents: dict[tuple[str, str], Function]
     period: float | None = None
     window: tuple[float, float] | None = None  # type: ignore[assignment]
+    tolerance: float = 0.0
     first_event: float | None = None
     study: PlannedStudy = field(default_factory=lambda: PlannedStudy("run", "transient"))
     temperatures: dict[str, float] = field(default_factory=dict)

@@ -319,7 +319,8 @@ def capacitor_input() -> list[dict[str, str]]:
     "row", capacitor_input(), ids=lambda row: f"{row['circuit']}-{row['omega_C_RL']}-{row['Rs_over_RL']}"
 )
 def test_capacitor_input_with_source_resistance(row: dict[str, str]) -> None:
-    """T3 at a crest of 1 kV: two drops of 7 mV are 1.4e-5."""
+    """T3 at a crest of 1 kV: two drops of 7 mV are 1.4e-5. A valley inside the step in which a diode turns on is told to
+    1.5e-4 of the crest only, which a bound from two solutions with the same step there does not see."""
     load, crest = 1000.0, 1000.0
     farad = float(row["omega_C_RL"]) / (2.0 * math.pi * 50.0 * load)
     source = f"sine = 1000 V peak, frequency = 50 Hz, series_resistance = {float(row['Rs_over_RL']) * load!r} Ohm"
@@ -333,9 +334,17 @@ def test_capacitor_input_with_source_resistance(row: dict[str, str]) -> None:
     kind = next(name for name in circuits if name in row["circuit"])
     text = f"{circuits[kind]}\np -> g: resistor R, {load!r} Ohm\nreference g\nstudy s: settled\n"
     result = solved(text)
-    close(result, "mean(voltage(p))", float(row["mean_over_Vpeak"]) * crest, 1e-3, 0.03)
-    close(result, "rms(current(D)) / mean(current(D))", float(row["diode_rms_over_mean"]), 2e-3, 1e-4)
-    close(result, "peak(current(D)) / mean(current(D))", float(row["diode_peak_over_mean"]), 5e-3, 1e-3)
+    mean = "mean(voltage(p))"
+    checks = [
+        (mean, float(row["mean_over_Vpeak"]) * crest, 1e-3, 0.03),
+        ("rms(current(D)) / mean(current(D))", float(row["diode_rms_over_mean"]), 2e-3, 1e-4),
+        ("peak(current(D)) / mean(current(D))", float(row["diode_peak_over_mean"]), 5e-3, 1e-3),
+        ("ripple_factor(voltage(p))", float(row["output_rms_ripple_over_mean"]), 2e-3, 1e-4),
+        ("ripple(voltage(p))", float(row["output_peak_to_peak_over_Vpeak"]) * crest, 2e-3, 0.15),
+        (f"rms(current(e)) * 1 kOhm / {mean}", float(row["source_rms_over_load_mean"]), 2e-3, 1e-4),
+    ]
+    for figure, expected, relative, model in checks:
+        close(result, figure, expected, relative, model, exact_to=model)
 
 
 # Classical detector theory (Clarke, Hess, Communication Circuits, 1971, from memory): I_S [I0(V_m/w) exp(-V/w) - 1] = V/R.
