@@ -53,7 +53,7 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
     try:
         if mistakes:
             raise DescriptionError(mistakes)
-        sweeps = _chosen(opened.circuit, asked.sweeps, file)
+        sweeps = chosen_sweeps(opened.circuit, asked.sweeps, file)
         tasks = [(sweep, task_of(opened, sweep)) for sweep in sweeps]
         crew = crew_of(asked.workers, asked.scheduler)
         say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
@@ -131,7 +131,9 @@ def writing(folder: Path) -> Iterator[None]:
         raise DescriptionError([Mistake(what, cure, file=str(folder))]) from error
 
 
-def _chosen(circuit: Circuit, wanted: Sequence[str], file: str) -> list[PlannedSweep]:
+def chosen_sweeps(circuit: Circuit, wanted: Sequence[str], file: str) -> list[PlannedSweep]:
+    """The sweeps of these names, all for none. Raises DescriptionError for a name that no sweep has, and for a sweep
+    whose table would take the place of another file."""
     known = {sweep.name: sweep for sweep in circuit.sweeps}
     mistakes = [_unknown(name, known, file) for name in wanted if name not in known]
     if not known:

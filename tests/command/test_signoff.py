@@ -151,7 +151,7 @@ def test_what_drifted_most_stands_first_and_the_rest_is_counted(
     assert done.returncode == 1 and len(rows) == 3 and f"and {count - 3} more that moved" in done.stdout
 
     def share(row: str) -> float:
-        was, now = (show_to_number(each) for each in re.findall(r"[\d.]+ [mu]?[AVW]|[\d.]+ deg", row)[:2])
+        was, now = (show_to_number(each) for each in re.findall(r"[\d.]+ [munp]?[AVW]|[\d.]+ deg", row)[-4:-2])
         return abs(now - was) / max(now, was)
 
     assert [share(row) for row in rows] == sorted((share(row) for row in rows), reverse=True)
@@ -160,7 +160,7 @@ def test_what_drifted_most_stands_first_and_the_rest_is_counted(
 def show_to_number(text: str) -> float:
     """A shown value in its SI unit."""
     number, unit = text.split()
-    return float(number) * {"m": 1e-3, "u": 1e-6}.get(unit[0], 1.0)
+    return float(number) * {"m": 1e-3, "u": 1e-6, "n": 1e-9, "p": 1e-12}.get(unit[0], 1.0)
 
 
 def test_a_looser_accuracy_is_no_drift(folder: Path, bulkrail: Call) -> None:
