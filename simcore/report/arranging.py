@@ -22,6 +22,9 @@ from simcore.figures.record import DELIVERING
 MOST_BRANCHES = 150
 """What a diagram can show so that it can still be read."""
 
+DETOUR = 20
+"""Branches that a way through a load counts as."""
+
 
 @dataclass(frozen=True)
 class Branch:
@@ -84,10 +87,10 @@ def _value(element: Element, index: int) -> str:
 
 def arrange(branches: Sequence[Branch], references: Sequence[str]) -> Arrangement:
     """Arrange a circuit of one branch at least."""
-    graph = _joined(branches)
+    graph = _joined(branches, references)
     distance = _distances(graph, branches, references)
     level = _levels(branches, references, distance)
-    column = _columns(branches, distance, level)
+    column = _columns(branches, references, distance, level)
     lying = _lying(branches, column, level)
     rows = _rows(branches, column, level, lying)
     places = [
@@ -96,15 +99,24 @@ def arrange(branches: Sequence[Branch], references: Sequence[str]) -> Arrangemen
     return Arrangement(places, rows, max(column.values()) + 1)
 
 
-def _joined(branches: Sequence[Branch]) -> networkx.Graph:
-    """Nodes joined by branches, and those of the windings of one transformer by their core."""
+def _joined(branches: Sequence[Branch], references: Sequence[str]) -> networkx.Graph:
+    """Nodes joined by branches, and those of the windings of one transformer by their core. What loads the circuit is
+    no way into it: it counts as a long one."""
     graph = networkx.Graph()
     first: dict[str, Branch] = {}
     for branch in branches:
-        graph.add_edge(branch.a, branch.b)
+        if not graph.has_edge(branch.a, branch.b) or not _loads(branch, references):
+            graph.add_edge(branch.a, branch.b, weight=DETOUR if _loads(branch, references) else 1)
         other = first.setdefault(branch.owner, branch)
-        graph.add_edges_from([(other.a, branch.a), (other.a, branch.b)])
+        if branch is not other:
+            graph.add_edges_from([(other.a, branch.a), (other.a, branch.b)], weight=1)
     return graph
+
+
+def _loads(branch: Branch, references: Sequence[str]) -> bool:
+    """Whether a branch only takes power: a load, a clamp, or a resistor to a reference."""
+    across = branch.a in references or branch.b in references
+    return branch.kind in ("load", "clamp") or (branch.kind == "resistor" and across)
 
 
 def _distances(graph: networkx.Graph, branches: Sequence[Branch], references: Sequence[str]) -> dict[str, int]:
@@ -125,7 +137,7 @@ def _wanted(branch: Branch, references: Sequence[str], distance: dict[str, int])
         return (-1 if across else 0), 0.3
     if branch.kind == "capacitor":
         return -1, 0.05
-    if branch.kind in ("load", "clamp") or (branch.kind == "resistor" and across):
+    if _loads(branch, references):
         return -1, 0.02
     return 0, (0.5 if branch.kind == "resistor" else 1.0) * nearness
 
@@ -156,12 +168,16 @@ def _levels(branches: Sequence[Branch], references: Sequence[str], distance: dic
     return {node: round(float(found.x[place])) for node, place in nodes.items()}
 
 
-def _columns(branches: Sequence[Branch], distance: dict[str, int], level: dict[str, int]) -> dict[str, int]:
-    """Branch -> column, by distance from the sources, then as written; two alike, one on top of the other, share it."""
+def _columns(
+    branches: Sequence[Branch], references: Sequence[str], distance: dict[str, int], level: dict[str, int]
+) -> dict[str, int]:
+    """Branch -> column, by distance from the sources, then as written, loads last; two alike, one on top of the other,
+    share it."""
 
-    def rank(branch: Branch) -> tuple[bool, int, int]:
+    def rank(branch: Branch) -> tuple[bool, bool, int, int]:
         ends = distance[branch.a], distance[branch.b]
-        return branch.kind not in DELIVERING, max(ends), sum(ends)
+        late = _loads(branch, references) and max(ends) > 0
+        return branch.kind not in DELIVERING, late, max(ends), sum(ends)
 
     found: dict[str, int] = {}
     open_below: dict[tuple[str, str, int], str] = {}

@@ -6,19 +6,22 @@ Knows panels and bars, and no studies. It is the only module that needs the extr
 from __future__ import annotations
 
 import io
+import math
 from collections.abc import Sequence
 
 import matplotlib
+import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Polygon, Rectangle
-from matplotlib.ticker import FuncFormatter, NullLocator
+from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullLocator
 
 from simcore.figures.polynomials import Array
 from simcore.judge.outcome import State
 from simcore.report.diagram import BOX_HEIGHT, BOX_WIDTH, FAINT, LINE_HEIGHT, Diagram
 from simcore.report.panels import Bars, Panel, Picture, decades, shades
 from simcore.report.svg import COLOURS, DASHES, INK, LIMIT, SHADE, number, spread, value_range
+from simcore.report.sweep_panels import SweepPanel, SweepPicture
 
 WIDTH, PANEL, STRIP, EDGES = 8.0, 2.2, 0.16, 1.1
 """In inches: of the picture, the height of a panel and of a diode's strip, and what titles and axes need."""
@@ -119,6 +122,69 @@ def bars_bytes(bars: Bars, form: str) -> bytes:
         axes.set_ylabel("current in A rms")
         axes.set_title(bars.title, loc="left", fontsize=9.0)
         return _saved(figure, form)
+
+
+def sweep_bytes(picture: SweepPicture, form: str) -> bytes:
+    """A sweep as a picture file: figures over its let, or how samples spread; form: "png" or "svg"."""
+    count = len(picture.panels)
+    across = 1 if count == 1 else 2
+    down = -(-count // across)
+    with matplotlib.rc_context(_STYLE):
+        figure = Figure(figsize=(WIDTH, PANEL * down + 0.5), layout="constrained")
+        places = figure.subplots(down, across, squeeze=False).flatten()
+        for panel, axes in zip(picture.panels, places, strict=False):
+            (_spread if picture.over is None else _over)(axes, panel, picture)
+        for axes in places[count:]:
+            axes.set_axis_off()
+        figure.suptitle(picture.title, x=0.01, ha="left", fontsize=9.0)
+        return _saved(figure, form)
+
+
+def _over(axes: Axes, panel: SweepPanel, picture: SweepPicture) -> None:
+    """A figure over a let: hollow where a requirement on it does not hold."""
+    assert picture.over is not None
+    axes.plot(picture.over, panel.values, color=COLOURS[0], linewidth=1.2)
+    for chosen, face in ((np.logical_not(panel.fails), COLOURS[0]), (panel.fails, "white")):
+        here = picture.over[chosen], panel.values[chosen]
+        axes.plot(*here, "o", markerfacecolor=face, markeredgecolor=COLOURS[0], markersize=4.5)
+    for limit in panel.limits:
+        axes.axhline(limit, color=LIMIT, linewidth=1.0, linestyle=(0.0, (5.0, 2.0)))
+        where = (1.0, limit), (0, 2), ("axes fraction", "data"), "offset points"
+        axes.annotate("limit", *where, ha="right", fontsize=7.5)
+    low, high = float(picture.over.min()), float(picture.over.max())
+    air = (high / low) ** 0.04 if picture.logarithmic else 0.04 * (high - low)
+    axes.set_xlim((low / air, high * air) if picture.logarithmic else (low - air, high + air))
+    if picture.logarithmic:
+        axes.set_xscale("log")
+        axes.xaxis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0)))
+        axes.xaxis.set_major_formatter(FuncFormatter(lambda value, _: number(value)))
+        axes.xaxis.set_minor_locator(NullLocator())
+    axes.set_title(panel.title, loc="left", fontsize=8.0)
+    axes.set_xlabel(picture.over_title)
+    axes.grid(axis="y", color="#dddddd", linewidth=0.6)
+    axes.set_axisbelow(True)
+
+
+def _spread(axes: Axes, panel: SweepPanel, picture: SweepPicture) -> None:
+    """How many variants lie where; those in which a requirement does not hold stand hatched on the others."""
+    finite = np.isfinite(panel.values)
+    good = panel.values[finite & np.logical_not(panel.fails)]
+    bad = panel.values[finite & panel.fails]
+    bins = np.histogram_bin_edges(panel.values[finite], bins=min(40, max(8, round(math.sqrt(finite.sum())))))
+    low, _ = np.histogram(good, bins)
+    high, _ = np.histogram(bad, bins)
+    widths = np.diff(bins)
+    axes.bar(bins[:-1], low, widths, align="edge", color=COLOURS[2])
+    axes.bar(
+        bins[:-1], high, widths, low, align="edge", facecolor="white", edgecolor=LIMIT, hatch="////", linewidth=0.4
+    )
+    axes.set_ylim(0.0, 1.2 * max(float((low + high).max()), 1.0))
+    axes.yaxis.set_major_locator(MaxNLocator(5, integer=True))
+    for limit in panel.limits:
+        axes.axvline(limit, color=LIMIT, linewidth=1.0, linestyle=(0.0, (5.0, 2.0)))
+        axes.annotate("limit", (limit, 1.0), (2, -8), ("data", "axes fraction"), "offset points", fontsize=7.5)
+    axes.set_title(panel.title, loc="left", fontsize=8.0)
+    axes.set_ylabel("variants")
 
 
 def diagram_bytes(diagram: Diagram, form: str) -> bytes:

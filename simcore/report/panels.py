@@ -84,7 +84,7 @@ def picture_of(name: str, study: ProvedStudy) -> Picture | None:
     record = study.record
     if study.study.kind == "operating_point":
         return None
-    prefix = _prefix(float(record.times[-1] - record.times[0]))
+    prefix = prefix_of(float(record.times[-1] - record.times[0]))
     scale = 1.0 / PREFIXES[prefix]
     start, end = float(record.times[0]) * scale, float(record.times[-1]) * scale
     window = tuple(each * scale for each in record.solution.window)
@@ -111,7 +111,7 @@ def _panels(record: Record, scale: float) -> list[Panel]:
             chosen = {name: signals[name] for name in names[first : first + MOST_CURVES]}
             sampled = traces(chosen)
             columns = {name: sampled.columns[heading(name, dimension)] for name in chosen}
-            prefix = _prefix(max(float(np.abs(column).max()) for column in columns.values()), dimension)
+            prefix = prefix_of(max(float(np.abs(column).max()) for column in columns.values()), dimension)
             unit = prefix + unit_of(dimension)
             curves = [
                 Curve(name, *_thinned(sampled.times * scale, column / PREFIXES[prefix]))
@@ -122,7 +122,7 @@ def _panels(record: Record, scale: float) -> list[Panel]:
     return found
 
 
-def _prefix(size: float, dimension: Dimension = SECOND) -> str:
+def prefix_of(size: float, dimension: Dimension = SECOND) -> str:
     """The prefix that brings a size to 1 to 999; of plain numbers, temperatures and units made of several, none."""
     if not size > 0.0 or dimension in (NONE, KELVIN) or not unit_of(dimension).isalpha():
         return ""

@@ -1,6 +1,6 @@
-"""What `bulkrail draw` does: solve, draw every study and every table of harmonics, and say where the pictures are.
+"""What `bulkrail draw` does: draw the circuit, every study and every table of harmonics, or sweeps from their tables.
 
-Knows proofs and pictures; draws nothing itself.
+Knows proofs, sweeps' tables and pictures; draws nothing itself.
 """
 
 from __future__ import annotations
@@ -8,11 +8,14 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 
+from grammar.mistakes import DescriptionError
 from simcore.judge.outcome import Outcome
+from simcore.opening import Opened
 from simcore.proof import Proof
 from simcore.report.diagram import diagram_of
 from simcore.report.panels import bars_of, picture_of
-from simcore.report.session import Say, open_jobs, proved, written
+from simcore.report.screen import present_screen
+from simcore.report.session import Say, open_jobs, proved, rendered, written
 from simcore.report.writing import whole_bytes
 
 
@@ -21,11 +24,13 @@ def draw_file(
     folder: Path,
     form: str,
     wanted: Sequence[str],
+    sweeps: Sequence[str],
     settings: Mapping[str, str],
     say: Say,
     complain: Say,
 ) -> Outcome:
-    """Draw the studies of a description; form: "png" or "svg". Whether requirements hold does not matter here."""
+    """Draw a description: its sweeps of these names where there are any, from their tables in the folder; else the
+    circuit and its studies, solved anew. form: "png" or "svg". Whether requirements hold does not matter here."""
     try:
         import matplotlib  # noqa: F401  (only whether it is there)
     except ImportError:
@@ -35,22 +40,45 @@ def draw_file(
     jobs = open_jobs({file: folder}, wanted, settings, complain)
     if jobs is None:
         return Outcome.INPUT_WRONG
-    ended = proved(jobs[0], complain)
-    if ended.proof is None:
-        return ended.outcome
-    pictures = {folder / f"{name}.{form}": content for name, content in _pictures(ended.proof, form).items()}
-    if not pictures:
-        say(f"{file}: no study has a course to draw")
-        return Outcome.ALL_HOLD
+    if sweeps:
+        try:
+            pictures = _sweep_pictures(jobs[0].opened, file, sweeps, folder, form)
+        except DescriptionError as error:
+            complain(rendered(error.mistakes))
+            return Outcome.INPUT_WRONG
+    else:
+        ended = proved(jobs[0], complain)
+        if ended.proof is None:
+            return ended.outcome
+        pictures = _pictures(ended.proof, form)
+    paths = {folder / f"{name}.{form}": content for name, content in pictures.items()}
 
     def write() -> None:
-        for path, content in pictures.items():
+        for path, content in paths.items():
             whole_bytes(path, content)
 
     if not written(write, folder, complain):
         return Outcome.INPUT_WRONG
-    say(f"Pictures in {folder}: {', '.join(path.name for path in pictures)}")
+    said = f"Pictures in {folder}: {', '.join(path.name for path in paths)}" if paths else f"{file}: nothing to draw"
+    say("\n".join(present_screen().fitted([said])))
     return Outcome.ALL_HOLD
+
+
+def _sweep_pictures(opened: Opened, file: str, wanted: Sequence[str], folder: Path, form: str) -> dict[str, bytes]:
+    """File stem -> content. Raises DescriptionError where a sweep can't be drawn, with the reason."""
+    from grammar.mistakes import Mistake
+    from simcore.report.drawing import sweep_bytes
+    from simcore.report.sweep_panels import sweep_picture
+    from simcore.report.sweep_session import chosen_sweeps, task_of
+
+    found = {}
+    for sweep in chosen_sweeps(opened.circuit, wanted, file):
+        picture = sweep_picture(sweep, task_of(opened, sweep), folder / f"{sweep.name}.csv")
+        if picture is None or not picture.panels:
+            what = f"sweep {sweep.name} neither varies one let alone nor draws samples alone, so no curve shows it"
+            raise DescriptionError([Mistake(what, "Its table holds everything that was found.", sweep.span)])
+        found[sweep.name] = sweep_bytes(picture, form)
+    return found
 
 
 def _pictures(proof: Proof, form: str) -> dict[str, bytes]:

@@ -9,17 +9,20 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 
 from grammar.mistakes import DescriptionError
-from grammar.quantities import Dimension, show
+from grammar.quantities import PREFIXES, Dimension, show, unit_of
 from simcore.design.files import load
 from simcore.judge.outcome import Outcome
 from simcore.judge.preferred import SERIES
 from simcore.judge.sizing import Judged
 from simcore.report import words
 from simcore.report.files import write_table
+from simcore.report.panels import prefix_of
 from simcore.report.screen import present_screen
 from simcore.report.session import Say, rendered, written
+from simcore.report.svg import Trade, trade_svg
 from simcore.report.tables import INDENT, table
 from simcore.report.traces import heading
+from simcore.report.writing import whole_file
 from simcore.sized import Sized, Sizer, with_claim
 
 _DIGITS = 4
@@ -37,7 +40,8 @@ def size_file(
     say: Say,
     complain: Say,
 ) -> Outcome:
-    """Size one let, or the second of two at values of the first, and write what was tried to size.csv."""
+    """Size one let, or the second of two at values of the first, and write what was tried to size.csv, of two also as a
+    picture."""
     project, mistakes = load(file)
     if not mistakes:
         project, mistakes = with_claim(project, claim)
@@ -51,7 +55,7 @@ def size_file(
             return _one(sizer.size(lets[0], *ends), claim, series, path, say, complain)
         outer = sizer.quantity(lets[0], ends[0] or ends[1]).dimension
         traded = sizer.trade(lets[0], lets[1], *ends)
-        return _two(lets[0], outer, traded, series, path, say, complain)
+        return _two(lets[0], outer, traded, claim, series, path, say, complain)
     except DescriptionError as error:
         complain(rendered(error.mistakes))
         return Outcome.INPUT_WRONG
@@ -107,6 +111,7 @@ def _two(
     outer: str,
     dimension: Dimension,
     traded: Sequence[tuple[float, Sized]],
+    claim: str,
     series: str,
     path: Path,
     say: Say,
@@ -121,17 +126,53 @@ def _two(
         heading(f"{inner.let} in {series}", inner.dimension),
     )
     rows = [row for value, sized in traded for row in _trade_rows(value, sized)]
-    if not written(lambda: write_table(path, columns, rows), path, complain):
+    trade = _trade(outer, dimension, inner, rows, f"{claim}; hollow: the next {series} value")
+    picture = path.with_suffix(".svg")
+
+    def write() -> None:
+        write_table(path, columns, rows)
+        if trade is not None:
+            with whole_file(picture) as file:
+                file.write(trade_svg(trade) + "\n")
+
+    if not written(write, path, complain):
         return Outcome.INPUT_WRONG
     units = (dimension, inner.dimension, None, inner.dimension)
     cells = [[_cell(each, unit) for each, unit in zip(row, units, strict=True)] for row in rows]
     screen = present_screen()
     names = (outer, inner.let, "met", f"{inner.let} in {series}")
-    say("\n".join([*screen.fitted(table(names, cells, 0, screen.width)), f"Written to {path}"]))
+    places = f"{path}, {picture}" if trade is not None else str(path)
+    lines = [f"{inner.let} over {outer}, so that {claim}", *table(names, cells, 0, screen.width)]
+    lines.append(f"Written to {places}")
+    say("\n".join(screen.fitted(lines)))
     return Outcome.ALL_HOLD if any(sized.sizing.solved for _, sized in traded) else Outcome.NOT_ALL_HOLD
 
 
-def _trade_rows(value: float, sized: Sized) -> list[tuple[float, float | None, str, float | None]]:
+Traded = tuple[float, float | None, str, float | None]
+
+
+def _trade(outer: str, dimension: Dimension, inner: Sized, rows: Sequence[Traded], title: str) -> Trade | None:
+    """The trade-off as it is drawn, a curve for each side on which it is met; None where no value was found."""
+    found = [(first, second) for first, second, _, _ in rows if second is not None]
+    if not found:
+        return None
+    names, factors = [], []
+    for let, unit, place in ((outer, dimension, 0), (inner.let, inner.dimension, 1)):
+        prefix = prefix_of(max(point[place] for point in found), unit)
+        symbol = prefix + unit_of(unit)
+        names.append(f"{let} in {symbol}" if symbol else let)
+        factors.append(1.0 / PREFIXES[prefix])
+    curves: dict[str, list[tuple[float, float]]] = {}
+    made = []
+    for first, second, side, preferred in rows:
+        if second is not None:
+            curves.setdefault(side, []).append((factors[0] * first, factors[1] * second))
+        if preferred is not None:
+            made.append((factors[0] * first, factors[1] * preferred))
+    return Trade(title, names[0], names[1], curves, made)
+
+
+def _trade_rows(value: float, sized: Sized) -> list[Traded]:
     if not sized.sizing.turns:
         return [(value, None, "everywhere" if sized.sizing.met_throughout else "nowhere", None)]
     return [

@@ -6,7 +6,8 @@ Knows panels and bars, and no studies. All text is escaped.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from html import escape
 
 from simcore.judge.outcome import State
@@ -174,3 +175,68 @@ def bars_svg(bars: Bars) -> str:
     parts.append(text(18, top + height / 2.0, "current in A rms", "middle", INK, True))
     parts.append(text((LEFT + WIDTH - RIGHT) / 2.0, top + height + 30, "order of the harmonic", "middle"))
     return document(WIDTH, top + height + 40, bars.title, parts)
+
+
+# --- trade-offs ------------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class Trade:
+    """Where a second let just meets a requirement over a first one, on the axes' units, all above zero.
+
+    curves: for "above" and "below", which say on which side it is met: points (first, second); made: the preferred
+    values chosen at them
+    """
+
+    title: str
+    first: str
+    second: str
+    curves: Mapping[str, Sequence[tuple[float, float]]]
+    made: Sequence[tuple[float, float]]
+
+
+def trade_svg(trade: Trade) -> str:
+    """A trade-off between two lets, on logarithmic axes; preferred values as hollow dots."""
+    points = [point for curve in (*trade.curves.values(), trade.made) for point in curve]
+    (left, right), (low, high) = (_decade_range([point[axis] for point in points]) for axis in (0, 1))
+    top, height = float(TOP) + 16.0, 260.0
+
+    def at(point: tuple[float, float]) -> tuple[float, float]:
+        across = math.log(point[0] / left) / math.log(right / left)
+        up = math.log(point[1] / low) / math.log(high / low)
+        return LEFT + across * (WIDTH - LEFT - RIGHT), top + (1.0 - up) * height
+
+    parts = [text(LEFT, 16, trade.title)]
+    for tick in log_ticks(low, high):
+        y = at((left, tick))[1]
+        parts += [line(LEFT, y, WIDTH - RIGHT, y, GRID), text(LEFT - 6, y + 4, number(tick), "end")]
+    for tick in log_ticks(left, right):
+        x = at((tick, low))[0]
+        parts += [line(x, top + height, x, top + height + 4, INK), text(x, top + height + 16, number(tick), "middle")]
+    for (side, curve), colour, dash in zip(trade.curves.items(), COLOURS, DASHES, strict=False):
+        places = [at(point) for point in curve]
+        dashed = f' stroke-dasharray="{dash}"' if dash else ""
+        drawn = " ".join(f"{x:.1f},{y:.1f}" for x, y in places)
+        parts.append(f'<polyline points="{drawn}" fill="none" stroke="{colour}" stroke-width="1.3"{dashed}/>')
+        parts.append(text(WIDTH - RIGHT + 6, places[-1][1] + 4, f"met {side}", "start", colour))
+    for x, y in map(at, trade.made):
+        parts.append(f'<circle cx="{x:.1f}" cy="{y:.1f}" r="3.2" fill="#ffffff" stroke="{INK}"/>')
+    parts += [line(LEFT, top, LEFT, top + height, INK), line(LEFT, top + height, WIDTH - RIGHT, top + height, INK)]
+    parts.append(text(18, top + height / 2.0, trade.second, "middle", INK, True))
+    parts.append(text((LEFT + WIDTH - RIGHT) / 2.0, top + height + 31, trade.first, "middle"))
+    return document(WIDTH, top + height + 40, trade.title, parts)
+
+
+def _decade_range(values: Sequence[float]) -> tuple[float, float]:
+    """Lowest and highest value of a logarithmic axis, with a little air."""
+    low, high = min(values), max(values)
+    air = max((high / low) ** 0.05, 1.05)
+    return low / air, high * air
+
+
+def log_ticks(low: float, high: float) -> list[float]:
+    """Round values for a logarithmic axis: 1, 2 and 5 of each decade, or evenly spaced ones where two are not there."""
+    decades_there = range(math.floor(math.log10(low)), math.ceil(math.log10(high)) + 1)
+    found = [factor * 10.0**power for power in decades_there for factor in (1.0, 2.0, 5.0)]
+    within = [tick for tick in found if low <= tick <= high]
+    return within if len(within) > 1 else ticks(low, high)

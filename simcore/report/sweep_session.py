@@ -28,6 +28,7 @@ from simcore.judge.outcome import Outcome, worst
 from simcore.opening import Opened, open_design
 from simcore.proof import TAKEN
 from simcore.report.progress import progress
+from simcore.report.screen import present_screen
 from simcore.report.session import Say
 from simcore.report.sweeps import sensitivity_lines, sweep_lines, write_sensitivities, write_sweep
 from simcore.report.terminal import show_seconds
@@ -53,7 +54,7 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
     try:
         if mistakes:
             raise DescriptionError(mistakes)
-        sweeps = _chosen(opened.circuit, asked.sweeps, file)
+        sweeps = chosen_sweeps(opened.circuit, asked.sweeps, file)
         tasks = [(sweep, task_of(opened, sweep)) for sweep in sweeps]
         crew = crew_of(asked.workers, asked.scheduler)
         say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
@@ -67,7 +68,7 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
         complain(f"{file}: {fault}")
         complain("    cure: give it fewer --workers, if memory is short; what is finished is kept, --resume goes on")
         return Outcome.NO_SOLUTION
-    say("\n".join(["", *_CAUTIONS, ""]))
+    say("\n".join(present_screen().fitted(["", *_CAUTIONS, ""])))
     return worst(outcome for outcome, _ in solved)
 
 
@@ -98,7 +99,8 @@ def sensitivity_of_file(file: str, folder: Path, asked: Asked, say: Say, complai
         complain(f"{file}: {fault}\n    cure: give it fewer --workers, if memory is short")
         return Outcome.NO_SOLUTION
     title = [opened.circuit.purpose, file] if opened.circuit.purpose else [file]
-    say("\n".join([*title, *sensitivity_lines(found), "", f"  Table: {path}.", "", *_CAUTIONS, ""]))
+    lines = [*title, *sensitivity_lines(found), "", f"  Table: {path}.", "", *_CAUTIONS, ""]
+    say("\n".join(present_screen().fitted(lines)))
     return Outcome.ALL_HOLD if nominal.passes else Outcome.NOT_ALL_HOLD
 
 
@@ -131,7 +133,9 @@ def writing(folder: Path) -> Iterator[None]:
         raise DescriptionError([Mistake(what, cure, file=str(folder))]) from error
 
 
-def _chosen(circuit: Circuit, wanted: Sequence[str], file: str) -> list[PlannedSweep]:
+def chosen_sweeps(circuit: Circuit, wanted: Sequence[str], file: str) -> list[PlannedSweep]:
+    """The sweeps of these names, all for none. Raises DescriptionError for a name that no sweep has, and for a sweep
+    whose table would take the place of another file."""
     known = {sweep.name: sweep for sweep in circuit.sweeps}
     mistakes = [_unknown(name, known, file) for name in wanted if name not in known]
     if not known:
@@ -170,7 +174,9 @@ def _solve(
         complain(f"what is finished of {sweep.name} is kept in {journal.path}; run it again with --resume to go on")
         raise
     seconds = show_seconds(time.perf_counter() - start)
-    say("\n".join(["", *sweep_lines(results, sweep.label), f"  Table: {path}. Solved in {seconds}."]))
+    screen = present_screen()
+    lines = ["", *sweep_lines(results, sweep.label, screen.width), f"  Table: {path}. Solved in {seconds}."]
+    say("\n".join(screen.painted(screen.fitted(lines))))
     return results.outcome, journal
 
 

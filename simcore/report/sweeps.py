@@ -37,8 +37,8 @@ def _cell(value: object) -> str:
     return str(value)
 
 
-def sweep_lines(results: Results, label: str | None = None) -> list[str]:
-    """What one sweep found."""
+def sweep_lines(results: Results, label: str | None = None, width: int | None = None) -> list[str]:
+    """What one sweep found; width: characters a line, None for as many as it takes."""
     plan = results.plan
     title = f"{plan.name} ({label})" if label else plan.name
     lines = [f"{title}: {plan.sentence}" if plan.sentence else title]
@@ -47,7 +47,7 @@ def sweep_lines(results: Results, label: str | None = None) -> list[str]:
     if worst:
         lines += ["", INDENT + "The worst case of each requirement, and the variant where it lies"]
         headings = ["verdict", "study", "requirement", "found", "±", "margin", "variant"]
-        lines += table(headings, [_worst_cells(each) for each in worst], left=3)
+        lines += table(headings, [_worst_cells(each) for each in worst], 3, width)
         lines += ["", *_variants(results, worst)]
     lines += _unsolved(results)
     lines.append(INDENT + counted(results))

@@ -18,8 +18,8 @@ def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1,
     """The lines of a table: headings, a rule, one line a row; the first `left` columns are text, the others numbers.
 
     headings: of each column; rows: cells of each row, as many as headings
-    width: characters a line may have: the widest text column is broken to leave room, and columns that are still beyond
-    follow below, behind the text columns again
+    width: characters a line may have: the widest text column is broken where that helps, and columns that are still
+    beyond follow below, behind the text columns again
     """
     cells = [list(headings), *map(list, rows)]
     if any(len(row) != len(headings) for row in cells):
@@ -27,12 +27,7 @@ def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1,
     widths = [max(len(row[column]) for row in cells) for column in range(len(headings))]
     longest = max(range(left), key=lambda column: widths[column], default=0)
     if width is not None and left:
-        beside = len(INDENT) + sum(each + len(GAP) for each in widths[:left]) - widths[longest] - len(GAP)
-        numbers = [each + len(GAP) for each in widths[left:]]
-        room = width - beside - sum(numbers)
-        if room < min(NARROWEST, widths[longest]):
-            room = width - beside - max(numbers, default=0)
-        widths[longest] = min(widths[longest], max(room, NARROWEST))
+        widths[longest] = _narrowed(widths, longest, left, width)
     broken = [part for row in cells for part in _broken(row, longest, widths)]
     head = len(_broken(cells[0], longest, widths))
     lines: list[str] = []
@@ -42,6 +37,19 @@ def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1,
         block.insert(head, INDENT + "-" * (sum(chosen) + len(GAP) * (len(chosen) - 1)))
         lines += [""] * bool(lines) + block
     return lines
+
+
+def _narrowed(widths: Sequence[int], longest: int, left: int, width: int) -> int:
+    """How wide the widest text column is to be: whatever fits first of all, then needs the fewest blocks, then breaks
+    the least."""
+
+    def cost(chosen: int) -> tuple[bool, int, int]:
+        trial = [*widths[:longest], chosen, *widths[longest + 1 :]]
+        blocks = _blocks(trial, left, width)
+        widest = max(len(INDENT) + sum(trial[each] + len(GAP) for each in block) - len(GAP) for block in blocks)
+        return widest > width, len(blocks), -chosen
+
+    return min(range(min(NARROWEST, widths[longest]), widths[longest] + 1), key=cost)
 
 
 def _broken(row: list[str], column: int, widths: Sequence[int]) -> list[list[str]]:

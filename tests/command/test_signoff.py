@@ -212,6 +212,10 @@ def test_two_lets_give_their_trade_off(folder: Path, bulkrail: Call, monkeypatch
     for row in rows:
         outer, inner, made = (float(row[name]) for name in ("R_a [Ohm]", "R_b [Ohm]", "R_b in E12 [Ohm]"))
         assert inner == pytest.approx(outer, rel=2e-4) and made <= inner * 1.001
+    root = ElementTree.fromstring((folder / "results" / "e" / "size.svg").read_text())
+    words = [node.text for node in root.iter("{http://www.w3.org/2000/svg}text")]
+    assert {"R_a in kOhm", "R_b in kOhm", "met below"} <= set(words) and "size.svg" in done.stdout
+    assert len(list(root.iter("{http://www.w3.org/2000/svg}circle"))) == 4
     three = bulkrail("size", "e.rect", *lets, "--let", "R_b", *claim, folder=folder)
     assert three.returncode == 2 and "cure:" in three.stderr
 

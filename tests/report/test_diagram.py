@@ -90,6 +90,13 @@ def test_a_choke_lies_in_the_rail_and_diodes_conduct_upwards() -> None:
         assert diodes and all(each.rows[0] > each.rows[1] for each in diodes), name
 
 
+def test_loads_stand_right() -> None:
+    for name, load in (("multiplier", "R_L"), ("centre_tap", "R_L"), ("six_pulse", "drive"), ("two_tap_bridge", "R_L")):
+        arrangement, place = arranged(name)
+        assert place[load].column == arrangement.columns - 1, name
+        assert next(iter(place.values())).column == 0, name
+
+
 def test_the_picture_is_the_same_each_time_and_says_what_was_given() -> None:
     circuit = circuit_of(simcore.library_folder() / "bench_supply.rect")
     first, second = diagram_of(circuit), diagram_of(circuit)

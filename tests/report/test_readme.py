@@ -6,16 +6,19 @@ import doctest
 import math
 import os
 import re
+import shlex
 import shutil
 import subprocess
 import sys
 from dataclasses import replace
+from glob import glob
 from itertools import zip_longest
 from pathlib import Path
 
 import pytest
 
 import simcore
+from simcore.command import main as run_command
 from simcore.components import KINDS
 from simcore.components.kind import Kind
 from simcore.design.studies import STUDY_KEYS, STUDY_KINDS
@@ -130,3 +133,71 @@ def test_the_python_examples_run() -> None:
 def test_the_language_in_one_screen_holds_what_it_requires() -> None:
     proof = simcore.read_text(indented('purpose "5 V for a door bell"                        # one statement a line; a line goes on after a comma')).prove()
     assert proof.outcome.status == 0 and len(proof.verdicts) == 2
+
+
+# --- the commands ------------------------------------------------------------------------------------------------------------
+
+COMMAND = re.compile(r"\bbulkrail (?:run|sweep|look|size|keep|compare|draw|tidy) [^`\n]*\.rect[^`\n]*")
+OPTIONS = re.compile(r"(?<![\w-])--[a-z]+")
+EXPECTED = {
+    "bulkrail run circuits/bench_supply.rect": 0,
+    'bulkrail size circuits/bench_supply.rect --let C_res --for "full_load: ripple(u_out) <= 1 V"': 0,
+    "bulkrail run supplies/*.rect --out build/supplies": 0,
+    "bulkrail keep supplies/*.rect": 0,
+    "bulkrail compare supplies/*.rect --junit build/drift.xml": 0,
+}
+"""Every command line that the README shows in full, with the exit status that it says or implies."""
+
+
+def shown_commands() -> list[str]:
+    """Those with a file of their own, each once, in order; `FILE` stands for any in the summary of the verbs."""
+    return list(dict.fromkeys(match[0].strip() for match in COMMAND.finditer(TEXT)))
+
+
+def test_every_command_line_is_known() -> None:
+    assert shown_commands() == list(EXPECTED)
+
+
+def test_the_commands_end_as_stated(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """In order, on a copy of the circuits, as a user would; the supplies are two of them."""
+    shutil.copytree(simcore.library_folder(), tmp_path / "circuits")
+    (tmp_path / "supplies").mkdir()
+    for stem in ("half_wave", "doubler_half_wave"):
+        shutil.copy(tmp_path / "circuits" / f"{stem}.rect", tmp_path / "supplies")
+    monkeypatch.chdir(tmp_path)
+    for line, status in EXPECTED.items():
+        words = shlex.split(line)[1:]
+        arguments = [name for word in words for name in (sorted(glob(word)) if "*" in word else [word])]
+        found = run_command(arguments)
+        said = capsys.readouterr()
+        assert found == status, (line, said.out[-500:], said.err)
+    for written_by in ("results/bench_supply/summary.json", "results/bench_supply/size.csv", "build/drift.xml"):
+        assert (tmp_path / written_by).is_file(), written_by
+    assert (tmp_path / "build/supplies/half_wave/summary.json").is_file()
+    assert (tmp_path / "supplies/half_wave.kept.csv").is_file()
+
+
+def test_the_files_of_a_run_are_those_of_the_table(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    path = simcore.library_folder() / "half_wave.rect"
+    assert run_command(["run", str(path), "--bill"]) == 0
+    named = re.findall(r"^\| `([a-z<>]+\.(?:csv|json))` \|", TEXT, re.M)
+    studies = simcore.read(path).studies
+    expected = {name.replace("<study>", study) for name in named for study in studies}
+    assert {each.name for each in (tmp_path / "results" / "half_wave").iterdir()} == expected and len(named) == 5
+
+
+@pytest.mark.parametrize("verb", ["run", "sweep", "look", "size", "keep", "compare", "draw", "tidy"])
+def test_the_options_shown_are_those_of_the_verb(verb: str, capsys: pytest.CaptureFixture[str]) -> None:
+    """The summary of the verbs, with what stands below it, and `--help` agree."""
+    with pytest.raises(SystemExit):
+        run_command([verb, "--help"])
+    offered = set(OPTIONS.findall(capsys.readouterr().out)) - {"--help"}
+    summary = indented(next(line[4:] for line in TEXT.splitlines() if line.startswith("    bulkrail run FILE...")))
+    lines = re.split(r"^bulkrail ", summary, flags=re.M)
+    named = {name for line in lines if line.startswith(f"{verb} ") for name in OPTIONS.findall(line)}
+    if verb == "sweep":
+        named |= set(re.findall(r"^    (--[a-z]+)", TEXT, re.M))
+    assert named <= offered and offered - named <= {"--set", "--out", "--study"}, (named, offered)
