@@ -143,7 +143,8 @@ class _Proof:
             before = earlier.left if before is None else before
         solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels)
         if not solution.kirchhoff <= LARGEST_SUM:
-            detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
+            left, node = solution.kirchhoff, solution.worst_node[1]
+            detail = f"at {node} they leave {left:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
         return _Level(solution, left)
 
