@@ -172,7 +172,8 @@ class _Proof:
         watch = None if self.watch is None else partial(self.watch, study.name)
         solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels, watch)
         if not solution.kirchhoff <= LARGEST_SUM:
-            detail = f"they leave {solution.kirchhoff:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
+            left, node = solution.kirchhoff, solution.worst_node[1]
+            detail = f"at {node} they leave {left:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
         cost = self.costs.setdefault(study.name, Counter({"solutions": 0}))
         cost.update({"solutions": 1, **solution.statistics})

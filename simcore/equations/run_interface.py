@@ -51,6 +51,11 @@ the large voltages around such a branch is all that moves it, and while it block
 branch that carries next to nothing needs no better then than the least error that the control of the step sees."""
 
 
+BEYOND = 60.0
+"""Most that the iterate of a junction lies above its critical voltage, over the scale of its law: it would carry 1e26
+times its critical current there."""
+
+
 def nearest(system: System, which: int) -> str:
     """The element or node that a run told to be nearest to what stopped it: above zero the nonlinear branch + 1, below
     zero the negative of the state + 1, or of all states and the column + 1; "" for zero."""

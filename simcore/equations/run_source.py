@@ -14,6 +14,7 @@ from __future__ import annotations
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter, names_first
 from simcore.equations.run_interface import (
+    BEYOND,
     BLOCKED,
     CONTROLS,
     EVENT,
@@ -116,7 +117,7 @@ class RunSource:
         add(1, "if order == 3:", "    take1, take2, take3, miss1, miss2, miss3 = 0.5, -4.0, 4.5, 0.5, -2.0, 1.5")
         add(1, "mean1, mean2, mean3 = 1.5 * take1, 0.75 * take2, 0.5 * take3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
-        add(1, "failures = 0", "landing = 0.0", "kink = 0.0", "stuck = 0")
+        add(1, "failures = 0", "landing = 0.0", "kink = 0.0", "stuck = 0", "largest_error = 0")
 
     def _choose_size(self) -> None:
         self._add(
@@ -213,7 +214,8 @@ class RunSource:
     def _limit(self, index: int) -> None:
         """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not. What
         is true most often is asked first.
-        A voltage that rises past the critical one moves by the logarithm of the step (common practice, no source)."""
+        A voltage that rises past the critical one moves by the logarithm of the step (common practice, no source), and
+        never so far that an iteration that runs away overflows: it fails, and a shorter step is tried."""
         junction = self.system.junctions[index]
         straight = self.emitter.name(junction.straight)
         lines = (
@@ -230,7 +232,7 @@ class RunSource:
             f"        stuck = {index + 1}",
             "        if n# > k# and d > 0.0:",
             "            if v# > 0.0:",
-            "                n# = v# + w# * log(1.0 + d / w#)",
+            f"                n# = min(v# + w# * log(1.0 + d / w#), k# + {BEYOND!r} * w#)",
             "            else:",
             "                n# = w# * log(n# / w#)",
         )
@@ -384,7 +386,7 @@ class RunSource:
             self._add(1, *(f"s[{position + index}] = {letter}{index}" for index in range(count)))
             position += count
         event = f"event if status == {EVENT} else " if self.system.thresholds else ""
-        which = f"{event}(stuck if status == {NO_CONVERGENCE} else 0)"
+        which = f"{event}(stuck if status == {NO_CONVERGENCE} else largest_error)"
         self._add(1, f"return status, position, steps, rejected, solves, iterations, weak, {which}")
 
 

@@ -14,6 +14,7 @@ from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter
 from simcore.equations.plain import evaluate
 from simcore.equations.run_interface import (
+    BEYOND,
     BLOCKED,
     CONTROLS,
     DONE,
@@ -160,30 +161,40 @@ class _Attempt:
         return found
 
     def _newton(self, n: np.ndarray, y: np.ndarray, h: float, t: float) -> Any:
-        from scipy.sparse.linalg import splu
-
         states, junctions, *_ = self.run._counts
         self.solves += 1
         history = tuple(y.tolist())
         for count in range(1, int(self.c["limit"]) + 1):
             v = n
-            stamps = np.array(self.run._stamps(self.p, history, tuple(v.tolist()), h, t)).reshape(-1, 2)
-            matrix = (self.incidence.multiply(stamps[:, 0]) @ self.incidence.T).tocsc()
-            right = -(self.incidence @ stamps[:, 1])
             try:
-                factors = splu(matrix)
-            except RuntimeError:
-                self.stuck = -1 - states - _loosest(matrix)
+                stamps = np.array(self.run._stamps(self.p, history, tuple(v.tolist()), h, t)).reshape(-1, 2)
+                x = self._solved(stamps)
+                if x is None:
+                    return None
+                results = np.array(self.run._results(self.p, history, tuple(v.tolist()), tuple(x.tolist()), h, t))
+            except ArithmeticError:
+                self.stuck = int(np.argmax(v / self.scale)) + 1 if junctions else 0
                 return None
-            x = factors.solve(right)
-            x += factors.solve(right - matrix @ x)
-            results = np.array(self.run._results(self.p, history, tuple(v.tolist()), tuple(x.tolist()), h, t))
             n, good = self._limited(v, results[:junctions], stamps[self.run._slopes, 0], count)
             if good:
                 self.iterations += count
                 return n, results[junctions : junctions + states], results[junctions + states :]
         self.iterations += int(self.c["limit"])
         return None
+
+    def _solved(self, stamps: np.ndarray) -> np.ndarray | None:
+        """The free unknowns for the companions' conductances and offsets; None where nothing determines them."""
+        from scipy.sparse.linalg import splu
+
+        matrix = (self.incidence.multiply(stamps[:, 0]) @ self.incidence.T).tocsc()
+        right = -(self.incidence @ stamps[:, 1])
+        try:
+            factors = splu(matrix)
+        except RuntimeError:
+            self.stuck = -1 - self.run._counts[0] - _loosest(matrix)
+            return None
+        x = factors.solve(right)
+        return x + factors.solve(right - matrix @ x)
 
     def _limited(self, v: np.ndarray, n: np.ndarray, slopes: np.ndarray, count: int) -> tuple[np.ndarray, bool]:
         """The convergence test and the limiting of run_source, on arrays."""
@@ -197,7 +208,7 @@ class _Attempt:
         moving = ~(close | ((n < off) & (v < off)) | blocked | rounding | nothing)
         limit = moving & (n > self.critical) & (step > 0.0)
         with np.errstate(all="ignore"):
-            inside = v + self.scale * np.log1p(step / self.scale)
+            inside = np.minimum(v + self.scale * np.log1p(step / self.scale), self.critical + BEYOND * self.scale)
             entering = self.scale * np.log(n / self.scale)
         limited = np.where(limit, np.where(v > 0.0, inside, entering), n)
         if moving.any():

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Hashable
 from dataclasses import dataclass, field
+from functools import cached_property
 
 import numpy as np
 
@@ -104,11 +106,18 @@ class Solution:
     def kirchhoff(self) -> float:
         """The worst sum of currents at any node and time, relative to the largest current there, or to a millionth of
         the circuit's where a node carries less."""
+        return self.worst_node[0]
+
+    @cached_property
+    def worst_node(self) -> tuple[float, str]:
+        """That sum, and the node it is at."""
         worst: dict[Hashable, float] = {}
         largest: dict[Hashable, float] = {}
         for stretch in self.stretches:
             for unknown, (total, current) in stretch.kirchhoff().items():
-                worst[unknown] = max(worst.get(unknown, 0.0), total)
+                worst[unknown] = max(total, worst.get(unknown, 0.0))
                 largest[unknown] = max(largest.get(unknown, 0.0), current)
         floor = max(1e-15, _SMALL_SHARE * max(largest.values(), default=0.0))
-        return max((total / max(largest[unknown], floor) for unknown, total in worst.items()), default=0.0)
+        shares = {unknown: total / max(largest[unknown], floor) for unknown, total in worst.items()}
+        node = max(shares, key=lambda unknown: shares[unknown] if shares[unknown] >= 0.0 else math.inf, default="")
+        return shares.get(node, 0.0), node if isinstance(node, str) else str(node[0])

@@ -21,8 +21,9 @@ from simcore.equations.values import Level, Value
 _INSTANTS = np.array([0.0, 1.0 / 3.0, 0.5, 2.0 / 3.0, 1.0])
 """Where in a step known functions of time are evaluated, as shares of it."""
 
-_TOLD = 1e3 * 16.0 * float(np.finfo(float).eps)
-"""A thousand roundings of a voltage, of which a current takes several."""
+_TOLD = 1e3 * 64.0 * float(np.finfo(float).eps)
+"""A thousand roundings of a current's two voltages, each several times half a digit: the extrapolated middle of a step
+is a sum of values whose weights have magnitudes of up to 14 together."""
 
 _MEANS = {
     1: np.array([0.0, 0.0, 0.0, 0.0, 1.0]),
