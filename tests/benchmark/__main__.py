@@ -1,4 +1,5 @@
-"""`python -m tests.benchmark [stepping] [settled] [accuracy] [command] [operations]`: prints tables, all by default."""
+"""`python -m tests.benchmark [stepping] [settled] [accuracy] [command] [operations]
+[campaign]`: prints tables, all by default."""
 
 from __future__ import annotations
 
@@ -6,7 +7,7 @@ import os
 import sys
 from importlib import import_module
 
-PARTS = ("operations", "stepping", "settled", "accuracy", "command")
+PARTS = ("operations", "stepping", "settled", "accuracy", "command", "campaign")
 
 
 def main(wanted: list[str]) -> int:

@@ -18,7 +18,7 @@ from simcore.equations.kernel import Kernel, KernelCache
 from simcore.solve.course import Course
 from simcore.solve.engine import Counts
 from simcore.solve.solution import Solution
-from tests.benchmark.circuits import Bridge, Ladder
+from tests.benchmark.circuits import Bridge, Ladder, SixPulse
 from tests.benchmark.general import Run
 
 
@@ -29,7 +29,7 @@ class OwnRun(Run):
     counts: Counts
 
 
-def compiled_kernels(circuit: Circuit, spec: Bridge | Ladder) -> tuple[KernelCache, float]:
+def compiled_kernels(circuit: Circuit, spec: Bridge | Ladder | SixPulse) -> tuple[KernelCache, float]:
     """Kernels of a circuit whose run is machine code, and the CPU time in s that compiling it took."""
     kernels = KernelCache()
     run_own(circuit, spec, 1.0 / spec.frequency, 1e-3, kernels)
@@ -50,7 +50,9 @@ def kernel_of(text: str) -> Kernel:
     return Kernel(frame, grounded(frame, circuit.references))
 
 
-def run_own(circuit: Circuit, spec: Bridge | Ladder, span: float, tolerance: float, kernels: KernelCache) -> OwnRun:
+def run_own(
+    circuit: Circuit, spec: Bridge | Ladder | SixPulse, span: float, tolerance: float, kernels: KernelCache
+) -> OwnRun:
     """One run from rest over a span in s; emission is not counted, where the kernels are there already."""
     course = Course(PlannedStudy("s", "transient", duration=span), lambda changes: circuit, None, tolerance, kernels)
     start = time.process_time()
@@ -60,6 +62,6 @@ def run_own(circuit: Circuit, spec: Bridge | Ladder, span: float, tolerance: flo
     return OwnRun(solution.times[1:], output, seconds, course.counts.steps, course.counts)
 
 
-def output_of(solution: Solution, spec: Bridge | Ladder) -> np.ndarray:
+def output_of(solution: Solution, spec: Bridge | Ladder | SixPulse) -> np.ndarray:
     """Output voltage at the end of each step, in V."""
     return solution.voltage(*spec.output)[:, 2]
