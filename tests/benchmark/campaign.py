@@ -48,15 +48,14 @@ def _periods(name: str, compiled: bool) -> dict[str, float]:
 def _variants(compiled: bool) -> dict[str, float]:
     """Variants of the bench supply a second: the first study's requirements judged, one of which takes a figure from
     another settled study, so that a variant is two settled states, each found at two tolerances."""
-    from simcore.campaign.plan import plan_of
-    from simcore.campaign.solver import Solver, Task
+    from simcore.campaign.face import sweep_task
+    from simcore.campaign.solver import Solver
     from simcore.opening import open_design
 
     opened, mistakes = open_design(CIRCUIT, {})
     if mistakes:
         raise RuntimeError(f"{CIRCUIT} has mistakes")
-    sweep = opened.circuit.sweeps[_SWEEP]
-    solver = Solver(Task(opened, plan_of(sweep, opened.circuit.lets), (_STUDY,)))
+    solver = Solver(sweep_task(opened, _SWEEP, (_STUDY,), ()))
     solver.row(0)
     start = time.process_time()
     if compiled:
