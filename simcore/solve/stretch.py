@@ -64,14 +64,21 @@ class Stretch:
             for index, column in enumerate(system.columns)
         }
         self._currents: dict[int, np.ndarray] = {}
+        self._known: dict[int, np.ndarray] = {}
 
     @property
     def shape(self) -> tuple[int, int]:
         return (len(self.times) - 1, 3)
 
     def _evaluate(self, value: Value) -> np.ndarray:
-        """A known function of time at start, middle and end, the middle formed as the run forms that of its columns:
-        sums of what is known and what was solved then stay exact."""
+        """A known function of time at start, middle and end, worked out once."""
+        if value.index not in self._known:
+            self._known[value.index] = self._instants(value)
+        return self._known[value.index]
+
+    def _instants(self, value: Value) -> np.ndarray:
+        """The middle is formed as the run forms that of its columns: sums of what is known and what was solved then
+        stay exact."""
         known = np.asarray(evaluate([value], self._inputs)[0], dtype=float)
         if value.level < Level.TIME:
             return np.broadcast_to(known, self.shape)

@@ -79,6 +79,35 @@ observe u_out = voltage(a)
 """
 
 
+@dataclass(frozen=True)
+class SixPulse:
+    """A three-phase bridge that feeds a choke and a resistance; crest in V of a phase, inductance in H."""
+
+    crest: float = 325.0
+    inductance: float = 10e-3
+    load: float = 20.0
+    frequency: float = 50.0
+    name: str = "six-pulse"
+    output: tuple[str, str] = ("a", "m")
+
+    @property
+    def text(self) -> str:
+        """The description without a study; node a against m is the output."""
+        return f"""
+(x, y, z): three_phase e, sine = {self.crest!r} V phase peak, frequency = {self.frequency!r} Hz, series_resistance = 20 mOhm, series_inductance = 1 mH
+x -> a: diode D1, {LAW}
+y -> a: diode D3, {LAW}
+z -> a: diode D5, {LAW}
+m -> x: diode D4, {LAW}
+m -> y: diode D6, {LAW}
+m -> z: diode D2, {LAW}
+a -> b: inductor L, {self.inductance!r} H, series_resistance = 50 mOhm
+b -> m: resistor R, {self.load!r} Ohm
+reference m
+observe u_out = voltage(a)
+"""
+
+
 HALF_WAVE = f"""
 e -> g: source V, sine = 10 V peak, frequency = 50 Hz
 e -> a: diode D, {LAW}

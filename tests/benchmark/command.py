@@ -15,7 +15,8 @@ from pathlib import Path
 from simcore.report.tables import table
 
 _TIMES = 5
-_CIRCUIT = Path(__file__).resolve().parents[2] / "circuits" / "bench_supply.rect"
+_CIRCUITS = Path(__file__).resolve().parents[2] / "circuits"
+CIRCUIT, _SMALL = _CIRCUITS / "bench_supply.rect", _CIRCUITS / "half_wave.rect"
 
 
 @dataclass(frozen=True)
@@ -29,14 +30,23 @@ class Case:
 
 
 def _cases(folder: str) -> list[Case]:
-    run = ["-m", "simcore.command", "run", str(_CIRCUIT), "--out", folder]
+    run, small = (["-m", "simcore.command", "run", str(file), "--out", folder] for file in (CIRCUIT, _SMALL))
     return [
         Case("python -c pass", ["-c", "pass"]),
         Case("bulkrail --help", ["-m", "simcore.command", "--help"], 0.15),
         Case("import simcore", ["-c", "import simcore"]),
-        Case("bulkrail look bench_supply.rect", ["-m", "simcore.command", "look", str(_CIRCUIT)]),
+        Case("bulkrail look bench_supply.rect", ["-m", "simcore.command", "look", str(CIRCUIT)]),
+        Case("bulkrail run half_wave.rect", small, 0.5, 150.0),
         Case("bulkrail run bench_supply.rect", run, 1.0, 150.0),
     ]
+
+
+def peak_memory() -> float:
+    """The largest memory that this process has had, in MB."""
+    import resource
+
+    unit = 1.0 if sys.platform == "darwin" else 1024.0
+    return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * unit / 1e6
 
 
 @dataclass(frozen=True)

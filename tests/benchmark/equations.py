@@ -8,6 +8,7 @@ the steps on the bridge and fails on the ladders, since nothing damps its steps 
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from typing import Protocol
 
 import numpy as np
@@ -25,9 +26,11 @@ _TRIALS = 100
 
 
 class Equations(Protocol):
-    """A circuit as ordinary differential equations, from rest: rates of the states and their Jacobian."""
+    """A circuit from rest: rates of the states and their Jacobian; stored: 1 for each state that has a rate, 0 for one
+    whose "rate" must vanish instead."""
 
     states: int
+    stored: Sequence[float]
 
     def rates(self, time: float, states: np.ndarray) -> np.ndarray | list[float]: ...
 
@@ -78,6 +81,7 @@ class BridgeEquations:
     opposite each other see the same voltage, (p - v) / 2 or -(p + v) / 2."""
 
     states = 1
+    stored = (1.0,)
 
     def __init__(self, circuit: Bridge):
         self.circuit = circuit
@@ -111,6 +115,49 @@ class BridgeEquations:
         return self._diodes(time, v)[0]
 
 
+class BridgeNodes:
+    """The bridge as nodal analysis gives it, without thought for its symmetry: the voltages of both a.c. terminals and
+    of the output, four diodes of their own. What flows into a terminal must vanish, or charges a stray capacitance (F)
+    from it to the reference, which makes rates of all."""
+
+    states = 3
+
+    def __init__(self, circuit: Bridge, stray: float):
+        self.circuit = circuit
+        self.stored = (1.0 if stray else 0.0,) * 2 + (1.0,)
+        self._capacitances = (stray or 1.0, stray or 1.0, circuit.capacitance)
+        self._speed, self._conductance = 2.0 * math.pi * circuit.frequency, 1.0 / circuit.source_resistance
+
+    def rates(self, time: float, states: np.ndarray) -> list[float]:
+        x, y, a = (float(voltage) for voltage in states)
+        source = self._conductance * (self.circuit.crest * math.sin(self._speed * time) - x + y)
+        first, second, third, fourth = (_diode(voltage)[0] for voltage in (x - a, y - a, -x, -y))
+        flows = source - first + third, fourth - source - second, first + second - a / self.circuit.load
+        return [flow / capacitance for flow, capacitance in zip(flows, self._capacitances, strict=True)]
+
+    def jacobian(self, time: float, states: np.ndarray) -> np.ndarray:
+        x, y, a = (float(voltage) for voltage in states)
+        first, second, third, fourth = (_diode(voltage)[1] for voltage in (x - a, y - a, -x, -y))
+        tie, load = self._conductance, 1.0 / self.circuit.load
+        flows = [
+            [-tie - first - third, tie, first],
+            [tie, -tie - second - fourth, second],
+            [first, second, -first - second - load],
+        ]
+        return np.array(flows) / np.array(self._capacitances)[:, None]
+
+    def output(self, states: np.ndarray) -> np.ndarray:
+        return states[2]
+
+
+def _diode(voltage: float) -> tuple[float, float]:
+    """A diode's current and slope."""
+    ratio = voltage / SCALE
+    steep = SATURATION_CURRENT * math.exp(min(ratio, _STRAIGHT))
+    current = steep * (1.0 + max(ratio - _STRAIGHT, 0.0)) - SATURATION_CURRENT + LEAK * voltage
+    return current, steep / SCALE + LEAK
+
+
 class LadderEquations:
     """The multiplier. States: voltages of the capacitors A, then B; p is node a0[0]."""
 
@@ -118,6 +165,7 @@ class LadderEquations:
         self.circuit = circuit
         count = circuit.stages
         self.states = 2 * count
+        self.stored = (1.0,) * self.states
         self._terminal = _Terminal(circuit, SCALE, 2.0 * count * LEAK)
         self._load = 1.0 / (circuit.load + circuit.end_resistance)
         full = np.ones((count, count))

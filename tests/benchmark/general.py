@@ -117,16 +117,16 @@ def _scipy(solver: str, task: _Task) -> tuple[np.ndarray, np.ndarray] | None:
 def _ida(task: _Task) -> tuple[np.ndarray, np.ndarray] | None:
     from sksundae.ida import IDA as Solver
 
-    count = task.equations.states
+    count, stored = task.equations.states, np.array(task.equations.stored)
 
     def residual(time_now: float, y: np.ndarray, rate: np.ndarray, out: np.ndarray) -> None:
-        out[:] = rate - task.rates(time_now, y)
+        out[:] = stored * rate - task.rates(time_now, y)
 
     def slopes(
         time_now: float, y: np.ndarray, rate: np.ndarray, found: np.ndarray, weight: float, out: np.ndarray
     ) -> None:
         out[:] = -task.equations.jacobian(time_now, y)
-        out[range(count), range(count)] += weight
+        out[range(count), range(count)] += weight * stored
 
     limits = {"rtol": task.relative, "atol": task.absolute, "max_step": task.largest}
     solver = Solver(residual, jacfn=slopes, max_num_steps=_STEPS_AT_MOST, **limits)

@@ -7,12 +7,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from simcore.equations.compiled import available
 from simcore.equations.kernel import KernelCache
 from simcore.report.tables import table
 from tests.benchmark.circuits import Bridge, Ladder
-from tests.benchmark.equations import equations_of
+from tests.benchmark.equations import BridgeNodes, Equations, equations_of
 from tests.benchmark.general import IDA, SCIPY, Run, ida_is_here, run_general
-from tests.benchmark.own import CompiledCache, OwnRun, circuit_of, numba_is_here, run_own
+from tests.benchmark.own import OwnRun, circuit_of, compiled_kernels, run_own
 
 ERRORS = (1e-3, 1e-4)
 BOUND = 3.0
@@ -29,6 +30,10 @@ CASES: tuple[tuple[Bridge | Ladder, int], ...] = (
 COMPILED_AT_MOST = 10
 """Stages of a ladder up to which its run is compiled: beyond, compilation takes minutes."""
 OURS, COMPILED = "ours", "ours, compiled"
+NODES = ", nodes"
+"""Behind the name of a solver that was given the circuit as nodal analysis gives it."""
+STRAY = 1e-9
+"""F at each a.c. terminal, where a solver takes differential equations only."""
 _TOLERANCES = [10.0 ** (-exponent / 2.0) for exponent in range(4, 15)]
 _REFERENCE = 1e-10
 _REFERENCE_BOUND = 60.0
@@ -102,9 +107,9 @@ def _measured(spec: Bridge | Ladder, cycles: int) -> dict[str, dict[float, Reach
     """By solver and error, the cheapest run."""
     reference, span, period = Reference(spec, cycles), cycles / spec.frequency, 1.0 / spec.frequency
     circuit = circuit_of(spec.text)
-    caches = {OURS: KernelCache()}
-    if numba_is_here() and (isinstance(spec, Bridge) or spec.stages <= COMPILED_AT_MOST):
-        caches[COMPILED] = CompiledCache()
+    caches, compilation = {OURS: KernelCache()}, 0.0
+    if available() and (isinstance(spec, Bridge) or spec.stages <= COMPILED_AT_MOST):
+        caches[COMPILED], compilation = compiled_kernels(circuit, spec)
     found = {}
     for name, cache in caches.items():
         run_own(circuit, spec, period, ERRORS[0], cache)
@@ -112,15 +117,20 @@ def _measured(spec: Bridge | Ladder, cycles: int) -> dict[str, dict[float, Reach
             lambda tolerance, cache=cache: run_own(circuit, spec, span, tolerance, cache), reference, cycles
         )
     for solver in (*([IDA] if ida_is_here() else []), *SCIPY):
-        found[solver] = _sweep(
-            lambda tolerance, solver=solver: run_general(
-                solver, equations_of(spec), span, period, spec.crest, tolerance, BOUND
-            ),
-            reference,
-            cycles,
-        )
+        forms: dict[str, Callable[[], Equations]] = {solver: lambda: equations_of(spec)}
+        if isinstance(spec, Bridge):
+            stray = 0.0 if solver == IDA else STRAY
+            forms[solver + NODES] = lambda stray=stray: BridgeNodes(spec, stray)
+        for name, form in forms.items():
+            found[name] = _sweep(
+                lambda tolerance, solver=solver, form=form: run_general(
+                    solver, form(), span, period, spec.crest, tolerance, BOUND
+                ),
+                reference,
+                cycles,
+            )
     if COMPILED in caches:
-        print(f"{spec.name}: compiled in {caches[COMPILED].seconds:.1f} s of CPU time")
+        print(f"{spec.name}: compiled in {compilation:.1f} s of CPU time")
     return found
 
 
@@ -178,5 +188,6 @@ def tables() -> Iterator[str]:
     yield f"not reached: by no tolerance from 1e-2 to 1e-7 within {BOUND:g} s a run."
     if not ida_is_here():
         yield "SUNDIALS IDA was left out: scikit-sundae is not installed."
-    if not numba_is_here():
+    yield f"nodes: the equations of all nodes; {STRAY * 1e9:g} nF at each a.c. terminal, but for IDA, which solves for them."
+    if not available():
         yield "Compiled runs were left out: numba is not installed."
