@@ -58,7 +58,13 @@ STUDY_KEYS = {
         ),
         StudyKey("last", "how many periods at its end are judged", NONE, ("transient",), default="its whole span"),
         StudyKey("accuracy", "relative error wanted on the figures", NONE, default="0.1 %"),
-        StudyKey("record_every", "interval of its trace", SECOND, _MOVING, default="each step and its middle"),
+        StudyKey(
+            "record_every",
+            "interval of its trace, such as `20 ms / 400`; no figure depends on it",
+            SECOND,
+            _MOVING,
+            default="each step and its middle",
+        ),
     )
 }
 STUDY_KINDS = {kind: tuple(key.name for key in STUDY_KEYS.values() if kind in key.kinds) for kind in STUDY_MEANINGS}

@@ -95,7 +95,7 @@ def _absolute(requirement: Requirement) -> bool:
     """Whether what is in K is a temperature: a rating, or a figure that is one."""
     figure = requirement.figure
     if not isinstance(figure, Call):
-        return requirement.relation == "ratings"
+        return figure is None
     argument = figure.arguments[0] if figure.arguments else None
     of_one = isinstance(argument, Call) and argument.name == "temperature"
     return figure.name == "junction_temperature" or (figure.name in ABSOLUTE and of_one)

@@ -23,7 +23,7 @@ from simcore.solve.engine import Counts, Engine, Interrupted, Memory, Stepping
 from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.settle import settle
 from simcore.solve.solution import Solution
-from simcore.solve.sources import clock_at_phase, common_period, largest_voltage, rounding_current
+from simcore.solve.sources import MOST_PERIODS, clock_at_phase, common_period, largest_voltage, rounding_current
 from simcore.solve.stretch import Stretch
 
 Answer = TypeVar("Answer")
@@ -36,6 +36,8 @@ _KINKS_A_PERIOD = 200
 _BEGIN = 1e-7
 _TOLD = 6
 """Changes by thresholds that are told one by one."""
+_WHOLE = 1e-6
+"""How far a period that is asked for may be off whole periods of the sources."""
 _EVENT = 2e-3
 """Largest step in which a threshold is passed, over the largest with a kink."""
 
@@ -91,9 +93,7 @@ class Course:
     def _settled(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
         circuit = self.variant(changes)
         frame = self._frame(circuit, math.inf)
-        period = self.study.period or common_period(frame)
-        if period is None:
-            raise NoSolution(self.study.name, Reason.NO_PERIOD)
+        period = self._settling_period(frame)
         memory = dict(self.before.memory) if self.before else {}
         engine = self._engine(circuit, frame, memory)
         clock = clock_at_phase(frame, self.study.angle)
@@ -108,6 +108,23 @@ class Course:
         solution.multiplier = found.multiplier
         solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
         return solution, Reached(memory, clock, math.inf, changes)
+
+    def _settling_period(self, frame: Frame) -> float:
+        """The period to settle to, s: the one that is asked for, which must be whole periods of the sources, else
+        theirs."""
+        asked, common = self.study.period, common_period(frame)
+        if asked is None and common is None:
+            repeating = frame.sines or any(waveform.period is not None for waveform in frame.waveforms)
+            detail = f"none within {MOST_PERIODS} periods of the slowest" if repeating else "none of them repeats"
+            raise NoSolution(self.study.name, Reason.NO_PERIOD, detail=detail)
+        if asked is not None and common is not None:
+            whole = round(asked / common)
+            if whole < 1 or abs(asked / common - whole) > _WHOLE:
+                detail = f"{show(asked, SECOND)} is asked for, and they repeat every {show(common, SECOND)}"
+                raise NoSolution(self.study.name, Reason.NOT_WHOLE, detail=detail)
+        period = asked or common
+        assert period is not None
+        return period
 
     def _transient(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
         assert self.study.duration is not None

@@ -24,6 +24,10 @@ class Reason(Enum):
         "the sources have no common period",
         "give the study a period, or use an operating_point or transient study",
     )
+    NOT_WHOLE = (
+        "the period is no whole number of the sources' periods",
+        "leave the period out, or give a multiple of theirs",
+    )
     CHATTER = (
         "parts switch one another on and off without end",
         "set the level that closes or starts them further from the one that opens or stops them",

@@ -10,7 +10,7 @@ import numpy as np
 from simcore.components.frame import Frame, SeriesBranch
 from simcore.equations.plain import evaluate
 
-_MOST_PERIODS = 1000
+MOST_PERIODS = 1000
 _SAMPLES = 64
 _ROUNDING = 3e-15
 _LEAST_CURRENT = 1e-18
@@ -29,11 +29,11 @@ def common_period(frame: Frame) -> float | None:
     multiple = 1
     for period in periods:
         ratio = slowest / period
-        fraction = Fraction(ratio).limit_denominator(_MOST_PERIODS)
+        fraction = Fraction(ratio).limit_denominator(MOST_PERIODS)
         if abs(float(fraction) - ratio) > 1e-9 * ratio:
             return None
         multiple = math.lcm(multiple, fraction.denominator)
-    return multiple * slowest if multiple <= _MOST_PERIODS else None
+    return multiple * slowest if multiple <= MOST_PERIODS else None
 
 
 def clock_at_phase(frame: Frame, angle: float | None) -> float:
