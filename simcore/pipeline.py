@@ -46,6 +46,8 @@ ABSENT = 1e-6
 """Share of the circuit's largest voltage, current or power below which one of them counts as none."""
 WORK = 1e7
 """Solves times recorded columns of a solution after which none tighter is tried."""
+WORK_OF_ALL = 2e9
+"""Work of all solutions of a design's studies (see Solution), after which no further one is begun."""
 LARGEST_SUM = 1e-3
 """Sum of the currents at a node, over the largest one there, above which a solution is none."""
 _LOOSEST, _TIGHTEST = 1e-2, 1e-8
@@ -95,6 +97,7 @@ class _Proof:
         self.doubtful = doubtful
         self.pairs: dict[str, tuple[_Level, _Level]] = {}
         self.results: dict[str, StudyResult] = {}
+        self.work = 0
 
     def solve(self, name: str) -> None:
         """Solve a study, and first the one it starts from."""
@@ -141,7 +144,10 @@ class _Proof:
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
             before = earlier.left if before is None else before
+        if self.work > WORK_OF_ALL:
+            raise NoSolution(study.name, Reason.WORK, detail="of all studies together")
         solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels)
+        self.work += solution.work
         if not solution.kirchhoff <= LARGEST_SUM:
             left, node = solution.kirchhoff, solution.worst_node[1]
             detail = f"at {node} they leave {left:.1e} of the largest one, allowed are {LARGEST_SUM:g}"

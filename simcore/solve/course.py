@@ -232,4 +232,5 @@ class Course:
         if len(self.told) > _TOLD:
             notes.append(f"and {len(self.told) - _TOLD} more such changes")
         whole = self.variant(())
-        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, notes, statistics)
+        told = (notes, statistics, counts.work)
+        return Solution(whole, self.study, times, stretches, valued, period, window, first_event, *told)

@@ -26,6 +26,7 @@ class Solution:
     period: of the sources in s, None where there is none; window: (start, end) in s of what is judged
     first_event: time in s of the study's first event, None where it has none
     notes: what a reader must know of how it was solved; statistics: steps, solves, iterations, rejected, periods
+    work: solved systems times their branches and columns
     """
 
     circuit: Circuit
@@ -38,6 +39,7 @@ class Solution:
     first_event: float | None = None
     notes: list[str] = field(default_factory=list)
     statistics: dict[str, float] = field(default_factory=dict)
+    work: int = 0
 
     def voltage(self, a: str, b: str) -> np.ndarray:
         """u of node a against node b in V, shape (n, 3): at start, middle and end of each step."""
