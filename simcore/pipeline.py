@@ -47,6 +47,8 @@ ABSENT = 1e-6
 """Share of the circuit's largest voltage, current or power below which one of them counts as none."""
 WORK = 1e7
 """Solves times recorded columns of a solution after which none tighter is tried."""
+WORK_OF_ALL = 2e9
+"""Work of all solutions of a design's studies (see Solution), after which no further one is begun."""
 LARGEST_SUM = 1e-3
 """Sum of the currents at a node, over the largest one there, above which a solution is none."""
 Watch = Callable[[str, float | None], None]
@@ -115,6 +117,7 @@ class _Proof:
         self.pairs: dict[str, tuple[_Level, _Level]] = {}
         self.results: dict[str, StudyResult] = {}
         self.costs: dict[str, Counter[str]] = {}
+        self.work = 0
 
     def solve(self, name: str) -> None:
         """Solve a study, and first the one it starts from."""
@@ -167,10 +170,13 @@ class _Proof:
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
             before = earlier.left if before is None else before
+        if self.work > WORK_OF_ALL:
+            raise NoSolution(study.name, Reason.WORK, detail="of all studies together")
         if self.watch is not None:
             self.watch(study.name, 0.0)
         watch = None if self.watch is None else partial(self.watch, study.name)
         solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels, watch)
+        self.work += solution.work
         if not solution.kirchhoff <= LARGEST_SUM:
             left, node = solution.kirchhoff, solution.worst_node[1]
             detail = f"at {node} they leave {left:.1e} of the largest one, allowed are {LARGEST_SUM:g}"

@@ -82,6 +82,7 @@ class _Attempt:
         armed = [threshold.armed for threshold in run._system.frame.thresholds]
         self.armed = np.array([all((p[flag.position] > 0.5) == up for flag, up in each) for each in armed], dtype=bool)
         self.event = self.stuck = 0
+        self._errors = np.zeros(0)
         inputs = {f"p{index}": number for index, number in enumerate(p)}
         inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
         fixed = [value for each in run._system.junctions for value in (each.scale, each.critical, each.straight)]
@@ -138,7 +139,7 @@ class _Attempt:
                 break
         groups = (self.z, self.u, self.peaks, self.watched_peaks, self.ends, self.passed)
         self.saved[:] = [self.now, self.wish, *(float(number) for group in groups for number in group)]
-        which = self.event if status == EVENT else self.stuck if status == NO_CONVERGENCE else 0
+        which = self.event if status == EVENT else self.stuck if status == NO_CONVERGENCE else self._most_wrong()
         return status, self.position, self.steps, self.rejected, self.solves, self.iterations, 0, which
 
     def _extrapolated(self, size: float, stop: float) -> list[tuple[np.ndarray, list[np.ndarray], np.ndarray]] | None:
@@ -258,6 +259,8 @@ class _Attempt:
 
     def _most_wrong(self) -> int:
         """The state or watched current whose error is largest, or no number, as `nearest` takes it."""
+        if not len(self._errors):
+            return 0
         states, worst = self.run._counts[0], int(np.argmax(self._errors))
         return -1 - (worst if worst < states else states + int(self.run._watched[worst - states]))
 

@@ -258,6 +258,5 @@ class Course:
         if len(self.told) > _TOLD:
             notes.append(f"and {len(self.told) - _TOLD} more such changes")
         whole = self.variant(())
-        return Solution(
-            whole, self.study, times, stretches, valued, period, window, self.tolerance, first_event, notes, statistics
-        )
+        times_of = (times, stretches, valued, period, window, self.tolerance, first_event)
+        return Solution(whole, self.study, *times_of, notes, statistics, work=counts.work)

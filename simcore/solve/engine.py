@@ -25,9 +25,12 @@ _ROOM = 40_000
 _COLD_LIMIT = 100
 _LIMIT = 25
 _STEPS_AT_MOST = 2_000_000
-_WORK_AT_MOST = 1e9
+_WORK_AT_MOST = 5e8
 """Solved systems times their branches and columns, of one solution of a study: minutes, whatever the circuit."""
-_WORK_A_CALL = 3e6
+_ON_ARRAYS = 2_000
+"""Branches and columns of an emitted run whose solution takes as long as the smallest one on arrays."""
+_ATTEMPTS_TOGETHER = 2.5e5
+"""Attempts at a step, times branches and columns, in which a call of the run ends."""
 _ATTEMPTS = 100
 REST_STEP = 1e15
 _CHANGES_AT_MOST = 200
@@ -116,8 +119,8 @@ class Engine:
         self._states = len(self.kernel.system.states)
         self._junctions = len(self.kernel.system.junctions)
         self._size = len(self.kernel.system.columns) + len(self.kernel.system.frame.branches)
-        self._attempts = max(_ATTEMPTS, int(_WORK_A_CALL / self._size))
-        self._first_step = 0.0
+        self._attempts = max(_ATTEMPTS, int(_ATTEMPTS_TOGETHER / self._size))
+        self._first_step, self._slowest = 0.0, ""
         self._record: Sequence[float] | None = None
         self._response: list[float] | None = None
         self.flags = Flags(self.kernel.system.frame, self.numbers, self.period)
@@ -342,7 +345,7 @@ class Engine:
         """Run the kernel once; returns how many numbers it recorded and the threshold that ended it, if one did. A
         pivot that shrank to rounding is answered by going back and on with the sparse LU, which may pivot."""
         if self.counts.steps > _STEPS_AT_MOST or self.counts.work > _WORK_AT_MOST:
-            raise Interrupted(Reason.WORK, self.saved[0])
+            raise Interrupted(Reason.WORK, self.saved[0], self._slowest)
         if self._record is None:
             self._record = self.kernel.room(_ROOM + record_width(self.kernel.system))
         before = list(self.saved)
@@ -353,7 +356,11 @@ class Engine:
             result = self._run(controls)
         if result is None:
             raise Interrupted(Reason.SINGULAR, self.saved[0])
-        self.counts.add(result, self._size)
+        if result[0] == FULL:
+            self._slowest = nearest(self.kernel.system, result[-1])
+        if result[0] == EVENT:
+            self._slowest = f"near {self.kernel.system.frame.thresholds[result[-1] - 1].element}"
+        self.counts.add(result, self._size if self.kernel.source else self._size + _ON_ARRAYS)
         if result[0] not in (DONE, FULL, EVENT):
             raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0], nearest(self.kernel.system, result[-1]))
         return result[1], result[-1] - 1 if result[0] == EVENT else None
