@@ -50,7 +50,7 @@ def test_controlled_six_pulse_bridge(alpha: float) -> None:
     assert float(result.figure("valley(current(L))")) > 0.0
     close(result, "mean(voltage(P))", ideal - 2.0 * drop(0.1 * ideal), 2e-4)
     close(result, "mean(current(L))", 0.1 * (ideal - 2.0 * drop(0.1 * ideal)), 2e-4)
-    close(result, "conduction_angle(A1.U)", 120.0, 2e-3)
+    close(result, "conduction_angle(A1.U)", 120.0, 0.0, 0.24)  # of ideal valves, which do not share a commutation
 
 
 def test_six_pulse_bridge_gives_back() -> None:
