@@ -9,7 +9,7 @@ import math
 
 from grammar.quantities import AMPERE, ANGLE, VOLT
 from simcore.components.diode import DIODE_KEYS, check_law
-from simcore.components.frame import Frame
+from simcore.components.frame import UNLIMITED, Frame
 from simcore.components.junction import BLOCKED, Junction, describe
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
@@ -17,8 +17,9 @@ from simcore.components.part import Part
 
 def _build(frame: Frame, part: Part) -> None:
     """The gate is driven from the firing angle after the reference's upward zero crossing until it has come down again,
-    by a little below zero, so that what commutation does to it does not count; while the gate is driven, and then while
-    the current is above the holding current, the forward law holds."""
+    by a little below zero, so that what commutation does to it does not count: an overlap that lifts the reference to
+    zero for a while is withdrawn as it ends. While the gate is driven, and then while the current is above the holding
+    current, the forward law holds."""
     conducts = frame.flag(part, "conducts", False)
     gate = frame.flag(part, "gate", False)
     above = frame.flag(part, "reference", True)
@@ -26,8 +27,10 @@ def _build(frame: Frame, part: Part) -> None:
     current = frame.sensed_port(part, part.ports[0])
     reference = frame.sense(part.given("firing_reference"))
     turns = part.given("firing_angle") / (2.0 * math.pi)
-    fires = [(above, True), (gate, True), (conducts, True)]
+    fires = [(above, True), (gate, True)]
     frame.threshold(part, reference, 0.0, armed=[(above, False)], sets=fires, turns=turns)
+    driven = [(gate, True), (conducts, False)]
+    frame.threshold(part, [current], -UNLIMITED, armed=driven, sets=[(conducts, True)])
     falling = [term.times(-1.0) for term in reference]
     below = [(above, False), (gate, False)]
     frame.threshold(part, falling, frame.small_voltage, armed=[(above, True)], sets=below)
