@@ -9,31 +9,47 @@ import math
 
 from grammar.quantities import AMPERE, ANGLE, VOLT
 from simcore.components.diode import DIODE_KEYS, check_law
-from simcore.components.frame import Frame
+from simcore.components.frame import UNLIMITED, Flag, Frame, Sensed
 from simcore.components.junction import BLOCKED, Junction, describe
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
 
 
 def _build(frame: Frame, part: Part) -> None:
-    """The gate is driven from the firing angle after the reference's upward zero crossing until it has come down again,
-    by a little below zero, so that what commutation does to it does not count; while the gate is driven, and then while
-    the current is above the holding current, the forward law holds."""
-    conducts = frame.flag(part, "conducts", False)
-    gate = frame.flag(part, "gate", False)
-    above = frame.flag(part, "reference", True)
+    """While the gate is driven, and then while the current is above the holding current, the forward law holds."""
+    conducts, gate = frame.flag(part, "conducts", False), frame.flag(part, "gate", False)
     Junction(frame, part, conducts.choose(1.0, BLOCKED)).stamp()
     current = frame.sensed_port(part, part.ports[0])
-    reference = frame.sense(part.given("firing_reference"))
-    turns = part.given("firing_angle") / (2.0 * math.pi)
-    fires = [(above, True), (gate, True), (conducts, True)]
-    frame.threshold(part, reference, 0.0, armed=[(above, False)], sets=fires, turns=turns)
-    falling = [term.times(-1.0) for term in reference]
-    below = [(above, False), (gate, False)]
-    frame.threshold(part, falling, frame.small_voltage, armed=[(above, True)], sets=below)
+    _gate(frame, part, gate, current)
+    driven = [(gate, True), (conducts, False)]
+    frame.threshold(part, [current], -UNLIMITED, armed=driven, sets=[(conducts, True)])
     holding = -part.value("holding_current")
     armed = [(gate, False), (conducts, True)]
     frame.threshold(part, [current.times(-1.0)], holding, armed=armed, sets=[(conducts, False)])
+
+
+def _gate(frame: Frame, part: Part, gate: Flag, always: Sensed) -> None:
+    """The gate is driven from the firing angle after the reference's upward zero crossing until it comes down again.
+
+    Overlaps of other valves distort the reference, so all but the crossing itself have a little to pass. A crossing is
+    withdrawn where the reference falls back before it was a little above zero (an overlap lifted it to zero for a
+    while); one that stood holds through a dip, and counts if the reference is above zero when the angle is over.
+    always: a term of any value, for what follows from flags alone
+    """
+    above, stands = frame.flag(part, "reference", True), frame.flag(part, "stands", False)
+    due = frame.flag(part, "due", False)
+    reference = frame.sense(part.given("firing_reference"))
+    falling = [term.times(-1.0) for term in reference]
+    little, turns = frame.small_voltage, part.given("firing_angle") / (2.0 * math.pi)
+    for terms, level, armed, sets, later in (
+        (reference, 0.0, [(above, False)], [(above, True), (due, True)], turns),
+        (reference, little, [(above, True), (stands, False)], [(stands, True)], 0.0),
+        (falling, little, [(above, True), (stands, True)], [(above, False), (stands, False), (gate, False)], 0.0),
+        (falling, little, [(above, True), (stands, False)], [(above, False), (due, False), (gate, False)], 0.0),
+        ([always], -UNLIMITED, [(due, True), (above, True)], [(due, False), (gate, True)], 0.0),
+        ([always], -UNLIMITED, [(due, True), (above, False)], [(due, False)], 0.0),
+    ):
+        frame.threshold(part, terms, level, armed=armed, sets=sets, turns=later)
 
 
 THYRISTOR = Kind(

@@ -67,12 +67,14 @@ class Flags:
         return all((self._numbers[flag.position] > 0.5) == up for flag, up in threshold.armed)
 
     def change(self, index: int, now: float) -> None:
-        """Change a passed threshold's flags, the first at once and the others after its delay."""
+        """Change a passed threshold's flags, the first at once and the others after its delay; a change at once
+        withdraws what is pending for its flag."""
         threshold = self._frame.thresholds[index]
         delay = threshold.delay + threshold.turns * self._period
         for position, (flag, up) in enumerate(threshold.sets):
             if position == 0 or delay == 0.0:
                 self._numbers[flag.position] = float(up)
+                self.pending = [each for each in self.pending if each[1] != flag]
             else:
                 self.pending.append((now + delay, flag, up))
         if threshold.tells:

@@ -53,6 +53,20 @@ def test_controlled_six_pulse_bridge(alpha: float) -> None:
     close(result, "conduction_angle(A1.U)", 120.0, 0.0, 0.24)  # of ideal valves, which do not share a commutation
 
 
+@pytest.mark.parametrize("alpha", [5.0, 20.0, 40.0, 75.0, 85.0])
+def test_controlled_bridge_behind_inductance(alpha: float) -> None:
+    """0.5 mH a phase costs 3 omega L / pi times the direct current (Mohan, 2003, ch. 6, from memory). Each overlap lifts another
+    arm's reference to zero for a while, which must fire nothing: all thyristors carry a third. At 60 deg an overlap would
+    stand on the zero crossings themselves and move them; ripple shifts them too, hence 2 H."""
+    text = SIX.replace("frequency = 50 Hz", "frequency = 50 Hz, series_inductance = 0.5 mH").replace("100 mH", "2 H")
+    result = solved(text.replace("ALPHA", repr(alpha)) + "x -> M: resistor R, 10 Ohm")
+    ideal = 3.0 * math.sqrt(2.0) / math.pi * 400.0 * math.cos(math.radians(alpha))
+    amperes = (ideal - 2.0 * drop(0.1 * ideal)) / (10.0 + 300.0 * 0.5e-3)
+    close(result, "mean(current(L))", amperes, 0.0, 2e-3 * amperes)
+    for name in ("A1.U", "A1.D", "A2.U", "A2.D", "A3.U", "A3.D"):
+        close(result, f"mean(current({name}))", amperes / 3.0, 0.0, 2e-3 * amperes)
+
+
 def test_six_pulse_bridge_gives_back() -> None:
     """Beyond 90 deg the mean is negative: a source of 600 V drives 130 deg, and the grid takes the power. The current follows from
     what is left over 10 Ohm."""
@@ -272,3 +286,31 @@ def test_short_circuit_impedance_to_its_digits() -> None:
     close(result, "rms(current(T.w1))", 100.0 / 230.0, 5e-4)
     close(result, "mean_power(T)", 6.0, 1e-3)
     close(result, "mean_power(T) / apparent_power(T.w1)", 6.0 / 8.0, 1e-3)
+
+
+@pytest.mark.parametrize("shift", [10.0, 15.0, 30.0, 45.0])
+def test_secondaries_of_the_library(shift: float) -> None:
+    """Blocks of parts/three_phase.rect at no load: line voltages of V_out, leading those of the primary by 0 deg (delta), 30 deg (star) and
+    30 deg + shift (zigzag): the mean of their product with the primary's is V^2 cos(lead), with that of 90 deg later V^2 sin(lead)."""
+    loads = "\n".join(
+        f"{p}{k} -> {p}{n}: resistor R_{p}{k}, 1 MOhm" for p in ("d", "s", "z", "L") for k, n in ((1, 2), (2, 3), (3, 1))
+    )
+    text = f"""
+    use "parts/three_phase.rect"
+    (L1, L2, L3) -> N: three_phase grid, sine = 400 V line rms, frequency = 50 Hz
+    (L1, L2, L3, d1, d2, d3): delta_secondary delta
+    (L1, L2, L3, s1, s2, s3, n1): star_secondary star
+    (L1, L2, L3, z1, z2, z3, n2): zigzag_secondary zigzag, shift = {shift!r} deg
+    {loads}
+    reference N, d1, n1, n2
+    observe late = voltage(L3 -> N) * sqrt(3)
+    study s: settled
+    """
+    result = solved(text)
+    for tag, lead in (("d", 0.0), ("s", 30.0), ("z", 30.0 + shift)):
+        line = f"voltage({tag}1 -> {tag}2)"
+        close(result, f"rms({line})", 400.0, 0.0, 1e-3 * 400.0)
+        power = float(result.figure(f"mean(voltage(L1 -> L2) * {line})"))
+        assert power == pytest.approx(160e3 * math.cos(math.radians(lead)), rel=2e-3)
+        across = float(result.figure(f"mean(late * {line})"))
+        assert across == pytest.approx(160e3 * math.sin(math.radians(lead)), rel=2e-3, abs=200.0), (tag, lead)
