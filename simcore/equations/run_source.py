@@ -225,7 +225,7 @@ class RunSource:
             "        -b# <= d <= b#",
             "        or (n# < 0.0 and v# < 0.0 and -slack * w# <= d <= slack * w#)",
             f"        or abs(d) <= {ROUNDING!r} * abs(n#)",
-            f"        or abs(d) * {self.emitter.name(junction.slope)} <= noise",
+            f"        or (n# <= k# and abs(d) * {self.emitter.name(junction.slope)} <= noise)",
             *([f"        or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
             "    ):",
             "        good = False",

@@ -205,7 +205,7 @@ class _Attempt:
         blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale)
         rounding = np.abs(step) <= ROUNDING * np.abs(n)
         noise = 0.0 if count <= PATIENCE else self.c["tolerance"] * self.c["floor_current"]
-        nothing = (np.abs(step) * slopes <= noise) | self.straight
+        nothing = ((n <= self.critical) & (np.abs(step) * slopes <= noise)) | self.straight
         moving = ~(close | ((n < off) & (v < off)) | blocked | rounding | nothing)
         limit = moving & (n > self.critical) & (step > 0.0)
         with np.errstate(all="ignore"):

@@ -268,6 +268,14 @@ def test_it_converges_and_keeps_kirchhoffs_law(name: str) -> None:
     assert result.solved.kirchhoff < 1e-4
 
 
+def test_a_diode_that_leaps_out_of_reverse_is_limited() -> None:
+    """While a branch carries next to nothing its voltage need not have converged; one that then leaps far beyond
+    conduction must be limited all the same, or its exponential overflows and the slow way without elimination is taken."""
+    design = simcore.read(simcore.library_folder() / "two_tap_bridge.rect")
+    statistics = design.run("loaded").solved.statistics
+    assert statistics["iterations"] < 60_000 and statistics["weak pivots"] == 0
+
+
 # --- work that does not depend on the machine ----------------------------------------------------------------------------------
 
 # Newton iterations a cycle at a step tolerance of 1e-3 and 1e-4, measured; 15 % of margin. DEVELOPERS.md has the errors beside.
