@@ -34,12 +34,13 @@ def _check(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
         return [("clamping", "one point does not fix its curve", "Give a second one at another current.")]
     if any(not current > 0.0 for _, current in points):
         return [("clamping", "a point has no current above zero", "Write the points as V @ A: `430 V @ 1 mA`.")]
+    cure = "Check the points: write them as V @ A."
     rising = sorted(points, key=lambda point: point[1])
     pairs = zip(rising, rising[1:], strict=False)
     if any(not (low[0] < high[0] and low[1] < high[1]) for low, high in pairs):
-        return [("clamping", "its voltage does not rise with its current", "Check the points: write them as V @ A.")]
+        return [("clamping", "its voltage does not rise with its current", cure)]
     if power_law(points)[1] < 1.0:
-        return [("clamping", "its points make no clamp: the current rises slower than the voltage", "Check them.")]
+        return [("clamping", "its points make no clamp: the current rises slower than the voltage", cure)]
     return []
 
 

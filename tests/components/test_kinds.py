@@ -246,3 +246,24 @@ def test_building_is_repeatable(kind: str, text: str) -> None:
     assert other.signature() == first.signature()
     assert other.numbers != first.numbers and len(other.numbers) == len(first.numbers)
     assert all(math.isfinite(number) for number in other.numbers)
+
+
+def test_every_kind_is_in_a_worked_circuit() -> None:
+    worked = [simcore.read(path).circuit for path in sorted(simcore.library_folder().glob("*.rect"))]
+    used = {element.kind for circuit in worked for element in circuit.elements.values()}
+    assert used == set(KINDS)
+
+
+@pytest.mark.parametrize("path", sorted((simcore.library_folder() / "parts").glob("*.rect")), ids=lambda path: path.stem)
+def test_every_data_sheet_of_the_library_can_be_used(path) -> None:
+    """Each as an element beside a source, and every file says that its values are generic."""
+    text = path.read_text()
+    assert "generic" in text.split("\n\n")[0] and "no make" in text.split("\n\n")[0]
+    sheets = re.findall(r"^datasheet (\w+): (\w+)", text, re.MULTILINE)
+    assert sheets or path.stem == "three_phase"
+    for name, kind in sheets:
+        ends = "a -> b" if kind != "transformer" else "(a -> b) : (s -> b)" + (" : (u -> b)" if "12V_12V" in name else "")
+        more = f", {FIRED}" if kind == "thyristor" else ""
+        loads = "\n".join(f"{node} -> b: resistor R_{node}, 1 kOhm" for node in "su" if f"({node} ->" in ends)
+        design = simcore.read_text(f'use "parts/{path.name}"\n{ends}: {kind} X, {name}{more}\n{loads}\n{SINE}', name)
+        assert design.circuit.elements["X"].kind == kind
