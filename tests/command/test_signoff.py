@@ -131,7 +131,7 @@ def test_kept_figures_and_what_drifts_from_them(folder: Path, bulkrail: Call) ->
     assert drifted.returncode == 1 and "5 new" in drifted.stdout and "bounds allow" in drifted.stdout
     assert "\n  new in s: u_rail, mean, rms, peak, valley, ripple\n" in drifted.stdout
     ripple = next(line for line in drifted.stdout.splitlines() if "u_out, ripple" in line)
-    assert re.fullmatch(r"  s +u_out, ripple +[\d.]+ V +[\d.]+ V +-[\d.]+ mV +[\d.]+ uV", ripple), ripple
+    assert re.fullmatch(r"  s +u_out, ripple +[\d.]+ V +[\d.]+ V +-[\d.]+ mV +[\d.]+ [um]V", ripple), ripple
     (suite,) = ElementTree.parse(folder / "j.xml").getroot()
     assert 0 < int(suite.attrib["failures"]) < int(suite.attrib["tests"])
     (folder / "d.rect").write_text(TEXT.replace("observe u_out", "observe u_rail").replace("u_out", "u_rail"))
