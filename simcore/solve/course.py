@@ -15,7 +15,7 @@ import numpy as np
 
 from grammar.quantities import SECOND, show
 from simcore.components.build import build_frame, instants
-from simcore.components.frame import Frame
+from simcore.components.frame import CurrentBranch, Frame, NonlinearBranch
 from simcore.design.circuit import Change, Circuit, PlannedStudy
 from simcore.equations.grounding import grounded
 from simcore.equations.kernel import KernelCache
@@ -90,7 +90,7 @@ class Course:
         frame = self._frame(circuit, math.inf)
         period = self.study.period or common_period(frame)
         if period is None:
-            raise NoSolution(self.study.name, Reason.NO_PERIOD)
+            raise NoSolution(self.study.name, Reason.NO_PERIOD, detail=_sources(frame, changes))
         memory = dict(self.before.memory) if self.before else {}
         engine = self._engine(circuit, frame, memory)
         clock = clock_at_phase(frame, self.study.angle)
@@ -234,3 +234,13 @@ class Course:
         whole = self.variant(())
         told = (notes, statistics, counts.work)
         return Solution(whole, self.study, times, stretches, valued, period, window, first_event, *told)
+
+
+def _sources(frame: Frame, changes: tuple[Change, ...]) -> str:
+    """The sources of a circuit, or where it has none left what was done to it, in words."""
+    branches = [branch for branch in frame.branches if not isinstance(branch, NonlinearBranch)]
+    given = [branch.current if isinstance(branch, CurrentBranch) else branch.source for branch in branches]
+    names = {branch.element: None for branch, value in zip(branches, given, strict=True) if value.constant != 0.0}
+    if names:
+        return f"of {', '.join(names)}"
+    return f"none is left after {', '.join(f'{change.verb} {change.target}' for change in changes)}" if changes else ""

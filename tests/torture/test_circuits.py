@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import pytest
-from circuits import CIRCUITS, ladder
 from ending import ended
 
 import simcore
+from circuits import CIRCUITS, ladder
 from simcore.solve import engine
 
 UNSOLVED = {
