@@ -149,8 +149,8 @@ class _Proof:
         solution, left = solve_warm(study, self.variant, before, tolerance, self.kernels)
         self.work += solution.work
         if not solution.kirchhoff <= LARGEST_SUM:
-            left, node = solution.kirchhoff, solution.worst_node[1]
-            detail = f"at {node} they leave {left:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
+            share, node = solution.kirchhoff, solution.worst_node[1]
+            detail = f"at {node} they leave {share:.1e} of the largest one, allowed are {LARGEST_SUM:g}"
             raise NoSolution(study.name, Reason.KIRCHHOFF, detail=detail)
         return _Level(solution, left)
 
