@@ -120,11 +120,16 @@ def _index(index: Expression | Range) -> str:
     return text.replace(" ", "") if _is_count(index) else text
 
 
-def _is_count(expression: Expression) -> bool:
+def _is_count(index: Expression | Range) -> bool:
     """Whether an index is made of names and plain numbers, as `k-1`; it is written without gaps."""
-    if isinstance(expression, Binary):
-        return _is_count(expression.left) and _is_count(expression.right)
-    return isinstance(expression, Name) or (isinstance(expression, Number) and not expression.unit)
+    match index:
+        case Range():
+            return _is_count(index.first) and _is_count(index.last)
+        case Binary():
+            return _is_count(index.left) and _is_count(index.right)
+        case Name():
+            return all(_is_count(each) for part in index.parts for each in part.indices)
+    return isinstance(index, Number) and not index.unit
 
 
 # --- settings --------------------------------------------------------------------------------------------------------

@@ -6,6 +6,7 @@ All mistakes come back at once. Soundness of the graph is looked at once everyth
 from __future__ import annotations
 
 from collections.abc import Mapping
+from contextlib import suppress
 from dataclasses import replace
 
 from grammar.description import Element, Expression, Let, Name
@@ -88,7 +89,8 @@ class _Builder:
                     self.scope.unknown(value, list(self.scope.root.unit.sheets), None, "no data sheet is named")
                     continue
                 found[name] = Sheet(*sheet)
-            else:
+                continue
+            with suppress(Poisoned):  # its mistake is among the others
                 found[name] = value if isinstance(value, Quantity) else self.scope.value(value, place)
         return found
 

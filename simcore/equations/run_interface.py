@@ -9,8 +9,8 @@ c: the controls, in the order of CONTROLS. With responses a further argument m h
 states: the derivative of the states by those at the start, direction by direction, and room for three more. Returns
 (status, numbers written, steps, rejected, solves, iterations, weak pivots, which). After so many attempts at a step as
 the controls allow it answers FULL, so that its caller may bound the work. which: after an EVENT the threshold passed
-+ 1; after NO_CONVERGENCE what is nearest to the trouble, after FULL what sets the size of the steps (see nearest);
-else 0.
++ 1; after NO_CONVERGENCE what is nearest to the trouble, else what sets the size of the steps (see nearest), 0 where
+nothing does.
 """
 
 from __future__ import annotations

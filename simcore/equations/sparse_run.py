@@ -30,14 +30,16 @@ from simcore.equations.values import Value
 
 _DECOMPOSED = 500
 """Unknowns up to which a singular matrix is decomposed to name one."""
+_FLOORS = ("floor_voltage", "floor_current")
 _WEIGHTS = {1: (1.0, 0.0, 0.0), 2: (-1.0, 2.0, 0.0), 3: (0.5, -4.0, 4.5)}
 _ERRORS = {1: (0.0, 0.0, 0.0), 2: (-1.0, 1.0, 0.0), 3: (0.5, -2.0, 1.5)}
 
 
 def function_source(name: str, arguments: dict[str, int], targets: list[Value]) -> str:
-    """A function of arrays (argument letter -> length) and the scalars h and t that returns the targets as a tuple."""
+    """A function of arrays (argument letter -> length) and of scalars (the step, the time at its end, the sizes of a
+    voltage and a current that need no accuracy) that returns the targets as a tuple."""
     emitter = Emitter({"variant": [], "step": [], "time": [], "iteration": targets})
-    lines = [f"def {name}({', '.join(arguments)}, h, t):"]
+    lines = [f"def {name}({', '.join((*arguments, 'h', 't', *_FLOORS))}):"]
     for letter, count in arguments.items():
         if count:
             lines.append(f"    {', '.join(f'{letter}{index}' for index in range(count))}, = {letter}")
@@ -84,7 +86,8 @@ class _Attempt:
         self.event = self.stuck = 0
         self._errors = np.zeros(0)
         inputs = {f"p{index}": number for index, number in enumerate(p)}
-        inputs |= {name: control[name] for name in ("floor_voltage", "floor_current")}
+        self.small = tuple(control[name] for name in _FLOORS)
+        inputs |= dict(zip(_FLOORS, self.small, strict=True))
         fixed = [value for each in run._system.junctions for value in (each.scale, each.critical, each.straight)]
         numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 3)
         self.scale, self.critical, self.straight = numbers[:, 0], numbers[:, 1], numbers[:, 2] > 0.0
@@ -168,11 +171,12 @@ class _Attempt:
         for count in range(1, int(self.c["limit"]) + 1):
             v = n
             try:
-                stamps = np.array(self.run._stamps(self.p, history, tuple(v.tolist()), h, t)).reshape(-1, 2)
+                known = (self.p, history, tuple(v.tolist()))
+                stamps = np.array(self.run._stamps(*known, h, t, *self.small)).reshape(-1, 2)
                 x = self._solved(stamps)
                 if x is None:
                     return None
-                results = np.array(self.run._results(self.p, history, tuple(v.tolist()), tuple(x.tolist()), h, t))
+                results = np.array(self.run._results(*known, tuple(x.tolist()), h, t, *self.small))
             except ArithmeticError:
                 self.stuck = int(np.argmax(v / self.scale)) + 1 if junctions else 0
                 return None

@@ -15,7 +15,7 @@ import numpy as np
 
 from grammar.quantities import SECOND, show
 from simcore.components.build import build_frame, instants
-from simcore.components.frame import Frame
+from simcore.components.frame import CurrentBranch, Frame, NonlinearBranch
 from simcore.design.circuit import Change, Circuit, PlannedStudy
 from simcore.equations.grounding import grounded
 from simcore.equations.kernel import KernelCache
@@ -93,7 +93,7 @@ class Course:
     def _settled(self, changes: tuple[Change, ...]) -> tuple[Solution, Reached]:
         circuit = self.variant(changes)
         frame = self._frame(circuit, math.inf)
-        period = self._settling_period(frame)
+        period = self._settling_period(frame, changes)
         memory = dict(self.before.memory) if self.before else {}
         engine = self._engine(circuit, frame, memory)
         clock = clock_at_phase(frame, self.study.angle)
@@ -109,14 +109,12 @@ class Course:
         solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
         return solution, Reached(memory, clock, math.inf, changes)
 
-    def _settling_period(self, frame: Frame) -> float:
+    def _settling_period(self, frame: Frame, changes: tuple[Change, ...]) -> float:
         """The period to settle to, s: the one that is asked for, which must be whole periods of the sources, else
         theirs."""
         asked, common = self.study.period, common_period(frame)
         if asked is None and common is None:
-            repeating = frame.sines or any(waveform.period is not None for waveform in frame.waveforms)
-            detail = f"none within {MOST_PERIODS} periods of the slowest" if repeating else "none of them repeats"
-            raise NoSolution(self.study.name, Reason.NO_PERIOD, detail=detail)
+            raise NoSolution(self.study.name, Reason.NO_PERIOD, detail=_without_period(frame, changes))
         if asked is not None and common is not None:
             whole = round(asked / common)
             if whole < 1 or abs(asked / common - whole) > _WHOLE:
@@ -260,3 +258,16 @@ class Course:
         whole = self.variant(())
         times_of = (times, stretches, valued, period, window, self.tolerance, first_event)
         return Solution(whole, self.study, *times_of, notes, statistics, work=counts.work)
+
+
+def _without_period(frame: Frame, changes: tuple[Change, ...]) -> str:
+    """Why a circuit has no period, in words that name its sources, or where it has none what was done to it."""
+    branches = [branch for branch in frame.branches if not isinstance(branch, NonlinearBranch)]
+    given = [branch.current if isinstance(branch, CurrentBranch) else branch.source for branch in branches]
+    names = {branch.element: None for branch, value in zip(branches, given, strict=True) if value.constant != 0.0}
+    if frame.sines or any(waveform.period is not None for waveform in frame.waveforms):
+        return f"none within {MOST_PERIODS} periods of the slowest of {', '.join(names)}"
+    if names:
+        return f"none of them repeats: {', '.join(names)}"
+    done = ", ".join(f"{change.verb} {change.target}" for change in changes)
+    return f"none is left after {done}" if done else "there is none"

@@ -356,10 +356,10 @@ class Engine:
             result = self._run(controls)
         if result is None:
             raise Interrupted(Reason.SINGULAR, self.saved[0])
-        if result[0] == FULL:
-            self._slowest = nearest(self.kernel.system, result[-1])
         if result[0] == EVENT:
             self._slowest = f"near {self.kernel.system.frame.thresholds[result[-1] - 1].element}"
+        elif result[-1]:
+            self._slowest = nearest(self.kernel.system, result[-1])
         self.counts.add(result, self._size if self.kernel.source else self._size + _ON_ARRAYS)
         if result[0] not in (DONE, FULL, EVENT):
             raise Interrupted(Reason.NO_CONVERGENCE, self.saved[0], nearest(self.kernel.system, result[-1]))

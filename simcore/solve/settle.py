@@ -76,6 +76,11 @@ class _Map:
         """Leave the engine in the settled state, at the start of a period."""
         self._start(states)
 
+    def owner(self, state: int) -> str:
+        """A state in words."""
+        system = self.engine.kernel.system
+        return f"{self.quantities[state]} of {system.frame.branches[system.states[state].branch].element}"
+
     def scale(self, states: np.ndarray) -> np.ndarray:
         """The size of each state: its peak of late, at least a hundredth of the largest of its quantity."""
         sizes = np.maximum(np.abs(states), self.engine.peaks())
@@ -213,10 +218,12 @@ def _by_following(way: _Map, start: np.ndarray) -> Settled:
         repeat = _repeat(kept, scale, goal) if moves and way.plain % _LOOK_EVERY == 0 else None
         if repeat is not None:
             longer = repeat * way.period
-            detail = f"it repeats only every {repeat} periods of the sources; give it `period = {longer:g} s`"
+            what = way.owner(int(np.argmax(np.abs(kept[-1] - kept[-2]) / scale)))
+            detail = f"the {what} repeats only every {repeat} periods of the sources; give it `period = {longer:g} s`"
             raise Interrupted(Reason.NOT_SETTLED, way.clock, detail)
     drift = "drifts by" if _distance(changes)[1] >= 1.0 else "still changes by"
-    detail = f"after {way.plain} periods a state {drift} {changes[-1]:.2g} of its size a period"
+    what = way.owner(int(np.argmax(np.abs(kept[-1] - kept[-2]) / scale)))
+    detail = f"after {way.plain} periods the {what} {drift} {changes[-1]:.2g} of its size a period"
     raise Interrupted(Reason.NOT_SETTLED, way.clock, detail)
 
 

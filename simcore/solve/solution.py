@@ -117,7 +117,7 @@ class Solution:
         largest: dict[Hashable, float] = {}
         for stretch in self.stretches:
             for unknown, (total, current) in stretch.kirchhoff().items():
-                worst[unknown] = max(total, worst.get(unknown, 0.0))
+                worst[unknown] = float(np.maximum(total, worst.get(unknown, 0.0)))
                 largest[unknown] = max(largest.get(unknown, 0.0), current)
         floor = max(1e-15, _SMALL_SHARE * max(largest.values(), default=0.0))
         shares = {unknown: total / max(largest[unknown], floor) for unknown, total in worst.items()}

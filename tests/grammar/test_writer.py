@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 from worked import ALL
 
@@ -98,6 +98,7 @@ def _larger(inner: st.SearchStrategy[Expression]) -> st.SearchStrategy[Expressio
 
 @settings(max_examples=300, deadline=None)
 @given(st.recursive(NUMBERS | st.builds(Name, st.tuples(st.builds(Part, NAMES))), _larger, max_leaves=12))
+@example(Name((Part("a", (Name((Part("b", (Number(0.0, "A^2 s"),)),)),)),)))  # an index in an index may hold a unit
 def test_any_expression_reads_back(expression: Expression) -> None:
     again, mistakes = read_expression(write_expression(expression), "text")
     assert not mistakes and again == expression
