@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 import simcore
+from simcore.equations.kernel import Kernel
 from simcore.face import Result
 from simcore.judge.outcome import State
 from simcore.solve.course import EXTRAPOLATION_ORDER
@@ -268,12 +269,16 @@ def test_it_converges_and_keeps_kirchhoffs_law(name: str) -> None:
     assert result.solved.kirchhoff < 1e-4
 
 
-def test_a_diode_that_leaps_out_of_reverse_is_limited() -> None:
+def test_a_diode_that_leaps_out_of_reverse_is_limited(monkeypatch: pytest.MonkeyPatch) -> None:
     """While a branch carries next to nothing its voltage need not have converged; one that then leaps far beyond
     conduction must be limited all the same, or its exponential overflows and the slow way without elimination is taken."""
+
+    def slow(kernel: Kernel) -> None:
+        raise AssertionError("the run overflowed")
+
+    monkeypatch.setattr(Kernel, "use_sparse", slow)
     design = simcore.read(simcore.library_folder() / "two_tap_bridge.rect")
-    statistics = design.run("loaded").solved.statistics
-    assert statistics["iterations"] < 60_000 and statistics["weak pivots"] == 0
+    assert design.run("loaded").solved.statistics["solutions"] >= 2
 
 
 # --- work that does not depend on the machine ----------------------------------------------------------------------------------
