@@ -10,7 +10,7 @@ states: the derivative of the states by those at the start, direction by directi
 (status, numbers written, steps, rejected, solves, iterations, weak pivots, which). After so many attempts at a step as
 the controls allow it answers FULL, so that its caller may bound the work. which: after an EVENT the threshold passed
 + 1; after NO_CONVERGENCE what is nearest to the trouble, else what sets the size of the steps (see nearest), 0 where
-nothing does.
+nothing stands out.
 """
 
 from __future__ import annotations
@@ -57,11 +57,17 @@ BEYOND = 60.0
 times its critical current there."""
 
 
+MOST_NAMED = 6
+"""Elements that a message names where none of them stands out."""
+
+
 def nearest(system: System, which: int) -> str:
     """The element or node that a run told to be nearest to what stopped it: above zero the nonlinear branch + 1, below
-    zero the negative of the state + 1, or of all states and the column + 1; "" for zero."""
+    zero the negative of the state + 1, or of all states and the column + 1; for zero, where none stood out, all."""
     if which == 0:
-        return ""
+        elements = list(dict.fromkeys(branch.element for branch in system.frame.branches))
+        more = f" and {len(elements) - MOST_NAMED} more" if len(elements) > MOST_NAMED else ""
+        return f"among {', '.join(elements[:MOST_NAMED])}{more}"
     owners: list[Hashable] = [system.frame.branches[state.branch].element for state in system.states]
     for column in system.columns:
         owners.append(column.unknown if column.branch is None else system.frame.branches[column.branch].element)

@@ -21,6 +21,7 @@ from simcore.equations.grounding import grounded
 from simcore.equations.kernel import KernelCache
 from simcore.solve.engine import Counts, Engine, Interrupted, Memory, Stepping
 from simcore.solve.failure import NoSolution, Reason
+from simcore.solve.rest import rest
 from simcore.solve.settle import settle
 from simcore.solve.solution import Solution
 from simcore.solve.sources import MOST_PERIODS, clock_at_phase, common_period, largest_voltage, rounding_current
@@ -84,7 +85,7 @@ class Course:
         frame = self._frame(circuit, 0.0)
         engine = self._engine(circuit, frame, {})
         clock = clock_at_phase(frame, self.study.angle)
-        stretch = self._guard(lambda: engine.rest(clock), clock)
+        stretch = self._guard(lambda: rest(engine, clock), clock)
         memory: Memory = {}
         engine.remember(memory)
         valued = self._valued(changes, [stretch])

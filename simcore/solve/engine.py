@@ -32,14 +32,8 @@ _ON_ARRAYS = 2_000
 _ATTEMPTS_TOGETHER = 2.5e5
 """Attempts at a step, times branches and columns, in which a call of the run ends."""
 _ATTEMPTS = 100
-REST_STEP = 1e15
 _CHANGES_AT_MOST = 200
 _START_AGREEMENT = 1e-4
-_REST_AGAIN = (1e9, 1e3, 1.0, 1e-3)
-"""Steps in s that follow it and move nothing: at the long one an inductance is so small a resistance that its current
-is lost in the rounding of its voltage, at these it comes back."""
-_REST_AT_MOST, _STILL = 200, 1e-9
-"""Long steps of an operating point at most, and the relative change of a column below which it stands still."""
 _LEAST_BEND = 1e-5
 """Least tolerance of a watched current's curvature: a tighter one meets what rounding and Newton leave in the third
 difference, which no shorter step makes smaller, so that steps would shrink to the smallest."""
@@ -120,7 +114,7 @@ class Engine:
         self._junctions = len(self.kernel.system.junctions)
         self._size = len(self.kernel.system.columns) + len(self.kernel.system.frame.branches)
         self._attempts = max(_ATTEMPTS, int(_ATTEMPTS_TOGETHER / self._size))
-        self._first_step, self._slowest = 0.0, ""
+        self._first_step, self._slowest = 0.0, nearest(self.kernel.system, 0)
         self._record: Sequence[float] | None = None
         self._response: list[float] | None = None
         self.flags = Flags(self.kernel.system.frame, self.numbers, self.period)
@@ -174,77 +168,39 @@ class Engine:
 
     # --- running ---
 
-    def rest(self, time: float) -> Stretch:
-        """The operating point with the sources at their value at a time: a step long enough for every state to
-        settle, again while it still moves something (a temperature on which a resistance depends), and where that does
-        not converge, steps from short to long (pseudo-transient continuation; Kelley and Keyes, 1998)."""
-        self._follow(time)
-        start = list(self.saved)
-        for steps in ([REST_STEP], [10.0**exponent for exponent in range(-12, 16)]):
-            self.saved = list(start)
-            try:
-                for step in steps:
-                    self._single(time, step)
-                self._stand_still(time)
-                for step in _REST_AGAIN:
-                    record = self._single(time, step)
-            except Interrupted as stop:
-                failure = stop
-                continue
-            values = np.stack([record, record, record])[None]
-            return Stretch(
-                self.kernel.system,
-                list(self.numbers),
-                np.array([time, time + 1.0]),
-                values,
-                1,
-                np.array([True]),
-                shortest=_REST_AGAIN[-1],
-                held=True,
-            )
-        raise Interrupted(failure.reason, time, failure.detail)
-
-    def _stand_still(self, time: float) -> None:
-        """Long steps until one changes no column."""
-        last = self._single(time, REST_STEP)
-        for _ in range(_REST_AT_MOST):
-            record = self._single(time, REST_STEP)
-            if np.allclose(record, last, rtol=_STILL, atol=_STILL**2 + _STILL * self.rounding):
-                return
-            last = record
-        raise Interrupted(Reason.NO_CONVERGENCE, time)
-
     def begin(self, time: float, step: float) -> np.ndarray:
         """Values just after a time, from the states as they are: steps too short to move them, extrapolated to none.
         Returns the columns."""
-        self._follow(time)
-        states = self.saved[2 : 2 + self._states]
+        self.follow(time)
+        states, failure = self.saved[2 : 2 + self._states], None
         for shorter in (1.0, 1e-3, 1e-6):
             keep = list(self.saved)
             try:
                 twice = self._from(states, time, 2.0 * step * shorter)
                 once = self._from(states, time, step * shorter)
             except Interrupted as stop:
-                self.saved, failure = keep, stop
+                self.saved, failure = keep, failure or stop
                 continue
             self.set_states(states)
             self.saved[0] = time
             self._first_step = step * shorter
             return 2.0 * once - twice
+        assert failure is not None
         raise Interrupted(failure.reason, time, failure.detail)
 
     def _from(self, states: list[float], time: float, step: float) -> np.ndarray:
         self.set_states(states)
-        return self._single(time, step)
+        return self.single(time, step)
 
-    def _single(self, time: float, step: float) -> np.ndarray:
+    def single(self, time: float, step: float) -> np.ndarray:
         """One backward-Euler step of a given length that ends at a time."""
         self.saved[0], self.saved[1] = time - step, step
         floors = (1.0, self.rounding)
         limits = (1.0, _START_AGREEMENT, math.inf, math.inf)
         controls = (time, math.inf, 0.0, 1.0, 1, _COLD_LIMIT, 0.0, 1.0, _ROOM, _ATTEMPTS, *floors, *limits)
         if self.saved[0] == time:
-            raise Interrupted(Reason.NO_CONVERGENCE, time)
+            lost = f"a step of {step:.2g} s is lost in the digits of the clock, {nearest(self.kernel.system, 0)}"
+            raise Interrupted(Reason.NO_CONVERGENCE, time, lost)
         written, _ = self._call(controls)
         columns = len(self.kernel.system.columns)
         return np.array(self._record[written - 2 * columns - 1 : written - 1]).reshape(columns, 2)[:, 1]
@@ -355,7 +311,7 @@ class Engine:
             self.saved[:] = before
             result = self._run(controls)
         if result is None:
-            raise Interrupted(Reason.SINGULAR, self.saved[0])
+            raise Interrupted(Reason.SINGULAR, self.saved[0], nearest(self.kernel.system, 0))
         if result[0] == EVENT:
             self._slowest = f"near {self.kernel.system.frame.thresholds[result[-1] - 1].element}"
         elif result[-1]:
@@ -376,7 +332,7 @@ class Engine:
 
     # --- corners of the sources ---
 
-    def _follow(self, time: float) -> None:
+    def follow(self, time: float) -> None:
         """Set each waveform's straight line to the one that holds just after a time."""
         for waveform in self.waveforms:
             self.numbers[waveform.base], self.numbers[waveform.slope] = line(waveform, time)
