@@ -1,4 +1,4 @@
-"""Studies through text: operating points, events of every kind against closed forms, states kept, periods found, failures told."""
+"""Studies through text: events of every kind against closed forms, states kept, periods found, failures told."""
 
 from __future__ import annotations
 
@@ -111,27 +111,6 @@ def test_corners_and_jumps_of_a_source_are_hit() -> None:
     at_jump = trace.value[np.isclose(trace.time, 1e-3, rtol=0, atol=1e-15)]
     assert at_jump.tolist() == pytest.approx([4.0, 1.0], abs=1e-9)
     assert float(result.figure("mean(u)")) == pytest.approx((2.0 + 1.0 + 1.0) / 3.0, rel=1e-6)
-
-
-# --- operating points ---------------------------------------------------------------------------------------------------------
-
-
-def test_operating_point_opens_capacitors_and_shorts_inductors() -> None:
-    text = "e -> g: source V, constant = 10 V\ne -> x: inductor L, 1 mH\nx -> a: resistor R1, 3 Ohm\na -> g: resistor R2, 2 Ohm\na -> g: capacitor C, 1 mF\nreference g\nstudy s: operating_point"
-    assert at(solved(text), 0.5) == pytest.approx(4.0, rel=1e-9)
-
-
-def test_an_inductance_at_rest_carries_the_current_of_its_neighbours() -> None:
-    """10 V over 3 and 2 ohm; the voltage across 1 mH or 1 H at rest is nothing, so its current follows from no voltage."""
-    for inductance in ("1 uH", "1 mH", "1 H"):
-        text = f"e -> g: source V, constant = 10 V\ne -> x: inductor L, {inductance}\nx -> a: resistor R1, 3 Ohm\na -> g: resistor R2, 2 Ohm\nreference g\nstudy s: operating_point"
-        assert solved(text).figure("mean(current(L))").value == pytest.approx(2.0, rel=1e-9)
-
-
-def test_operating_point_divides_by_capacitances_where_nothing_else_does() -> None:
-    """What no steady state fixes is as reached from rest: charges on a blocked node."""
-    text = "e -> g: source V, constant = 9 V\ne -> a: capacitor C1, 1 uF\na -> g: capacitor C2, 2 uF\nreference g\nstudy s: operating_point"
-    assert at(solved(text), 0.5) == pytest.approx(3.0, rel=1e-9)
 
 
 # --- periods and settled states ----------------------------------------------------------------------------------------------

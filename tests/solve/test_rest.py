@@ -15,6 +15,26 @@ PART = "saturation_current = 2.5 nA, ideality_factor = 1.75, series_resistance =
 HUNG = f"reference g\na -> g: source e, constant = 12 V\na -> b: resistor R1, 2.2 kOhm\nx -> g: diode D1, {PART}\nb -> x: resistor R2, 1 kOhm\nb -> g: resistor R3, 1 kOhm\nstudy s: operating_point, open R2\n"
 
 
+def test_operating_point_opens_capacitors_and_shorts_inductors() -> None:
+    text = "e -> g: source V, constant = 10 V\ne -> x: inductor L, 1 mH\nx -> a: resistor R1, 3 Ohm\na -> g: resistor R2, 2 Ohm\na -> g: capacitor C, 1 mF\nreference g\nstudy s: operating_point"
+    result = simcore.read_text(text).run("s")
+    assert float(result.figure("mean(voltage(a))")) == pytest.approx(4.0, rel=1e-9)
+
+
+def test_an_inductance_at_rest_carries_the_current_of_its_neighbours() -> None:
+    """10 V over 3 and 2 ohm; the voltage across 1 mH or 1 H at rest is nothing, so its current follows from no voltage."""
+    for inductance in ("1 uH", "1 mH", "1 H"):
+        text = f"e -> g: source V, constant = 10 V\ne -> x: inductor L, {inductance}\nx -> a: resistor R1, 3 Ohm\na -> g: resistor R2, 2 Ohm\nreference g\nstudy s: operating_point"
+        assert simcore.read_text(text).run("s").figure("mean(current(L))").value == pytest.approx(2.0, rel=1e-9)
+
+
+def test_operating_point_divides_by_capacitances_where_nothing_else_does() -> None:
+    """What no steady state fixes is as reached from rest: charges on a blocked node."""
+    text = "e -> g: source V, constant = 9 V\ne -> a: capacitor C1, 1 uF\na -> g: capacitor C2, 2 uF\nreference g\nstudy s: operating_point"
+    result = simcore.read_text(text).run("s")
+    assert float(result.figure("mean(voltage(a))")) == pytest.approx(3.0, rel=1e-9)
+
+
 def test_a_diode_that_hangs_from_one_end_rests() -> None:
     """Nothing drives it: its voltage is rounding, never twice the same, beside 12 V."""
     result = simcore.read_text(HUNG).run("s")
