@@ -212,6 +212,7 @@ class Engine:
             time = self.saved[0]
             first, numbers = self._begun(time, stepping.begin), list(self.numbers)
             stop = min(end, self._next_corner(time), *(instant for instant, _, _ in self.flags.pending))
+            stop = end if end - stop < stepping.smallest else stop  # but for rounding the same instant
             self.saved[1] = min(stepping.largest, 1e-3 * stepping.memory, max(stop - time, stepping.smallest))
             chunks = self._to_corner(stop, stepping, record)
             if record and self.saved[0] > time:

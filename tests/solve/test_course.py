@@ -380,3 +380,16 @@ def test_a_verdict_near_its_limit_is_solved_more_tightly() -> None:
         claim = f"rms(voltage(b)) <= {exact * factor!r} V"
         (verdict,) = simcore.read_text(text.format(claim=claim), "x").run("s").verdicts
         assert verdict.state is state
+
+
+@pytest.mark.parametrize("milliseconds", [70, 100])
+def test_a_corner_but_for_rounding_at_the_end_is_the_end(milliseconds: int) -> None:
+    """Seven or ten periods of a stepped load end a rounding before the study does: a step of that length has no currents to tell."""
+    text = (
+        "a -> g: source feed, constant = 50 V, series_resistance = 1 Ohm\na -> q: inductor L, 1 mH\nq -> g: capacitor C, 1 mF\n"
+        "q -> g: load P, current = [0 s: 10 A, 5 ms: 10 A, 5 ms: 20 A, 10 ms: 20 A], period = 10 ms\nreference g\n"
+        f"study s: transient, duration = {milliseconds} ms\n"
+    )
+    result = simcore.read_text(text, "stepped").run("s")
+    assert result.solved.kirchhoff < 1e-6
+    assert float(result.figure("mean(current(P))")) == pytest.approx(15.0, rel=1e-3)
