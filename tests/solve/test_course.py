@@ -388,7 +388,7 @@ def test_a_corner_but_for_rounding_at_the_end_is_the_end(milliseconds: int) -> N
     text = (
         "a -> g: source feed, constant = 50 V, series_resistance = 1 Ohm\na -> q: inductor L, 1 mH\nq -> g: capacitor C, 1 mF\n"
         "q -> g: load P, current = [0 s: 10 A, 5 ms: 10 A, 5 ms: 20 A, 10 ms: 20 A], period = 10 ms\nreference g\n"
-        f"study s: transient, duration = {milliseconds} ms\n"
+        f"study s: transient, duration = {milliseconds} ms, last = 2\n"
     )
     result = simcore.read_text(text, "stepped").run("s")
     assert result.solved.kirchhoff < 1e-6
