@@ -169,7 +169,7 @@ class _Proof:
         found it."""
         before = self.pairs[study.after][which].left if study.after is not None else None
         if study.kind == "settled" and earlier is not None:
-            before = earlier.left if before is None else before
+            before = replace(earlier.left, changes=before.changes if before is not None else ())
         if self.work > WORK_OF_ALL:
             raise NoSolution(study.name, Reason.WORK, detail="of all studies together")
         if self.watch is not None:

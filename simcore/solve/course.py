@@ -46,13 +46,15 @@ _EVENT = 2e-3
 @dataclass(frozen=True)
 class Reached:
     """Where a study left the circuit: states by element, the sources' clock and the elements' own time in s, the
-    changes, and the temperatures in K of what its own loss heats."""
+    changes, the temperatures in K of what its own loss heats, and the derivative of a settled study's period map by its
+    name (see settle)."""
 
     memory: Memory
     clock: float
     moment: float
     changes: tuple[Change, ...]
     temperatures: Mapping[str, float] = field(default_factory=dict)
+    slopes: Mapping[str, np.ndarray] = field(default_factory=dict)
 
 
 @dataclass
@@ -99,16 +101,16 @@ class Course:
         engine = self._engine(circuit, frame, memory)
         clock = clock_at_phase(frame, self.study.angle)
         stepping = self._stepping(frame, period)
-        found = self._guard(lambda: settle(engine, clock, period, stepping), clock)
-        engine.flags.told.clear()
-        stretches = self._guard(lambda: engine.advance(clock + period, stepping, record=True), clock)
+        slope = self.before.slopes.get(self.study.name) if self.before else None
+        found = self._guard(lambda: settle(engine, clock, period, stepping, slope), clock)
         self.told += engine.flags.told
         engine.remember(memory)
-        solution = self._solution(self._valued(changes, stretches), stretches, clock, period, period)
+        solution = self._solution(self._valued(changes, found.stretches), found.stretches, clock, period, period)
         solution.notes.append(found.how)
         solution.multiplier = found.multiplier
         solution.statistics |= {"periods": found.periods, "periods with derivatives": found.responding}
-        return solution, Reached(memory, clock, math.inf, changes)
+        slopes = {} if found.slope is None else {self.study.name: found.slope}
+        return solution, Reached(memory, clock, math.inf, changes, slopes=slopes)
 
     def _settling_period(self, frame: Frame, changes: tuple[Change, ...]) -> float:
         """The period to settle to, s: the one that is asked for, which must be whole periods of the sources, else

@@ -122,13 +122,13 @@ class Engine:
     # --- state by name, so that it can move between forms of the equations ---
 
     def remember(self, memory: Memory) -> None:
-        """Write the present states and junction voltages to a memory by element."""
+        """Write the present states, junction voltages and peaks to a memory by element."""
         for key, position in self._positions():
             memory[key] = self.saved[position]
         self.flags.remember(memory, self.saved[0])
 
     def recall(self, memory: Memory) -> None:
-        """Take states and junction voltages from a memory; what it lacks starts at its initial value."""
+        """Take states, junction voltages and peaks from a memory; what it lacks starts at its initial value."""
         inputs = {f"p{index}": number for index, number in enumerate(self.numbers)}
         initial = [float(value) for value in evaluate([state.initial for state in self.kernel.system.states], inputs)]
         for key, position in self._positions():
@@ -142,11 +142,14 @@ class Engine:
         self.saved[0] = time
 
     def _positions(self) -> list[tuple[tuple[Hashable, ...], int]]:
-        branches = self.kernel.system.frame.branches
+        system = self.kernel.system
+        branches = system.frame.branches
         seen: dict[tuple, int] = {}
         result = []
-        holders = [(state.branch, state.quantity) for state in self.kernel.system.states]
-        holders += [(junction.branch, "junction") for junction in self.kernel.system.junctions]
+        holders = [(state.branch, state.quantity) for state in system.states]
+        holders += [(junction.branch, "junction") for junction in system.junctions]
+        holders += [(state.branch, f"peak {state.quantity}") for state in system.states]
+        holders += [(system.columns[watched].branch or 0, "watched peak") for watched in self.kernel.watched]
         for position, (index, quantity) in enumerate(holders):
             key = (branches[index].element, branches[index].port, quantity)
             seen[key] = seen.get(key, 0) + 1

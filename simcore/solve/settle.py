@@ -15,9 +15,16 @@ import numpy as np
 
 from simcore.solve.engine import Engine, Interrupted, Stepping
 from simcore.solve.failure import Reason
+from simcore.solve.stretch import Stretch
 
-_AGREEMENT = 1e-6
-"""Newton's correction, over the states' sizes, at which the state is settled."""
+_AGREEMENT = 1e-7
+"""Newton's correction, over the states' sizes, at which the state is settled; Newton's next would be far smaller."""
+_OF_TOLERANCE = 0.01
+"""Or this share of the tolerance of a step, where that is more."""
+_NEAR, _FAR = 1e-2, 0.1
+"""Newton's correction below which the derivative at hand will do, and above which a plain period follows it."""
+_SHRINKS = 0.25
+"""Least shrinking of a correction by a derivative at hand."""
 _ROUNDS = 30
 _FIRST = 4.0
 _SHORTEST = 0.25
@@ -35,13 +42,16 @@ _STANDING = 4
 
 @dataclass(frozen=True)
 class Settled:
-    """How a settled state was reached: words for the report, periods followed (those that carry derivatives counted
-    apart), and the largest multiplier, the share of a disturbance that is left after a period."""
+    """How a settled state was reached: words for the report, periods followed with the settled one (those that carry
+    derivatives counted apart), the largest multiplier, which is the share of a disturbance that is left after a period, the settled period
+    and the derivative of the states at its end by those at its start, None where it was not found."""
 
     how: str
     periods: int
     responding: int
     multiplier: float
+    stretches: list[Stretch]
+    slope: np.ndarray | None = None
 
 
 class _Map:
@@ -59,6 +69,14 @@ class _Map:
         self.plain += 1
         return np.array(self.engine.states())
 
+    def record(self, states: np.ndarray) -> tuple[np.ndarray, list[Stretch]]:
+        """The states a period later, and the period."""
+        self._start(states)
+        self.engine.flags.told.clear()
+        stretches = self.engine.advance(self.clock + self.period, self.stepping, record=True)
+        self.plain += 1
+        return np.array(self.engine.states()), stretches
+
     def respond(self, states: np.ndarray) -> tuple[np.ndarray, np.ndarray] | None:
         """The states a period later and their derivative by those now; None where the engine has no derivative."""
         self._start(states)
@@ -71,10 +89,6 @@ class _Map:
     def _start(self, states: np.ndarray) -> None:
         self.engine.set_states(states.tolist())
         self.engine.move(self.clock)
-
-    def finish(self, states: np.ndarray) -> None:
-        """Leave the engine in the settled state, at the start of a period."""
-        self._start(states)
 
     def owner(self, state: int) -> str:
         """A state in words."""
@@ -90,19 +104,22 @@ class _Map:
         return np.where(sizes > 0.0, sizes, 1.0)
 
 
-def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> Settled:
-    """Bring an engine to its periodic state at a phase of the sources (clock, in s).
+def settle(
+    engine: Engine, clock: float, period: float, stepping: Stepping, slope: np.ndarray | None = None
+) -> Settled:
+    """Bring an engine to its periodic state at a phase of the sources (clock, in s) and record a period of it.
 
-    Raises Interrupted where it is not reached.
+    slope: the derivative of the period map, shape (states, states), where one is known from a solution close by.
+    Raises Interrupted where no periodic state is reached.
     """
     way = _Map(engine, clock, period, stepping)
     start = np.array(engine.states())
     if len(start) == 0:
-        way.follow(start)
-        way.finish(start)
-        return Settled("settled at once, since it has no states", 1, 0, 0.0)
+        _, stretches = way.record(way.follow(start))
+        return Settled("settled at once, since it has no states", way.plain, 0, 0.0, stretches)
     try:
-        found = _by_newton(way, start)
+        found = _closed(way, start, slope) if slope is not None and len(slope) == len(start) else None
+        found = found or _by_newton(way, start)
     except Interrupted:
         found = None
     return found or _by_following(way, start)
@@ -110,14 +127,22 @@ def settle(engine: Engine, clock: float, period: float, stepping: Stepping) -> S
 
 @dataclass(frozen=True)
 class _Point:
-    """States, what a period adds to them (residual), its derivative (slope) and what Newton would add (rest), all but
-    the states over their scale."""
+    """States, the derivative of those a period later, and over the scale of the states: what a period adds (residual),
+    the derivative (slope) and what Newton would add (rest)."""
 
     states: np.ndarray
+    derivative: np.ndarray
     scale: np.ndarray
     residual: np.ndarray
     slope: np.ndarray
     rest: np.ndarray
+
+    @classmethod
+    def of(cls, way: _Map, states: np.ndarray, after: np.ndarray, derivative: np.ndarray) -> _Point:
+        """From the states at both ends of a period."""
+        scale = way.scale(after)
+        residual, slope = (after - states) / scale, derivative * scale / scale[:, None]
+        return cls(states, derivative, scale, residual, slope, _solved(np.eye(len(states)) - slope, residual))
 
     @property
     def size(self) -> float:
@@ -131,18 +156,15 @@ class _Point:
 
     def corrected(self, pseudo: float = np.inf) -> np.ndarray:
         """The states after a correction with a pseudo time in periods; without one, Newton's."""
+        if pseudo == np.inf:
+            return self.states + self.rest * self.scale
         damped = (1.0 + 1.0 / pseudo) * np.eye(len(self.states)) - self.slope
         return self.states + _solved(damped, self.residual) * self.scale
 
 
 def _point(way: _Map, states: np.ndarray) -> _Point | None:
     answer = way.respond(states)
-    if answer is None:
-        return None
-    after, derivative = answer
-    scale = way.scale(after)
-    residual, slope = (after - states) / scale, derivative * scale / scale[:, None]
-    return _Point(states, scale, residual, slope, _solved(np.eye(len(states)) - slope, residual))
+    return None if answer is None else _Point.of(way, states, *answer)
 
 
 def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
@@ -151,17 +173,20 @@ def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
     A correction that makes the residual grow is taken back and made shorter. The steps of a run make its map rough by
     about their tolerance: where residuals of that size no longer shrink, the best state is as good as can be told.
     """
-    states = way.follow(start)
     pseudo, since = _FIRST, 0
-    base = best = _point(way, states)
+    base = best = _point(way, way.follow(start))
     for _ in range(_ROUNDS):
         if base is None or best is None:
             return None
-        rough = since >= _STANDING and best.size <= 3.0 * way.stepping.tolerance
-        if best.distance <= _AGREEMENT or rough:
-            way.finish(best.corrected())
-            return _described(way, best)
-        point = _point(way, way.follow(base.corrected(pseudo)))
+        near = best.distance <= _NEAR and since == 0
+        found = _closed(way, best.corrected(), best.derivative) if near else None
+        if found is None and since >= _STANDING and best.size <= 3.0 * way.stepping.tolerance:
+            _, stretches = way.record(best.corrected())
+            found = _described(way, best.derivative, best.distance, stretches)
+        if found is not None:
+            return found if found.multiplier <= _LEAVES else None
+        far = base.distance > _FAR
+        point = _point(way, way.follow(base.corrected(pseudo)) if far else base.corrected())
         if point is None:
             return None
         if point.size > 1.5 * base.size and pseudo > _SHORTEST:
@@ -174,6 +199,21 @@ def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
     return None
 
 
+def _closed(way: _Map, states: np.ndarray, derivative: np.ndarray) -> Settled | None:
+    """Recorded periods from a state near the settled one, each correcting the next by a derivative found before (chord
+    method), until one needs no correction; None where they shrink too slowly."""
+    agreement = max(_AGREEMENT, _OF_TOLERANCE * way.stepping.tolerance)
+    last = np.inf
+    while True:
+        after, stretches = way.record(states)
+        point = _Point.of(way, states, after, derivative)
+        if point.distance <= agreement:
+            return _described(way, derivative, point.distance, stretches)
+        if point.distance > _SHRINKS * last:
+            return None
+        states, last = point.corrected(), point.distance
+
+
 def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
     """The least-squares solution of least size: what no equation fixes (a multiplier of 1) stays as it is."""
     left, sizes, across = np.linalg.svd(matrix)
@@ -181,16 +221,13 @@ def _solved(matrix: np.ndarray, right: np.ndarray) -> np.ndarray:
     return across.T @ shares
 
 
-def _described(way: _Map, point: _Point) -> Settled | None:
-    """The words for a state found by Newton; None where it is one that the circuit leaves by itself."""
-    largest = float(np.max(np.abs(np.linalg.eigvals(point.slope))))
-    if largest > _LEAVES:
-        return None
-    reached = max(point.distance, _AGREEMENT)
-    how = f"settled by Newton on the period map to {reached:.0e} of its states; {_left(largest)}"
-    if 1.0 - largest < _FREE:
+def _described(way: _Map, derivative: np.ndarray, distance: float, stretches: list[Stretch]) -> Settled:
+    """What was found by Newton, in words too."""
+    largest = float(np.max(np.abs(np.linalg.eigvals(derivative))))
+    how = f"settled by Newton on the period map to {max(distance, _AGREEMENT):.0e} of its states; {_left(largest)}"
+    if abs(1.0 - largest) < _FREE:
         how += "; what nothing in the circuit fixes (a multiplier of 1) is as reached from rest"
-    return Settled(how, way.plain, way.responding, largest)
+    return Settled(how, way.plain, way.responding, largest, stretches, derivative)
 
 
 def _left(multiplier: float) -> str:
@@ -210,9 +247,9 @@ def _by_following(way: _Map, start: np.ndarray) -> Settled:
         states = after
         distance, ratio = _distance(changes)
         if max(changes[-1], distance) <= goal:
-            way.finish(states)
             how = f"settled by following {way.plain} periods to {goal:.0e} of its states; {_left(ratio)}"
-            return Settled(how, way.plain, way.responding, ratio)
+            _, stretches = way.record(states)
+            return Settled(how, way.plain, way.responding, ratio, stretches)
         kept = [*kept[-_LONGEST_REPEAT:], after]
         moves = changes[-1] > 10.0 * goal
         repeat = _repeat(kept, scale, goal) if moves and way.plain % _LOOK_EVERY == 0 else None

@@ -87,6 +87,7 @@ a -> k: resistor R, 100 Ohm
 k -> g: diode D, {DIODE}, carrier_lifetime = 0.5 us
 k -> g: capacitor C_p, 50 pF
 reference g
+observe back = current(R)
 study s: transient, duration = DURATION, accuracy = 0.01 %
 study settled: settled, accuracy = 0.01 %
 """

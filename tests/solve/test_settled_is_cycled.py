@@ -23,9 +23,9 @@ SETTLED = [
 ]
 TOLERANCES = (1e-3, 1e-4, 1e-6)
 """Of a step: cycles at the loose ones come near, those at the last are compared."""
-NEAR, NEARER = 1e-4, 3e-2
+NEAR, NEARER = 1e-5, 3e-2
 """What is left of the start after the cycles at the first tolerance, and after those at each further one."""
-MOST = 450
+MOST = 480
 SHARP = {"six_pulse": 1e-8}
 """A current that a bridge without inductance switches in a step needs a tighter last tolerance for its peak."""
 FIRED = {"controlled_charger"}
