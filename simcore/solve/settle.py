@@ -43,8 +43,9 @@ _STANDING = 4
 @dataclass(frozen=True)
 class Settled:
     """How a settled state was reached: words for the report, periods followed with the settled one (those that carry
-    derivatives counted apart), the largest multiplier, which is the share of a disturbance that is left after a period, the settled period
-    and the derivative of the states at its end by those at its start, None where it was not found."""
+    derivatives counted apart), the largest multiplier, which is the share of a disturbance that is left after a period,
+    the settled period, and the derivative of the states at its end by those at its start, None where it was not found.
+    """
 
     how: str
     periods: int
