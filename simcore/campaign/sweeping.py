@@ -15,11 +15,8 @@ from simcore import __version__
 from simcore.campaign.journal import Journal
 from simcore.campaign.rows import Row, decode
 from simcore.campaign.solver import Packed, Solver, Task, keep, packed, solve_block
-from simcore.campaign.workers import Block, Crew, solved_blocks
+from simcore.campaign.workers import Block, Blocks, Crew, solved_blocks
 from simcore.design.files import Unit
-
-LARGEST_BLOCK = 32
-_BLOCKS_A_WORKER = 8
 
 
 @dataclass(frozen=True)
@@ -64,8 +61,8 @@ def solved_rows(
 ) -> Iterator[Row]:
     """The rows of a task in the order of its variants, each as soon as it and all before it are there.
 
-    block: variants a block, by default as many as keep the workers busy; tell: called with the count of variants that a
-    finished block had, and whether it was solved now
+    block: variants a block, by default as many as keep a worker busy for some seconds; tell: called with the count of
+    variants that a finished block had, and whether it was solved now
     Raises DescriptionError for a journal that does not fit, WorkersLost.
     """
     key, solver = fingerprint(task), Solver(task)
@@ -117,11 +114,5 @@ def _solved_now(
     task: Task, parcel: Packed, crew: Crew, done: Sequence[Block], size: int | None
 ) -> Generator[tuple[Block, str], None, None]:
     """The blocks between those that are done already."""
-    total = len(task.plan)
-    if size is None:
-        size = max(1, min(LARGEST_BLOCK, total // (_BLOCKS_A_WORKER * crew.count)))
-    blocks, start = [], 0
-    for first, last in [*sorted(done), (total, total)]:
-        blocks += [(at, min(at + size, first)) for at in range(start, first, size)]
-        start = last
+    blocks = Blocks(sorted(done), len(task.plan), crew.count, size)
     return solved_blocks(lambda first, last: (solve_block, (parcel, first, last)), blocks, crew)

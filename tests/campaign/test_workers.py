@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-import importlib.util
 import os
 import signal
+import socket
 import sys
+from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
@@ -14,7 +15,16 @@ import simcore
 from simcore.campaign.rows import encode
 from simcore.campaign.solver import Solver, Task, packed, solve_block
 from simcore.campaign.sweeping import solved_rows
-from simcore.campaign.workers import Cluster, Here, Processes, WorkersLost, solved_blocks
+from simcore.campaign.workers import (
+    LARGEST_BLOCK,
+    SECONDS_A_BLOCK,
+    Blocks,
+    Cluster,
+    Here,
+    Processes,
+    WorkersLost,
+    solved_blocks,
+)
 from simcore.equations.compiled import available
 from simcore.report.progress import _Lines, _Studies, progress, watching
 
@@ -32,18 +42,42 @@ def dies(first: int, last: int) -> str:
     return ""
 
 
-BLOCKS = [(start, start + 2) for start in range(0, 12, 2)]
+def six_blocks() -> Blocks:
+    return Blocks([], 12, 2, 2)
 
 
 def test_the_blocks_of_a_dead_worker_are_done_again(tmp_path: Path) -> None:
     mark = tmp_path / "died"
-    lines = dict(solved_blocks(lambda *block: (dies_once, (mark, *block)), BLOCKS, Processes(2)))
-    assert mark.exists() and lines == {block: f"{block[0]} {block[1]}" for block in BLOCKS}
+    lines = dict(solved_blocks(lambda *block: (dies_once, (mark, *block)), six_blocks(), Processes(2)))
+    assert mark.exists() and lines == {(start, start + 2): f"{start} {start + 2}" for start in range(0, 12, 2)}
 
 
 def test_workers_that_always_die_end_the_sweep() -> None:
     with pytest.raises(WorkersLost, match="3 times"):
-        list(solved_blocks(lambda *block: (dies, block), BLOCKS, Processes(2)))
+        list(solved_blocks(lambda *block: (dies, block), six_blocks(), Processes(2)))
+
+
+@pytest.mark.parametrize("seconds", [1e-4, 0.03, 20.0])
+def test_blocks_grow_until_they_take_some_seconds(seconds: float) -> None:
+    """Each variant once, none that are done; small at first and at the end, and as long as asked in between."""
+    now = 0.0
+    blocks, sizes, met = Blocks([(3, 5), (7, 8)], 5000, 2, None, lambda: now), [], []
+    while blocks:
+        block = blocks.take()
+        now += seconds * (block[1] - block[0]) / 2
+        blocks.finished(block)
+        sizes.append(block[1] - block[0])
+        met += range(*block)
+    assert sorted(met) == [index for index in range(5000) if index not in (3, 4, 7)]
+    assert max(sizes) == min(LARGEST_BLOCK, max(1, int(SECONDS_A_BLOCK / seconds + 1e-6)))
+    assert sizes[0] == 1 and sizes[-1] == 1
+
+
+def test_lost_blocks_come_first() -> None:
+    blocks = six_blocks()
+    taken = [blocks.take() for _ in range(3)]
+    blocks.give_back(taken[:0:-1])
+    assert [blocks.take() for _ in range(3)] == [(2, 4), (4, 6), (6, 8)]
 
 
 def test_a_parcel_is_solved_wherever_it_comes(spread: Task) -> None:
@@ -77,15 +111,46 @@ def test_what_compiled_arithmetic_raises() -> None:
         njit(error_model="python")(lambda x: 1.0 / x)(0.0)
 
 
-def test_on_a_dask_cluster(spread: Task) -> None:
-    if importlib.util.find_spec("distributed") is None:
-        pytest.skip("the extra `cluster` is not installed")
-    from distributed import LocalCluster
+@pytest.fixture(scope="module")
+def local_cluster() -> Iterator:
+    """A scheduler and two worker processes that know this project and this folder."""
+    distributed = pytest.importorskip("distributed", reason="the extra `cluster` is not installed")
+    paths = os.pathsep.join([str(Path(simcore.__file__).parent.parent), str(Path(__file__).parent)])
+    before = os.environ.get("PYTHONPATH")
+    os.environ["PYTHONPATH"] = paths
+    try:
+        with distributed.LocalCluster(n_workers=2, threads_per_worker=1, dashboard_address=None) as cluster:
+            yield cluster
+    finally:
+        os.environ.pop("PYTHONPATH") if before is None else os.environ.update(PYTHONPATH=before)
 
+
+def test_two_processes_under_a_scheduler_give_the_same_rows(spread: Task, local_cluster) -> None:
     plain = [encode([row], []) for row in solved_rows(spread, Here())]
-    with LocalCluster(n_workers=1, threads_per_worker=1, processes=False, dashboard_address=None) as cluster:
-        crew = Cluster(cluster.scheduler_address)
-        assert [encode([row], []) for row in solved_rows(spread, crew, block=5)] == plain
+    crew = Cluster(local_cluster.scheduler_address)
+    assert crew.count == 2
+    assert [encode([row], []) for row in solved_rows(spread, crew, block=2)] == plain
+
+
+def test_a_worker_killed_under_a_scheduler_has_its_blocks_done_again(tmp_path: Path, local_cluster) -> None:
+    mark, crew = tmp_path / "died", Cluster(local_cluster.scheduler_address)
+    lines = dict(solved_blocks(lambda *block: (dies_once, (mark, *block)), six_blocks(), crew))
+    assert mark.exists() and lines == {(start, start + 2): f"{start} {start + 2}" for start in range(0, 12, 2)}
+
+
+def test_a_worker_of_another_version_is_refused(local_cluster, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("simcore.campaign.workers.__version__", "99")
+    with pytest.raises(simcore.DescriptionError, match="(?s)has version .* not 99.*cure: Install this version"):
+        Cluster(local_cluster.scheduler_address)
+
+
+def test_a_scheduler_that_is_not_there_is_a_message() -> None:
+    pytest.importorskip("distributed", reason="the extra `cluster` is not installed")
+    with socket.socket() as unused:
+        unused.bind(("127.0.0.1", 0))
+        address = f"tcp://127.0.0.1:{unused.getsockname()[1]}"
+        with pytest.raises(simcore.DescriptionError, match="(?s)does not answer.*cure: Check that it runs"):
+            Cluster(address, patience=1.0)
 
 
 def test_a_scheduler_without_its_package_is_a_message(monkeypatch: pytest.MonkeyPatch) -> None:
