@@ -77,7 +77,9 @@ class NonlinearBranch:
 
     scale: voltage over which the law changes by a factor e (V); critical: voltage above which steps are limited (V);
     straight: above zero while the law is a straight line, so that nothing is left to iterate; slope: of the law, or
-    what Newton takes for it: never below zero, so that elimination only adds
+    what Newton takes for it: never below zero, so that elimination only adds; flattens: whether the law is steepest at
+    0 V and flattens on both sides, so that it blocks on neither, and an iterate that would cross 0 V stops there: from
+    the flat parts it would leap from one to the other for ever
     """
 
     element: str
@@ -92,6 +94,7 @@ class NonlinearBranch:
     straight: Value
     slope: Value
     carried: Carried | None
+    flattens: bool = False
 
 
 Branch = SeriesBranch | CurrentBranch | NonlinearBranch
@@ -280,14 +283,17 @@ class Frame:
         offset: Value | float = 0.0,
         leak: Value | float = 0.0,
         slope: Callable[[Value], Value] | None = None,
+        flattens: bool = False,
         port: str = "",
     ) -> None:
         """Add a branch whose current is law(branch voltage - offset) and that through its leak; slope: of the law, or
-        what Newton should take for it, where its derivative is not known to rise (see NonlinearBranch)."""
+        what Newton should take for it, where its derivative is not known to rise; flattens: on both sides of 0 V (see
+        NonlinearBranch)."""
         variable = self._variable()
         current = law(variable)
         rise = derivative(current, variable) if slope is None else slope(variable)
-        self._nonlinear(part, port, weights, offset, variable, current, (leak, scale, critical, straight, rise), None)
+        manner = (leak, scale, critical, straight, rise)
+        self._nonlinear(part, port, weights, offset, variable, current, manner, None, flattens)
 
     def carrying(
         self,
@@ -329,11 +335,12 @@ class Frame:
         current: Value,
         manner: tuple[Value | float, ...],
         carried: Carried | None,
+        flattens: bool = False,
     ) -> None:
         lift = self.graph.lift
         ends, numbers = self._weights(weights), (lift(value) for value in manner)
         self.branches.append(
-            NonlinearBranch(part.name, port, ends, lift(offset), variable, current, *numbers, carried)
+            NonlinearBranch(part.name, port, ends, lift(offset), variable, current, *numbers, carried, flattens)
         )
 
     def sine(self, frequency: float, phase: float) -> Value:

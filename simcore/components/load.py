@@ -67,11 +67,12 @@ def _constant_current(frame: Frame, part: Part) -> None:
 
     def law(voltage: Value) -> Value:
         return current * voltage / sqrt(voltage * voltage + knee * knee)
+
     def slope(voltage: Value) -> Value:
         square = voltage * voltage + knee * knee
         return current * (knee * knee / (square * sqrt(square)))
 
-    frame.nonlinear(part, part.across(part.ports[0]), law, scale=knee, leak=_IDLE, slope=slope)
+    frame.nonlinear(part, part.across(part.ports[0]), law, scale=knee, leak=_IDLE, slope=slope, flattens=True)
 
 
 def _constant_power(frame: Frame, part: Part) -> None:
@@ -89,8 +90,9 @@ def _constant_power(frame: Frame, part: Part) -> None:
     scale = _CLOSE * cut_out
 
     def slope(voltage: Value) -> Value:
-        """None: it would fall. The load is a current source whose value is found again at each iterate."""
-        return 0.0 * voltage
+        """None where the law would fall: there it is a current source whose value is found again at each iterate."""
+        resistive = where(voltage * voltage - least, 0.0, power / least)
+        return where(running.value - 0.5, resistive, 0.0)
 
     frame.nonlinear(part, weights, law, scale=scale, straight=0.5 - running.value, leak=_IDLE, slope=slope)
     rail = frame.sensed_voltage(weights)

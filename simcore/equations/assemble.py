@@ -49,7 +49,7 @@ class Junction:
     """A nonlinear branch's Newton iterate: the voltage put in, and the one that the linearised circuit gives back.
 
     slope: conductance of the law there; agreement: share of the usual agreement that the two need: what is left of it
-    in a charge is a current over a step
+    in a charge is a current over a step; flattens: see NonlinearBranch
     """
 
     branch: int
@@ -60,6 +60,7 @@ class Junction:
     straight: Value
     slope: Value
     agreement: float
+    flattens: bool
 
 
 @dataclass(frozen=True)
@@ -218,6 +219,7 @@ class _Assembly:
                     branch.straight,
                     companion.conductance,
                     agreement,
+                    branch.flattens,
                 )
             )
             if branch.carried is not None:

@@ -13,15 +13,14 @@ from __future__ import annotations
 
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter, names_first
+from simcore.equations.limiting import limited
 from simcore.equations.run_interface import (
-    BEYOND,
     BLOCKED,
     CONTROLS,
     EVENT,
     FULL,
     NO_CONVERGENCE,
     PATIENCE,
-    ROUNDING,
     SHORT,
     record_width,
     saved_groups,
@@ -205,38 +204,12 @@ class RunSource:
         for index, junction in enumerate(self.system.junctions):
             if self.emitter.name(junction.new) != f"n{index}":
                 add(5, f"n{index} = {self.emitter.name(junction.new)}")
-        for index in range(junctions):
-            self._limit(index)
+        for index, junction in enumerate(self.system.junctions):
+            names = (self.emitter.name(junction.slope), self.emitter.name(junction.straight))
+            add(5, *(line.replace("#", str(index)) for line in limited(junction, index, *names)))
         add(5, "if good or count >= limit:", "    break")
         self._often = self._lines[start:]
         add(4, "iterations += count", "if not good:", "    failed = True", "    break")
-
-    def _limit(self, index: int) -> None:
-        """Convergence in units of the law's scale; an off branch and what rounding moves are ignored, NaN is not. What
-        is true most often is asked first.
-        A voltage that rises past the critical one moves by the logarithm of the step (common practice, no source), and
-        never so far that an iteration that runs away overflows: it fails, and a shorter step is tried."""
-        junction = self.system.junctions[index]
-        straight = self.emitter.name(junction.straight)
-        lines = (
-            "if not (n# < o# and v# < o#):",
-            "    d = n# - v#",
-            "    if not (",
-            "        -b# <= d <= b#",
-            "        or (n# < 0.0 and v# < 0.0 and -slack * w# <= d <= slack * w#)",
-            f"        or abs(d) <= {ROUNDING!r} * abs(n#)",
-            f"        or (n# <= k# and abs(d) * {self.emitter.name(junction.slope)} <= noise)",
-            *([f"        or {straight} > 0.0"] if junction.straight.constant != 0.0 else []),
-            "    ):",
-            "        good = False",
-            f"        stuck = {index + 1}",
-            "        if n# > k# and d > 0.0:",
-            "            if v# > 0.0:",
-            f"                n# = min(v# + w# * log(1.0 + d / w#), k# + {BEYOND!r} * w#)",
-            "            else:",
-            "                n# = w# * log(n# / w#)",
-        )
-        self._add(5, *(line.replace("#", str(index)) for line in lines))
 
     def _keep_inside(self) -> None:
         """Values inside the step: their sums over the halves and thirds, and the watched currents' third difference."""

@@ -91,6 +91,7 @@ class _Attempt:
         fixed = [value for each in run._system.junctions for value in (each.scale, each.critical, each.straight)]
         numbers = np.array([float(value) for value in evaluate(fixed, inputs)]).reshape(junctions, 3)
         self.scale, self.critical, self.straight = numbers[:, 0], numbers[:, 1], numbers[:, 2] > 0.0
+        self.flattens = np.array([junction.flattens for junction in run._system.junctions], dtype=bool)
         self.shares = np.array([junction.agreement for junction in run._system.junctions])
         self.on = self.critical - 3.0 * self.scale
         small = [state.small for state in run._system.states]
@@ -202,20 +203,22 @@ class _Attempt:
         return x + factors.solve(right - matrix @ x)
 
     def _limited(self, v: np.ndarray, n: np.ndarray, slopes: np.ndarray, count: int) -> tuple[np.ndarray, bool]:
-        """The convergence test and the limiting of run_source, on arrays."""
+        """The convergence test and the limiting of equations/limiting, on arrays."""
         step, off = n - v, -6.0 * self.scale
         close = np.abs(step) <= self.c["agreement"] * self.shares * self.scale
         slack = BLOCKED if count <= PATIENCE else np.inf
-        blocked = (n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale)
+        blocked = ((n < off) & (v < off)) | ((n < 0.0) & (v < 0.0) & (np.abs(step) <= slack * self.scale))
+        blocked &= ~self.flattens
         rounding = np.abs(step) <= ROUNDING * np.abs(n)
         noise = 0.0 if count <= PATIENCE else self.c["tolerance"] * self.c["floor_current"]
         nothing = ((n <= self.critical) & (np.abs(step) * slopes <= noise)) | self.straight
-        moving = ~(close | ((n < off) & (v < off)) | blocked | rounding | nothing)
-        limit = moving & (n > self.critical) & (step > 0.0)
+        moving = ~(close | blocked | rounding | nothing)
+        limit = moving & (n > self.critical) & (step > 0.0) & ~self.flattens
         with np.errstate(all="ignore"):
             inside = np.minimum(v + self.scale * np.log1p(step / self.scale), self.critical + BEYOND * self.scale)
             entering = self.scale * np.log(n / self.scale)
         limited = np.where(limit, np.where(v > 0.0, inside, entering), n)
+        limited = np.where(moving & self.flattens & (n * v < 0.0), 0.0, limited)
         if moving.any():
             self.stuck = int(np.flatnonzero(moving)[-1]) + 1
         return limited, not bool(moving.any())
