@@ -1,8 +1,9 @@
 """Where nodes and branches go in a circuit diagram, in rows and columns.
 
 A node is a horizontal line in a row. A branch stands upright in a column between the lines of its nodes, or lies in the
-row where both are its neighbours there. Diodes conduct upwards where they can, sources stand left, loads right. So
-nothing ever covers anything, and the same circuit is always arranged in the same way. Knows elements; draws nothing.
+row where both are its neighbours there. Diodes conduct to the upper rail, sources stand left, loads right, the
+windings of a transformer side by side. So nothing ever covers anything, and the same circuit is always arranged in the
+same way. Knows elements; draws nothing.
 """
 
 from __future__ import annotations
@@ -14,28 +15,15 @@ import networkx
 
 from simcore.components import KINDS
 from simcore.design.circuit import Circuit, Element
-from simcore.design.graph import port_name
+from simcore.design.graph import is_current_source, port_name
 from simcore.design.overview import value_text
 from simcore.figures.overview import VALVES
 from simcore.figures.record import DELIVERING
+from simcore.report.columns import Column, ordered
+from simcore.report.levels import Branch, Sketch, levels_of, sketched
 
 MOST_BRANCHES = 150
 """What a diagram can show so that it can still be read."""
-
-DETOUR = 20
-"""Branches that a way through a load counts as."""
-
-
-@dataclass(frozen=True)
-class Branch:
-    """A port of an element as it is drawn: current counts from a to b; owner: the element; value: its first value."""
-
-    name: str
-    owner: str
-    kind: str
-    value: str
-    a: str
-    b: str
 
 
 @dataclass(frozen=True)
@@ -66,7 +54,16 @@ class Arrangement:
 def branches_of(circuit: Circuit) -> list[Branch]:
     """The branches of a circuit with what is written beside them."""
     return [
-        Branch(port_name(element, port), element.name, element.kind, _value(element, port.index), port.a, port.b)
+        Branch(
+            port_name(element, port),
+            element.name,
+            element.kind,
+            _value(element, port.index),
+            port.a,
+            port.b,
+            port.index,
+            *_form(element),
+        )
         for element in circuit.elements.values()
         for port in element.ports
     ]
@@ -74,24 +71,44 @@ def branches_of(circuit: Circuit) -> list[Branch]:
 
 def _value(element: Element, index: int) -> str:
     """The data sheet's name, or the first value that is no rating; of a ratio the part that is this port's."""
-    if element.sheet:
+    if element.sheet and index == 0:
         return element.sheet
+    windings = element.kind == "transformer"
     for key in KINDS[element.kind].keys:
         given = element.given.get(key.name)
-        if given is not None and not key.rating:
-            if key.form == "ratio" and isinstance(given, tuple):
-                given = given[index : index + 1]
-            return value_text(key, given, element.unit)
+        if given is None or (key.name not in _OF_WINDINGS if windings else key.rating):
+            continue
+        if key.form == "ratio" and isinstance(given, tuple):
+            given = given[index : index + 1]
+        return _OF_WINDINGS.get(key.name, "") + value_text(key, given, element.unit)
     return ""
+
+
+_OF_WINDINGS = {"turns": "turns: ", "rated_voltage": ""}
+"""What is written beside a winding, and the words before it."""
+
+
+def _form(element: Element) -> tuple[str, bool]:
+    """The form of a branch, and whether it is a source that never changes."""
+    given = element.given
+    if element.kind == "load":
+        return next(letter for key, letter in _LOADS.items() if given.get(key) is not None), False
+    if element.kind not in DELIVERING:
+        return "", False
+    changes = "changing" if given.get("points") is not None or given.get("samples") is not None else "steady"
+    form = "sine" if given.get("sine") is not None else changes
+    return "current" if is_current_source(element) else form, form == "steady"
+
+
+_LOADS = {"power": "P", "current": "I", "resistance": "R"}
 
 
 def arrange(branches: Sequence[Branch], references: Sequence[str]) -> Arrangement:
     """Arrange a circuit of one branch at least."""
-    graph = _joined(branches, references)
-    distance = _distances(graph, branches, references)
-    level = _levels(branches, references, distance)
-    column = _columns(branches, references, distance, level)
-    lying = _lying(branches, column, level)
+    sketch = sketched(branches, references)
+    level = levels_of(sketch)
+    column = _columns(sketch, level)
+    lying = _lying(sketch, column, level)
     rows = _rows(branches, column, level, lying)
     places = [
         Place(each, column[each.name], (rows[each.a], rows[each.b]), lying.get(each.name, True)) for each in branches
@@ -99,115 +116,61 @@ def arrange(branches: Sequence[Branch], references: Sequence[str]) -> Arrangemen
     return Arrangement(places, rows, max(column.values()) + 1)
 
 
-def _joined(branches: Sequence[Branch], references: Sequence[str]) -> networkx.Graph:
-    """Nodes joined by branches, and those of the windings of one transformer by their core. What loads the circuit is
-    no way into it: it counts as a long one."""
-    graph = networkx.Graph()
-    first: dict[str, Branch] = {}
-    for branch in branches:
-        if not graph.has_edge(branch.a, branch.b) or not _loads(branch, references):
-            graph.add_edge(branch.a, branch.b, weight=DETOUR if _loads(branch, references) else 1)
-        other = first.setdefault(branch.owner, branch)
-        if branch is not other:
-            graph.add_edges_from([(other.a, branch.a), (other.a, branch.b)], weight=1)
-    return graph
+# --- columns ---------------------------------------------------------------------------------------------------------
 
 
-def _loads(branch: Branch, references: Sequence[str]) -> bool:
-    """Whether a branch only takes power: a load, a clamp, or a resistor to a reference."""
-    across = branch.a in references or branch.b in references
-    return branch.kind in ("load", "clamp") or (branch.kind == "resistor" and across)
+def _columns(sketch: Sketch, level: dict[str, int]) -> dict[str, int]:
+    """Branch -> column: part by part, in each sources or the windings that feed it first, loads and the windings that
+    lead out of it last, what is between by distance; then as written. Two alike, one on top of the other, share one."""
+    lead = {each.owner: sketch.part[each.a] for each in sketch.branches if each.index == 0}
 
+    def group(branch: Branch) -> tuple[int, int]:
+        part = sketch.part[branch.a]
+        if branch.kind == "transformer" and branch.index > 0 and lead[branch.owner] != part:
+            return part, 0
+        if branch.kind == "transformer" and branch.index == 0:
+            return part, 3
+        late = sketch.loads(branch) and max(sketch.distance[branch.a], sketch.distance[branch.b]) > 0
+        return part, 0 if sketch.feeds(branch) else (2 if late else 1)
 
-def _distances(graph: networkx.Graph, branches: Sequence[Branch], references: Sequence[str]) -> dict[str, int]:
-    """Branches between each node and the nearest source; what no source reaches counts from its first node."""
-    starts = [node for branch in branches if branch.kind in DELIVERING for node in (branch.a, branch.b)]
-    unreached = [next(iter(part)) for part in networkx.connected_components(graph) if not part & set(starts)]
-    found = networkx.multi_source_dijkstra_path_length(graph, {*starts, *unreached} or set(references))
-    return {node: int(found[node]) for node in graph}
+    def rank(branch: Branch) -> tuple[tuple[int, int], int, int]:
+        flat = level[branch.a] == level[branch.b]
+        return (
+            group(branch),
+            max(sketch.distance[branch.a], sketch.distance[branch.b]),
+            (1 if branch.kind in VALVES else (0 if flat else 2)),
+        )
 
-
-def _wanted(branch: Branch, references: Sequence[str], distance: dict[str, int]) -> tuple[int, float]:
-    """How many levels a branch's second node should lie above its first, and how much that matters."""
-    nearness = 1.0 + 1.0 / (1.0 + distance[branch.a] + distance[branch.b])
-    across = branch.a in references or branch.b in references
-    if branch.kind in VALVES:
-        return 1, 4.0
-    if branch.kind in (*DELIVERING, "transformer"):
-        return (-1 if across else 0), 0.3
-    if branch.kind == "capacitor":
-        return -1, 0.05
-    if _loads(branch, references):
-        return -1, 0.02
-    return 0, (0.5 if branch.kind == "resistor" else 1.0) * nearness
-
-
-def _levels(branches: Sequence[Branch], references: Sequence[str], distance: dict[str, int]) -> dict[str, int]:
-    """Node -> level, rising; the least weighted sum of deviations from what branches want.
-
-    A linear programme whose matrix is that of a network, so that its corners are whole numbers (A. J. Hoffman and
-    J. B. Kruskal, Integral boundary points of convex polyhedra, 1956).
-    """
-    import numpy as np
-    from scipy.optimize import linprog
-
-    nodes = {node: place for place, node in enumerate(distance)}
-    count, edges = len(nodes), len(branches)
-    cost = np.zeros(count + edges)
-    rows = np.zeros((2 * edges, count + edges))
-    limits = np.zeros(2 * edges)
-    for at, branch in enumerate(branches):
-        rise, cost[count + at] = _wanted(branch, references, distance)
-        for sign, row in ((1.0, 2 * at), (-1.0, 2 * at + 1)):
-            rows[row, nodes[branch.b]] += sign
-            rows[row, nodes[branch.a]] -= sign
-            rows[row, count + at] = -1.0
-            limits[row] = sign * rise
-    bounds = [(0.0, 0.0) if node in references else (-count, count) for node in nodes] + [(0.0, None)] * edges
-    found = linprog(cost, rows, limits, bounds=bounds, method="highs-ds")
-    return {node: round(float(found.x[place])) for node, place in nodes.items()}
-
-
-def _columns(
-    branches: Sequence[Branch], references: Sequence[str], distance: dict[str, int], level: dict[str, int]
-) -> dict[str, int]:
-    """Branch -> column, by distance from the sources, then as written, loads last; two alike, one on top of the other,
-    share it."""
-
-    def rank(branch: Branch) -> tuple[bool, bool, int, int]:
-        ends = distance[branch.a], distance[branch.b]
-        late = _loads(branch, references) and max(ends) > 0
-        return branch.kind not in DELIVERING, late, max(ends), sum(ends)
-
-    found: dict[str, int] = {}
-    open_below: dict[tuple[str, str, int], str] = {}
-    count = 0
-    for branch in sorted(branches, key=rank):
+    columns: list[Column] = []
+    open_ends: dict[tuple[str, str, int], Column] = {}
+    for branch in sorted(sketch.branches, key=rank):
         low, high = sorted((branch.a, branch.b), key=lambda node: level[node])
+        stands = level[low] != level[high]
         shared = None
-        if level[low] != level[high] and branch.kind not in DELIVERING:
-            shared = open_below.pop((branch.kind, low, 1), None) or open_below.pop((branch.kind, high, -1), None)
-        if shared is not None:
-            found[branch.name] = found[shared]
-            continue
-        found[branch.name] = count
-        count += 1
-        if level[low] != level[high]:
-            open_below.setdefault((branch.kind, high, 1), branch.name)
-            open_below.setdefault((branch.kind, low, -1), branch.name)
-    return found
+        if stands and not sketch.feeds(branch):
+            shared = open_ends.pop((branch.kind, low, 1), None) or open_ends.pop((branch.kind, high, -1), None)
+            if shared is not None and (shared.group != group(branch) or not shared.free(level[low], level[high])):
+                shared = None
+        if shared is None:
+            columns.append(shared := Column(group(branch)))
+        shared.add(branch.name, (branch.a, branch.b), (level[low], level[high]))
+        if stands:
+            open_ends[(branch.kind, high, 1)] = open_ends[(branch.kind, low, -1)] = shared
+    return {name: at for at, column in enumerate(ordered(columns, level)) for name in column.names}
 
 
-def _lying(branches: Sequence[Branch], column: dict[str, int], level: dict[str, int]) -> dict[str, bool]:
+def _lying(sketch: Sketch, column: dict[str, int], level: dict[str, int]) -> dict[str, bool]:
     """The branches that can lie in a row, since all else at one end stands left of them, all else at the other right;
     whether the left one is their first."""
+    branches = sketch.branches
     at: dict[str, dict[str, int]] = {}
     for branch in branches:
         for node in (branch.a, branch.b):
             at.setdefault(node, {})[branch.name] = column[branch.name]
     found = {}
     for branch in branches:
-        if branch.kind in DELIVERING or level[branch.a] != level[branch.b] or branch.a == branch.b:
+        fixed = sketch.feeds(branch) or branch.kind == "transformer" or branch.a == branch.b
+        if fixed or level[branch.a] != level[branch.b]:
             continue
         own = column[branch.name]
         ends = [[place for name, place in at[node].items() if name != branch.name] for node in (branch.a, branch.b)]
@@ -256,7 +219,7 @@ def _rows(
 
 
 def _meet(line: _Line, other: _Line) -> bool:
-    return min(line.columns) <= max(other.columns) + 1 and min(other.columns) <= max(line.columns) + 1
+    return min(line.columns) <= max(other.columns) and min(other.columns) <= max(line.columns)
 
 
 def _ordered(nodes: Sequence[str], branches: Sequence[Branch], line_of: dict[str, _Line]) -> list[_Line]:

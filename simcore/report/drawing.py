@@ -13,12 +13,12 @@ import matplotlib
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.patches import Polygon, Rectangle
+from matplotlib.patches import Polygon
 from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullLocator
 
 from simcore.figures.polynomials import Array
 from simcore.judge.outcome import State
-from simcore.report.diagram import BOX_HEIGHT, BOX_WIDTH, FAINT, LINE_HEIGHT, Diagram
+from simcore.report.diagram import FAINT, Diagram
 from simcore.report.panels import Bars, Panel, Picture, decades, shades
 from simcore.report.svg import COLOURS, DASHES, INK, LIMIT, SHADE, number, spread, value_range
 from simcore.report.sweep_panels import SweepPanel, SweepPicture
@@ -195,27 +195,20 @@ def diagram_bytes(diagram: Diagram, form: str) -> bytes:
         axes.set_axis_off()
         axes.set_xlim(0.0, diagram.width)
         axes.set_ylim(diagram.height, 0.0)
-        for stroke in diagram.strokes:
-            xs, ys = zip(stroke.start, stroke.end, strict=True)
-            if not stroke.heavy:
-                axes.plot(xs, ys, color="white", linewidth=3.5, zorder=1.0)
-            axes.plot(xs, ys, color=INK, linewidth=1.4 if stroke.heavy else 0.8, zorder=1.0)
+        for start, end in diagram.wires:
+            axes.plot(*zip(start, end, strict=True), color=INK, linewidth=0.9, zorder=1.0)
         for x, y in diagram.joints:
             axes.plot(x, y, "o", color=INK, markersize=3.6, zorder=2.0)
-        for each in diagram.boxes:
-            x, y = each.middle
-            corner = x - BOX_WIDTH / 2.0, y - BOX_HEIGHT / 2.0
-            axes.add_patch(
-                Rectangle(corner, BOX_WIDTH, BOX_HEIGHT, facecolor=SHADE, edgecolor=INK, linewidth=0.8, zorder=3.0)
-            )
-            if each.wedge:
-                axes.add_patch(Polygon(each.wedge, facecolor=INK, zorder=3.0))
-            for place, words in enumerate(each.words):
-                height = y + (place - (len(each.words) - 1) / 2.0) * LINE_HEIGHT
-                colour = INK if place == 0 else FAINT
-                axes.text(x, height, words, ha="center", va="center", color=colour, fontsize=7.5, zorder=4.0)
-        for x, y, words in diagram.names:
-            axes.text(x, y, words, fontsize=7.5, zorder=4.0)
+        for outline in (*diagram.others, *(each for mark in diagram.marks for each in mark.outlines)):
+            if outline.closed:
+                inside = INK if outline.filled else "white"
+                axes.add_patch(Polygon(outline.points, facecolor=inside, edgecolor=INK, linewidth=1.1, zorder=3.0))
+            else:
+                axes.plot(*zip(*outline.points, strict=True), color=INK, linewidth=1.1, zorder=3.0)
+        for words in (*diagram.names, *(each for mark in diagram.marks for each in mark.words)):
+            side = {"start": "left", "middle": "center", "end": "right"}[words.anchor]
+            colour = FAINT if words.faint else INK
+            axes.text(*words.at, words.words, ha=side, color=colour, fontsize=7.5, zorder=4.0)
         return _saved(figure, form)
 
 
