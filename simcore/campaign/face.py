@@ -54,7 +54,7 @@ def sweep_task(opened: Opened, what: What, studies: Sequence[str], figures: Sequ
 
 def sweep(task: Task, workers: int | None) -> Results:
     """All rows of a task, in the order of its variants."""
-    return Results(task.plan, list(rows(task, workers)), task.claims)
+    return Results(task.plan, list(rows(task, workers)), task.claims, task.opened)
 
 
 def rows(task: Task, workers: int | None) -> Iterator[Row]:

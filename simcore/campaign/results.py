@@ -13,11 +13,13 @@ from typing import Any
 
 import numpy as np
 
-from grammar.quantities import ANGLE, Dimension, Quantity, quantity, show, unit_of
+from grammar.quantities import ANGLE, Quantity, unit_of
+from simcore.campaign.pasting import pasted_lines, value_text
 from simcore.campaign.plan import Plan, Variant
 from simcore.campaign.rows import Claim, Found, Row
 from simcore.design.circuit import Change
 from simcore.judge.outcome import Outcome, State
+from simcore.opening import Opened
 
 CONFIDENCE = 0.95
 SOURCE = "Clopper, Pearson, Biometrika 26, 1934"
@@ -50,11 +52,12 @@ class PassRate:
 class Results:
     """A sweep solved.
 
-    plan: its variants; rows: one each, in their order; claims: what was found of them
+    plan: its variants; rows: one each, in their order; claims: what was found of them; opened: the design they vary
     """
 
-    def __init__(self, plan: Plan, rows: Sequence[Row], claims: Sequence[Claim]):
+    def __init__(self, plan: Plan, rows: Sequence[Row], claims: Sequence[Claim], opened: Opened | None = None):
         self.plan = plan
+        self.opened = opened
         self.rows = list(rows)
         found = {claim.key: claim for claim in claims}
         for row in self.rows:
@@ -128,6 +131,10 @@ class Results:
         found = [(claim, best.get(claim.key)) for claim in self.required]
         return [Worst(claim, None, None) if at is None else Worst(claim, at[1], at[2]) for claim, at in found]
 
+    def pasted(self, row: Row) -> list[str]:
+        """The variant of a row as lines of a description, to take the place of those of the same names."""
+        return pasted_lines(self.opened, self.plan.variant(row.number - 1))
+
     @property
     def counts(self) -> tuple[int, int, int]:
         """Variants that pass, that were solved and don't, and that were not solved."""
@@ -200,34 +207,8 @@ def faults_text(faults: Sequence[Change]) -> str:
     return ", ".join(f"{fault.verb} {fault.target}" for fault in faults) or "none"
 
 
-def exact(value: float, dimension: Dimension) -> str:
-    """A value as a description writes it, such that reading it gives the same number: short where that does."""
-    short = show(value, dimension)
-    number, _, unit = short.partition(" ")
-    if quantity(float(number), unit).value == value:
-        return short
-    unit = unit_of(dimension)
-    number = repr(math.degrees(value) if dimension == ANGLE else value)
-    return f"{number} {unit}" if unit else number
-
-
 def variant_words(variant: Variant) -> list[str]:
     """What a variant has, each as `name = value` or a fault."""
     return [f"{let} = {value_text(value)}" for let, value in variant.values.items()] + [
         f"{fault.verb} {fault.target}" for fault in variant.faults
     ]
-
-
-def value_text(value: Quantity | str) -> str:
-    """A let's value as a description writes it."""
-    return value if isinstance(value, str) else exact(value.value, value.dimension)
-
-
-def let_lines(variant: Variant) -> list[str]:
-    """A variant as lines that take the place of a description's own. A let inside a repeat or block has no such line,
-    and a fault belongs into a study: these are comments that say what to do."""
-    lines = []
-    for let, value in variant.values.items():
-        text = value_text(value)
-        lines.append(f'# bulkrail run --set "{let}={text}"' if "." in let or "[" in let else f"let {let} = {text}")
-    return lines + [f"# among a study's keys: {fault.verb} {fault.target}" for fault in variant.faults]

@@ -340,7 +340,8 @@ class _Builder:
     def _limit(
         self, full: str, expression: Expression, value: Quantity, place: Place, both: bool, sign: float
     ) -> float:
-        """A limit of a tolerance: a share of the value, or in the value's own unit."""
+        """A limit of a tolerance: a share of the value, or in the value's own unit; without what its last bit owes to
+        how it was worked out, so that 4700 uF less 20 % are 3.76 mF."""
         limit = self.scope.quantity(expression, place)
         share = limit.dimension == NONE and (value.dimension != NONE or _in_percent(expression))
         if not share and limit.dimension != value.dimension:
@@ -349,8 +350,10 @@ class _Builder:
             self.scope.wrong(f"the tolerance of {full} is in another unit than its value", cure, span_of(expression))
             raise Poisoned
         if share:
-            return value.value + (sign if both else 1.0) * limit.value * abs(value.value)
-        return value.value + sign * limit.value if both else limit.value
+            found = value.value + (sign if both else 1.0) * limit.value * abs(value.value)
+        else:
+            found = value.value + sign * limit.value if both else limit.value
+        return float(f"{found:.15g}")
 
     def _observes(self, flat: Flat, measures: Measures) -> dict[str, Observed]:
         found = {}

@@ -16,8 +16,8 @@ import numpy.typing as npt
 
 from grammar.mistakes import DescriptionError, Mistake
 from grammar.quantities import ANGLE, NONE, PREFIXES, Dimension, unit_of
+from simcore.campaign.pasting import value_text
 from simcore.campaign.plan import Plan
-from simcore.campaign.results import value_text
 from simcore.campaign.rows import claim_of
 from simcore.campaign.solver import Task
 from simcore.design.circuit import Circuit, PlannedList, PlannedRange, PlannedSweep, Requirement

@@ -11,7 +11,7 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from grammar.quantities import quantity, show
-from simcore.campaign.results import CONFIDENCE, SOURCE, PassRate, Results, Worst, let_lines, variant_words
+from simcore.campaign.results import CONFIDENCE, SOURCE, PassRate, Results, Worst, variant_words
 from simcore.campaign.rows import Found
 from simcore.campaign.sensitivity import Sensitivity
 from simcore.report.tables import INDENT, table
@@ -78,12 +78,16 @@ def _amount(value: float, unit: str, digits: int = _DIGITS) -> str:
 
 def _variants(results: Results, worst: Sequence[Worst]) -> list[str]:
     """The variants in which worst cases lie, as lines to paste."""
-    numbers = sorted({each.row.number for each in worst if each.row is not None})
+    rows = {each.row.number: each.row for each in worst if each.row is not None}
     lines = []
-    for number in numbers:
-        pasted = let_lines(results.plan.variant(number - 1)) or ["# as described"]
-        lines += [f"{INDENT}variant {number}:", *(INDENT * 2 + line for line in pasted)]
-    return lines + [""] if lines else []
+    for number, row in sorted(rows.items()):
+        pasted = results.pasted(row)
+        if pasted:
+            lines += [f"{INDENT}variant {number}:", *(INDENT * 2 + line for line in pasted)]
+        else:
+            lines += [f"{INDENT}variant {number} is the circuit as described."]
+    how = f"{INDENT}Pasted over the lines of the same names, these make the variant:"
+    return [how, *lines, ""] if lines else []
 
 
 def _unsolved(results: Results) -> list[str]:

@@ -10,7 +10,7 @@ import pytest
 from small_design import DESIGN
 
 import simcore
-from simcore.campaign.results import exact
+from simcore.campaign.pasting import exact
 from simcore.campaign.rows import Row, encode, found_of
 from simcore.campaign.solver import Solver, Task
 from simcore.campaign.sweeping import solved_rows

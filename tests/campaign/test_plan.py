@@ -11,9 +11,11 @@ from small_design import DESIGN
 
 import simcore
 from grammar.quantities import ANGLE, FARAD, NONE, OHM, VOLT, Quantity, quantity
+from grammar.reader import read_expression
 from simcore.campaign.draws import drawn, fractional_corners
+from simcore.campaign.pasting import exact
 from simcore.campaign.plan import Plan, plan_of
-from simcore.campaign.results import exact, faults_text
+from simcore.campaign.results import faults_text
 from simcore.design.circuit import LetValue
 from simcore.design.depends import asked_names, structure
 
@@ -118,8 +120,10 @@ def test_what_is_wrong_with_a_sweep_is_said(line: str, what: str) -> None:
 @pytest.mark.parametrize("number", [0.00376, 4700e-6 * 0.8, 1.0 / 3.0, 12.0, 1e-12, 123456.789])
 @pytest.mark.parametrize("dimension", [FARAD, VOLT, OHM, NONE])
 def test_a_value_as_text_is_the_same_number(number: float, dimension) -> None:
-    value, _, unit = exact(number, dimension).partition(" ")
+    text = exact(number, dimension)
+    value, _, unit = text.partition(" ")
     assert quantity(float(value), unit) == Quantity(number, dimension)
+    assert read_expression(text, text)[1] == []
 
 
 def test_an_angle_as_text_is_in_degrees() -> None:
