@@ -97,6 +97,8 @@ _COMPOUND = {I2T: "A^2 s"}
 _COMPOUND |= {KELVIN_PER_WATT: "K/W", WATT_PER_KELVIN: "W/K", JOULE_PER_KELVIN: "J/K", VOLT_PER_SECOND: "V/s"}
 _NAMES = {dimension: name for name, dimension in UNITS.items() if name != "VA"} | _COMPOUND
 _SHOWN_DIGITS = 5
+_HOURS = 36_000.0
+"""s: a time is shown in hours from here on."""
 _LONGEST_UNIT = 40
 
 
@@ -177,6 +179,8 @@ def show(value: float, dimension: Dimension, digits: int = _SHOWN_DIGITS) -> str
     """A value for people: rounded, with the SI prefix that brings it to 1 to 999 where its unit takes one."""
     if dimension == ANGLE:
         return f"{math.degrees(value):.{digits}g} deg"
+    if dimension == SECOND and abs(value) >= _HOURS:
+        return f"{_plain(value / 3600.0, digits)} h"
     unit = unit_of(dimension)
     if not unit:
         return _plain(value, digits)

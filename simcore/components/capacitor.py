@@ -5,10 +5,20 @@ Knows its keys, and nothing of text, graphs or solvers.
 
 from __future__ import annotations
 
-from grammar.quantities import AMPERE, FARAD, HENRY, HERTZ, KELVIN, OHM, VOLT
+from typing import Any
+
+from grammar.quantities import AMPERE, FARAD, HENRY, HERTZ, KELVIN, KELVIN_PER_WATT, OHM, SECOND, VOLT
 from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
+
+
+def _check(given: dict[str, Any]) -> list[tuple[str | None, str, str]]:
+    point = given.get("endurance")
+    if isinstance(point, tuple) and not 200.0 <= point[1] <= 1000.0:
+        cure = "Write the core's temperature behind the @: `5000 h @ 105 degC`."
+        return [("endurance", "endurance holds at no temperature that a capacitor could have", cure)]
+    return []
 
 
 def _build(frame: Frame, part: Part) -> None:
@@ -51,8 +61,13 @@ CAPACITOR = Kind(
             rating=True,
             bare=True,
         ),
+        Key("rated_temperature", "core temperature it stands", KELVIN, low=0.0, open_low=True, rating=True),
+        Key("endurance", "life at a core temperature", SECOND, form="point", at=KELVIN, low=0.0, open_low=True),
+        Key("thermal_resistance", "thermal resistance from core to ambient", KELVIN_PER_WATT, low=0.0),
+        Key("temperature", "core temperature it runs at", KELVIN, low=50.0, high=1000.0),
         Key("ambient", "temperature around it, where it differs from the circuit's", KELVIN, low=0.0, open_low=True),
     ),
     value_key="capacitance",
+    check=_check,
     build=_build,
 )

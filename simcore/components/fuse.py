@@ -41,7 +41,7 @@ def _build(frame: Frame, part: Part) -> None:
     def law(voltage: Value, before: Value) -> tuple[Value, Value, dict[str, Value]]:
         current = voltage / resistance
         after = (before + frame.step * current * current) / (1.0 + frame.step * rate)
-        return current, after, {}
+        return current, after, {"heat": after}
 
     melting = frame.parameter(limit, positive=True)
     frame.carrying(part, weights, law, quantity="heat", small=_SMALL * melting, scale=frame.small_voltage)

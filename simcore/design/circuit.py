@@ -102,7 +102,7 @@ class Requirement:
     relation: <= >= < > between, ratings or within; bound and upper are figure expressions that may hold figures at
     other studies; elements: those that `ratings` is about, () for all; limits: the table that `within` names; wording:
     the text as tidy writes it, for reports; dimension: of the figure; written: the figure as the text has it, "" where
-    there is none
+    there is none; temperature: whether what is in K is a temperature and no difference of such
     """
 
     study: str
@@ -118,6 +118,7 @@ class Requirement:
     span: Span | None = field(default=None, compare=False, repr=False)
     dimension: Dimension = NONE
     written: str = ""
+    temperature: bool = False
 
 
 @dataclass(frozen=True)

@@ -19,8 +19,12 @@ from simcore.design.circuit import Element
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, in_turn, named, span_of, suggest
 from simcore.figures.catalogue import FIGURES, SIGNALS, TABLED, Measure, example_of, form_of
 
-JUNCTIONS = ("diode", "thyristor")
 SOURCES = ("source", "three_phase")
+OF_KINDS = {"junction": ("diode", "thyristor"), "capacitor": ("capacitor",), "fuse": ("fuse",), "source": SOURCES}
+"""Kinds that a measure of some sort of element takes; an `element` is of any."""
+_HEATED = ("thermal_resistance", "temperature")
+NEEDED = {"heat": [("melting_i2t",)], "core_temperature": [_HEATED], "life": [("endurance",), _HEATED]}
+"""Keys, one of each group, without which an element has nothing to measure."""
 DEEPEST_OBSERVE = 32
 """Observes that may stand in one another: a signal is formed by going down all of them."""
 
@@ -349,12 +353,17 @@ class Measures:
             cure = f"Name one of them, as in `{by}({local}.{first})`."
             self._wrong(f"{local} has several windings or phases", cure, name.span)
             raise Poisoned
-        allowed = {"junction": JUNCTIONS, "source": SOURCES}.get(sort)
+        allowed = OF_KINDS.get(sort)
         if allowed is not None and element.kind not in allowed:
             self._wrong(
                 f"{by} is of a {allowed[0]}, and {local} is a {element.kind}", f"Name a {allowed[0]}.", name.span
             )
             raise Poisoned
+        for keys in NEEDED.get(by, ()):
+            if all(element.given.get(key) is None for key in keys):
+                cure = "Give its " + " or ".join(f"`{key}`" for key in keys) + "."
+                self._wrong(f"nothing is said of {local} that its {by} could follow from", cure, name.span)
+                raise Poisoned
         return full
 
     def _node(self, local: str, place: Place) -> str | None:

@@ -20,7 +20,7 @@ from simcore.design.sensing import write_sensed
 from simcore.design.soundness import parts_of
 from simcore.design.studies import STUDY_MEANINGS
 
-TEMPERATURES = ("temperature", "data_temperature", "ambient", "rated_junction_temperature")
+TEMPERATURES = ("temperature", "data_temperature", "ambient", "rated_junction_temperature", "rated_temperature")
 """Keys that hold a temperature; other values in K are differences or constants."""
 
 
@@ -149,7 +149,8 @@ def value_text(key: Key, value: Any, unit: str = "") -> str:
         values, measure, of = value
         return " ".join([" : ".join(show(each, dimension) for each in values), *([of] if of else []), measure])
     if key.form == "point":
-        return show(value[0], dimension) + (f" @ {show(value[1], _at(key))}" if value[1] is not None else "")
+        at = celsius(value[1]) if _at(key) == KELVIN else show(value[1], _at(key)) if value[1] is not None else ""
+        return show(value[0], dimension) + (f" @ {at}" if at else "")
     if key.form == "curve":
         return ", ".join(f"{show(each, dimension)} @ {show(at, _at(key))}" for each, at in value)
     if key.form == "series":

@@ -21,6 +21,7 @@ from simcore.design.measures import Measures, Resolved
 from simcore.design.rewrite import eaches, put_element, rename
 from simcore.design.scopes import Place, Poisoned, Scope, at_word, named, span_of, suggest
 from simcore.design.values import EXPRESSIONS
+from simcore.figures.catalogue import ABSOLUTE, TEMPERATURES
 
 MOST_REQUIREMENTS = 20_000
 
@@ -113,9 +114,21 @@ class Requirements:
                 span=require.span,
                 dimension=NONE if resolved[0] is None else resolved[0].dimension,
                 written="" if indexed[0] is None else write_expression(indexed[0]),
+                temperature=self._is_temperature(parts[0]),
             )
             for name in names
         ]
+
+    def _is_temperature(self, figure: Expression | None) -> bool:
+        """Of a temperature its mean, peak and valley are temperatures too; its rms, ripple and harmonics are not."""
+        if not isinstance(figure, Call) or not figure.arguments:
+            return False
+        of = figure.arguments[0]
+        if isinstance(of, Name) and figure.name in ABSOLUTE:
+            of = self.measures.observed().get(write_expression(of), of)
+        return figure.name in TEMPERATURES or (
+            figure.name in ABSOLUTE and isinstance(of, Call) and of.name == "temperature"
+        )
 
     def _compared(
         self, figure: Expression, bound: Expression | None, upper: Expression | None, place: Place

@@ -29,7 +29,7 @@ from grammar.description import (
     Setting,
     Text,
 )
-from grammar.quantities import AMPERE, ANGLE, Dimension, Quantity, show, unit_of
+from grammar.quantities import AMPERE, ANGLE, KELVIN, Dimension, Quantity, show, unit_of
 from grammar.spans import Span
 from simcore.components.kind import Key, Kind
 from simcore.design.scopes import Place, Poisoned, Scope, Sheet, span_of, suggest
@@ -228,7 +228,8 @@ class Reader:
             return value, self._other(f"what stands behind @ in {key.name}", key.at, given.at, place, found)
         if key.bare and isinstance(given, EXPRESSIONS):
             return self._number(key, given, place, found), None
-        cure = f"Say where it holds, as in `{key.name} = 1 {unit_of(key.dimension)} @ 1 {unit_of(key.at)}`."
+        at = "105 degC" if key.at == KELVIN else f"1 {unit_of(key.at)}"
+        cure = f"Say where it holds, as in `{key.name} = 1 {unit_of(key.dimension)} @ {at}`."
         self._wrong(f"{key.name} takes a point of the curve", cure, span_of(given), found)
         raise Poisoned
 

@@ -26,7 +26,7 @@ class Measure:
 
     arguments: what each stands for:
         place (a node, `a -> b` or an element), branch (an element, a winding or a phase), element (any element, winding
-        or phase), junction (a diode or thyristor), source (a source, a three_phase set or a phase of one), signal,
+        or phase), junction (a diode or thyristor), capacitor, fuse, source (a source, a three_phase set or a phase of one), signal,
         level (a value in the signal's unit), count (a whole number from 1 on)
     result: the dimension of the result, from that of the signal (NONE where there is none)
     wants: the dimension that the signal must have, None for any
@@ -52,6 +52,9 @@ SIGNALS = _table(
     ),
     Measure("power", ("element",), _fixed(WATT), "power that an element takes"),
     Measure("temperature", ("element",), _fixed(KELVIN), "temperature at which an element runs"),
+    Measure(
+        "heat", ("fuse",), _fixed(I2T), "squared current that has added up in a fuse; it melts at its melting_i2t"
+    ),
 )
 
 FIGURES = _table(
@@ -76,12 +79,19 @@ FIGURES = _table(
     Measure("conduction_angle", ("junction",), _fixed(ANGLE), "angle of a period in which a diode conducts"),
     Measure("reverse_peak", ("junction",), _fixed(VOLT), "largest reverse voltage"),
     Measure("junction_temperature", ("junction",), _fixed(KELVIN), "temperature of the junction"),
+    Measure("core_temperature", ("capacitor",), _fixed(KELVIN), "temperature of the core"),
+    Measure("life", ("capacitor",), _fixed(SECOND), "life to expect, halved by each 10 K of core temperature"),
     Measure("stored_energy", ("element",), _fixed(JOULE), "largest energy stored", optional=True),
     Measure("efficiency", ("source", "element"), _fixed(NONE), "mean power of a load over that of a source"),
     Measure(
         "utilisation", ("element", "element"), _fixed(NONE), "power of a load over the apparent power of a winding"
     ),
 )
+
+ABSOLUTE = ("mean", "peak", "valley")
+"""Figures of a temperature that are temperatures and no differences of such."""
+TEMPERATURES = ("junction_temperature", "core_temperature")
+"""Figures that are."""
 
 TABLED = ("harmonics",)
 """What stands before `within` only: compared with a table of limits, no number of its own."""
@@ -92,6 +102,8 @@ _WORDS = {
     "branch": ("an element, a winding or a phase", "X"),
     "element": ("an element", "X"),
     "junction": ("a diode", "D1"),
+    "capacitor": ("a capacitor", "C1"),
+    "fuse": ("a fuse", "F1"),
     "source": ("a source", "SOURCE"),
     "signal": ("a signal", "x"),
     "signal or branch": ("a current or an element", "X"),

@@ -78,6 +78,8 @@ def _of_circuit(call: Call, record: Record) -> Signal:
         return record.between(name) if name in record.nodes else record.voltage(name)
     if call.name == "current":
         return record.current(name)
+    if call.name == "heat":
+        return record.heat(name)
     return record.power(name) if call.name == "power" else record.temperature(name)
 
 

@@ -12,7 +12,7 @@ from typing import Protocol
 
 import numpy as np
 
-from grammar.quantities import AMPERE, KELVIN, VOLT
+from grammar.quantities import AMPERE, I2T, KELVIN, VOLT
 from simcore.design.circuit import Circuit, Element, PlannedStudy, Port
 from simcore.figures.figure import CHANCE, CHANCE_OF_STEPS, Figure
 from simcore.figures.polynomials import Array
@@ -165,6 +165,13 @@ class Record:
             ("temperature", element),
             lambda: Signal.through(self.times, self.solution.temperature(element), KELVIN, self.rough),
         )
+
+    def heat(self, name: str) -> Signal:
+        """Squared current that has added up in a fuse, less what it has lost, A^2 s."""
+        shown = self.solution.shown(name, "heat")
+        if shown is None:
+            raise UnknownName(f"nothing adds up in {name}")
+        return self.keep(("heat", name), lambda: Signal.through(self.times, shown, I2T, self.rough))
 
     # --- windows -----------------------------------------------------------------------------------------------------
 

@@ -125,6 +125,7 @@ STRESSES: dict[str, tuple[Stress, ...]] = {
     "capacitor": (
         replace(_PEAK_VOLTAGE, rating="rated_voltage"),
         Stress("ripple current", _of_current(_alternating), "rated_ripple_current"),
+        Stress("core temperature", _of_name(element_figures.core_temperature), "rated_temperature"),
     ),
     "inductor": (_RMS, Stress("peak current", _of_current(measure.peak))),
     "transformer": (

@@ -18,7 +18,6 @@ from simcore.figures.record import Record
 from simcore.figures.stresses import Stress, rated_elements, rated_stresses
 from simcore.judge.held import Pair, Verdict, side
 from simcore.judge.outcome import State
-
 NO_TEMPERATURE = "nothing says how hot it gets: give its thermal_resistance, or the temperature it runs at"
 
 
@@ -40,6 +39,7 @@ def _claims(circuit: Circuit, requirement: Requirement) -> list[_Claim]:
                 replace(
                     _worded(requirement, f"{element.name}: {stress.title} ({_rated(element, stress)})"),
                     dimension=KINDS[element.kind].key[stress.rating].dimension,
+                    temperature=KINDS[element.kind].key[stress.rating].dimension == KELVIN,
                 ),
                 element,
                 stress,

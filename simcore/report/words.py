@@ -8,10 +8,9 @@ from __future__ import annotations
 import math
 from collections.abc import Iterable, Sequence
 
-from grammar.description import Call
 from grammar.quantities import AMPERE, KELVIN, show
 from grammar.writer import write_expression
-from simcore.design.circuit import Requirement
+from simcore.figures.catalogue import ABSOLUTE
 from simcore.figures.figure import Figure
 from simcore.figures.overview import Row
 from simcore.judge.bill import BillLine
@@ -27,10 +26,6 @@ CELSIUS = 273.15
 VERDICT_HEADINGS = ("verdict", "study", "requirement", "required", "found", "margin")
 BILL_HEADINGS = ("element", "stress", "worst in", "found", "rated", "unused", "suggested")
 HARMONIC_HEADINGS = ("verdict", "order", "limit", "found", "margin")
-
-
-ABSOLUTE = ("mean", "peak", "valley")
-"""Figures of a temperature that are temperatures and no differences of such."""
 
 
 def value(figure: Figure, absolute: bool = False) -> str:
@@ -86,19 +81,9 @@ def verdict_cells(verdict: Verdict) -> list[str]:
         verdict.requirement.study,
         subject(verdict),
         required(verdict),
-        "-" if verdict.figure is None else with_bound(verdict.figure, _absolute(verdict.requirement)),
+        "-" if verdict.figure is None else with_bound(verdict.figure, verdict.requirement.temperature),
         margin,
     ]
-
-
-def _absolute(requirement: Requirement) -> bool:
-    """Whether what is in K is a temperature: a rating, or a figure that is one."""
-    figure = requirement.figure
-    if not isinstance(figure, Call):
-        return figure is None
-    argument = figure.arguments[0] if figure.arguments else None
-    of_one = isinstance(argument, Call) and argument.name == "temperature"
-    return figure.name == "junction_temperature" or (figure.name in ABSOLUTE and of_one)
 
 
 def subject(verdict: Verdict) -> str:
@@ -115,7 +100,7 @@ def required(verdict: Verdict) -> str:
     """The limit or limits of a verdict."""
     if verdict.limit is None:
         return "-"
-    absolute = _absolute(verdict.requirement)
+    absolute = verdict.requirement.temperature
     if verdict.upper is not None:
         return f"{value(verdict.limit, absolute)} to {value(verdict.upper, absolute)}"
     relation = "<=" if verdict.requirement.limits is not None else verdict.requirement.relation

@@ -37,7 +37,7 @@ class Reason(Enum):
         "ask for more accuracy, or look for parts whose values lie far out of proportion to the others",
     )
     RUNAWAY = (
-        "a junction finds no temperature at which its loss is carried away",
+        "thermal runaway: a junction finds no temperature at which its loss is carried away",
         "give it a smaller thermal_resistance, less leakage or less voltage",
     )
     WORK = (

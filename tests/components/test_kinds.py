@@ -28,7 +28,7 @@ REPRESENTATIVES: dict[str, list[str]] = {
     "resistor": ["a -> b: resistor X, 10 Ohm"],
     "capacitor": [
         "a -> b: capacitor X, 100 uF",
-        "a -> b: capacitor X, 100 uF, series_resistance = 1 Ohm, series_inductance = 1 mH, leakage_resistance = 1 kOhm",
+        "a -> b: capacitor X, 100 uF, series_resistance = 1 Ohm, series_inductance = 1 mH, leakage_resistance = 1 kOhm, thermal_resistance = 20 K/W",
     ],
     "inductor": [
         "a -> b: inductor X, 10 mH, series_resistance = 1 Ohm",

@@ -74,6 +74,10 @@ TABLE: dict[str, dict[str, tuple[str, Any]]] = {
         "initial_voltage": ("-5 V", -5.0),
         "rated_voltage": ("25 V", 25.0),
         "rated_ripple_current": ("2 A @ 100 Hz", (2.0, 100.0)),
+        "rated_temperature": ("105 degC", 378.15),
+        "endurance": ("5000 h @ 105 degC", (1.8e7, 378.15)),
+        "thermal_resistance": ("20 K/W", 20.0),
+        "temperature": ("70 degC", 343.15),
         "ambient": ("60 degC", 333.15),
     },
     "inductor": {

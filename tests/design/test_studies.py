@@ -58,7 +58,7 @@ def test_the_worst_phase_names_a_figure() -> None:
         ("settled, period = 1 : 2", "period takes one value"),
         ("settled, period = worst for peak(voltage(p))", "`worst for` is for an angle"),
         ("settled, angle = worst for voltage(p)", "`worst for` needs a figure"),
-        ("transient, duration = 1e10 s", "duration is 1e+10 s, which it can't be"),
+        ("transient, duration = 1e10 s", "duration is 2.7778e+06 h, which it can't be"),
         ("transient, duration = 1 h", "the study spans 1.8e+05 periods of e"),
         ("transient, duration = 1 s, record_every = 1 ns", "the study would record too many rows"),
         ("settled, record_every = 1 fs", "the study would record too many rows"),

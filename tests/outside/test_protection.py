@@ -114,6 +114,15 @@ def test_fuse_that_loses_heat(amperes: float) -> None:
     close(solved(carried(amperes, 2.0 * seconds)), "time_until_below(current(F), 1 A)", seconds, 2e-4 * max(enlarged, 1.0))
 
 
+def test_heat_of_a_fuse_that_loses_some() -> None:
+    """H = i^2 tau (1 - exp(-t / tau)), seen as a signal: at 8 A for half a second. T2."""
+    tau = 50.0 / 12.5**2
+    result = solved(carried(8.0, 0.5))
+    amperes = 8.0 / (1.0 + 1e-6)
+    close(result, "peak(heat(F))", amperes**2 * tau * -math.expm1(-0.5 / tau), 1e-4)
+    close(result, "mean(heat(F))", amperes**2 * tau * (1.0 + tau / 0.5 * math.expm1(-0.5 / tau)), 1e-4)
+
+
 def test_fuse_carries_its_rated_current_for_good() -> None:
     """1.2 times the rated one for two hundred time constants: warm, and whole."""
     result = solved(carried(12.0, 60.0))
