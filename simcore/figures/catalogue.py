@@ -26,8 +26,8 @@ class Measure:
 
     arguments: what each stands for:
         place (a node, `a -> b` or an element), branch (an element, a winding or a phase), element (any element, winding
-        or phase), junction (a diode or thyristor), capacitor, fuse, source (a source, a three_phase set or a phase of one), signal,
-        level (a value in the signal's unit), count (a whole number from 1 on)
+        or phase), junction (a diode or thyristor), capacitor, fuse, source (a source, a three_phase set or a phase of
+        one), signal, level (a value in the signal's unit), count (a whole number from 1 on)
     result: the dimension of the result, from that of the signal (NONE where there is none)
     wants: the dimension that the signal must have, None for any
     optional: with no argument at all it is of the whole circuit

@@ -15,7 +15,6 @@ from simcore.figures.record import Part, Record
 from simcore.figures.signal import Signal
 from simcore.figures.stored import stored_energy, total_stored_energy
 
-
 _HALVES = 10.0
 """K by which a capacitor's life is halved."""
 

@@ -18,6 +18,7 @@ from simcore.figures.record import Record
 from simcore.figures.stresses import Stress, rated_elements, rated_stresses
 from simcore.judge.held import Pair, Verdict, side
 from simcore.judge.outcome import State
+
 NO_TEMPERATURE = "nothing says how hot it gets: give its thermal_resistance, or the temperature it runs at"
 
 
