@@ -1,57 +1,18 @@
-"""A variant in a sweep is the same variant solved alone, to the last bit; nothing of a sweep's course shows in it."""
+"""Nothing of a sweep's course shows in its rows: neither blocks, nor workers, nor what was solved before."""
 
 from __future__ import annotations
 
-import random
 import re
 from pathlib import Path
 
-import pytest
 from small_design import DESIGN
 
 import simcore
-from simcore.campaign.pasting import exact
 from simcore.campaign.rows import Row, encode, found_of
 from simcore.campaign.solver import Solver, Task
 from simcore.campaign.sweeping import solved_rows
 from simcore.campaign.workers import Here, Processes
-from simcore.design.circuit import LetValue
 from simcore.equations.kernel import KernelCache
-
-LIBRARY = simcore.library_folder()
-WORKED = {
-    "bench_supply": (["full_load"], {"V_sec": (10.0, 14.0), "C_res": (1e-3, 1e-2), "R_load": (8.0, 60.0)}),
-    "doubler_half_wave": (None, None),
-    "centre_tap": (None, None),
-}
-
-
-def spreads(design: simcore.Design) -> dict[str, tuple[float, float]]:
-    """Half to one and a half times each let's value."""
-    lets: dict[str, LetValue] = design.circuit.lets
-    return {
-        name: (0.7 * let.value.value, 1.4 * let.value.value)
-        for name, let in lets.items()
-        if not isinstance(let.value, str) and let.value.value != round(let.value.value, -9)
-    }
-
-
-@pytest.mark.parametrize("name", WORKED)
-def test_a_variant_in_a_sweep_is_that_variant_alone(name: str) -> None:
-    design = simcore.read(LIBRARY / f"{name}.rect")
-    studies, ends = WORKED[name]
-    studies = studies or design.studies[:1]
-    draw = random.Random(name)
-    ends = ends or spreads(design)
-    assert ends, "nothing to vary"
-    variants = [{let: draw.uniform(*limits) for let, limits in ends.items()} for _ in range(3)]
-    rows = design.sweep(variants, studies=studies, workers=1).rows
-    assert len(rows) == 3
-    for values, row in zip(variants, rows, strict=True):
-        texts = {let: exact(value, design.circuit.lets[let].value.dimension) for let, value in values.items()}
-        alone = design.variant(**texts).run(studies[0])
-        found = tuple(found_of(verdict) for verdict in alone.verdicts)
-        assert found and encode([row], []) == encode([Row(row.number, "solved", found)], [])
 
 
 def test_a_fault_is_what_a_study_that_begins_with_it_gives(design: simcore.Design) -> None:

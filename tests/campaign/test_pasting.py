@@ -2,16 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
 from pathlib import Path
 
 import pytest
+from pasted_text import pasted
 from small_design import DESIGN
 
 import simcore
-from grammar.description import Description
-from grammar.layout import write
-from grammar.reader import read_text
 from simcore.campaign.rows import found_of
 
 EXTRA = """
@@ -30,15 +27,6 @@ repeat k from 1 to 2 {
 }
 sweep copies: extremes of I[1..2], studies = [work]
 """
-
-
-def pasted(text: str, lines: Iterable[str]) -> str:
-    """A text in which statements took the place of those of the same kind and name."""
-    new = {(type(each), each.name): each for each in read_text("\n".join(lines), "lines")[0].statements}
-    statements = read_text(text, "text")[0].statements
-    left = [new.pop((type(each), getattr(each, "name", None)), each) for each in statements]
-    assert not new, "every line has one that it takes the place of"
-    return write(Description(tuple(left)))
 
 
 @pytest.mark.parametrize("name", ["loads", "corners", "spread", "broken", "line"])
