@@ -19,8 +19,8 @@ from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullLocato
 from simcore.figures.polynomials import Array
 from simcore.judge.outcome import State
 from simcore.report.diagram import FAINT, Diagram
-from simcore.report.panels import Bars, Panel, Picture, decades, shades
-from simcore.report.svg import COLOURS, DASHES, INK, LIMIT, SHADE, number, spread, value_range
+from simcore.report.panels import Bars, Curve, Panel, Picture, decades, shades
+from simcore.report.svg import COLOURS, DASHES, INK, LIMIT, SHADE, label_lines, number, placed, value_range
 from simcore.report.sweep_panels import SweepPanel, SweepPicture
 
 WIDTH, PANEL, STRIP, EDGES = 8.0, 2.2, 0.16, 1.1
@@ -79,11 +79,25 @@ def _panel(axes: Axes, panel: Panel, picture: Picture) -> None:
     for curve, colour, dash in zip(panel.curves, COLOURS, DASHES, strict=False):
         style: object = (0.0, tuple(float(part) for part in dash.split())) if dash else "solid"
         axes.plot(curve.times, curve.values, color=colour, linewidth=1.2, linestyle=style)
+        _noted(axes, curve, colour, picture.judged or picture.span)
     points = PANEL * 72.0 / (high - low)
-    heights = spread([-float(curve.values[-1]) * points for curve in panel.curves], LABEL_POINTS)
+    sizes = [LABEL_POINTS * label_lines(curve) for curve in panel.curves]
+    span = (-high * points, -low * points)
+    heights = placed([-float(curve.values[-1]) * points for curve in panel.curves], sizes, span)
     for curve, colour, height in zip(panel.curves, COLOURS, heights, strict=False):
         place = (picture.span[1], -height / points)
-        axes.annotate(curve.label, place, (5, -3), textcoords="offset points", color=colour, annotation_clip=False)
+        for step, words in enumerate((curve.label, *(curve.noted.words if curve.noted else ()))):
+            shift, size = (5.0, -3.0 - step * LABEL_POINTS), (9.0 if step == 0 else 7.5)
+            axes.annotate(
+                words, place, shift, textcoords="offset points", color=colour, fontsize=size, annotation_clip=False
+            )
+
+
+def _noted(axes: Axes, curve: Curve, colour: str, window: tuple[float, float]) -> None:
+    """The mean as a fine line, the highest and lowest point as dots."""
+    if curve.noted is not None:
+        axes.hlines([curve.noted.mean], *window, color=colour, linewidth=0.6, linestyle=(0.0, (8.0, 2.0, 1.0, 2.0)))
+        axes.plot(*zip(*curve.noted.points, strict=True), "o", color=colour, markersize=3.6)
 
 
 def _strips(axes: Axes, strips: Sequence[tuple[str, Array]]) -> None:

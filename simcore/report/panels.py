@@ -6,7 +6,7 @@ Knows solved studies and scales; draws nothing.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,12 +14,13 @@ import numpy as np
 from grammar.quantities import AMPERE, JOULE, KELVIN, NONE, OHM, PREFIXES, SECOND, VOLT, WATT, Dimension, unit_of
 from simcore.design.overview import sentence
 from simcore.figures import measure
-from simcore.figures.overview import VALVES
+from simcore.figures.overview import VALVES, Row
 from simcore.figures.polynomials import Array
 from simcore.figures.record import Record
 from simcore.judge.harmonics import Harmonic, harmonics, tabled_element, unfit
 from simcore.proof import Proof, ProvedStudy
 from simcore.report.traces import heading, recorded, traces
+from simcore.report.words import row_value
 
 QUANTITIES = {
     VOLT: "voltage",
@@ -34,17 +35,31 @@ MOST_POINTS = 1500
 """Of a curve, so that a picture stays small; extremes are kept."""
 MOST_CURVES = 6
 """In one panel."""
+MOST_NOTED = 2
+"""Curves of a panel whose figures are marked: more would be a muddle."""
+NOTED = ("mean", "rms", "peak", "valley", "ripple")
 MOST_SPANS = 200
 """Of a diode: where it conducts more often, no picture could show when."""
 
 
 @dataclass(frozen=True)
+class Noted:
+    """The figures of a judged curve in its panel's units: the mean, the points of its largest magnitude and of its
+    lowest value as (time, value), and all in words."""
+
+    mean: float
+    points: Sequence[tuple[float, float]]
+    words: Sequence[str]
+
+
+@dataclass(frozen=True)
 class Curve:
-    """A line: times and values in the panel's units, shape (n,) each."""
+    """A line: times and values in the panel's units, shape (n,) each; noted: where its figures are marked."""
 
     label: str
     times: Array
     values: Array
+    noted: Noted | None = None
 
 
 @dataclass(frozen=True)
@@ -89,18 +104,20 @@ def picture_of(name: str, study: ProvedStudy) -> Picture | None:
     start, end = float(record.times[0]) * scale, float(record.times[-1]) * scale
     window = tuple(each * scale for each in record.solution.window)
     whole = abs(window[1] - window[0] - (end - start)) <= 1e-9 * (end - start)
+    periodic = study.study.kind == "settled" or not whole
+    rows = {row.name: row for row in study.signals} if periodic else {}
     return Picture(
         f"{name}: {sentence(study.study)}",
         f"time in {prefix}s",
         (start, end),
         None if whole else (window[0], window[1]),
-        _panels(record, scale),
+        _panels(record, scale, rows, (window[0], window[1])),
         {element: spans * scale for element, spans in _conduction(record).items()},
     )
 
 
-def _panels(record: Record, scale: float) -> list[Panel]:
-    """One panel a unit, split where it would hold too many curves."""
+def _panels(record: Record, scale: float, rows: Mapping[str, Row], window: tuple[float, float]) -> list[Panel]:
+    """One panel a unit, split where it would hold too many curves. rows: figures to mark, where curves are few."""
     by_unit: dict[Dimension, list[str]] = {}
     signals = recorded(record)
     for name, signal in signals.items():
@@ -113,13 +130,27 @@ def _panels(record: Record, scale: float) -> list[Panel]:
             columns = {name: sampled.columns[heading(name, dimension)] for name in chosen}
             prefix = prefix_of(max(float(np.abs(column).max()) for column in columns.values()), dimension)
             unit = prefix + unit_of(dimension)
-            curves = [
-                Curve(name, *_thinned(sampled.times * scale, column / PREFIXES[prefix]))
-                for name, column in columns.items()
-            ]
+            curves = []
+            for name, column in columns.items():
+                times, values = sampled.times * scale, column / PREFIXES[prefix]
+                row = rows.get(name) if len(columns) <= MOST_NOTED else None
+                noted = None if row is None else _noted(row, times, values, window, 1.0 / PREFIXES[prefix])
+                curves.append(Curve(name, *_thinned(times, values), noted))
             title = QUANTITIES.get(dimension, "value") + (f" in {unit}" if unit else "")
             found.append(Panel(title, curves))
     return found
+
+
+def _noted(row: Row, times: Array, values: Array, window: tuple[float, float], factor: float) -> Noted:
+    """The figures of a row where the curve has them: values are those of the figures, instants the nearest sample's."""
+    inside = (times >= window[0]) & (times <= window[1])
+    highest = np.flatnonzero(inside)[int(np.abs(values[inside]).argmax())]
+    lowest = np.flatnonzero(inside)[int(values[inside].argmin())]
+    figures = row.figures
+    peak = math.copysign(figures["peak"].value * factor, values[highest])
+    points = [(float(times[highest]), peak), (float(times[lowest]), figures["valley"].value * factor)]
+    texts = [f"{column} {row_value(row, column)}" for column in NOTED]
+    return Noted(figures["mean"].value * factor, points, texts)
 
 
 def prefix_of(size: float, dimension: Dimension = SECOND) -> str:

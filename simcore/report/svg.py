@@ -6,9 +6,10 @@ Knows panels and bars, and no studies. All text is escaped.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from html import escape
+from itertools import pairwise
 
 from simcore.judge.outcome import State
 from simcore.report.panels import Bars, Curve, Panel, Picture, decades, shades, ticks
@@ -125,18 +126,48 @@ def _panel(panel: Panel, picture: Picture, shaded: Sequence[tuple[float, float]]
         )
         dash = f' stroke-dasharray="{DASHES[place]}"' if DASHES[place] else ""
         parts.append(f'<polyline points="{points}" fill="none" stroke="{COLOURS[place]}" stroke-width="1.3"{dash}/>')
-    heights = spread([y(float(curve.values[-1])) for curve in panel.curves], LABEL_GAP)
+        parts += _noted(curve, COLOURS[place], picture, y)
+    sizes = [LABEL_GAP * label_lines(curve) for curve in panel.curves]
+    heights = placed([y(float(curve.values[-1])) for curve in panel.curves], sizes, (top, top + HEIGHT + GAP / 2.0))
     for place, (curve, height) in enumerate(zip(panel.curves, heights, strict=True)):
-        parts.append(text(WIDTH - RIGHT + 6, height + 4, curve.label, "start", COLOURS[place]))
+        for step, words in enumerate((curve.label, *(curve.noted.words if curve.noted else ()))):
+            parts.append(text(WIDTH - RIGHT + 6, height + 4 + step * LABEL_GAP, words, "start", COLOURS[place]))
     return parts
 
 
-def spread(heights: Sequence[float], gap: float) -> list[float]:
-    """Heights moved apart to a gap at least, in their order, as little as that takes from the first one on."""
+def _noted(curve: Curve, colour: str, picture: Picture, y: Callable[[float], float]) -> list[str]:
+    """The mean as a fine line, the highest and lowest point as dots."""
+    if curve.noted is None:
+        return []
+    first, last = picture.judged or picture.span
+    mean = y(curve.noted.mean)
+    parts = [
+        line(
+            _x(first, picture), mean, _x(last, picture), mean, colour, ' stroke-width="0.7" stroke-dasharray="8 2 1 2"'
+        )
+    ]
+    return parts + [
+        f'<circle cx="{_x(time, picture):.1f}" cy="{y(value):.1f}" r="2.6" fill="{colour}"/>'
+        for time, value in curve.noted.points
+    ]
+
+
+def label_lines(curve: Curve) -> int:
+    """Lines of words beside the end of a curve."""
+    return 1 + (len(curve.noted.words) if curve.noted else 0)
+
+
+def placed(heights: Sequence[float], sizes: Sequence[float], span: tuple[float, float]) -> list[float]:
+    """Heights moved apart, in their order, so that what begins at each has its size: down from the first one on, then
+    up where that leaves the span, shape (first, last)."""
     found = list(heights)
     order = sorted(range(len(heights)), key=lambda place: heights[place])
-    for before, after in zip(order, order[1:], strict=False):
-        found[after] = max(found[after], found[before] + gap)
+    for before, after in pairwise(order):
+        found[after] = max(found[after], found[before] + sizes[before])
+    below = span[1]
+    for place in reversed(order):
+        found[place] = min(found[place], below - sizes[place])
+        below = found[place]
     return found
 
 

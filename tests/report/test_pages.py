@@ -15,7 +15,7 @@ from simcore.proof import Proof
 from simcore.report.junit import Case, Suite, verdict_case, write_junit
 from simcore.report.page import page
 from simcore.report.panels import any_conducts, bars_of, decades, picture_of, ticks
-from simcore.report.svg import bars_svg, picture_svg, spread
+from simcore.report.svg import bars_svg, picture_svg, placed
 
 TEXT = """
 purpose "<script>alert(1)</script> & more"
@@ -154,9 +154,30 @@ def test_ticks_are_round_and_within() -> None:
 
 
 def test_labels_are_moved_apart() -> None:
-    found = spread([10.0, 11.0, 50.0, 10.5], 12.0)
+    found = placed([10.0, 11.0, 50.0, 10.5], [12.0] * 4, (0.0, 200.0))
     assert sorted(np.diff(sorted(found)) >= 12.0 - 1e-9) == [True, True, True]
     assert found[0] == 10.0 and found[2] == 50.0
+    # What needs more room moves up from the end, and its neighbour with it.
+    assert placed([90.0, 95.0], [12.0, 40.0], (0.0, 100.0)) == [48.0, 60.0]
+
+
+def test_figures_of_a_settled_period_are_marked(proof: Proof) -> None:
+    """At the figures' own values, and only where curves are few and a period is judged."""
+    study = proof.studies["s"]
+    picture = picture_of("s", study)
+    assert picture is not None
+    (volts,), (amperes,) = picture.panels[0].curves, picture.panels[1].curves
+    assert volts.noted is not None and amperes.noted is not None
+    rows = {row.name: row.figures for row in study.signals}
+    assert volts.noted.mean == rows["u"]["mean"].value
+    assert [value for _, value in volts.noted.points] == [rows["u"]["peak"].value, rows["u"]["valley"].value]
+    for time, value in volts.noted.points:
+        assert value == pytest.approx(float(np.interp(time, volts.times, volts.values)), rel=1e-3)
+    assert [words.split()[0] for words in amperes.noted.words] == ["mean", "rms", "peak", "valley", "ripple"]
+    root = ElementTree.fromstring(picture_svg(picture))
+    words = [node.text for node in root.iter("{http://www.w3.org/2000/svg}text")]
+    assert set(volts.noted.words) <= set(words)
+    assert len(list(root.iter("{http://www.w3.org/2000/svg}circle"))) == 4
 
 
 def test_spans_that_meet_are_joined() -> None:
