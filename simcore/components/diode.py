@@ -8,7 +8,7 @@ from __future__ import annotations
 from grammar.quantities import AMPERE, COULOMB, FARAD, I2T, KELVIN, KELVIN_PER_WATT, NONE, OHM, SECOND, VOLT
 from simcore.components.forward_fit import NoLaw
 from simcore.components.frame import Frame
-from simcore.components.junction import Junction, describe, law_of
+from simcore.components.junction import Junction, describe, law_of, warn
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
 
@@ -160,4 +160,5 @@ DIODE = Kind(
     check=check_law,
     build=_build,
     describe=describe,
+    warn=warn,
 )

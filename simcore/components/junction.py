@@ -6,9 +6,10 @@ What diodes and thyristors share. Knows frames and parts, and nothing of text, g
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Hashable
+from collections.abc import Callable, Hashable, Sequence
 
-from simcore.components.forward_fit import ForwardLaw, fit
+from grammar.quantities import AMPERE, OHM, VOLT, show
+from simcore.components.forward_fit import ForwardLaw, fit, poor
 from simcore.components.frame import UNLIMITED, Frame
 from simcore.components.part import Part
 from simcore.components.physics import BOLTZMANN_OVER_CHARGE, depletion_capacitance, depletion_charge
@@ -204,19 +205,28 @@ def describe(given: dict[str, object]) -> list[str]:
     points = given.get("forward")
     if not isinstance(points, tuple):
         return []
-    from grammar.quantities import AMPERE, OHM, VOLT, show
-    from simcore.components.forward_fit import poor
-
     law = law_of(given)
-    found = [
-        f"fitted: saturation_current = {show(law.saturation_current, AMPERE)}",
-        f"ideality_factor = {law.ideality_factor:.4g}",
-        f"series_resistance = {show(law.series_resistance, OHM)}",
+    return [
+        f"fitted: saturation_current = {show(law.saturation_current, AMPERE)}, ideality_factor = "
+        f"{law.ideality_factor:.4g}, series_resistance = {show(law.series_resistance, OHM)}",
+        *(_missed(law, points, index) for index in range(len(points))),
     ]
-    for miss, (voltage, current) in zip(law.misses, points, strict=True):
-        found.append(f"{show(miss, VOLT)} off at {show(voltage, VOLT)} @ {show(current, AMPERE)}")
+
+
+def warn(given: dict[str, object]) -> list[str]:
+    """The worst point of a poor fit."""
+    points = given.get("forward")
+    if not isinstance(points, tuple):
+        return []
+    law = law_of(given)
     worst = poor(law, points)
-    if worst is not None:
-        voltage, current = points[worst]
-        found.append(f"a poor fit: more than 5 % off at {show(voltage, VOLT)} @ {show(current, AMPERE)}")
-    return found
+    if worst is None:
+        return []
+    share = abs(law.misses[worst]) / points[worst][0]
+    return [f"the law fits the forward points poorly: {_missed(law, points, worst)}, {100.0 * share:.2g} % of it"]
+
+
+def _missed(law: ForwardLaw, points: Sequence[tuple[float, float]], index: int) -> str:
+    voltage, current = points[index]
+    way = "above" if law.misses[index] > 0.0 else "below"
+    return f"{show(abs(law.misses[index]), VOLT, 3)} {way} {show(voltage, VOLT)} @ {show(current, AMPERE)}"

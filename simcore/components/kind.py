@@ -57,7 +57,8 @@ class Kind:
     check: further rules over several keys; gets the given keys, returns (key at fault or None, what, cure) triples
     build: adds the component's equations to a frame
     instants: from the given keys, the times of a study in s at which the component changes by itself
-    describe: from the given keys, what was worked out from them, in words
+    describe: from the given keys, what was worked out from them, in words, a line each
+    warn: from the given keys, what a reader must be warned of, in words
     """
 
     name: str
@@ -69,6 +70,7 @@ class Kind:
     check: Callable[[dict[str, object]], list[tuple[str | None, str, str]]] | None = None
     instants: Callable[[dict[str, object]], list[float]] | None = None
     describe: Callable[[dict[str, object]], list[str]] | None = None
+    warn: Callable[[dict[str, object]], list[str]] | None = None
     key: dict[str, Key] = field(init=False, repr=False, compare=False)
 
     def __post_init__(self) -> None:

@@ -10,7 +10,7 @@ import math
 from grammar.quantities import AMPERE, ANGLE, VOLT
 from simcore.components.diode import DIODE_KEYS, check_law
 from simcore.components.frame import UNLIMITED, Flag, Frame, Sensed
-from simcore.components.junction import BLOCKED, Junction, describe
+from simcore.components.junction import BLOCKED, Junction, describe, warn
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
 
@@ -78,4 +78,5 @@ THYRISTOR = Kind(
     check=check_law,
     build=_build,
     describe=describe,
+    warn=warn,
 )

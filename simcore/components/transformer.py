@@ -121,7 +121,7 @@ def _describe(given: dict[str, Any]) -> list[str]:
     ]
     if found.magnetising is not None:
         shown.append(f"magnetising = {show(found.magnetising, HENRY)}")
-    return [f"from the test sheet: {shown[0]}", *shown[1:]]
+    return ["from the test sheet: " + ", ".join(shown)]
 
 
 TRANSFORMER = Kind(

@@ -58,8 +58,9 @@ class LetShown:
 
 @dataclass(frozen=True)
 class Overview:
-    """Everything that was understood. sheets: data sheet -> elements that have it; blocks: copy -> block; studies and
-    sweeps: name -> what it will do; requirements: study and claim, with the label where there is one."""
+    """Everything that was understood. sheets: data sheet -> elements that have it; blocks: copy -> block; worked_out:
+    elements alike -> lines on what their keys came to; studies and sweeps: name -> what it will do; requirements: study
+    and claim, with the label where there is one."""
 
     name: str
     purpose: str
@@ -69,6 +70,8 @@ class Overview:
     parts: tuple[PartShown, ...]
     sheets: dict[str, tuple[str, ...]]
     blocks: dict[str, str]
+    worked_out: dict[str, list[str]]
+    warnings: tuple[str, ...]
     lets: tuple[LetShown, ...]
     observes: dict[str, str]
     studies: dict[str, str]
@@ -91,6 +94,8 @@ def describe(circuit: Circuit) -> Overview:
         _parts(circuit),
         sheets,
         dict(circuit.blocks),
+        _worked_out(circuit),
+        tuple(warnings_of(circuit)),
         tuple(_let(let) for let in circuit.lets.values()),
         {name: f"{write_expression(seen.value)} [{seen.unit}]" for name, seen in circuit.observes.items()},
         {name: sentence(study) for name, study in circuit.studies.items()},
@@ -126,12 +131,28 @@ def _values(element: Element) -> list[str]:
         f"{key.name} = {value_text(key, element.given[key.name], element.unit)}"
         for key in keys
         if not (element.sheet and key.rating)
-    ] + _worked_out(element)
+    ]
 
 
-def _worked_out(element: Element) -> list[str]:
-    describe = KINDS[element.kind].describe
-    return [] if describe is None else describe(element.given)
+def _worked_out(circuit: Circuit) -> dict[str, list[str]]:
+    """What the keys of elements came to, said once for those alike."""
+    alike: dict[tuple[str, ...], list[str]] = {}
+    for element in circuit.elements.values():
+        describe = KINDS[element.kind].describe
+        found = () if describe is None else tuple(describe(element.given))
+        if found:
+            alike.setdefault(found, []).append(element.name)
+    return {", ".join(names): list(found) for found, names in alike.items()}
+
+
+def warnings_of(circuit: Circuit) -> list[str]:
+    """What a reader must be warned of in the values of elements, said once for those alike."""
+    alike: dict[str, list[str]] = {}
+    for element in circuit.elements.values():
+        warn = KINDS[element.kind].warn
+        for found in () if warn is None else warn(element.given):
+            alike.setdefault(found, []).append(element.name)
+    return [f"{', '.join(names)}: {found}" for found, names in alike.items()]
 
 
 def value_text(key: Key, value: Any, unit: str = "") -> str:

@@ -10,6 +10,7 @@ from collections.abc import Iterator
 
 from grammar.quantities import JOULE, SECOND, VOLT, show
 from simcore.design.circuit import Circuit, Element
+from simcore.design.overview import warnings_of
 from simcore.figures import measure
 from simcore.figures.element_figures import largest_stored_energy
 from simcore.proof import Proof
@@ -30,7 +31,7 @@ _DIGITS = 3
 
 def cautions(proof: Proof) -> list[str]:
     """The cautions of a design, its own before the general ones."""
-    return [*_voltages(proof), *_energy(proof), *_bleeding(proof), *GENERAL]
+    return [*warnings_of(proof.circuit), *_voltages(proof), *_energy(proof), *_bleeding(proof), *GENERAL]
 
 
 def _voltages(proof: Proof) -> Iterator[str]:

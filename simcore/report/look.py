@@ -28,6 +28,8 @@ def look(overview: Overview, description: str, screen: Screen | None = None) -> 
     used = {f"data sheet {sheet}": ", ".join(elements) for sheet, elements in overview.sheets.items()}
     used.update({f"block {copy}": f"copy of {block}" for copy, block in overview.blocks.items()})
     lines += _titled("Data sheets and blocks", _named(used))
+    lines += _titled("Worked out", _listed(overview.worked_out))
+    lines += _titled("Warnings", [INDENT + warning for warning in overview.warnings])
     lines += _titled("Observed", _named(overview.observes))
     lines += _titled("Studies", _named(overview.studies))
     required = [[study, claim, label] for study, claim, label in overview.requirements]
@@ -60,6 +62,11 @@ def _titled(title: str, lines: list[str]) -> list[str]:
 def _named(entries: Mapping[str, str]) -> list[str]:
     width = max((len(name) for name in entries), default=0)
     return [f"{INDENT}{name.ljust(width)}   {text}" for name, text in entries.items()]
+
+
+def _listed(entries: Mapping[str, list[str]]) -> list[str]:
+    """Each name above the lines on it."""
+    return [line for name, texts in entries.items() for line in (INDENT + name, *(2 * INDENT + text for text in texts))]
 
 
 def _labelled(text: str, label: str) -> str:
