@@ -53,6 +53,7 @@ class Reduction:
         self._graph = graph
         self._fixed = set(references)
         self._forms: dict[Hashable, Form] = {}
+        self._told: dict[Weights, Form] = {}
         self.constraints = [index for index, branch in enumerate(branches) if forces_voltage(branch)]
         for index in self.constraints:
             self._eliminate(branches[index])
@@ -66,7 +67,12 @@ class Reduction:
         return unknown in self._known
 
     def form(self, weights: Weights) -> Form:
-        """A branch voltage as a sum of free unknowns and a known part."""
+        """A branch voltage as a sum of free unknowns and a known part; not to be changed."""
+        if weights not in self._told:
+            self._told[weights] = self._form(weights)
+        return self._told[weights]
+
+    def _form(self, weights: Weights) -> Form:
         result = Form(known=self._graph.zero)
         for unknown, weight in weights:
             if unknown in self._fixed:
@@ -82,7 +88,7 @@ class Reduction:
         return result
 
     def _eliminate(self, branch: SeriesBranch) -> None:
-        form = self.form(branch.weights)
+        form = self._form(branch.weights)
         if not form.weights:
             raise ContradictoryLoop(branch.element)
         pivot = min(form.weights, key=lambda unknown: _pivot_rank(unknown, form.weights[unknown]))

@@ -201,7 +201,7 @@ class Course:
 
     def _engine(self, circuit: Circuit, frame: Frame, memory: Memory) -> Engine:
         kernel = self.kernels.kernel(frame, grounded(frame, circuit.references))
-        rounding = rounding_current(frame, common_period(frame) or 1.0)
+        rounding = rounding_current(frame, largest_voltage(frame, common_period(frame) or 1.0))
         first = 1.0 / frame.sines[0][0] if frame.sines else 0.0
         engine = Engine(kernel, list(frame.numbers), frame.waveforms, rounding, first, self.counts)
         engine.recall(memory)
@@ -212,6 +212,7 @@ class Course:
         assert period is not None and span is not None
         scale = min(period, span) if frame.sines or frame.waveforms else span
         largest = scale / _STEPS_A_PERIOD * min(1.0, (self.tolerance / 1e-3) ** 0.25)
+        voltage = largest_voltage(frame, scale)
         return Stepping(
             tolerance=self.tolerance,
             order=EXTRAPOLATION_ORDER,
@@ -221,8 +222,8 @@ class Course:
             smallest=1e-9 * scale,
             begin=_BEGIN * scale,
             memory=scale,
-            voltage=largest_voltage(frame, scale),
-            current=max(1e-9, rounding_current(frame, scale) / self.tolerance),
+            voltage=voltage,
+            current=max(1e-9, rounding_current(frame, voltage) / self.tolerance),
         )
 
     def _guard(self, action: Callable[[], Answer], clock: float) -> Answer:

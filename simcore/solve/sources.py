@@ -58,10 +58,10 @@ def largest_voltage(frame: Frame, span: float) -> float:
     return max(peaks, default=0.0) or 1.0
 
 
-def rounding_current(frame: Frame, span: float) -> float:
-    """What rounding may make of the current of a branch, in A: a share of the sources' voltage over the smallest
-    resistance, which is what flows in and out of a node in the equations."""
+def rounding_current(frame: Frame, voltage: float) -> float:
+    """What rounding may make of the current of a branch, in A: a share of the sources' largest voltage in V over the
+    smallest resistance, which is what flows in and out of a node in the equations."""
     inputs = {f"p{index}": np.float64(number) for index, number in enumerate(frame.numbers)} | {"t": np.float64(0.0)}
     series = [branch.resistance for branch in frame.branches if isinstance(branch, SeriesBranch)]
     resistances = [float(value) for value in evaluate([value for value in series if value.constant != 0.0], inputs)]
-    return max(_ROUNDING * largest_voltage(frame, span) / min(resistances, default=math.inf), _LEAST_CURRENT)
+    return max(_ROUNDING * voltage / min(resistances, default=math.inf), _LEAST_CURRENT)

@@ -65,6 +65,7 @@ class Stretch:
         }
         self._currents: dict[int, np.ndarray] = {}
         self._known: dict[int, np.ndarray] = {}
+        self._numbers: dict[int, float] = {}
 
     @property
     def shape(self) -> tuple[int, int]:
@@ -79,9 +80,9 @@ class Stretch:
     def _instants(self, value: Value) -> np.ndarray:
         """The middle is formed as the run forms that of its columns: sums of what is known and what was solved then
         stay exact."""
-        known = np.asarray(evaluate([value], self._inputs)[0], dtype=float)
         if value.level < Level.TIME:
-            return np.broadcast_to(known, self.shape)
+            return np.broadcast_to(self._number(value), self.shape)
+        known = np.asarray(evaluate([value], self._inputs)[0], dtype=float)
         ends = known[:, 0] + known[:, -1]
         return np.stack([known[:, 0], 1.5 * known @ self._mean - 0.25 * ends, known[:, -1]], axis=1)
 
@@ -90,7 +91,8 @@ class Stretch:
         form = self.system.reduction.form(weights)
         result = self._evaluate(form.known).copy()
         for unknown, weight in form.weights.items():
-            result += self._evaluate(weight) * self._values[:, :, self._columns[unknown]]
+            values = self._values[:, :, self._columns[unknown]]
+            result += values if weight.constant == 1.0 else self._evaluate(weight) * values
         return result
 
     def node(self, name: Hashable) -> np.ndarray:
@@ -151,7 +153,7 @@ class Stretch:
     ) -> None:
         for unknown, weight in weights:
             if unknown in sums:
-                sums[unknown] = sums[unknown] + self._evaluate(weight) * current
+                sums[unknown] += self._number(weight) * current
 
     @cached_property
     def _forced(self) -> list[np.ndarray]:
@@ -168,7 +170,12 @@ class Stretch:
         return [row.reshape(self.shape) for row in currents]
 
     def _number(self, value: Value) -> float:
-        return float(evaluate([value], self._inputs)[0])
+        """What does not depend on time, worked out once."""
+        if value.constant is not None:
+            return value.constant
+        if value.index not in self._numbers:
+            self._numbers[value.index] = float(evaluate([value], self._inputs)[0])
+        return self._numbers[value.index]
 
     def _conductance(self, branch: Branch) -> float:
         """The largest conductance in S that a series branch has to the steps taken, zero for any other."""
@@ -181,7 +188,7 @@ class Stretch:
     def kirchhoff(self) -> dict[Hashable, tuple[float, float]]:
         """At each unknown the worst sum of currents, and the largest current or, where that is less, the least that the
         rounding of voltages lets be told to a thousandth; both in A."""
-        sums = dict(self._free_sums)
+        sums = {unknown: total.copy() for unknown, total in self._free_sums.items()}
         largest = {unknown: 0.0 for unknown in sums}
         voltage = max((float(np.max(np.abs(self.node(unknown)))) for unknown in sums), default=0.0)
         for index, branch in enumerate(self.system.frame.branches):
