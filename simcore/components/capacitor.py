@@ -5,9 +5,10 @@ Knows its keys, and nothing of text, graphs or solvers.
 
 from __future__ import annotations
 
+from itertools import pairwise
 from typing import Any
 
-from grammar.quantities import AMPERE, FARAD, HENRY, HERTZ, KELVIN, KELVIN_PER_WATT, OHM, SECOND, VOLT
+from grammar.quantities import AMPERE, FARAD, HENRY, HERTZ, KELVIN, KELVIN_PER_WATT, NONE, OHM, SECOND, VOLT
 from simcore.components.frame import Frame
 from simcore.components.kind import Key, Kind
 from simcore.components.part import Part
@@ -18,6 +19,16 @@ def _check(given: dict[str, Any]) -> list[tuple[str | None, str, str]]:
     if isinstance(point, tuple) and not 200.0 <= point[1] <= 1000.0:
         cure = "Write the core's temperature behind the @: `5000 h @ 105 degC`."
         return [("endurance", "endurance holds at no temperature that a capacitor could have", cure)]
+    factors = given.get("frequency_factors")
+    if not isinstance(factors, tuple):
+        return []
+    if "rated_ripple_current" not in given:
+        cure = "Add `rated_ripple_current`, with the frequency that it holds at."
+        return [("frequency_factors", "frequency_factors are given without rated_ripple_current", cure)]
+    frequencies = [0.0, *(frequency for frequency, _ in factors)]
+    if any(one >= other for one, other in pairwise(frequencies)):
+        cure = "Write frequencies above zero, rising: `[100 Hz: 1, 1 kHz: 1.3, 10 kHz: 1.4]`."
+        return [("frequency_factors", "the frequencies don't rise", cure)]
     return []
 
 
@@ -60,6 +71,15 @@ CAPACITOR = Kind(
             open_low=True,
             rating=True,
             bare=True,
+        ),
+        Key(
+            "frequency_factors",
+            "factors on its rated ripple current by frequency",
+            NONE,
+            form="series",
+            at=HERTZ,
+            low=0.0,
+            open_low=True,
         ),
         Key("rated_temperature", "core temperature it stands", KELVIN, low=0.0, open_low=True, rating=True),
         Key("endurance", "life at a core temperature", SECOND, form="point", at=KELVIN, low=0.0, open_low=True),

@@ -5,6 +5,8 @@ Knows its keys and the rules between them, and nothing of text, graphs or solver
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 from grammar.quantities import AMPERE, COULOMB, FARAD, I2T, KELVIN, KELVIN_PER_WATT, NONE, OHM, SECOND, VOLT
 from simcore.components.forward_fit import NoLaw
 from simcore.components.frame import Frame
@@ -93,7 +95,26 @@ _ARRAY = (
 _RATINGS = (
     Key("rated_reverse_voltage", "repetitive reverse voltage it stands", VOLT, low=0.0, open_low=True, rating=True),
     Key("rated_mean_current", "mean forward current it stands", AMPERE, low=0.0, open_low=True, rating=True),
-    Key("rated_surge_current", "single surge of current it stands", AMPERE, low=0.0, open_low=True, rating=True),
+    Key(
+        "rated_surge_current",
+        "crest of the single surge it stands, with the width of its half sine behind the @ (else any peak counts whole)",
+        AMPERE,
+        form="point",
+        at=SECOND,
+        low=0.0,
+        open_low=True,
+        rating=True,
+        bare=True,
+    ),
+    Key(
+        "surge_half_cycles",
+        "crest of the surge it stands in so many half cycles in a row, one a period",
+        AMPERE,
+        form="series",
+        at=NONE,
+        low=0.0,
+        open_low=True,
+    ),
     Key("rated_i2t", "integral of the squared surge it stands", I2T, low=0.0, open_low=True, rating=True),
     Key("rated_junction_temperature", "junction temperature it stands", KELVIN, low=0.0, open_low=True, rating=True),
 )
@@ -145,7 +166,29 @@ def _check_points(given: dict[str, object]) -> list[tuple[str | None, str, str]]
     if "recovery_charge" in given and "carrier_lifetime" in given:
         cure = "The lifetime follows from the charge: leave one of the two out."
         faults.append(("carrier_lifetime", "carrier_lifetime is given beside recovery_charge", cure))
-    return faults
+    return faults + _check_surge(given)
+
+
+def _check_surge(given: dict[str, object]) -> list[tuple[str | None, str, str]]:
+    """A surge has a width, and what more half cycles may have is never more."""
+    surge, cycles = given.get("rated_surge_current"), given.get("surge_half_cycles")
+    if isinstance(surge, tuple) and surge[1] is not None and not 1e-3 <= surge[1] <= 0.1:
+        cure = "Write the width of its half sine behind the @: `30 A @ 10 ms`, or `8.3 ms` for 60 Hz."
+        return [("rated_surge_current", "the surge is of no width that a half cycle could have", cure)]
+    if not isinstance(cycles, tuple):
+        return []
+    if not isinstance(surge, tuple) or surge[1] is None:
+        cure = "Add it with its width, such as `rated_surge_current = 30 A @ 10 ms`."
+        return [("surge_half_cycles", "surge_half_cycles is given without rated_surge_current of a width", cure)]
+    numbers, crests = [1.0, *(number for number, _ in cycles)], [surge[0], *(crest for _, crest in cycles)]
+    rising = all(one < other or at == 0 and one == other for at, (one, other) in enumerate(pairwise(numbers)))
+    if not rising or any(number != round(number) for number in numbers) or numbers[-1] > 1e4:
+        cure = "Write whole numbers from 1 to 10000, rising: `[5: 20 A, 20: 12 A, 100: 8 A]`."
+        return [("surge_half_cycles", "the numbers of half cycles don't rise", cure)]
+    if any(one < other for one, other in pairwise(crests)):
+        cure = "Start from the single surge, and let it fall with the number."
+        return [("surge_half_cycles", "more half cycles are stood at a higher current", cure)]
+    return []
 
 
 def _build(frame: Frame, part: Part) -> None:

@@ -15,6 +15,7 @@ from simcore.figures import element_figures, measure
 from simcore.figures.figure import Figure
 from simcore.figures.record import Record
 from simcore.figures.signal import Signal
+from simcore.figures.weighted import weighted_ripple, weighted_surge
 
 SURGE = 10e-3
 """s: the length that a surge's i2t is stated for (half a sine of 50 Hz; IEC 60747-2, from memory)."""
@@ -74,9 +75,32 @@ def _forward_mean(current: Signal) -> Figure:
     return _from_zero(measure.mean(current))
 
 
-def _alternating(current: Signal) -> Figure:
-    """Rms value about the mean."""
-    return replace(measure.rms(current - measure.mean(current).value), scale=measure.rms(current).value)
+def _ripple_current(record: Record, element: Element, name: str) -> Figure:
+    """Rms value about the mean, weighed by frequency where factors are given."""
+    current = record.window(record.current(name))
+    scale = measure.rms(current).value
+    factors = element.given.get("frequency_factors")
+    if factors is None:
+        return replace(measure.rms(current - measure.mean(current).value), scale=scale)
+    span, frequency = record.whole_periods(), None
+    if span is not None:
+        current, frequency = record.cut(record.current(name), *span), record.frequency
+    at = element.given["rated_ripple_current"][1]
+    return Figure(weighted_ripple(current, frequency, factors, at), AMPERE, scale=scale)
+
+
+def _surge(record: Record, element: Element, name: str) -> Figure:
+    """The highest forward current, of one diode of those in parallel; weighed by the width and number of its half
+    cycles where the rating says of what width it is."""
+    current = record.window(record.current(name))
+    rated, width = element.given.get("rated_surge_current") or (0.0, None)
+    plain = _highest(current)
+    if width is not None:
+        cycles, shares = element.given.get("surge_half_cycles") or (), _array(element, "in_parallel")
+        repeats = record.solution.study.kind == "settled"
+        weighed = weighted_surge(current, width, rated * shares, [(n, crest * shares) for n, crest in cycles], repeats)
+        plain = replace(plain, value=weighed, scale=max(plain.scale, weighed))
+    return _divided(plain, _array(element, "in_parallel"))
 
 
 def _surge_i2t(record: Record, element: Element, name: str) -> Figure:
@@ -107,7 +131,7 @@ _PEAK_VOLTAGE = Stress("peak voltage", _largest_voltage)
 _JUNCTION = (
     Stress("reverse peak", _reverse_voltage, "rated_reverse_voltage"),
     Stress("mean current", _of_current(_forward_mean), "rated_mean_current"),
-    Stress("peak current", _of_current(_highest), "rated_surge_current"),
+    Stress("surge current", _surge, "rated_surge_current"),
     Stress("i2t of 10 ms", _surge_i2t, "rated_i2t"),
     Stress("junction temperature", _of_name(element_figures.junction_temperature), "rated_junction_temperature"),
     Stress("rms current", _of_current(measure.rms)),
@@ -124,7 +148,7 @@ STRESSES: dict[str, tuple[Stress, ...]] = {
     "resistor": (Stress("dissipation", _of_name(element_figures.mean_power), "rated_power"), _PEAK_VOLTAGE),
     "capacitor": (
         replace(_PEAK_VOLTAGE, rating="rated_voltage"),
-        Stress("ripple current", _of_current(_alternating), "rated_ripple_current"),
+        Stress("ripple current", _ripple_current, "rated_ripple_current"),
         Stress("core temperature", _of_name(element_figures.core_temperature), "rated_temperature"),
     ),
     "inductor": (_RMS, Stress("peak current", _of_current(measure.peak))),

@@ -51,7 +51,8 @@ DIODE = {
     "in_parallel": ("2", 2.0),
     "rated_reverse_voltage": ("400 V", 400.0),
     "rated_mean_current": ("1 A", 1.0),
-    "rated_surge_current": ("30 A", 30.0),
+    "rated_surge_current": ("30 A @ 8.3 ms", (30.0, 8.3e-3)),
+    "surge_half_cycles": ("[5: 20 A, 100: 8 A]", ((5.0, 20.0), (100.0, 8.0))),
     "rated_i2t": ("5 A^2 s", 5.0),
     "rated_junction_temperature": ("150 degC", 423.15),
 }
@@ -74,6 +75,7 @@ TABLE: dict[str, dict[str, tuple[str, Any]]] = {
         "initial_voltage": ("-5 V", -5.0),
         "rated_voltage": ("25 V", 25.0),
         "rated_ripple_current": ("2 A @ 100 Hz", (2.0, 100.0)),
+        "frequency_factors": ("[100 Hz: 1, 1 kHz: 1.3]", ((100.0, 1.0), (1000.0, 1.3))),
         "rated_temperature": ("105 degC", 378.15),
         "endurance": ("5000 h @ 105 degC", (1.8e7, 378.15)),
         "thermal_resistance": ("20 K/W", 20.0),

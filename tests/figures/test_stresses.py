@@ -116,7 +116,7 @@ def test_an_array_shares_voltage_and_current() -> None:
         in_parallel=2.0,
         rated_reverse_voltage=1.0,
         rated_mean_current=1.0,
-        rated_surge_current=1.0,
+        rated_surge_current=(1.0, None),
         rated_i2t=1.0,
     )
     times = np.linspace(0.0, 0.02, 3)

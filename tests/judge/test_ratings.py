@@ -80,7 +80,7 @@ def test_figures_limits_and_margins_of_the_design_worked_by_hand() -> None:
     worked = {
         ("D1", "reverse peak"): "D1 rated_reverse_voltage",
         ("D1", "mean current"): "D1 rated_mean_current",
-        ("D1", "peak current"): "D1 rated_surge_current",
+        ("D1", "surge current"): "D1 rated_surge_current",
         ("D1", "i2t of 10 ms"): "D1 rated_i2t",
         ("R1", "dissipation"): "R1 rated_power",
         ("C1", "peak voltage"): "C1 rated_voltage",
@@ -133,7 +133,7 @@ def test_stresses_of_a_bridge_are_those_of_an_outside_integration() -> None:
         "C1: peak voltage": 13.169472,
         "C1: ripple current": 1.2906132,
         "D1: mean current": 0.41898350,
-        "D4: peak current": 3.5891085,
+        "D4: surge current": 3.5891085,
     }.items():
         figure = found[name].figure
         assert isinstance(figure, Figure) and figure.bound is not None
@@ -187,7 +187,7 @@ def test_each_study_is_judged_and_the_bill_names_the_worst() -> None:
     assert {verdict.requirement.study for verdict in found} == {"s", "on"} and len(found) == 36
     text = bridge().replace("study on: transient, duration = 40 ms, after = s", "study on: transient, duration = 40 ms")
     lines = {(line.name, line.stress): line for line in bill_of(simcore.read_text(text).prove())}
-    assert lines["D1", "peak current"].study == "on" and lines["C1", "peak voltage"].study == "s"
+    assert lines["D1", "surge current"].study == "on" and lines["C1", "peak voltage"].study == "s"
 
 
 # --- cautions ----------------------------------------------------------------------------------------------------------
