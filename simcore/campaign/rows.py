@@ -15,6 +15,7 @@ from grammar.quantities import ANGLE, Dimension, unit_of
 from grammar.writer import write_expression
 from simcore.design.circuit import Requirement
 from simcore.figures.figure import Figure
+from simcore.judge.bill import Demand
 from simcore.judge.outcome import State
 from simcore.judge.verdict import Verdict
 
@@ -101,6 +102,17 @@ def found_figure(expression: Expression, figure: Figure) -> Found:
     """What came of a figure that is only asked for."""
     claim = Claim("", write_expression(expression), unit_of(figure.dimension))
     return Found(claim, *_numbers(figure), reason=figure.note)
+
+
+def found_demand(demand: Demand) -> Found:
+    """What came of what an element has to stand."""
+    claim = Claim(demand.study, demand_text(demand.name, demand.stress), unit_of(demand.figure.dimension))
+    return Found(claim, *_numbers(demand.figure))
+
+
+def demand_text(name: str, stress: str) -> str:
+    """How a table calls what an element, winding or phase has to stand."""
+    return f"{name}: {stress}"
 
 
 def _numbers(figure: Figure | None) -> tuple[float, float]:

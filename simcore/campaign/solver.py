@@ -15,7 +15,7 @@ from grammar.description import Expression
 from grammar.mistakes import DescriptionError, Mistake
 from grammar.quantities import Quantity
 from simcore.campaign.plan import Plan, Variant
-from simcore.campaign.rows import SOLVED, Claim, Row, claim_of, encode, found_figure, found_of
+from simcore.campaign.rows import SOLVED, Claim, Row, claim_of, encode, found_demand, found_figure, found_of
 from simcore.design.changes import Variants
 from simcore.design.circuit import Change, Circuit
 from simcore.design.depends import asked_names, structure
@@ -24,6 +24,7 @@ from simcore.design.soundness import contradictions
 from simcore.equations.compiled import available
 from simcore.equations.kernel import KernelCache
 from simcore.figures.evaluate import figures_with_bounds
+from simcore.judge.bill import demands
 from simcore.judge.verdict import spread
 from simcore.opening import Opened
 from simcore.proof import Judged, solve_and_judge
@@ -41,12 +42,14 @@ class Task:
     """All that solving the variants of a sweep takes.
 
     studies: those whose requirements are judged; figures: asked for besides, of the first study unless they say `at`
+    billed: whether what each element has to stand is found besides
     """
 
     opened: Opened
     plan: Plan
     studies: tuple[str, ...]
     figures: tuple[Expression, ...] = ()
+    billed: bool = False
 
     @property
     def claims(self) -> list[Claim]:
@@ -81,6 +84,9 @@ class Solver:
         asked = [(self.task.studies[0], expression) for expression in self.task.figures]
         for (_, expression), figure in zip(asked, figures_with_bounds(asked, judged.coarse, judged.fine), strict=True):
             found.append(found_figure(expression, figure))
+        if self.task.billed:
+            circuit = next(iter(judged.fine.values())).circuit
+            found += map(found_demand, demands(circuit, judged.coarse, judged.fine))
         return Row(variant.number, SOLVED, tuple(found))
 
     def compiles(self, left: int, workers: int) -> bool:

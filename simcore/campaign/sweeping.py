@@ -40,7 +40,7 @@ def fingerprint(task: Task) -> str:
         add(repr(unit.description))
     add(repr(dict(task.opened.overrides)))
     add(repr(task.opened.circuit.elements))
-    add(repr((task.plan.name, task.studies, task.figures)))
+    add(repr((task.plan.name, task.studies, task.figures, task.billed)))
     for line in task.plan.lines():
         add(line)
     return digest.hexdigest()

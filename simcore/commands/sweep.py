@@ -27,6 +27,9 @@ def add(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
     )
     sweep.add_argument("--scheduler", metavar="ADDRESS", default="", help="solve on the workers of a dask scheduler")
     sweep.add_argument("--resume", action="store_true", help="go on with an interrupted sweep")
+    sweep.add_argument(
+        "--bill", action="store_true", help="the bill of ratings over all studies and sweeps too, as bill.csv"
+    )
     add_settings(sweep)
     sweep.set_defaults(action=_sweep)
 
@@ -44,6 +47,7 @@ def _sweep(options: argparse.Namespace) -> Outcome:
     places = folders(options.files, options.out)
     if places is None:
         return Outcome.INPUT_WRONG
-    asked = Asked(options.sweep, dict(options.settings), options.workers, options.scheduler, options.resume)
+    settings = dict(options.settings)
+    asked = Asked(options.sweep, settings, options.workers, options.scheduler, options.resume, options.bill)
     call = sensitivity_of_file if options.sensitivity else sweep_file
     return worst([call(file, folder, asked, say, complain) for file, folder in places.items()])

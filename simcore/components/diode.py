@@ -97,7 +97,7 @@ _RATINGS = (
     Key("rated_mean_current", "mean forward current it stands", AMPERE, low=0.0, open_low=True, rating=True),
     Key(
         "rated_surge_current",
-        "crest of the single surge it stands, with the width of its half sine behind the @ (else any peak counts whole)",
+        "crest of the single surge it stands, with the width of its half sine (else any peak counts whole)",
         AMPERE,
         form="point",
         at=SECOND,

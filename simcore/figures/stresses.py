@@ -28,12 +28,14 @@ class Stress:
     title: what it is called; compute: the figure, of one diode of an array
     rating: the key of the rating it is held against, "" where a data sheet gives none
     ports: whether each winding or phase has its own
+    lasting: whether it is about what goes on for minutes, and not about an instant
     """
 
     title: str
     compute: Callable[[Record, Element, str], Figure]
     rating: str = ""
     ports: bool = False
+    lasting: bool = False
 
     def of(self, record: Record, element: Element, name: str) -> Figure:
         """The figure of an element, or of one of its windings or phases."""
@@ -126,40 +128,43 @@ def _transformer_power(record: Record, element: Element, name: str) -> Figure:
     return max(first, total, key=lambda figure: figure.value)
 
 
-_RMS = Stress("rms current", _of_current(measure.rms), "rated_current")
+_RMS = Stress("rms current", _of_current(measure.rms), "rated_current", lasting=True)
 _PEAK_VOLTAGE = Stress("peak voltage", _largest_voltage)
 _JUNCTION = (
     Stress("reverse peak", _reverse_voltage, "rated_reverse_voltage"),
-    Stress("mean current", _of_current(_forward_mean), "rated_mean_current"),
+    Stress("mean current", _of_current(_forward_mean), "rated_mean_current", lasting=True),
     Stress("surge current", _surge, "rated_surge_current"),
     Stress("i2t of 10 ms", _surge_i2t, "rated_i2t"),
     Stress("junction temperature", _of_name(element_figures.junction_temperature), "rated_junction_temperature"),
-    Stress("rms current", _of_current(measure.rms)),
-    Stress("dissipation", _of_name(element_figures.mean_power)),
+    replace(_RMS, rating=""),
+    Stress("dissipation", _of_name(element_figures.mean_power), lasting=True),
 )
 _DELIVERED = (
     replace(_RMS, rating="", ports=True),
-    Stress("apparent power", _of_name(element_figures.apparent_power)),
+    Stress("apparent power", _of_name(element_figures.apparent_power), lasting=True),
 )
 
 STRESSES: dict[str, tuple[Stress, ...]] = {
     "source": _DELIVERED,
     "three_phase": _DELIVERED,
-    "resistor": (Stress("dissipation", _of_name(element_figures.mean_power), "rated_power"), _PEAK_VOLTAGE),
+    "resistor": (
+        Stress("dissipation", _of_name(element_figures.mean_power), "rated_power", lasting=True),
+        _PEAK_VOLTAGE,
+    ),
     "capacitor": (
         replace(_PEAK_VOLTAGE, rating="rated_voltage"),
-        Stress("ripple current", _ripple_current, "rated_ripple_current"),
+        Stress("ripple current", _ripple_current, "rated_ripple_current", lasting=True),
         Stress("core temperature", _of_name(element_figures.core_temperature), "rated_temperature"),
     ),
     "inductor": (_RMS, Stress("peak current", _of_current(measure.peak))),
     "transformer": (
-        Stress("apparent power", _transformer_power, "rated_power"),
+        Stress("apparent power", _transformer_power, "rated_power", lasting=True),
         replace(_RMS, rating="", ports=True),
     ),
     "diode": _JUNCTION,
     "thyristor": _JUNCTION,
     "switch": (replace(_RMS, rating=""), _PEAK_VOLTAGE),
-    "load": (Stress("mean power", _of_name(element_figures.mean_power)), _PEAK_VOLTAGE),
+    "load": (Stress("mean power", _of_name(element_figures.mean_power), lasting=True), _PEAK_VOLTAGE),
     "fuse": (_RMS,),
     "inrush_limiter": (_RMS, Stress("energy", _of_name(element_figures.energy), "rated_energy")),
     "clamp": (Stress("energy", _of_name(element_figures.energy), "rated_energy"), _PEAK_VOLTAGE),

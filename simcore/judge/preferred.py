@@ -1,4 +1,4 @@
-"""Preferred numbers of IEC 60063: the series that parts are made in, and the next value of one.
+"""Preferred numbers: the series that parts are made in (IEC 60063) and rated in (ISO 3), and the next value of one.
 
 Every series checks itself when it is made. Only E24 is listed; the others are taken from it or worked out.
 """
@@ -23,7 +23,7 @@ class Series:
 
     def __post_init__(self) -> None:
         count = len(self.values)
-        if self.name != f"E{count}" or self.values != tuple(sorted(set(self.values))):
+        if self.name[1:] != str(count) or self.values != tuple(sorted(set(self.values))):
             raise ValueError(f"{self.name} does not have its number of values, rising")
         for place, value in enumerate(self.values):
             if abs(math.log10(value) - place / count) > 0.5 / count:
@@ -70,3 +70,6 @@ SERIES: dict[str, Series] = {
     )
 }
 """Name -> series. Source: IEC 60063:2015."""
+
+R10 = Series("R10", (1.0, 1.25, 1.6, 2.0, 2.5, 3.15, 4.0, 5.0, 6.3, 8.0))
+"""What ratings are rounded up to: of fuses, capacitors, transformers and most else. Source: ISO 3:1973, from memory."""

@@ -43,6 +43,7 @@ BILL_COLUMNS = (
     "kind",
     "stress",
     "study",
+    "variant",
     "value",
     "unit",
     "bound",
@@ -67,9 +68,15 @@ def write_results(proof: Proof, folder: Path, description: str, bill: Sequence[B
         json.dump(_summary(proof, description), file, indent=2, ensure_ascii=False, allow_nan=False)
         file.write("\n")
     if bill:
-        written.append(folder / "bill.csv")
-        write_table(written[-1], BILL_COLUMNS, [_bill_row(line) for line in bill])
+        written.append(write_bill(bill, folder))
     return written
+
+
+def write_bill(bill: Sequence[BillLine], folder: Path) -> Path:
+    """Write a bill of ratings to a folder, and say where it is."""
+    path = folder / "bill.csv"
+    write_table(path, BILL_COLUMNS, [_bill_row(line) for line in bill])
+    return path
 
 
 def write_table(path: Path, columns: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
@@ -147,7 +154,7 @@ def _verdict_row(verdict: Verdict) -> Sequence[object]:
 
 def _bill_row(line: BillLine) -> Sequence[object]:
     numbers = (line.rating, _finite(line.unused), line.margin, line.suggested)
-    return line.name, line.kind, line.stress, line.study, *_numbers(line.figure), *numbers
+    return line.name, line.kind, line.stress, line.study, line.variant, *_numbers(line.figure), *numbers
 
 
 # --- the summary -----------------------------------------------------------------------------------------------------

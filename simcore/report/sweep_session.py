@@ -8,11 +8,12 @@ from __future__ import annotations
 import time
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from grammar.expressions import nearest
 from grammar.mistakes import DescriptionError, Mistake, render
+from simcore.campaign.demands import demands_of
 from simcore.campaign.journal import Journal
 from simcore.campaign.plan import Plan, plan_of
 from simcore.campaign.results import Results
@@ -23,15 +24,18 @@ from simcore.campaign.sweeping import Keeping, fingerprint, solved_rows
 from simcore.campaign.workers import Crew, WorkersLost, crew_of
 from simcore.design.circuit import Circuit, PlannedSweep
 from simcore.design.overview import in_words
+from simcore.judge.bill import bill_of
 from simcore.judge.cautions import GENERAL
 from simcore.judge.outcome import Outcome, worst
 from simcore.opening import Opened, open_design
-from simcore.proof import TAKEN
+from simcore.proof import TAKEN, prove
+from simcore.report.files import write_bill
 from simcore.report.progress import progress
 from simcore.report.screen import present_screen
 from simcore.report.session import Say
 from simcore.report.sweeps import sensitivity_lines, sweep_lines, write_sensitivities, write_sweep
-from simcore.report.terminal import show_seconds
+from simcore.report.terminal import bill_lines, show_seconds
+from simcore.solve.failure import NoSolution
 
 _CAUTIONS = ("Cautions", *(f"  {line}" for line in GENERAL))
 
@@ -39,13 +43,14 @@ _CAUTIONS = ("Cautions", *(f"  {line}" for line in GENERAL))
 @dataclass(frozen=True)
 class Asked:
     """What a call asks for: the sweeps, none for all; lets with other values; workers, None for one a core; a
-    scheduler's address, "" for none; whether to go on with an interrupted sweep."""
+    scheduler's address, "" for none; whether to go on with an interrupted sweep; whether for a bill of ratings."""
 
     sweeps: Sequence[str]
     settings: Mapping[str, str]
     workers: int | None = None
     scheduler: str = ""
     resume: bool = False
+    bill: bool = False
 
 
 def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
@@ -55,10 +60,12 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
         if mistakes:
             raise DescriptionError(mistakes)
         sweeps = chosen_sweeps(opened.circuit, asked.sweeps, file)
-        tasks = [(sweep, task_of(opened, sweep)) for sweep in sweeps]
+        tasks = [(sweep, replace(task_of(opened, sweep), billed=asked.bill)) for sweep in sweeps]
         crew = crew_of(asked.workers, asked.scheduler)
         say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
         solved = [_solve(sweep, task, crew, folder, asked.resume, say, complain) for sweep, task in tasks]
+        if asked.bill:
+            _bill(opened, [results for results, _ in solved], folder, say)
         for _, journal in solved:
             journal.end()
     except DescriptionError as error:
@@ -68,8 +75,25 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
         complain(f"{file}: {fault}")
         complain("    cure: give it fewer --workers, if memory is short; what is finished is kept, --resume goes on")
         return Outcome.NO_SOLUTION
+    except NoSolution as failure:
+        complain(f"{file}: {failure}")
+        return Outcome.NO_SOLUTION
     say("\n".join(present_screen().fitted(["", *_CAUTIONS, ""])))
-    return worst(outcome for outcome, _ in solved)
+    return worst(results.outcome for results, _ in solved)
+
+
+def _bill(opened: Opened, solved: Sequence[Results], folder: Path, say: Say) -> None:
+    """The bill of ratings over all studies of the design as described and all variants of sweeps. Raises NoSolution."""
+    proof = prove(opened, list(opened.circuit.studies))
+    variants = [demand for results in solved for demand in demands_of(results, opened.circuit)]
+    lines = bill_of(proof, variants)
+    with writing(folder):
+        path = write_bill(lines, folder)
+    screen = present_screen()
+    said = ["", *bill_lines(lines, screen.width), f"  Table: {path}."]
+    if any(results.plan.faulted for results in solved):
+        said.insert(-1, "  variants with a fault are left out")
+    say("\n".join(screen.fitted(said)))
 
 
 def sensitivity_of_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
@@ -158,7 +182,7 @@ def _unknown(name: str, known: Mapping[str, PlannedSweep], file: str) -> Mistake
 
 def _solve(
     sweep: PlannedSweep, task: Task, crew: Crew, folder: Path, resume: bool, say: Say, complain: Say
-) -> tuple[Outcome, Journal]:
+) -> tuple[Results, Journal]:
     """Solve one sweep; its table is written once all of it is there, and its journal kept."""
     start = time.perf_counter()
     journal = Journal(folder / f"{sweep.name}.journal", fingerprint(task))
@@ -177,7 +201,7 @@ def _solve(
     screen = present_screen()
     lines = ["", *sweep_lines(results, sweep.label, screen.width), f"  Table: {path}. Solved in {seconds}."]
     say("\n".join(screen.painted(screen.fitted(lines))))
-    return results.outcome, journal
+    return results, journal
 
 
 def _goes_on(journal: Journal, resume: bool) -> bool:

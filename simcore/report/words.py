@@ -139,13 +139,14 @@ def bill_cells(line: BillLine) -> list[str]:
     found = f"{stress_text(line.figure)} ± {bound(line.figure)}"
     suggested = "-" if line.suggested is None else f"{show(line.suggested, line.figure.dimension)}"
     left = "-" if line.unused is None else percent(line.unused)
-    return [line.name, line.stress, line.study, found, line.rating_text or "-", left, suggested]
+    where = f"{line.study}, {line.variant}" if line.variant else line.study
+    return [line.name, line.stress, where, found, line.rating_text or "-", left, suggested]
 
 
 def bill_note(lines: Sequence[BillLine]) -> str:
     """What suggestions of a bill count on."""
     margins = ", ".join(dict.fromkeys(percent(line.margin) for line in lines if line.suggested is not None))
-    return f"suggested: the next E12 value (IEC 60063) that leaves {margins or 'a margin'} unused" if lines else ""
+    return f"suggested: the next R10 value (ISO 3) that leaves {margins or 'a margin'} unused" if lines else ""
 
 
 def percent(share: float) -> str:

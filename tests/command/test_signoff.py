@@ -70,11 +70,36 @@ def test_run_with_bill_page_and_test_report(folder: Path, bulkrail: Call) -> Non
     line = rows["C1", "peak voltage"]
     value, rating = float(line["value"]), float(line["rating"])
     assert rating == 16.0 and float(line["unused share"]) == pytest.approx(1.0 - value / rating)
-    assert line["suggested rating"] == "12.0" and line["margin"] == "0.2" and line["unit"] == "V"
+    assert line["suggested rating"] == "12.5" and line["margin"] == "0.2" and line["unit"] == "V"
     assert rows["R1", "dissipation"]["rating"] == ""
     assert (folder / "pages" / "d.html").read_text().startswith("<!DOCTYPE html>")
     (suite,) = ElementTree.parse(folder / "j.xml").getroot()
     assert suite.attrib["tests"] == "3" and suite.attrib["failures"] == "0"
+
+
+def test_the_bill_of_a_sweep_takes_the_worst_of_its_variants_and_of_all_studies(folder: Path, bulkrail: Call) -> None:
+    sweeps = "sweep filters: C_res over [100 uF, 4700 uF]\nsweep broken: short each diode\n"
+    (folder / "w.rect").write_text(TEXT + "study t: transient, duration = 40 ms\n" + sweeps)
+
+    def bill(*arguments: str) -> dict[tuple[str, str], dict[str, str]]:
+        done = bulkrail(*arguments, "--out", "r", "--bill", folder=folder)
+        assert done.returncode in (0, 1) and "Bill of ratings" in done.stdout, done.stderr
+        with (folder / "r" / "bill.csv").open(newline="") as file:
+            return {(row["element"], row["stress"]): row for row in csv.DictReader(file)}
+
+    swept = bill("sweep", "w.rect", "--workers", "1")
+    large = bill("run", "w.rect", "--set", "C_res=4700 uF", "--study", "s")
+    nominal = bill("run", "w.rect")
+    line = swept["D1", "rms current"]
+    assert (line["study"], line["variant"]) == ("s", "filters 2")
+    assert float(line["value"]) == float(large["D1", "rms current"]["value"])
+    assert float(line["value"]) > 1.1 * float(nominal["D1", "rms current"]["value"])
+    # The short circuits are left out: they would carry 10 V over nothing. The transient is not in the sweeps' studies.
+    assert float(swept["D1", "surge current"]["value"]) == float(nominal["D1", "surge current"]["value"])
+    assert (swept["D1", "surge current"]["study"], swept["D1", "surge current"]["variant"]) == ("t", "")
+    with (folder / "r" / "filters.csv").open(newline="") as file:
+        rows = list(csv.DictReader(file))
+    assert [float(row["s: D1: rms current [A]"]) for row in rows][1] == float(line["value"])
 
 
 def test_quiet_says_only_what_does_not_hold(folder: Path, bulkrail: Call) -> None:

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from simcore.judge.preferred import SERIES, Series
+from simcore.judge.preferred import R10, SERIES, Series
 
 # IEC 60063:2015, lists as given on public tables.
 LISTED = {
@@ -29,6 +29,13 @@ def test_values_are_those_of_the_standard(name: str) -> None:
 @pytest.mark.parametrize("name", list(SUMS))
 def test_sums_of_a_decade_are_those_of_the_standard(name: str) -> None:
     assert math.fsum(SERIES[name].values) == pytest.approx(SUMS[name], abs=1e-9)
+
+
+def test_ratings_are_rounded_roots_of_ten() -> None:
+    """ISO 3, 4: the rounded values depart from the powers of the tenth root of ten by 1.26 % at most."""
+    off = [value / 10.0 ** (place / 10.0) - 1.0 for place, value in enumerate(R10.values)]
+    assert len(off) == 10 and max(map(abs, off)) < 0.0127
+    assert (R10.up(341.8), R10.up(32.0), R10.up(6.3e-3)) == (400.0, 40.0, 6.3e-3)
 
 
 def test_the_one_exception_and_what_two_series_share() -> None:
