@@ -15,6 +15,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from grammar.description import Expression
+from grammar.editing import edited
 from grammar.layout import write
 from grammar.mistakes import DescriptionError
 from grammar.quantities import ANGLE, show, unit_of
@@ -38,6 +39,7 @@ if TYPE_CHECKING:
     from simcore.campaign.face import What
     from simcore.campaign.results import Results
     from simcore.campaign.rows import Row
+    from simcore.campaign.solver import Task
 
 
 def read(path: str | Path) -> Design:
@@ -115,6 +117,23 @@ class Design:
         """
         return Design(self.project, {**self.settings, **{name: str(value) for name, value in values.items()}})
 
+    def edited(self, *lines: str, without: Sequence[str] = ()) -> Design:
+        """The design with statements changed: those of the kind and name of another take its place, others are added;
+        without: names of what is left out, or whole statements. The first design stays.
+
+        >>> import simcore
+        >>> bridge = simcore.read(simcore.library_folder() / "bench_supply.rect")
+        >>> snubbed = bridge.edited("ac1 -> s: resistor R_s, 100 Ohm", "s -> ac2: capacitor C_s, 100 nF")
+        >>> sorted(set(snubbed.graph.nodes) - set(bridge.graph.nodes))
+        ['s']
+        """
+        project = self.project
+        description, mistakes = edited(project.top.description, lines, without)
+        if mistakes:
+            raise DescriptionError(mistakes)
+        changed, mistakes = load_text(write(description), project.top.name, project.folder)
+        return Design(_sound(changed, mistakes).project, self.settings)
+
     def run(self, study: str) -> Result:
         """Solve a study, and those it starts from. KeyError for a name it does not have, NoSolution where it has
         none."""
@@ -133,13 +152,15 @@ class Design:
         studies: Sequence[str] = (),
         figures: Sequence[str] = (),
         workers: int | None = None,
+        others: Mapping[str, Design] | None = None,
     ) -> Results:
         """Solve many variants: a sweep of the description by its name, arrays of values by let (every combination), or
         variants one by one, as mappings of lets to values.
 
         A value is text as the language has it, or a number in the let's own SI unit. studies: those whose requirements
         are judged, by default the sweep's; figures: found besides what is required, of the first study unless they say
-        `at`; workers: processes, by default one a core. A variant that can't be solved has a row that says why.
+        `at`; workers: processes, by default one a core; others: designs by name that take the same variants, such as
+        edited ones. A variant that can't be solved has a row that says why.
 
         >>> import simcore
         >>> bridge = simcore.read(simcore.library_folder() / "bench_supply.rect")
@@ -151,7 +172,7 @@ class Design:
         """
         from simcore.campaign import face
 
-        return face.sweep(face.sweep_task(self._opened, what, studies, figures), workers)
+        return face.sweep(self._task(what, studies, figures, others), workers)
 
     def sweep_rows(
         self,
@@ -160,6 +181,7 @@ class Design:
         studies: Sequence[str] = (),
         figures: Sequence[str] = (),
         workers: int | None = None,
+        others: Mapping[str, Design] | None = None,
     ) -> Iterator[Row]:
         """The same one row after another, in the order of the variants and as soon as each is there.
 
@@ -173,7 +195,15 @@ class Design:
         """
         from simcore.campaign import face
 
-        return face.rows(face.sweep_task(self._opened, what, studies, figures), workers)
+        return face.rows(self._task(what, studies, figures, others), workers)
+
+    def _task(
+        self, what: What, studies: Sequence[str], figures: Sequence[str], others: Mapping[str, Design] | None
+    ) -> Task:
+        from simcore.campaign import face
+
+        opened = {name: other._opened for name, other in (others or {}).items()}
+        return face.sweep_task(self._opened, what, studies, figures, opened)
 
 
 @dataclass(frozen=True)

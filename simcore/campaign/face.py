@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Iterator, Mapping, Sequence
+from dataclasses import replace
 from typing import Any
 
 from grammar.description import Expression
@@ -15,7 +16,7 @@ from grammar.mistakes import DescriptionError, Mistake
 from grammar.quantities import Quantity
 from grammar.reader import read_expression
 from simcore.campaign.plan import Cell, Plan, Points, plan_of
-from simcore.campaign.results import Results
+from simcore.campaign.results import AS_DESCRIBED, Results
 from simcore.campaign.rows import Row
 from simcore.campaign.solver import Task
 from simcore.campaign.sweeping import solved_rows
@@ -29,8 +30,15 @@ What = str | Mapping[str, Sequence[Given] | Any] | Iterable[Mapping[str, Given]]
 """The name of a sweep, arrays of values by let (every combination), or variants one by one."""
 
 
-def sweep_task(opened: Opened, what: What, studies: Sequence[str], figures: Sequence[str]) -> Task:
-    """What a sweep asked for from Python takes. Raises DescriptionError with what is wrong with it."""
+def sweep_task(
+    opened: Opened,
+    what: What,
+    studies: Sequence[str],
+    figures: Sequence[str],
+    others: Mapping[str, Opened] | None = None,
+) -> Task:
+    """What a sweep asked for from Python takes; others: designs beside the one that is swept, by name. Raises
+    DescriptionError with what is wrong with it."""
     circuit = opened.circuit
     limits: Sequence[str] = ()
     if isinstance(what, str):
@@ -49,12 +57,29 @@ def sweep_task(opened: Opened, what: What, studies: Sequence[str], figures: Sequ
             raise _wrong(f"no study is called {name}", name, list(circuit.studies), opened)
     if not names:
         raise _wrong("there is no study", "", [], opened)
-    return Task(opened, plan, tuple(name for name in circuit.studies if name in names), tuple(map(_figure, figures)))
+    if others:
+        plan = replace(plan, axes=(Points((), (), (), designs=["", *others]), *plan.axes))
+        for name, other in others.items():
+            _check_other(name, other, plan, names)
+    chosen = tuple(name for name in circuit.studies if name in names)
+    return Task(opened, plan, chosen, tuple(map(_figure, figures)), others=dict(others or {}))
+
+
+def _check_other(name: str, other: Opened, plan: Plan, studies: Sequence[str]) -> None:
+    """Another design has what is varied and what is judged."""
+    if name in ("", AS_DESCRIBED):
+        raise _wrong(f'another design can\'t be called "{name}"', "", [], other)
+    for let in plan.lets:
+        if let not in other.circuit.lets:
+            raise _wrong(f"{name} has no let that is called {let}", let, list(other.circuit.lets), other)
+    for study in studies:
+        if study not in other.circuit.studies:
+            raise _wrong(f"{name} has no study that is called {study}", study, list(other.circuit.studies), other)
 
 
 def sweep(task: Task, workers: int | None) -> Results:
     """All rows of a task, in the order of its variants."""
-    return Results(task.plan, list(rows(task, workers)), task.claims, task.opened)
+    return Results(task.plan, list(rows(task, workers)), task.claims, task.designs)
 
 
 def rows(task: Task, workers: int | None) -> Iterator[Row]:

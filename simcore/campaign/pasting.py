@@ -5,31 +5,17 @@ It knows descriptions and variants, and nothing of what came of them.
 
 from __future__ import annotations
 
-import math
 from dataclasses import replace
 
 from grammar.description import Action, Expression, Let, Name, Spread, Study
-from grammar.quantities import ANGLE, Dimension, Quantity, quantity, show, unit_of
+from grammar.quantities import Quantity
 from grammar.reader import read_expression
 from grammar.writer import write_expression, write_statement
+from simcore.campaign.exact import exact
 from simcore.campaign.plan import Variant
 from simcore.design.circuit import Change, LetValue
 from simcore.design.elaborate import elaborate
 from simcore.opening import Opened
-
-_DIGITS = range(5, 18)
-
-
-def exact(value: float, dimension: Dimension) -> str:
-    """A value as a description writes it, as short as it can be for reading to give the same number."""
-    for digits in _DIGITS:
-        text = show(value, dimension, digits)
-        number, _, unit = text.partition(" ")
-        if quantity(float(number), unit).value == value:
-            return text
-    unit = unit_of(dimension)
-    number = repr(math.degrees(value) if dimension == ANGLE else value)
-    return f"{number} {unit}" if unit else number
 
 
 def value_text(value: Quantity | Expression | str) -> str:

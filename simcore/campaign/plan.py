@@ -13,6 +13,7 @@ from math import prod
 from grammar.mistakes import DescriptionError, Mistake
 from grammar.quantities import Dimension, Quantity
 from simcore.campaign.draws import CORNERS_OF_AT_MOST, corners, drawn, fraction_sentence, fractional_corners
+from simcore.campaign.exact import writable
 from simcore.design.circuit import (
     Change,
     LetValue,
@@ -31,11 +32,13 @@ Cell = float | str | None
 
 @dataclass(frozen=True)
 class Variant:
-    """One combination: its number, counted from 1, the values that lets take, and the faults."""
+    """One combination: its number, counted from 1, the values that lets take, the faults, and the name of the design
+    that takes them, "" for the one that is swept."""
 
     number: int
     values: dict[str, Quantity | str]
     faults: tuple[Change, ...] = ()
+    design: str = ""
 
 
 @dataclass(frozen=True)
@@ -43,8 +46,8 @@ class Points:
     """The points of one axis.
 
     lets: what it gives values; dimensions: of each, None for data sheets; rows: the values of each point
-    faults: of each point, () where the axis has none; drawn: whether the points are random draws; note: what the report
-    must say of how they were chosen
+    faults: of each point, () where the axis has none; designs: of each point the name of one, likewise; drawn: whether
+    the points are random draws; note: what the report must say of how they were chosen
     """
 
     lets: tuple[str, ...]
@@ -53,9 +56,10 @@ class Points:
     faults: Sequence[Change | None] = ()
     drawn: bool = False
     note: str = ""
+    designs: Sequence[str] = ()
 
     def __len__(self) -> int:
-        return len(self.faults) if self.faults else len(self.rows)
+        return len(self.faults or self.designs or self.rows)
 
 
 @dataclass(frozen=True)
@@ -80,9 +84,14 @@ class Plan:
         return any(axis.faults for axis in self.axes)
 
     @property
+    def of_designs(self) -> bool:
+        """Whether any axis has designs."""
+        return any(axis.designs for axis in self.axes)
+
+    @property
     def alike(self) -> int:
-        """How many variants have no fault, or the same one: those that may share emitted equations."""
-        return prod(len(axis) for axis in self.axes if not axis.faults)
+        """How many variants have the same design and faults: those that may share emitted equations."""
+        return prod(len(axis) for axis in self.axes if not axis.faults and not axis.designs)
 
     def place(self, index: int) -> tuple[int, ...]:
         """The point of each axis at which the variant of an index, counted from 0, lies."""
@@ -96,18 +105,22 @@ class Plan:
         """The variant of an index, counted from 0."""
         values: dict[str, Quantity | str] = {}
         faults: list[Change] = []
+        design = ""
         for axis, point in zip(self.axes, self.place(index), strict=True):
             if axis.faults:
                 fault = axis.faults[point]
                 faults += [] if fault is None else [fault]
+                continue
+            if axis.designs:
+                design = axis.designs[point]
                 continue
             for let, dimension, cell in zip(axis.lets, axis.dimensions, axis.rows[point], strict=True):
                 if isinstance(cell, str):
                     values[let] = cell
                 elif cell is not None:
                     assert dimension is not None
-                    values[let] = Quantity(cell, dimension)
-        return Variant(index + 1, values, tuple(faults))
+                    values[let] = Quantity(writable(cell, dimension), dimension)
+        return Variant(index + 1, values, tuple(faults), design)
 
     def lines(self) -> Iterator[str]:
         """Everything that makes the plan what it is, line by line."""
@@ -115,6 +128,7 @@ class Plan:
             yield repr((axis.lets, axis.dimensions))
             yield from map(repr, axis.rows)
             yield from map(repr, axis.faults)
+            yield repr(axis.designs)
 
 
 def plan_of(sweep: PlannedSweep, lets: Mapping[str, LetValue], sentence: str = "") -> Plan:

@@ -6,8 +6,8 @@ It knows plans and rows, and lays nothing out.
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Any
 
@@ -23,6 +23,8 @@ from simcore.opening import Opened
 
 CONFIDENCE = 0.95
 SOURCE = "Clopper, Pearson, Biometrika 26, 1934"
+AS_DESCRIBED = "as described"
+"""What the design that is swept is called beside others, and a variant that changes nothing."""
 _ORDER = (State.FAILS, State.UNDECIDED, State.NOT_JUDGED, State.HOLDS)
 
 
@@ -52,12 +54,15 @@ class PassRate:
 class Results:
     """A sweep solved.
 
-    plan: its variants; rows: one each, in their order; claims: what was found of them; opened: the design they vary
+    plan: its variants; rows: one each, in their order; claims: what was found of them; designs: those
+    that variants are of, by the name that they know them by
     """
 
-    def __init__(self, plan: Plan, rows: Sequence[Row], claims: Sequence[Claim], opened: Opened | None = None):
+    def __init__(
+        self, plan: Plan, rows: Sequence[Row], claims: Sequence[Claim], designs: Mapping[str, Opened] | None = None
+    ):
         self.plan = plan
-        self.opened = opened
+        self.designs = designs or {}
         self.rows = list(rows)
         found = {claim.key: claim for claim in claims}
         for row in self.rows:
@@ -80,6 +85,8 @@ class Results:
         for let, dimension in self.plan.lets.items():
             heading = let if dimension is None else _with_unit(let, unit_of(dimension))
             table[heading] = [_cell(variant.values.get(let)) for variant in variants]
+        if self.plan.of_designs:
+            table["design"] = [variant.design or AS_DESCRIBED for variant in variants]
         if self.plan.faulted:
             table["fault"] = [faults_text(variant.faults) for variant in variants]
         found = [{each.claim.key: each for each in row.found} for row in self.rows]
@@ -132,8 +139,9 @@ class Results:
         return [Worst(claim, None, None) if at is None else Worst(claim, at[1], at[2]) for claim, at in found]
 
     def pasted(self, row: Row) -> list[str]:
-        """The variant of a row as lines of a description, to take the place of those of the same names."""
-        return pasted_lines(self.opened, self.plan.variant(row.number - 1))
+        """The variant of a row as lines of its design's text, to take the place of those of the same names."""
+        variant = self.plan.variant(row.number - 1)
+        return pasted_lines(self.designs.get(variant.design), variant)
 
     @property
     def counts(self) -> tuple[int, int, int]:
@@ -158,8 +166,9 @@ class Results:
         passing = sum(self.rows[index].passes for index in group)
         variant = self.plan.variant(group[0])
         random = {let for axis, own in zip(self.plan.axes, drawn, strict=True) if own for let in axis.lets}
-        fixed = Variant(0, {let: value for let, value in variant.values.items() if let not in random}, variant.faults)
-        at = ", ".join(variant_words(fixed)) if len(random) < len(self.plan.lets) or self.plan.faulted else ""
+        fixed = replace(variant, values={let: each for let, each in variant.values.items() if let not in random})
+        one = len(random) == len(self.plan.lets) and not self.plan.faulted and not self.plan.of_designs
+        at = "" if one else ", ".join(variant_words(fixed)) or AS_DESCRIBED
         return PassRate(at, passing, len(group), *interval(passing, len(group)))
 
     @property
@@ -208,7 +217,6 @@ def faults_text(faults: Sequence[Change]) -> str:
 
 
 def variant_words(variant: Variant) -> list[str]:
-    """What a variant has, each as `name = value` or a fault."""
-    return [f"{let} = {value_text(value)}" for let, value in variant.values.items()] + [
-        f"{fault.verb} {fault.target}" for fault in variant.faults
-    ]
+    """What a variant has: the name of another design, each value as `name = value`, each fault."""
+    values = [f"{let} = {value_text(value)}" for let, value in variant.values.items()]
+    return [*filter(None, [variant.design]), *values, *(f"{fault.verb} {fault.target}" for fault in variant.faults)]

@@ -9,7 +9,7 @@ import pickle
 import threading
 import time
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 from grammar.description import Expression
 from grammar.mistakes import DescriptionError, Mistake
@@ -41,8 +41,9 @@ PAYS = 2.0
 class Task:
     """All that solving the variants of a sweep takes.
 
-    studies: those whose requirements are judged; figures: asked for besides, of the first study unless they say `at`
-    billed: whether what each element has to stand is found besides
+    studies: those whose requirements are judged; figures: asked for besides, of the first study unless they say `at`;
+    billed: whether what each element has to stand is found besides; others: designs that an axis of the plan names,
+    each with all that the plan varies
     """
 
     opened: Opened
@@ -50,12 +51,19 @@ class Task:
     studies: tuple[str, ...]
     figures: tuple[Expression, ...] = ()
     billed: bool = False
+    others: Mapping[str, Opened] = field(default_factory=dict)
+
+    @property
+    def designs(self) -> Mapping[str, Opened]:
+        """All designs by the name that variants know them by."""
+        return {"": self.opened, **self.others}
 
     @property
     def claims(self) -> list[Claim]:
-        """The requirements of the design; a variant with other counts of parts may have more or fewer."""
-        circuit = self.opened.circuit
-        return [claim_of(each) for each in spread(circuit, circuit.requirements) if each.study in self.studies]
+        """The requirements of the designs; a variant with other counts of parts may have more or fewer."""
+        circuits = [opened.circuit for opened in self.designs.values()]
+        required = [each for circuit in circuits for each in spread(circuit, circuit.requirements)]
+        return list(dict.fromkeys(claim_of(each) for each in required if each.study in self.studies))
 
 
 class Solver:
@@ -65,7 +73,7 @@ class Solver:
         self.task = task
         self.claims = task.claims
         self._kernels = KernelCache()
-        self._elaborator = Elaborator(task.opened)
+        self._elaborators = {name: Elaborator(opened) for name, opened in task.designs.items()}
 
     def block(self, start: int, stop: int) -> str:
         """The rows of the variants from an index, counted from 0, to another, as one line."""
@@ -110,7 +118,7 @@ class Solver:
 
     def judged(self, variant: Variant) -> Judged:
         """A variant's studies solved and its requirements judged. Raises DescriptionError, NoSolution."""
-        opened = self._elaborator.varied(variant)
+        opened = self._elaborators[variant.design].varied(variant)
         return solve_and_judge(opened, self.task.studies, self.task.figures, self._kernels.afresh())
 
 

@@ -28,7 +28,7 @@ class Keeping:
 
 
 def fingerprint(task: Task) -> str:
-    """A digest of all that the rows of a task depend on: the design in full, what is varied, and the version."""
+    """A digest of all that the rows of a task depend on: the designs in full, what is varied, and the version."""
     digest = hashlib.sha256()
 
     def add(text: str) -> None:
@@ -36,10 +36,12 @@ def fingerprint(task: Task) -> str:
         digest.update(b"\n")
 
     add(__version__)
-    for unit in _units(task.opened.project.top):
-        add(repr(unit.description))
-    add(repr(dict(task.opened.overrides)))
-    add(repr(task.opened.circuit.elements))
+    for name, opened in task.designs.items():
+        add(name)
+        for unit in _units(opened.project.top):
+            add(repr(unit.description))
+        add(repr(dict(opened.overrides)))
+        add(repr(opened.circuit.elements))
     add(repr((task.plan.name, task.studies, task.figures, task.billed)))
     for line in task.plan.lines():
         add(line)

@@ -192,7 +192,7 @@ def _solve(
             keeping = Keeping(journal, _goes_on(journal, resume))
             with progress(sweep.name, len(task.plan), complain) as tell:
                 rows = list(solved_rows(task, crew, keeping, tell=tell))
-            results = Results(task.plan, rows, task.claims, task.opened)
+            results = Results(task.plan, rows, task.claims, task.designs)
             write_sweep(results, path)
     except KeyboardInterrupt:
         complain(f"what is finished of {sweep.name} is kept in {journal.path}; run it again with --resume to go on")

@@ -11,7 +11,7 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from grammar.quantities import quantity, show
-from simcore.campaign.results import CONFIDENCE, SOURCE, PassRate, Results, Worst, variant_words
+from simcore.campaign.results import AS_DESCRIBED, CONFIDENCE, SOURCE, PassRate, Results, Worst, variant_words
 from simcore.campaign.rows import Found
 from simcore.campaign.sensitivity import Sensitivity
 from simcore.report.tables import INDENT, table
@@ -95,7 +95,7 @@ def _unsolved(results: Results) -> list[str]:
     failed = [row for row in results.rows if not row.solved]
     lines = []
     for row in failed[:_REASONS]:
-        words = ", ".join(variant_words(results.plan.variant(row.number - 1))) or "as described"
+        words = ", ".join(variant_words(results.plan.variant(row.number - 1))) or AS_DESCRIBED
         lines.append(f"{INDENT}variant {row.number} ({words}) was not solved: {row.ended}")
     if len(failed) > _REASONS:
         lines.append(f"{INDENT}and {len(failed) - _REASONS} more: see the column `ended` of the table")

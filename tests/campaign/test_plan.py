@@ -13,7 +13,7 @@ import simcore
 from grammar.quantities import ANGLE, FARAD, NONE, OHM, VOLT, Quantity, quantity
 from grammar.reader import read_expression
 from simcore.campaign.draws import drawn, fractional_corners
-from simcore.campaign.pasting import exact
+from simcore.campaign.exact import exact, writable
 from simcore.campaign.plan import Plan, plan_of
 from simcore.campaign.results import faults_text
 from simcore.design.circuit import LetValue
@@ -127,7 +127,16 @@ def test_a_value_as_text_is_the_same_number(number: float, dimension) -> None:
 
 
 def test_an_angle_as_text_is_in_degrees() -> None:
-    assert exact(np.pi / 2.0, ANGLE) == "90 deg"
+    """Some angles lie between the doubles that are numbers of degrees: the next of these stands for them."""
+    assert exact(np.pi / 2.0, ANGLE) == "90 deg" and writable(np.pi / 3.0, ANGLE) == np.pi / 3.0
+    angles, moved = np.random.default_rng(3).uniform(0.5, 3.0, 400).tolist(), 0
+    for angle in angles:
+        held = writable(angle, ANGLE)
+        number, _, unit = exact(held, ANGLE).partition(" ")
+        assert quantity(float(number), unit) == Quantity(held, ANGLE) and writable(held, ANGLE) == held
+        assert abs(held - angle) <= 4e-16 * angle
+        moved += held != angle
+    assert 0 < moved < 200
 
 
 def test_names_on_which_what_is_asked_depends() -> None:

@@ -80,7 +80,7 @@ def compared(name: str, count: int, workers: int) -> list[Row]:
     plan = planned(design, count, random.Random(name))
     task = task_of(design, plan, figures)
     rows = list(solved_rows(task, Processes(workers) if workers > 1 else Here(), block=3))
-    results = Results(plan, rows, task.claims, task.opened)
+    results = Results(plan, rows, task.claims, task.designs)
     for row in rows:
         assert encode([alone(design, row, results.pasted(row), figures)], []) == encode([row], [])
     return rows
@@ -102,7 +102,7 @@ def test_a_variant_in_a_sweep_is_that_variant_alone(name: str) -> None:
 @pytest.mark.parametrize("name", WORKED)
 def test_every_variant_of_every_worked_circuit_is_that_variant_alone(name: str) -> None:
     rows = compared(name, OF_EACH, 2)
-    assert len(rows) >= 9 and any(row.solved for row in rows)
+    assert len(rows) >= 7 and any(row.solved for row in rows)
 
 
 @pytest.mark.nightly
