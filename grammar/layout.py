@@ -8,7 +8,7 @@ from __future__ import annotations
 from bisect import bisect, bisect_left
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
-from itertools import groupby
+from itertools import groupby, pairwise
 from typing import Any
 
 from grammar import description as nodes
@@ -297,7 +297,7 @@ class _Commented:
             settings = [(setting, write_setting(setting)) for setting in statement.settings]
             starts = [setting.span.start for setting in statement.settings]
             cuts = [bisect_left(starts, part.tokens[0].start) for part in body]
-            texts = [settings[cut:after] for cut, after in zip(cuts, [*cuts[1:], len(starts)], strict=True)]
+            texts = [settings[cut:after] for cut, after in pairwise([*cuts, len(starts)])]
         items = []
         for part, own in zip(body, texts, strict=True):
             head = self._as_written(part)
