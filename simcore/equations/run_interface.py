@@ -4,7 +4,7 @@ The function is `run(p, s, out, c)`.
 p: parameters. s: t, H, then states, nonlinear branches' voltages, peaks of the states and of the watched currents, ends
 of the columns, how far each threshold is passed; read and written back. out: records of 2 + 2 * columns numbers: time
 at the end of a step, each column's middle and end value, 1 where a nonlinear branch began or ceased to conduct within
-it (a kink or jump lies inside), else 0.
+it or a voltage jumped (a kink or jump lies inside), else 0.
 c: the controls, in the order of CONTROLS. With responses a further argument m holds four squares of the number of
 states: the derivative of the states by those at the start, direction by direction, and room for three more. Returns
 (status, numbers written, steps, rejected, solves, iterations, weak pivots, which). After so many attempts at a step as
@@ -50,8 +50,11 @@ BLOCKED, PATIENCE = 0.01, 8
 """Agreement, over the law's scale, of a branch that blocks, and the iterations after which any will do: the rounding of
 the large voltages around such a branch is all that moves it, and while it blocks it errs by less than its leakage. A
 branch that carries next to nothing needs no better then than the least error that the control of the step sees."""
-
-
+JUMP = 100.0
+"""Difference of a voltage's two last orders at which it jumps, over the step's tolerance and the voltage that needs no
+accuracy: the tolerance of the circuit's largest."""
+UNEVEN = 8
+"""Steps from a kink on in which a voltage may jump."""
 BEYOND = 60.0
 """Most that the iterate of a junction lies above its critical voltage, over the scale of its law: it would carry 1e26
 times its critical current there."""

@@ -14,14 +14,17 @@ from __future__ import annotations
 from simcore.equations.assemble import System
 from simcore.equations.emit import Emitter, names_first
 from simcore.equations.limiting import limited
+from simcore.equations.record_source import extrapolated, recording
 from simcore.equations.run_interface import (
     BLOCKED,
     CONTROLS,
     EVENT,
     FULL,
+    JUMP,
     NO_CONVERGENCE,
     PATIENCE,
     SHORT,
+    UNEVEN,
     record_width,
     saved_groups,
     watched_columns,
@@ -117,6 +120,7 @@ class RunSource:
         add(1, "mean1, mean2, mean3 = 1.5 * take1, 0.75 * take2, 0.5 * take3")
         add(1, "status = 0", "position = 0", "steps = 0", "rejected = 0", "solves = 0", "iterations = 0", "weak = 0")
         add(1, "failures = 0", "landing = 0.0", "kink = 0.0", "stuck = 0", "largest_error = 0")
+        add(1, f"jump_size = {JUMP!r} * floor_voltage * tolerance", f"uneven = {UNEVEN}")
 
     def _choose_size(self) -> None:
         self._add(
@@ -235,7 +239,7 @@ class RunSource:
         add = self._add
         add(2, "kink = 0.0")
         for index, column in enumerate(self.watched):
-            add(2, f"q{index} = {_end(column)}")
+            add(2, f"q{index} = {extrapolated(column)}")
         for index in range(len(self.system.junctions)):
             add(2, f"if (u{index} > g{index}) != (n{index} > g{index}):", "    kink = 1.0")
         add(2, "if kink > 0.0 and order > 1 and size > 1.01 * kink_size and size > smallest:")
@@ -308,7 +312,8 @@ class RunSource:
             "u# = n#",
         )
         self._approach()
-        self._record()
+        self._add(2, *recording(self.system, self.watched))
+        self._add(2, f"uneven = {UNEVEN} if kink > 0.0 else uneven - 1")
         if self.system.thresholds:
             add(2, "if event > 0:", f"    status = {EVENT}", "    break")
 
@@ -335,23 +340,6 @@ class RunSource:
         )
         self._add(2, *(line.replace("#", str(index)) for line in lines))
 
-    def _record(self) -> None:
-        """Each column's end, and a middle that gives the quadratic the extrapolated integral of the step: charges add
-        up."""
-        add = self._add
-        columns = range(len(self.system.columns))
-        add(2, "if record > 0.0:", "    out[position] = now")
-        for i in columns:
-            mean = f"mean1 * c1_{i} + mean2 * (m2_{i} + c2_{i}) + mean3 * (m3_{i} + c3_{i})"
-            known = f"q{self.watched.index(i)}" if i in self.watched else _end(i)
-            add(
-                3,
-                f"r = {known}",
-                f"out[position + {1 + 2 * i}] = {mean} - 0.25 * (l{i} + r)",
-            )
-            add(3, f"out[position + {2 + 2 * i}] = r", f"l{i} = r")
-        add(3, f"out[position + {1 + 2 * len(columns)}] = kink", f"position += {record_width(self.system)}")
-
     def _epilogue(self, states: int, junctions: int) -> None:
         self._add(1, "s[0] = now", "s[1] = wish")
         position = 2
@@ -361,8 +349,3 @@ class RunSource:
         event = f"event if status == {EVENT} else " if self.system.thresholds else ""
         which = f"{event}(stuck if status == {NO_CONVERGENCE} else largest_error)"
         self._add(1, f"return status, position, steps, rejected, solves, iterations, weak, {which}")
-
-
-def _end(column: int) -> str:
-    """A column's extrapolated value at the end of a step."""
-    return f"take1 * c1_{column} + take2 * c2_{column} + take3 * c3_{column}"

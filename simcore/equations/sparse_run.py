@@ -20,10 +20,12 @@ from simcore.equations.run_interface import (
     DONE,
     EVENT,
     FULL,
+    JUMP,
     NO_CONVERGENCE,
     PATIENCE,
     ROUNDING,
     SHORT,
+    UNEVEN,
     record_width,
 )
 from simcore.equations.values import Value
@@ -98,7 +100,8 @@ class _Attempt:
         self.floors = np.array([float(value) for value in evaluate(small, inputs)])
         self.incidence = self._incidence(inputs)
         self.position = self.steps = self.rejected = self.solves = self.iterations = self.failures = 0
-        self.now, self.wish, self.landing = s[0], s[1], False
+        self.now, self.wish, self.landing, self.uneven = s[0], s[1], False, UNEVEN
+        self.voltages = np.array([column.branch is None for column in run._system.columns], dtype=bool)
 
     def _incidence(self, inputs: dict[str, float]) -> Any:
         """Weights of the free unknowns in each companion's voltage, shape (unknowns, companions), sparse."""
@@ -309,11 +312,22 @@ class _Attempt:
         self._cut(size, found[-1][2])
         self._approach(size, self._reached(found))
         if self.c["record"] > 0.0:
+            jump = self._jumped(found)
+            ends = found[-1][1][-1][:columns] if jump else ends
             middle = 1.5 * mean - 0.25 * (self.ends + ends)
-            row = [stop, *np.stack([middle, ends], axis=1).ravel().tolist(), float(self.kink)]
+            row = [stop, *np.stack([middle, ends], axis=1).ravel().tolist(), float(self.kink or jump)]
             self.out[self.position : self.position + len(row)] = row
             self.position += len(row)
             self.ends = ends
+        self.uneven = UNEVEN if self.kink else self.uneven - 1
+
+    def _jumped(self, found: list) -> bool:
+        """Whether extrapolation would overshoot a jump of a voltage (see record_source)."""
+        if self.c["order"] != 3 or not (self.kink or self.uneven > 0):
+            return False
+        columns = self.run._counts[3]
+        difference = _combine(_ERRORS[3], [parts[-1][:columns][self.voltages] for _, parts, _ in found])
+        return bool(np.any(np.abs(difference) > JUMP * self.c["floor_voltage"] * self.c["tolerance"]))
 
     def _cut(self, size: float, n: np.ndarray) -> None:
         """Shorten the next step to end where a blocked junction is about to conduct."""

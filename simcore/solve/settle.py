@@ -23,6 +23,9 @@ _OF_TOLERANCE = 0.01
 """Or this share of the tolerance of a step, where that is more."""
 _NEAR, _FAR = 1e-2, 0.1
 """Newton's correction below which the derivative at hand will do, and above which a plain period follows it."""
+_LITTLE = 1e-5
+"""What a period adds, below which Newton's whole correction is tried however far it goes: states that forget within
+thousands of periods change so little in one that following them would take as many."""
 _SHRINKS = 0.25
 """Least shrinking of a correction by a derivative at hand."""
 _ROUNDS = 30
@@ -174,23 +177,25 @@ def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
     A correction that makes the residual grow is taken back and made shorter. The steps of a run make its map rough by
     about their tolerance: where residuals of that size no longer shrink, the best state is as good as can be told.
     """
-    pseudo, since = _FIRST, 0
+    pseudo, since, whole = _FIRST, 0, True
+    roughness = 3.0 * way.stepping.tolerance
     base = best = _point(way, way.follow(start))
     for _ in range(_ROUNDS):
         if base is None or best is None:
             return None
         near = best.distance <= _NEAR and since == 0
         found = _closed(way, best.corrected(), best.derivative) if near else None
-        if found is None and since >= _STANDING and best.size <= 3.0 * way.stepping.tolerance:
+        if found is None and since >= _STANDING and best.size <= roughness:
             _, stretches = way.record(best.corrected())
             found = _described(way, best.derivative, best.distance, stretches)
         if found is not None:
             return found if found.multiplier <= _LEAVES else None
-        far = base.distance > _FAR
+        far = base.distance > _FAR and not (whole and base.size <= max(_LITTLE, roughness))
         point = _point(way, way.follow(base.corrected(pseudo)) if far else base.corrected())
         if point is None:
             return None
-        if point.size > 1.5 * base.size and pseudo > _SHORTEST:
+        whole = point.size <= 1.5 * base.size or pseudo <= _SHORTEST
+        if not whole:
             pseudo /= 8.0
         else:
             pseudo *= min(_GROWTH * max(base.size / max(point.size, 1e-300), 1.0), _LARGEST_GROWTH)
@@ -232,8 +237,10 @@ def _described(way: _Map, derivative: np.ndarray, distance: float, stretches: li
 
 
 def _left(multiplier: float) -> str:
-    """What the largest multiplier says."""
-    return f"largest multiplier {multiplier:.3g}, the share of a disturbance that is left after a period"
+    """What the largest multiplier says; of one next to 1, by how much it is less."""
+    rest = 1.0 - multiplier
+    shown = f"1 - {rest:.1g}" if _FREE <= rest < 5e-4 else f"{multiplier:.3g}"
+    return f"largest multiplier {shown}, the share of a disturbance that is left after a period"
 
 
 def _by_following(way: _Map, start: np.ndarray) -> Settled:
