@@ -106,10 +106,11 @@ def solve_and_judge(
     more: Iterable[Expression] = (),
     kernels: KernelCache | None = None,
     watch: Watch | None = None,
+    sure: bool = True,
 ) -> Judged:
     """Solve the named studies, and those that their requirements and the figures in `more` take figures from, and judge
-    the requirements on them; kernels: where runs of earlier circuits are kept. Raises NoSolution where a study can't be
-    solved."""
+    the requirements on them; kernels: where runs of earlier circuits are kept; sure: whether what is undecided is
+    solved tighter. Raises NoSolution where a study can't be solved."""
     circuit = opened.circuit
     requirements = [requirement for requirement in circuit.requirements if requirement.study in names]
     others = dict.fromkeys(study for each in requirements for study in _taken(each))
@@ -117,7 +118,9 @@ def solve_and_judge(
     needed = [name for name in circuit.studies if name in names or name in others]
 
     def doubtful(name: str, coarse: Mapping[str, Record], fine: Mapping[str, Record]) -> bool:
-        """Whether a verdict that a study takes part in lies within its bound of the limit."""
+        """Whether a verdict that a study takes part in lies within its bound of the limit, and that matters."""
+        if not sure:
+            return False
         pairs = [(each, _taken(each)) for each in requirements]
         asked = [each for each, taken in pairs if name in taken and all(part in fine for part in taken)]
         return any(verdict.state is State.UNDECIDED for verdict in judge(asked, coarse, fine))

@@ -6,18 +6,20 @@ It opens and proves the design at each value; it prints and writes nothing.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
+from itertools import pairwise
 
 from grammar.description import Require
 from grammar.mistakes import DescriptionError, Mistake
 from grammar.quantities import ANGLE, Dimension, Quantity, unit_of
 from grammar.reader import read_text
 from simcore.design.files import Project
+from simcore.equations.kernel import KernelCache
 from simcore.judge.preferred import Series
-from simcore.judge.sizing import POINTS, Judged, Sizing, size
+from simcore.judge.sizing import POINTS, Judged, Sizing, Turn, size
 from simcore.opening import Opened, open_project
-from simcore.proof import prove
+from simcore.proof import solve_and_judge
 from simcore.solve.failure import NoSolution
 
 REACH = 30.0
@@ -63,6 +65,7 @@ class Sizer:
         self.project = project
         self.settings = dict(settings)
         self.series = series
+        self.kernels = KernelCache()
 
     def opened(self, values: Mapping[str, str]) -> Opened:
         """The design with some lets at other values, as text."""
@@ -94,22 +97,48 @@ class Sizer:
             raise DescriptionError([Mistake("the range is empty", cure, file=f"--from {first} --to {last}")])
         return low, high, own.dimension
 
-    def size(self, let: str, first: str | None = None, last: str | None = None, **fixed: str) -> Sized:
-        """Size a let between two values as text; fixed: other lets at other values."""
+    def size(
+        self,
+        let: str,
+        first: str | None = None,
+        last: str | None = None,
+        fixed: Mapping[str, str] | None = None,
+        near: Sequence[Turn] = (),
+    ) -> Sized:
+        """Size a let between two values as text; fixed: other lets at other values; near: turns to look for first."""
         low, high, dimension = self.span(let, first, last)
 
-        def judge(value: float) -> Judged:
-            opened = self.opened({**fixed, let: written(value, dimension)})
+        def judge(value: float, sure: bool) -> Judged:
+            opened = self.opened({**(fixed or {}), let: written(value, dimension)})
             names = list(dict.fromkeys(requirement.study for requirement in opened.circuit.requirements))
             try:
-                return Judged(value, prove(opened, names).verdicts)
+                return Judged(value, solve_and_judge(opened, names, kernels=self.kernels.afresh(), sure=sure).verdicts)
             except NoSolution as failure:
                 return Judged(value, [], str(failure))
 
-        return Sized(let, dimension, low, high, size(judge, low, high, self.series))
+        return Sized(let, dimension, low, high, size(judge, low, high, self.series, near))
 
     def trade(self, outer: str, inner: str, first: str | None, last: str | None) -> list[tuple[float, Sized]]:
-        """The inner let sized at values of the outer one, evenly spaced on a logarithmic scale."""
+        """The inner let sized at values of the outer one, evenly spaced on a logarithmic scale.
+
+        At the first, middle and last of them the whole range is looked through. In between, where the neighbours of
+        that kind turn alike, turns are looked for where they lead to, straight between them on logarithmic scales.
+        """
         low, high, dimension = self.span(outer, first, last)
         values = [low * (high / low) ** (place / (POINTS - 1)) for place in range(POINTS)]
-        return [(value, self.size(inner, **{outer: written(value, dimension)})) for value in values]
+        at = [{outer: written(value, dimension)} for value in values]
+        marks = [0, POINTS // 2, POINTS - 1]
+        found = {mark: self.size(inner, fixed=at[mark]) for mark in marks}
+        for start, end in pairwise(marks):
+            ends = found[start].sizing.turns, found[end].sizing.turns
+            alike = [turn.above for turn in ends[0]] == [turn.above for turn in ends[1]]
+            for place in range(start + 1, end):
+                share = (place - start) / (end - start)
+                near = [_between(*pair, share) for pair in zip(*ends, strict=True)] if alike else []
+                found[place] = self.size(inner, fixed=at[place], near=near)
+        return [(values[place], found[place]) for place in range(POINTS)]
+
+
+def _between(one: Turn, other: Turn, share: float) -> Turn:
+    """Where a turn is expected between two others."""
+    return replace(one, value=one.value ** (1.0 - share) * other.value**share)

@@ -19,6 +19,8 @@ POINTS = 13
 RESOLUTION = 1e-4
 """Relative width to which a turn is narrowed down."""
 MOST_STEPS = 60
+NEARNESS, WIDENINGS = 1.1, 4
+"""Ratio within which a turn that is expected is looked for, and how often it is squared."""
 TRIES = 3
 """Preferred values that are tried beyond a turn: the first can lie within the bound of the verdict."""
 
@@ -79,42 +81,74 @@ class Sizing:
         return self.met_throughout or any(turn.preferred is not None for turn in self.turns)
 
 
-def size(judge: Callable[[float], Judged], low: float, high: float, series: Series) -> Sizing:
-    """Find where the requirement begins to be met between two values above zero.
+Judge = Callable[[float, bool], Judged]
+"""Judges the design at a value; whether it has to be sure of its verdicts: a search only follows margins."""
+
+
+def size(judge: Judge, low: float, high: float, series: Series, near: Sequence[Turn] = ()) -> Sizing:
+    """Find where the requirement begins to be met between two values above zero; near: turns expected, if any.
 
     The scan is even on a logarithmic scale; each change of sign of the margin between two neighbours is narrowed down
     by Brent's method (R. P. Brent, Algorithms for Minimization without Derivatives, 1973), which needs no slope and so
-    also finds a jump. So a requirement that is met in the middle only has two turns.
+    also finds a jump. So a requirement that is met in the middle only has two turns. Turns that are expected are looked
+    for around where they are, and there is no scan where each is found.
     """
+    tried: dict[tuple[float, bool], Judged] = {}
+
+    def at(value: float, sure: bool = False) -> Judged:
+        if (value, sure) not in tried:
+            tried[value, sure] = judge(value, sure)
+        return tried[value, sure]
+
+    spans = _around(at, near, low, high)
+    if spans is None:
+        ratio = high / low
+        scan = [low, *(low * ratio ** (place / (POINTS - 1)) for place in range(1, POINTS - 1)), high]
+        met = [at(value).share >= 0.0 for value in scan]
+        spans = [span for span, ends in zip(pairwise(scan), pairwise(met), strict=True) if ends[0] != ends[1]]
+    turns = [_turn(at, span, low, high, series) for span in spans]
+    sure = {value: judged for (value, sure), judged in sorted(tried.items())}
+    return Sizing([sure[value] for value in sorted(sure)], turns)
+
+
+def _around(
+    at: Callable[[float], Judged], near: Sequence[Turn], low: float, high: float
+) -> list[tuple[float, float]] | None:
+    """A span around each expected turn in which the requirement does turn that way; None where one is not found, or
+    none is expected."""
+    found = []
+    for turn in near:
+        for power in range(WIDENINGS):
+            ratio = NEARNESS ** (2**power)
+            span = max(turn.value / ratio, low), min(turn.value * ratio, high)
+            before, after = (at(value).share >= 0.0 for value in span)
+            if before != after:
+                break
+        else:
+            return None
+        if after != turn.above:
+            return None
+        found.append(span)
+    return found or None
+
+
+def _turn(at: Callable[..., Judged], span: tuple[float, float], low: float, high: float, series: Series) -> Turn:
+    """The turn within a span of values, narrowed down."""
     from scipy.optimize import brentq
 
-    tried: dict[float, Judged] = {}
-
-    def at(value: float) -> Judged:
-        if value not in tried:
-            tried[value] = judge(value)
-        return tried[value]
-
-    ratio = high / low
-    scan = [low, *(low * ratio ** (place / (POINTS - 1)) for place in range(1, POINTS - 1)), high]
-    met = [at(value).share >= 0.0 for value in scan]
-    exact = {math.log(value): value for value in scan}
+    exact = {math.log(value): value for value in span}
 
     def share(exponent: float) -> float:
         return at(exact.get(exponent, math.exp(exponent))).share
 
-    turns = []
-    for (left, before), (right, after) in pairwise(zip(scan, met, strict=True)):
-        if before != after:
-            ends = math.log(left), math.log(right)
-            found, _ = brentq(share, *ends, xtol=RESOLUTION, maxiter=MOST_STEPS, full_output=True, disp=False)
-            value = min(max(math.exp(found), left), right)
-            turns.append(Turn(value, after, _preferred(at, value, after, low, high, series)))
-    return Sizing([tried[value] for value in sorted(tried)], turns)
+    above = at(span[1]).share >= 0.0
+    found, _ = brentq(share, *exact, xtol=RESOLUTION, maxiter=MOST_STEPS, full_output=True, disp=False)
+    value = min(max(math.exp(found), span[0]), span[1])
+    return Turn(value, above, _preferred(at, value, above, low, high, series))
 
 
 def _preferred(
-    at: Callable[[float], Judged], turn: float, above: bool, low: float, high: float, series: Series
+    at: Callable[..., Judged], turn: float, above: bool, low: float, high: float, series: Series
 ) -> Judged | None:
     """The first preferred value beyond a turn at which the requirement holds for certain."""
     value = turn
@@ -122,7 +156,7 @@ def _preferred(
         value = series.up(value) if above else series.down(value)
         if not low <= value <= high:
             return None
-        judged = at(value)
+        judged = at(value, True)
         if judged.holds:
             return judged
         value *= 1.0 + RESOLUTION if above else 1.0 - RESOLUTION

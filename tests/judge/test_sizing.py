@@ -12,17 +12,17 @@ from simcore.figures.figure import Figure
 from simcore.judge.held import Verdict
 from simcore.judge.outcome import State
 from simcore.judge.preferred import SERIES
-from simcore.judge.sizing import Judged, Sizing, size
+from simcore.judge.sizing import POINTS, Judge, Judged, Sizing, Turn, size
 from simcore.sized import Sizer, with_claim, written
 
 REQUIREMENT = Requirement("s", "<=", None, None, None, "made up")
 UNSURE = 1e-3
 
 
-def judge(margin: Callable[[float], float]) -> Callable[[float], Judged]:
+def judge(margin: Callable[[float], float]) -> Judge:
     """Judges a limit of 1 ohm by a margin; within UNSURE of it nothing is decided."""
 
-    def at(value: float) -> Judged:
+    def at(value: float, sure: bool) -> Judged:
         left = margin(value)
         state = State.UNDECIDED if abs(left) <= UNSURE else (State.HOLDS if left > 0.0 else State.FAILS)
         limit, found = Figure(1.0, OHM), Figure(left, OHM, UNSURE)
@@ -75,9 +75,35 @@ def test_a_preferred_value_beyond_the_range_is_none() -> None:
     assert turn.preferred is None
 
 
+def test_a_turn_that_is_expected_is_found_without_a_scan() -> None:
+    """And one that is not where it is expected, or turns the other way, is found by one."""
+    asked: list[tuple[float, bool]] = []
+
+    def at(value: float, sure: bool) -> Judged:
+        asked.append((value, sure))
+        return judge(lambda value: math.log(value / 5.0))(value, sure)
+
+    for expected, above, scanned in ((4.9, True, False), (4.0, True, False), (0.1, True, True), (4.9, False, True)):
+        asked.clear()
+        found = size(at, 0.01, 100.0, SERIES["E12"], [Turn(expected, above, None)])
+        assert [turn.value for turn in found.turns] == pytest.approx([5.0], rel=2e-4) and found.turns[0].above
+        assert (len(asked) > POINTS) == scanned, (expected, len(asked))
+        # Only a preferred value has to be sure.
+        assert [value for value, sure in asked if sure] == [5.6]
+
+
+def test_a_trade_off_of_a_divider_is_a_straight_line() -> None:
+    """u = 10 V R_low / (R_low + R_top) = 4 V at R_low = 2/3 R_top, whatever the top."""
+    traded = sizer("s: mean(u) >= 4 V").trade("R_top", "R_low", "100 Ohm", "10 kOhm")
+    assert len(traded) == POINTS and traded[0][0] == 100.0 and traded[-1][0] == pytest.approx(10e3)
+    for top, found in traded:
+        (turn,) = found.sizing.turns
+        assert turn.value == pytest.approx(2.0 / 3.0 * top, rel=2e-4) and turn.above
+
+
 def test_a_value_without_solution_does_not_hold() -> None:
-    def at(value: float) -> Judged:
-        return Judged(value, [], "no solution") if value < 3.0 else judge(lambda _: 1.0)(value)
+    def at(value: float, sure: bool) -> Judged:
+        return Judged(value, [], "no solution") if value < 3.0 else judge(lambda _: 1.0)(value, sure)
 
     (turn,) = size(at, 0.01, 100.0, SERIES["E12"]).turns
     assert turn.value == pytest.approx(3.0, rel=2e-4) and turn.above
