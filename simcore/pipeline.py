@@ -209,7 +209,7 @@ def _asked(requirement: Requirement, circuit: Circuit) -> list[_Asked]:
         return [_stress(element, stress) for element in elements for stress, _, _ in rated_stresses(element)]
     figure = requirement.figure
     if isinstance(figure, Call) and figure.name in TABLED:
-        figure = Call("rms", (Call("current", figure.arguments),))
+        figure = Call("rms", (Call(TABLED[figure.name], figure.arguments),))
     return [] if figure is None else [lambda study, records: figure_of(figure, study, records)]
 
 

@@ -11,6 +11,7 @@ from typing import Any
 from grammar.description import Expression, Sweep
 from grammar.quantities import NONE, Dimension, Quantity
 from grammar.spans import Span
+from simcore.design.accessible import DischargeTable
 from simcore.design.limits import LimitTable
 
 
@@ -114,7 +115,7 @@ class Requirement:
     label: str | None = None
     elements: tuple[str, ...] = ()
     margin: float = 0.0
-    limits: LimitTable | None = None
+    limits: LimitTable | DischargeTable | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
     dimension: Dimension = NONE
     written: str = ""

@@ -120,7 +120,8 @@ class Measures:
         if isinstance(expression, Call) and (expression.name in SIGNALS or expression.name in FIGURES):
             return self._measure(expression, place)
         if isinstance(expression, Call) and expression.name in TABLED:
-            cure = f'Write `{expression.name}(...) within "..."`, or take `harmonic(..., n)`.'
+            instead = "harmonic(..., n)" if expression.name == "harmonics" else "time_until_below(..., 60 V)"
+            cure = f'Write `{expression.name}(...) within "..."`, or take `{instead}`.'
             self._wrong(f"{expression.name} stands before `within` only", cure, expression.span)
             raise Poisoned
         if isinstance(expression, Call):

@@ -13,6 +13,7 @@ from grammar.quantities import NONE, Dimension, show, unit_of
 from grammar.spans import Span
 from grammar.writer import write_expression
 from simcore.components import KINDS
+from simcore.design.accessible import DISCHARGE, DischargeTable
 from simcore.design.circuit import Requirement
 from simcore.design.files import read_beside
 from simcore.design.flatten import all_kinds
@@ -21,7 +22,7 @@ from simcore.design.measures import Measures, Resolved
 from simcore.design.rewrite import eaches, put_element, rename
 from simcore.design.scopes import Place, Poisoned, Scope, at_word, named, span_of, suggest
 from simcore.design.values import EXPRESSIONS
-from simcore.figures.catalogue import ABSOLUTE, TEMPERATURES
+from simcore.figures.catalogue import ABSOLUTE, TABLED, TEMPERATURES
 
 MOST_REQUIREMENTS = 20_000
 
@@ -99,7 +100,8 @@ class Requirements:
         limits = None
         if claim.relation == "within":
             resolved: list[Resolved | None] = [self._tabled(figure, place), None, None]
-            limits = self._limits(claim.table or "", require.span)
+            harmonics = isinstance(figure, Call) and figure.name == "harmonics"
+            limits = (self._limits if harmonics else self._discharge)(claim.table or "", require.span)
         else:
             resolved = self._compared(figure, bound, upper, place)
         parts = [None if each is None else each.expression for each in resolved]
@@ -163,16 +165,17 @@ class Requirements:
         raise Poisoned
 
     def _tabled(self, figure: Expression, place: Place) -> Resolved:
-        """`harmonics(ELEMENT)`, which is compared with a table of limits."""
-        if not isinstance(figure, Call) or figure.name != "harmonics" or len(figure.arguments) != 1:
-            cure = 'Write `harmonics(ELEMENT) within "..."`.'
-            self.scope.wrong("only the harmonics of an element are compared with a table", cure, span_of(figure))
+        """`harmonics(ELEMENT)` or `discharge(ELEMENT)`, which are compared with a table of limits."""
+        if not isinstance(figure, Call) or figure.name not in TABLED or len(figure.arguments) != 1:
+            cure = 'Write `harmonics(ELEMENT) within "..."`, or `discharge(ELEMENT)`.'
+            what = "only the harmonics or the discharge of an element are compared with a table"
+            self.scope.wrong(what, cure, span_of(figure))
             raise Poisoned
-        argument = figure.arguments[0]
+        argument, name = figure.arguments[0], figure.name
         if not isinstance(argument, Name):
-            self.scope.wrong("harmonics takes an element", "Name one, as in `harmonics(mains)`.", span_of(argument))
+            self.scope.wrong(f"{name} takes an element", f"Name one, as in `{name}(mains)`.", span_of(argument))
             raise Poisoned
-        full = self.measures.element(argument, place, "harmonics", "branch")
+        full = self.measures.element(argument, place, name, "branch")
         return Resolved(replace(figure, arguments=(named(full, argument.span),)), "figure", NONE)
 
     def _limits(self, name: str, span: Span | None) -> LimitTable:
@@ -192,6 +195,15 @@ class Requirements:
             cure = f"Give a CSV file inside the folder of the description, with the columns {' and '.join(COLUMNS)}."
             self.scope.wrong(f'the table "{name}" can\'t be used: {reason}', cure, where)
             raise Poisoned from None
+
+    def _discharge(self, name: str, span: Span | None) -> DischargeTable:
+        """A published table of what may be left after disconnection."""
+        table = DISCHARGE.get(" ".join(name.split()))
+        if table is None:
+            cure = f"Known are {' and '.join(DISCHARGE)}; or require `time_until_below(u, 60 V) <= 2 s`."
+            self.scope.wrong(f'there is no table "{name}" for a discharge', cure, at_word(span, name))
+            raise Poisoned
+        return table
 
     def _ratings(self, require: Require, claim: Ratings, names: tuple[str, ...]) -> list[Requirement]:
         elements: dict[str, None] = {}

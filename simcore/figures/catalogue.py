@@ -93,8 +93,9 @@ ABSOLUTE = ("mean", "peak", "valley")
 TEMPERATURES = ("junction_temperature", "core_temperature")
 """Figures that are."""
 
-TABLED = ("harmonics",)
-"""What stands before `within` only: compared with a table of limits, no number of its own."""
+TABLED = {"harmonics": "current", "discharge": "voltage"}
+"""What stands before `within` only, and the signal that it is about: compared with a table of limits, no number of its
+own."""
 
 
 _WORDS = {

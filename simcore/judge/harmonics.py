@@ -44,7 +44,7 @@ class Harmonic:
 def judge_harmonics(requirement: Requirement, coarse: Records, fine: Records) -> Verdict:
     """Hold every order of a table; the one that is worst, or nearest to its limit, is shown."""
     study, table = requirement.study, requirement.limits
-    assert table is not None
+    assert isinstance(table, LimitTable)
     if study not in fine:
         return Verdict(requirement, State.UNDECIDED, reason=f"study {study} was not solved")
     name = tabled_element(requirement)
@@ -61,7 +61,7 @@ def judge_harmonics(requirement: Requirement, coarse: Records, fine: Records) ->
 
 
 def tabled_element(requirement: Requirement) -> str:
-    """The element whose harmonics a requirement is about."""
+    """The element that a requirement with a table is about."""
     call = requirement.figure
     assert isinstance(call, Call) and isinstance(call.arguments[0], Name)
     return name_text(call.arguments[0])

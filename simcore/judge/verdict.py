@@ -7,8 +7,10 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 
+from simcore.design.accessible import DischargeTable
 from simcore.design.circuit import Circuit, Requirement
 from simcore.figures.evaluate import Records, figure_of
+from simcore.judge.discharge import judge_discharge
 from simcore.judge.harmonics import judge_harmonics
 from simcore.judge.held import Pair, Verdict, rank, side
 from simcore.judge.ratings import judge_ratings, spread_ratings
@@ -27,7 +29,8 @@ def judge(requirements: Iterable[Requirement], coarse: Records, fine: Records) -
         if requirement.relation == "ratings":
             found += judge_ratings(requirement, coarse, fine)
         elif requirement.relation == "within":
-            found.append(judge_harmonics(requirement, coarse, fine))
+            discharges = isinstance(requirement.limits, DischargeTable)
+            found.append((judge_discharge if discharges else judge_harmonics)(requirement, coarse, fine))
         else:
             found.append(judge_one(requirement, coarse, fine))
     return found

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from grammar.quantities import AMPERE, JOULE, KELVIN, NONE, OHM, PREFIXES, SECOND, VOLT, WATT, Dimension, unit_of
+from simcore.design.limits import LimitTable
 from simcore.design.overview import sentence
 from simcore.figures import measure
 from simcore.figures.overview import VALVES, Row
@@ -217,7 +218,7 @@ def bars_of(proof: Proof) -> list[Bars]:
     for verdict in proof.verdicts:
         requirement = verdict.requirement
         table = requirement.limits
-        if table is None or requirement.study not in proof.studies:
+        if not isinstance(table, LimitTable) or requirement.study not in proof.studies:
             continue
         name, fine = tabled_element(requirement), proof.studies[requirement.study].record
         if not unfit(name, table, fine):
