@@ -1,10 +1,12 @@
 """The emitted run compiled to machine code by numba, where that is installed: the same source, the same bits.
 
-What Python's arithmetic raises, the compiled code raises too, so that a lost pivot is seen in both.
+What Python's arithmetic raises, the compiled code raises too, so that a lost pivot is seen in both. The machine code is
+kept for the next call (see kept_code).
 """
 
 from __future__ import annotations
 
+import inspect
 import math
 from collections.abc import Callable
 from importlib.util import find_spec
@@ -12,6 +14,7 @@ from typing import Any
 
 import numpy as np
 
+from simcore.equations import kept_code
 from simcore.equations.run_interface import CONTROLS
 
 _CASTS = tuple(int if name in ("order", "limit", "room", "attempts") else float for name in CONTROLS)
@@ -24,9 +27,17 @@ def available() -> bool:
     return find_spec("numba") is not None
 
 
+SECONDS_KEPT = 1.5
+"""What loading numba and the machine code of a source takes that was compiled before."""
+
+
 def seconds_for(source: str) -> float:
     """About how long compiling a source will take."""
-    return SECONDS_A_LINE * source.count("\n")
+    return SECONDS_KEPT if kept_code.is_kept(_name(source)) else SECONDS_A_LINE * source.count("\n")
+
+
+def _name(source: str) -> str:
+    return kept_code.name_of(inspect.getsource(_functions), source)
 
 
 class CompiledRun:
@@ -41,9 +52,18 @@ class CompiledRun:
         numbers = types.Array(types.float64, 1, "C")
         controls = types.Tuple([types.int64 if cast is int else types.float64 for cast in _CASTS])
         signature = (numbers, numbers, numbers, controls, *([numbers] if responses else []))
-        names = _functions()
-        exec(compile(source, "<emitted>", "exec"), names)  # noqa: S102
-        self._run = njit(signature, error_model="python")(names["run"])
+        name = _name(source)
+
+        def compiled(path: str | None) -> Callable:
+            names = {"__name__": __name__, **_functions()}
+            exec(compile(source, path or "<emitted>", "exec"), names)  # noqa: S102
+            return njit(signature, error_model="python", cache=path is not None)(names["run"])
+
+        try:
+            self._run = compiled(kept_code.place_for(name, source))
+        except Exception:  # whatever a damaged file or a full disk leads to
+            kept_code.forget(name)
+            self._run = compiled(None)
         self._responses = responses
 
     def __call__(

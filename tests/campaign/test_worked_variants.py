@@ -10,7 +10,7 @@ import pytest
 from pasted_text import pasted
 
 import simcore
-from grammar.quantities import Quantity
+from grammar.quantities import NONE, Quantity
 from simcore.campaign.plan import Plan, Points
 from simcore.campaign.results import Results
 from simcore.campaign.rows import SOLVED, Found, Row, encode, found_of
@@ -35,7 +35,7 @@ def moved(let: LetValue, draw: random.Random) -> float:
     value = let.value.value
     if let.low is not None and let.high is not None:
         return draw.uniform(let.low, let.high)
-    return value if value == round(value) and not let.value.dimension else value * draw.uniform(0.9, 1.1)
+    return value if value == round(value) and let.value.dimension == NONE else value * draw.uniform(0.9, 1.1)
 
 
 def planned(design: simcore.Design, count: int, draw: random.Random) -> Plan:
