@@ -1,7 +1,7 @@
 """The signals and figures of the language: names, arguments, dimensions and meanings, declared once.
 
-Checking, help text and the language reference come from this table; the computing functions are keyed by the same
-names. It knows nothing of solutions or circuits.
+Checking, help text and the language reference come from this table, and where a figure is worked out. It knows nothing
+of solutions or circuits.
 """
 
 from __future__ import annotations
@@ -31,6 +31,7 @@ class Measure:
     result: the dimension of the result, from that of the signal (NONE where there is none)
     wants: the dimension that the signal must have, None for any
     optional: with no argument at all it is of the whole circuit
+    where: module with the function of its name that works a figure out
     """
 
     name: str
@@ -39,6 +40,7 @@ class Measure:
     meaning: str
     wants: Dimension | None = None
     optional: bool = False
+    where: str = "simcore.figures.element_figures"
 
 
 def _table(*measures: Measure) -> dict[str, Measure]:

@@ -1,7 +1,8 @@
-"""Figures of elements, and the table that gives every figure of the catalogue its computation.
+"""The figures of the catalogue, each under its name there.
 
-Elements come by name, signals as they run over the whole study; each figure takes the window that its meaning asks for.
-The language is not known here.
+Each takes a record and the arguments that the catalogue declares: an element or part of one by its name, a signal as it
+runs over the whole study, a level as a number in the signal's SI unit, a count as a whole number; and judges the window
+that its meaning asks for. The language is not known here.
 """
 
 from __future__ import annotations
@@ -9,14 +10,29 @@ from __future__ import annotations
 from collections.abc import Callable
 
 from grammar.quantities import ANGLE, JOULE, KELVIN, NONE, SECOND, WATT, Dimension
-from simcore.figures import measure
+from simcore.figures import measure, stored
 from simcore.figures.figure import Figure, undefined
 from simcore.figures.record import Part, Record
 from simcore.figures.signal import Signal
-from simcore.figures.stored import stored_energy, total_stored_energy
 
 _HALVES = 10.0
 """K by which a capacitor's life is halved."""
+
+
+def of_window(figure: Callable[[Signal], Figure]) -> Callable[[Record, Signal], Figure]:
+    """A figure of a signal over the judged window."""
+    return lambda record, signal: figure(record.window(signal))
+
+
+mean = of_window(measure.mean)
+rms = of_window(measure.rms)
+peak = of_window(measure.peak)
+valley = of_window(measure.valley)
+ripple = of_window(measure.ripple)
+ripple_factor = of_window(measure.ripple_factor)
+form_factor = of_window(measure.form_factor)
+crest_factor = of_window(measure.crest_factor)
+i2t = of_window(measure.i2t)
 
 
 def mean_power(record: Record, name: str) -> Figure:
@@ -112,10 +128,13 @@ def life(record: Record, name: str) -> Figure:
     return Figure(endurance * 2.0 ** ((at - core_temperature(record, name).value) / _HALVES), SECOND)
 
 
-def largest_stored_energy(record: Record, name: str | None = None) -> Figure:
+def stored_energy(record: Record, name: str | None = None) -> Figure:
     """Largest energy in the fields of an element, or of the whole circuit without a name, in the window, J."""
-    stored = total_stored_energy(record) if name is None else stored_energy(record, record.part(name).element.name)
-    return Figure(record.window(stored).highest(), JOULE)
+    if name is None:
+        signal = stored.total_stored_energy(record)
+    else:
+        signal = stored.stored_energy(record, record.part(name).element.name)
+    return Figure(record.window(signal).highest(), JOULE)
 
 
 def efficiency(record: Record, source: str, load: str) -> Figure:
@@ -159,45 +178,18 @@ def _no_period(record: Record) -> str:
     return "the judged window is shorter than a period"
 
 
+def time_until_above(record: Record, signal: Signal, level: float) -> Figure:
+    """Time from the first event of the study, or its start, to the first rise above a level, s."""
+    return _time_until(record, signal, level, below=False)
+
+
+def time_until_below(record: Record, signal: Signal, level: float) -> Figure:
+    """Time from the first event of the study, or its start, to the first fall below a level, s."""
+    return _time_until(record, signal, level, below=True)
+
+
 def _time_until(record: Record, signal: Signal, level: float, below: bool) -> Figure:
     begin = record.begin()
     if not signal.start <= begin < signal.end:
         return undefined(SECOND, "the first event is not within the study")
     return measure.time_until(signal, level, begin, below)
-
-
-def of_window(figure: Callable[[Signal], Figure]) -> Callable[[Record, Signal], Figure]:
-    """A figure of a signal over the judged window."""
-    return lambda record, signal: figure(record.window(signal))
-
-
-COMPUTE: dict[str, Callable[..., Figure]] = {
-    "mean": of_window(measure.mean),
-    "rms": of_window(measure.rms),
-    "peak": of_window(measure.peak),
-    "valley": of_window(measure.valley),
-    "ripple": of_window(measure.ripple),
-    "ripple_factor": of_window(measure.ripple_factor),
-    "form_factor": of_window(measure.form_factor),
-    "crest_factor": of_window(measure.crest_factor),
-    "harmonic": harmonic,
-    "distortion": distortion,
-    "i2t": of_window(measure.i2t),
-    "time_until_above": lambda record, signal, level: _time_until(record, signal, level, below=False),
-    "time_until_below": lambda record, signal, level: _time_until(record, signal, level, below=True),
-    "mean_power": mean_power,
-    "energy": energy,
-    "apparent_power": apparent_power,
-    "power_factor": power_factor,
-    "displacement_factor": displacement_factor,
-    "conduction_angle": conduction_angle,
-    "reverse_peak": reverse_peak,
-    "junction_temperature": junction_temperature,
-    "core_temperature": core_temperature,
-    "life": life,
-    "stored_energy": largest_stored_energy,
-    "efficiency": efficiency,
-    "utilisation": utilisation,
-}
-"""Figure name -> computation from a record and the arguments that the catalogue declares: a signal as Signal over the
-whole study, an element or part of one as its name, a level as a number in the signal's SI unit, a count as int."""

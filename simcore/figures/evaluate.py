@@ -6,15 +6,15 @@ solved is not known here.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from functools import reduce
+from importlib import import_module
 
 import numpy as np
 
 from grammar.description import Binary, Call, Expression, Name, Negative, Number
 from grammar.quantities import NONE, Quantity
-from simcore.figures.catalogue import FIGURES
-from simcore.figures.element_figures import COMPUTE
+from simcore.figures.catalogue import FIGURES, Measure
 from simcore.figures.expressions import (
     FUNCTIONS,
     function_dimension,
@@ -80,13 +80,18 @@ def _figure_call(call: Call, record: Record) -> Figure:
 
 
 def _computed(call: Call, record: Record) -> Figure:
-    declared = FIGURES[call.name].arguments
-    arguments = [_argument(kind, argument, record) for kind, argument in zip(declared, call.arguments, strict=False)]
-    return record.granted(COMPUTE[call.name](record, *arguments))
+    declared = FIGURES[call.name]
+    pairs = zip(declared.arguments, call.arguments, strict=False)
+    return record.granted(computing(declared)(record, *(_argument(kind, argument, record) for kind, argument in pairs)))
+
+
+def computing(figure: Measure) -> Callable[..., Figure]:
+    """What works a figure out, from a record and its arguments."""
+    return getattr(import_module(figure.where), figure.name)
 
 
 def _argument(kind: str, argument: Expression, record: Record) -> Signal | str | float | int:
-    """One argument as the computation takes it; see COMPUTE."""
+    """One argument as the computation takes it."""
     if kind == "signal or branch" and isinstance(argument, Name) and name_text(argument) not in record.circuit.observes:
         return record.current(name_text(argument))
     if kind in ("signal", "signal or branch"):

@@ -12,7 +12,7 @@ from grammar.quantities import JOULE, SECOND, VOLT, show
 from simcore.design.circuit import Circuit, Element
 from simcore.design.overview import warnings_of
 from simcore.figures import measure
-from simcore.figures.element_figures import largest_stored_energy
+from simcore.figures.element_figures import stored_energy
 from simcore.proof import Proof
 
 SAFE_DIRECT = 60.0
@@ -51,7 +51,7 @@ def _crest(proof: Proof, element: Element) -> float:
 
 
 def _energy(proof: Proof) -> Iterator[str]:
-    energies = {name: largest_stored_energy(study.record).value for name, study in proof.studies.items()}
+    energies = {name: stored_energy(study.record).value for name, study in proof.studies.items()}
     worst = max(energies, key=lambda name: energies[name], default="")
     if worst and energies[worst] > 0.0:
         yield f"Capacitors and inductors hold up to {show(energies[worst], JOULE, _DIGITS)} (in {worst})."
