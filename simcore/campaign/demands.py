@@ -13,7 +13,7 @@ from simcore.campaign.results import Results
 from simcore.campaign.rows import demand_text
 from simcore.design.circuit import Circuit
 from simcore.figures.figure import Figure
-from simcore.figures.stresses import STRESSES, stress_names
+from simcore.figures.stresses import stress_names, stresses_of
 from simcore.judge.bill import Demand
 
 
@@ -23,7 +23,7 @@ def demands_of(results: Results, circuit: Circuit) -> Iterator[Demand]:
     known = {
         demand_text(name, stress.title): (name, stress.title)
         for element in circuit.elements.values()
-        for stress in STRESSES[element.kind]
+        for stress in stresses_of(element.kind)
         for name in stress_names(element, stress)
     }
     for row in results.rows:

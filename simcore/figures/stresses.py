@@ -1,6 +1,7 @@
 """What an element has to stand: the figures its ratings are held against, and what else a bill of ratings shows.
 
-One line a figure, and nothing else, for a new kind. Limits and verdicts are not known here.
+A new kind has the usual ones of its ratings, and a line here only where it has others. Limits and verdicts are not
+known here.
 """
 
 from __future__ import annotations
@@ -9,6 +10,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 
 from grammar.quantities import AMPERE, I2T
+from simcore.components import KINDS
 from simcore.design.circuit import Circuit, Element, Requirement
 from simcore.design.graph import port_name
 from simcore.figures import element_figures, measure
@@ -163,13 +165,19 @@ STRESSES: dict[str, tuple[Stress, ...]] = {
     ),
     "diode": _JUNCTION,
     "thyristor": _JUNCTION,
-    "switch": (replace(_RMS, rating=""), _PEAK_VOLTAGE),
     "load": (Stress("mean power", _of_name(element_figures.mean_power), lasting=True), _PEAK_VOLTAGE),
-    "fuse": (_RMS,),
-    "inrush_limiter": (_RMS, Stress("energy", _of_name(element_figures.energy), "rated_energy")),
-    "clamp": (Stress("energy", _of_name(element_figures.energy), "rated_energy"), _PEAK_VOLTAGE),
 }
-"""Kind -> what its elements have to stand, those with a rating first."""
+"""Kind -> what its elements have to stand, those with a rating first, where that is not what any kind has to."""
+_USUAL = (_RMS, Stress("energy", _of_name(element_figures.energy), "rated_energy"))
+
+
+def stresses_of(kind: str) -> tuple[Stress, ...]:
+    """What elements of a kind have to stand: its own, or for each rating the usual one; current and voltage anyway."""
+    if kind in STRESSES:
+        return STRESSES[kind]
+    ratings = {key.name for key in KINDS[kind].keys if key.rating}
+    rated = [stress for stress in _USUAL if stress.rating in ratings]
+    return (*rated, *(() if _RMS in rated else (replace(_RMS, rating=""),)), _PEAK_VOLTAGE)
 
 
 def stress_names(element: Element, stress: Stress) -> list[str]:
@@ -187,7 +195,7 @@ def rated_elements(circuit: Circuit, requirement: Requirement) -> list[Element]:
 
 def rated_stresses(element: Element) -> Iterator[tuple[Stress, float, float | None]]:
     """Each rating that an element was given: its stress, its value in SI units and what stands behind its @, if any."""
-    for stress in STRESSES[element.kind]:
+    for stress in stresses_of(element.kind):
         given = element.given.get(stress.rating) if stress.rating else None
         if given is not None:
             value, at = given if isinstance(given, tuple) else (given, None)

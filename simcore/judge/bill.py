@@ -13,7 +13,7 @@ from simcore.components import KINDS
 from simcore.design.circuit import Circuit, Element, PlannedStudy
 from simcore.figures.figure import Figure, bounded
 from simcore.figures.record import Record
-from simcore.figures.stresses import STRESSES, Stress, rated_elements, rated_stresses, stress_names
+from simcore.figures.stresses import Stress, rated_elements, rated_stresses, stress_names, stresses_of
 from simcore.judge.preferred import R10
 from simcore.judge.ratings import base_of, knows_temperature, rating_text, unused
 from simcore.proof import Proof
@@ -106,7 +106,7 @@ def _stresses(element: Element) -> Sequence[Stress]:
     keys = KINDS[element.kind].key
     return [
         stress
-        for stress in STRESSES[element.kind]
+        for stress in stresses_of(element.kind)
         if known or stress.rating not in keys or keys[stress.rating].dimension != KELVIN
     ]
 

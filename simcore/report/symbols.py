@@ -52,8 +52,9 @@ class Symbol:
 
 
 def symbol_of(kind: str, form: str) -> Symbol:
-    """The symbol of a kind; form: of a source or load what tells it from others of its kind, see `arranging.Branch`."""
-    return SYMBOLS[kind](form)
+    """The symbol of a kind, a box with its first letters where none is drawn; form: of a source or load what tells it
+    from others of its kind, see `arranging.Branch`."""
+    return SYMBOLS[kind](form) if kind in SYMBOLS else _load(kind[:3])
 
 
 def _circle(radius: float, middle: Point = (0.0, 0.0), first: float = 0.0, last: float = 360.0) -> tuple[Point, ...]:
