@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+from pathlib import Path
 
 from simcore.commands.options import add_files, add_out, add_settings, folders
 from simcore.commands.speaking import complain, say
@@ -30,6 +31,9 @@ def add(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
     sweep.add_argument(
         "--bill", action="store_true", help="the bill of ratings over all studies and sweeps too, as bill.csv"
     )
+    sweep.add_argument(
+        "--page", metavar="FILE", type=Path, help="write the whole report with the worst cases as one HTML page too"
+    )
     add_settings(sweep)
     sweep.set_defaults(action=_sweep)
 
@@ -47,7 +51,11 @@ def _sweep(options: argparse.Namespace) -> Outcome:
     places = folders(options.files, options.out)
     if places is None:
         return Outcome.INPUT_WRONG
-    settings = dict(options.settings)
-    asked = Asked(options.sweep, settings, options.workers, options.scheduler, options.resume, options.bill)
+    if options.page is not None and len(places) > 1:
+        complain("--page takes one description")
+        complain("    cure: run each apart, with a page of its own")
+        return Outcome.INPUT_WRONG
+    more = options.workers, options.scheduler, options.resume, options.bill, options.page
+    asked = Asked(options.sweep, dict(options.settings), *more)
     call = sensitivity_of_file if options.sensitivity else sweep_file
     return worst([call(file, folder, asked, say, complain) for file, folder in places.items()])

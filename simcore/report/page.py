@@ -5,15 +5,17 @@ Knows proofs, words and pictures; works nothing out.
 
 from __future__ import annotations
 
+import platform
 from collections.abc import Iterator, Sequence
 from html import escape
+from importlib.metadata import version
 from pathlib import Path
 
 from simcore import __version__
 from simcore.design.files import Project, Unit
 from simcore.design.overview import sentence
 from simcore.figures.overview import Row
-from simcore.judge.bill import bill_of
+from simcore.judge.bill import BillLine, bill_of
 from simcore.judge.cautions import cautions
 from simcore.judge.outcome import State
 from simcore.proof import Proof, ProvedStudy
@@ -21,6 +23,7 @@ from simcore.report import words
 from simcore.report.diagram import diagram_of, diagram_svg
 from simcore.report.panels import bars_of, picture_of
 from simcore.report.svg import bars_svg, picture_svg
+from simcore.report.sweeps import WORST_HEADINGS, Swept
 from simcore.report.terminal import DIODE_HEADINGS, cost_line, energy_line, row_name
 from simcore.report.writing import whole_file
 
@@ -54,14 +57,20 @@ _SURE = (
 _STATES = {State.HOLDS: "holds", State.FAILS: "fails"}
 
 
-def write_page(path: Path, proof: Proof, project: Project) -> None:
+def write_page(
+    path: Path,
+    proof: Proof,
+    project: Project,
+    sweeps: Sequence[Swept] = (),
+    bill: Sequence[BillLine] | None = None,
+) -> None:
     """Write the page of a proved design."""
     with whole_file(path) as file:
-        file.write(page(proof, project))
+        file.write(page(proof, project, sweeps, bill))
 
 
-def page(proof: Proof, project: Project) -> str:
-    """The page as text."""
+def page(proof: Proof, project: Project, sweeps: Sequence[Swept] = (), bill: Sequence[BillLine] | None = None) -> str:
+    """The page as text; sweeps: whose worst cases it shows; bill: over them too, else that of the proof alone."""
     title = proof.circuit.purpose or proof.circuit.name
     sections = [
         f"<h1>{escape(title)}</h1>",
@@ -72,12 +81,13 @@ def page(proof: Proof, project: Project) -> str:
         *_circuit(proof),
         *_found(proof),
         *_harmonics(proof),
-        *_bill(proof),
+        *_worst(sweeps),
+        *_bill(bill_of(proof) if bill is None else bill),
         "<h2>Cautions</h2>",
         _list(cautions(proof)),
         "<h2>The description</h2>",
         *_texts(project),
-        f"<p>Made by Bulkrail {escape(__version__)}.</p>",
+        f"<p>{escape(_made())}</p>",
     ]
     head = (
         '<!DOCTYPE html>\n<html lang="en">\n<head>\n<meta charset="utf-8">\n'
@@ -86,6 +96,21 @@ def page(proof: Proof, project: Project) -> str:
         f"<title>{escape(title)}</title>\n<style>{_STYLE}</style>\n</head>\n<body>\n"
     )
     return head + "\n".join(sections) + "\n</body>\n</html>\n"
+
+
+def _made() -> str:
+    """By what the page was made: numbers may differ in their last digits with other versions."""
+    versions = ", ".join(f"{name} {version(name)}" for name in ("numpy", "scipy"))
+    return f"Made by Bulkrail {__version__}, with Python {platform.python_version()}, {versions}."
+
+
+def _worst(sweeps: Sequence[Swept]) -> Iterator[str]:
+    for sweep in sweeps:
+        yield f"<h2>Worst cases of {escape(sweep.title)}</h2>"
+        yield _table(WORST_HEADINGS, sweep.worst, 3)
+        yield _list(sweep.sums)
+        if sweep.variants:
+            yield f"<pre>{escape(chr(10).join(sweep.variants))}</pre>"
 
 
 def _required(proof: Proof) -> Iterator[str]:
@@ -144,8 +169,7 @@ def _figure_cells(row: Row) -> list[str]:
     return [row_name(row), *(words.row_with_bound(row, column) for column in row.figures)]
 
 
-def _bill(proof: Proof) -> Iterator[str]:
-    lines = bill_of(proof)
+def _bill(lines: Sequence[BillLine]) -> Iterator[str]:
     if lines:
         yield "<h2>Ratings</h2>"
         yield _table(words.BILL_HEADINGS, [words.bill_cells(line) for line in lines], 3)

@@ -30,10 +30,11 @@ from simcore.judge.outcome import Outcome, worst
 from simcore.opening import Opened, open_design
 from simcore.proof import TAKEN, prove
 from simcore.report.files import write_bill
+from simcore.report.page import write_page
 from simcore.report.progress import progress
 from simcore.report.screen import present_screen
 from simcore.report.session import Say
-from simcore.report.sweeps import sensitivity_lines, sweep_lines, write_sensitivities, write_sweep
+from simcore.report.sweeps import sensitivity_lines, sweep_lines, swept, write_sensitivities, write_sweep
 from simcore.report.terminal import bill_lines, show_seconds
 from simcore.solve.failure import NoSolution
 
@@ -43,7 +44,8 @@ _CAUTIONS = ("Cautions", *(f"  {line}" for line in GENERAL))
 @dataclass(frozen=True)
 class Asked:
     """What a call asks for: the sweeps, none for all; lets with other values; workers, None for one a core; a
-    scheduler's address, "" for none; whether to go on with an interrupted sweep; whether for a bill of ratings."""
+    scheduler's address, "" for none; whether to go on with an interrupted sweep; whether for a bill of ratings; a page
+    to write."""
 
     sweeps: Sequence[str]
     settings: Mapping[str, str]
@@ -51,6 +53,7 @@ class Asked:
     scheduler: str = ""
     resume: bool = False
     bill: bool = False
+    page: Path | None = None
 
 
 def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
@@ -60,12 +63,15 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
         if mistakes:
             raise DescriptionError(mistakes)
         sweeps = chosen_sweeps(opened.circuit, asked.sweeps, file)
-        tasks = [(sweep, replace(task_of(opened, sweep), billed=asked.bill)) for sweep in sweeps]
+        tasks = [
+            (sweep, replace(task_of(opened, sweep), billed=asked.bill or asked.page is not None)) for sweep in sweeps
+        ]
         crew = crew_of(asked.workers, asked.scheduler)
         say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
         solved = [_solve(sweep, task, crew, folder, asked.resume, say, complain) for sweep, task in tasks]
-        if asked.bill:
-            _bill(opened, [results for results, _ in solved], folder, say)
+        if asked.bill or asked.page is not None:
+            labelled = [(results, sweep.label) for sweep, (results, _) in zip(sweeps, solved, strict=True)]
+            _sign_off(opened, labelled, folder, asked, say)
         for _, journal in solved:
             journal.end()
     except DescriptionError as error:
@@ -82,18 +88,27 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
     return worst(results.outcome for results, _ in solved)
 
 
-def _bill(opened: Opened, solved: Sequence[Results], folder: Path, say: Say) -> None:
-    """The bill of ratings over all studies of the design as described and all variants of sweeps. Raises NoSolution."""
+def _sign_off(
+    opened: Opened, solved: Sequence[tuple[Results, str | None]], folder: Path, asked: Asked, say: Say
+) -> None:
+    """The bill of ratings over all studies of the design as described and all variants of sweeps, and a page with
+    both. Raises NoSolution."""
     proof = prove(opened, list(opened.circuit.studies))
-    variants = [demand for results in solved for demand in demands_of(results, opened.circuit)]
-    lines = bill_of(proof, variants)
+    variants = [demand for results, _ in solved for demand in demands_of(results, opened.circuit)]
+    bill = bill_of(proof, variants)
+    said = [""]
     with writing(folder):
-        path = write_bill(lines, folder)
-    screen = present_screen()
-    said = ["", *bill_lines(lines, screen.width), f"  Table: {path}."]
-    if any(results.plan.faulted for results in solved):
-        said.insert(-1, "  variants with a fault are left out")
-    say("\n".join(screen.fitted(said)))
+        if asked.bill:
+            path, screen = write_bill(bill, folder), present_screen()
+            said += bill_lines(bill, screen.width)
+            if any(results.plan.faulted for results, _ in solved):
+                said.append("  variants with a fault are left out")
+            said.append(f"  Table: {path}.")
+    if asked.page is not None:
+        with writing(asked.page):
+            write_page(asked.page, proof, opened.project, [swept(*each) for each in solved], bill)
+        said.append(f"  Page: {asked.page}.")
+    say("\n".join(present_screen().fitted(said)))
 
 
 def sensitivity_of_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:

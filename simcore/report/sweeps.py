@@ -8,6 +8,7 @@ from __future__ import annotations
 import csv
 import math
 from collections.abc import Sequence
+from dataclasses import dataclass
 from pathlib import Path
 
 from grammar.quantities import quantity, show
@@ -17,6 +18,7 @@ from simcore.campaign.sensitivity import Sensitivity
 from simcore.report.tables import INDENT, table
 from simcore.report.writing import whole_file
 
+WORST_HEADINGS = ("verdict", "study", "requirement", "found", "±", "margin", "variant")
 _REASONS = 5
 _RATES = 24
 _DIGITS = 5
@@ -39,22 +41,46 @@ def _cell(value: object) -> str:
 
 def sweep_lines(results: Results, label: str | None = None, width: int | None = None) -> list[str]:
     """What one sweep found; width: characters a line, None for as many as it takes."""
-    plan = results.plan
-    title = f"{plan.name} ({label})" if label else plan.name
-    lines = [f"{title}: {plan.sentence}" if plan.sentence else title]
-    lines += [INDENT + axis.note for axis in plan.axes if axis.note]
+    lines = [_title(results, label)]
+    lines += [INDENT + axis.note for axis in results.plan.axes if axis.note]
     worst = results.worst
     if worst:
         lines += ["", INDENT + "The worst case of each requirement, and the variant where it lies"]
-        headings = ["verdict", "study", "requirement", "found", "±", "margin", "variant"]
-        lines += table(headings, [_worst_cells(each) for each in worst], 3, width)
+        lines += table(WORST_HEADINGS, [worst_cells(each) for each in worst], 3, width)
         lines += ["", *_variants(results, worst)]
-    lines += _unsolved(results)
-    lines.append(INDENT + counted(results))
-    return lines + [INDENT + text for text in _rates(results.pass_rates)]
+    return lines + _unsolved(results) + [INDENT + text for text in sums(results)]
 
 
-def _worst_cells(worst: Worst) -> list[str]:
+def _title(results: Results, label: str | None) -> str:
+    plan = results.plan
+    title = f"{plan.name} ({label})" if label else plan.name
+    return f"{title}: {plan.sentence}" if plan.sentence else title
+
+
+def sums(results: Results) -> list[str]:
+    """How many variants came to what, and how many draws pass."""
+    return [counted(results), *_rates(results.pass_rates)]
+
+
+def swept(results: Results, label: str | None) -> Swept:
+    """What a page shows of a sweep."""
+    worst = results.worst
+    lines = [*_variants(results, worst), *_unsolved(results)]
+    return Swept(_title(results, label), [worst_cells(each) for each in worst], lines, sums(results))
+
+
+@dataclass(frozen=True)
+class Swept:
+    """A sweep as a page shows it: title, worst cases under WORST_HEADINGS, the variants as lines to paste, and sums."""
+
+    title: str
+    worst: Sequence[Sequence[str]]
+    variants: Sequence[str]
+    sums: Sequence[str]
+
+
+def worst_cells(worst: Worst) -> list[str]:
+    """A worst case under WORST_HEADINGS."""
     claim, found = worst.claim, worst.found
     subject = f"{claim.label} ({claim.requirement})" if claim.label else claim.requirement
     if found is None or worst.row is None:

@@ -102,6 +102,18 @@ def test_the_bill_of_a_sweep_takes_the_worst_of_its_variants_and_of_all_studies(
     assert [float(row["s: D1: rms current [A]"]) for row in rows][1] == float(line["value"])
 
 
+def test_the_page_of_a_sweep_shows_the_worst_cases_and_the_bill_over_them(folder: Path, bulkrail: Call) -> None:
+    (folder / "w.rect").write_text(TEXT + 'sweep filters: C_res over [100 uF, 4700 uF] as "two & more"\n')
+    done = bulkrail("sweep", "w.rect", "--workers", "1", "--page", "p/w.html", folder=folder)
+    assert done.returncode == 1 and "Page: p/w.html" in done.stdout, done.stderr
+    text = (folder / "p" / "w.html").read_text()
+    for part in ("Worst cases of filters (two &amp; more)", "s, filters 2", "let C_res = 100 uF", "Of 2 variants", "numpy"):
+        assert part in text, part
+    assert not (folder / "results" / "w" / "bill.csv").exists()
+    two = bulkrail("sweep", "w.rect", "d.rect", "--page", "p.html", folder=folder)
+    assert two.returncode == 2 and "cure:" in two.stderr
+
+
 def test_quiet_says_only_what_does_not_hold(folder: Path, bulkrail: Call) -> None:
     quiet = bulkrail("run", "d.rect", "--quiet", folder=folder)
     assert (quiet.returncode, quiet.stdout, quiet.stderr) == (0, "", "")
