@@ -32,6 +32,7 @@ from simcore.judge.verdict import Verdict
 from simcore.opening import Opened, open_project
 from simcore.proof import Proof, ProvedStudy, prove
 from simcore.report.traces import traces
+from simcore.signing import SignOff
 
 if TYPE_CHECKING:
     import networkx
@@ -70,7 +71,7 @@ def _sound(project: Project, mistakes: list) -> Design:
 
 
 @dataclass(frozen=True)
-class Design:
+class Design(SignOff):
     """A design, with the values some of its lets are given instead of those written.
 
     Whatever is wrong with it is raised, as a DescriptionError with all mistakes, where it is first made use of.
@@ -142,7 +143,11 @@ class Design:
         return Result(prove(self._opened, [study]), study)
 
     def prove(self) -> Proof:
-        """Solve all studies and judge all requirements."""
+        """Solve all studies and judge all requirements, once for a design."""
+        return self._proof
+
+    @cached_property
+    def _proof(self) -> Proof:
         return prove(self._opened, self.studies)
 
     def sweep(

@@ -50,7 +50,7 @@ def draw_file(
         ended = proved(jobs[0], complain)
         if ended.proof is None:
             return ended.outcome
-        pictures = _pictures(ended.proof, form)
+        pictures = drawn(ended.proof, form)
     paths = {folder / f"{name}.{form}": content for name, content in pictures.items()}
 
     def write() -> None:
@@ -81,8 +81,8 @@ def _sweep_pictures(opened: Opened, file: str, wanted: Sequence[str], folder: Pa
     return found
 
 
-def _pictures(proof: Proof, form: str) -> dict[str, bytes]:
-    """File stem -> content."""
+def drawn(proof: Proof, form: str) -> dict[str, bytes]:
+    """The pictures of a proof: file stem -> content."""
     from simcore.report.drawing import bars_bytes, diagram_bytes, picture_bytes
 
     found = {}
