@@ -73,16 +73,6 @@ class Variants:
         return self._set[key]
 
 
-def with_changes(
-    project: Project,
-    circuit: Circuit,
-    changes: Sequence[Change],
-    overrides: Mapping[str, Quantity | Expression | str] | None = None,
-) -> Circuit:
-    """The circuit of a design after changes; see Variants, which keeps what it made."""
-    return Variants(project, circuit, overrides)(changes)
-
-
 SWITCHING = ("opens_at", "closes_at", "control", "closes_above", "opens_below", "delay")
 """What a study's open or close overrules on a switch."""
 

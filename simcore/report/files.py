@@ -8,7 +8,7 @@ from __future__ import annotations
 import csv
 import json
 import math
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from pathlib import Path
 
 from grammar.quantities import ANGLE, Quantity, unit_of
@@ -57,19 +57,40 @@ BILL_COLUMNS = (
 def write_results(proof: Proof, folder: Path, description: str, bill: Sequence[BillLine] = ()) -> list[Path]:
     """Write all files of a proof to a folder, made where it is missing; description: the file that was proved; bill:
     where it was asked for."""
-    written = []
+    written = [path for write in WRITERS for path in write(proof, folder, description)]
+    return [*written, write_bill(bill, folder)] if bill else written
+
+
+def _write_traces(proof: Proof, folder: Path, description: str) -> list[Path]:
     for name, study in proof.studies.items():
-        written.append(folder / f"{name}.csv")
-        write_table(written[-1], *_trace(study))
-    written += [folder / "figures.csv", folder / "verdicts.csv", folder / "summary.json"]
-    write_table(written[-3], FIGURE_COLUMNS, _figure_rows(proof))
-    write_table(written[-2], VERDICT_COLUMNS, [_verdict_row(verdict) for verdict in proof.verdicts])
-    with whole_file(written[-1]) as file:
+        write_table(folder / f"{name}.csv", *_trace(study))
+    return [folder / f"{name}.csv" for name in proof.studies]
+
+
+def _write_figures(proof: Proof, folder: Path, description: str) -> list[Path]:
+    write_table(folder / "figures.csv", FIGURE_COLUMNS, _figure_rows(proof))
+    return [folder / "figures.csv"]
+
+
+def _write_verdicts(proof: Proof, folder: Path, description: str) -> list[Path]:
+    write_table(folder / "verdicts.csv", VERDICT_COLUMNS, [_verdict_row(verdict) for verdict in proof.verdicts])
+    return [folder / "verdicts.csv"]
+
+
+def _write_summary(proof: Proof, folder: Path, description: str) -> list[Path]:
+    with whole_file(folder / "summary.json") as file:
         json.dump(_summary(proof, description), file, indent=2, ensure_ascii=False, allow_nan=False)
         file.write("\n")
-    if bill:
-        written.append(write_bill(bill, folder))
-    return written
+    return [folder / "summary.json"]
+
+
+WRITERS: tuple[Callable[[Proof, Path, str], list[Path]], ...] = (
+    _write_traces,
+    _write_figures,
+    _write_verdicts,
+    _write_summary,
+)
+"""What every run writes: each from the proof, the folder and the description's file to the files it wrote."""
 
 
 def write_bill(bill: Sequence[BillLine], folder: Path) -> Path:

@@ -7,7 +7,7 @@ from understood import understood
 
 from grammar.mistakes import DescriptionError
 from grammar.quantities import NONE, OHM, VOLT, Quantity
-from simcore.design.changes import SHORT, Variants, with_changes
+from simcore.design.changes import SHORT, Variants
 from simcore.design.circuit import Change, Circuit
 
 TEXT = """let N = 2
@@ -34,7 +34,7 @@ study s: settled
 def changed(*changes: Change) -> Circuit:
     project, circuit, mistakes = understood(TEXT)
     assert not mistakes, mistakes
-    return with_changes(project, circuit, changes)
+    return Variants(project, circuit)(changes)
 
 
 def ports(circuit: Circuit, name: str) -> list[str]:
