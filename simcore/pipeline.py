@@ -20,6 +20,7 @@ from grammar.quantities import AMPERE, ANGLE, JOULE, VOLT, WATT, Dimension, Quan
 from simcore.design.changes import Variants
 from simcore.design.circuit import Circuit, Element, PlannedStudy, Requirement
 from simcore.design.files import Project
+from simcore.design.study_kinds import Nature
 from simcore.equations.kernel import KernelCache
 from simcore.figures.catalogue import TABLED
 from simcore.figures.evaluate import figure_of
@@ -168,7 +169,7 @@ class _Proof:
         """One solution, held to Kirchhoff's current law; a settled state is looked for from where the looser solution
         found it."""
         before = self.pairs[study.after][which].left if study.after is not None else None
-        if study.kind == "settled" and earlier is not None:
+        if study.nature is Nature.PERIOD and earlier is not None:
             before = replace(earlier.left, changes=before.changes if before is not None else ())
         if self.work > WORK_OF_ALL:
             raise NoSolution(study.name, Reason.WORK, detail="of all studies together")

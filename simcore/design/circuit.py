@@ -13,6 +13,7 @@ from grammar.quantities import NONE, Dimension, Quantity
 from grammar.spans import Span
 from simcore.design.accessible import DischargeTable
 from simcore.design.limits import LimitTable
+from simcore.design.study_kinds import STUDY_KINDS, Nature
 
 
 @dataclass(frozen=True)
@@ -94,6 +95,11 @@ class PlannedStudy:
     events: tuple[tuple[float, Change], ...] = ()
     label: str | None = None
     span: Span | None = field(default=None, compare=False, repr=False)
+
+    @property
+    def nature(self) -> Nature:
+        """What it finds."""
+        return STUDY_KINDS[self.kind].nature
 
 
 @dataclass(frozen=True)

@@ -18,7 +18,7 @@ from simcore.design.circuit import Change, Circuit, Element, LetValue, PlannedSt
 from simcore.design.graph import port_name
 from simcore.design.sensing import write_sensed
 from simcore.design.soundness import parts_of
-from simcore.design.studies import STUDY_MEANINGS
+from simcore.design.study_kinds import STUDY_KINDS, Nature
 
 TEMPERATURES = ("temperature", "data_temperature", "ambient", "rated_junction_temperature", "rated_temperature")
 """Keys that hold a temperature; other values in K are differences or constants."""
@@ -206,8 +206,8 @@ def _let(let: LetValue) -> LetShown:
 
 def sentence(study: PlannedStudy) -> str:
     """What a study will do."""
-    text = STUDY_MEANINGS.get(study.kind, "")
-    if study.kind == "transient":
+    text = STUDY_KINDS[study.kind].meaning
+    if study.nature is Nature.COURSE:
         start = f"from the end of {study.after}" if study.after else "from rest"
         text = f"{start}, for {show(study.duration or 0.0, SECOND)}"
     if study.period is not None:

@@ -16,29 +16,22 @@ from simcore.design.circuit import Change, PlannedStudy
 from simcore.design.flatten import Flat
 from simcore.design.measures import SOURCES, Measures
 from simcore.design.scopes import Entry, Place, Poisoned, Scope, Sheet, Value, at_word, span_of, suggest, text_of
+from simcore.design.study_kinds import STUDY_KINDS, Nature
 from simcore.design.values import EXPRESSIONS, clash
 
-STUDY_MEANINGS = {
-    "operating_point": "the rest state, sources at their value at t = 0",
-    "settled": "the periodic steady state",
-    "transient": "the course in time, from rest or from where another study ended",
-}
 DEEPEST_AFTER = 100
 MOST_PERIODS = 100_000
 MOST_ROWS = 1_000_000
-_EVERY = tuple(STUDY_MEANINGS)
-_MOVING = ("settled", "transient")
 
 
 @dataclass(frozen=True)
 class StudyKey:
-    """One key of studies. dimension: of its value, None for a name; kinds: which studies take it; takes: what may be
-    written where its unit does not say so; default: in words."""
+    """One key of studies. dimension: of its value, None for a name; takes: what may be written where its unit does not
+    say so; default: in words."""
 
     name: str
     meaning: str
     dimension: Dimension | None
-    kinds: tuple[str, ...] = _EVERY
     takes: str = ""
     default: str = ""
 
@@ -46,9 +39,9 @@ class StudyKey:
 STUDY_KEYS = {
     key.name: key
     for key in (
-        StudyKey("after", "study whose end it starts from", None, ("transient",), "a study", "from rest"),
-        StudyKey("duration", "how long it runs", SECOND, ("transient",), default="must be given"),
-        StudyKey("period", "period it settles to and is judged by", SECOND, _MOVING, default="the sources' common one"),
+        StudyKey("after", "study whose end it starts from", None, "a study", "from rest"),
+        StudyKey("duration", "how long it runs", SECOND, default="must be given"),
+        StudyKey("period", "period it settles to and is judged by", SECOND, default="the sources' common one"),
         StudyKey(
             "angle",
             "phase of the first sine at t = 0, or the one that makes a figure highest (with a minus sign lowest)",
@@ -56,18 +49,16 @@ STUDY_KEYS = {
             takes="deg, or `worst for FIGURE`",
             default="as the sources have it",
         ),
-        StudyKey("last", "how many periods at its end are judged", NONE, ("transient",), default="its whole span"),
+        StudyKey("last", "how many periods at its end are judged", NONE, default="its whole span"),
         StudyKey("accuracy", "relative error wanted on the figures", NONE, default="0.1 %"),
         StudyKey(
             "record_every",
             "interval of its trace, such as `20 ms / 400`; no figure depends on it",
             SECOND,
-            _MOVING,
             default="each step and its middle",
         ),
     )
 }
-STUDY_KINDS = {kind: tuple(key.name for key in STUDY_KEYS.values() if kind in key.kinds) for kind in STUDY_MEANINGS}
 
 
 def moved_lets(flat: Flat) -> dict[str, None]:
@@ -112,8 +103,8 @@ class Studies:
         return found
 
     def _study(self, study: Study) -> PlannedStudy:
-        allowed = STUDY_KINDS.get(study.kind)
-        if allowed is None:
+        kind = STUDY_KINDS.get(study.kind)
+        if kind is None:
             where = at_word(study.span, study.kind)
             self.scope.wrong(f"there is no kind of study {study.kind}", suggest(study.kind, list(STUDY_KINDS)), where)
             return PlannedStudy(study.name, study.kind, label=study.label, span=study.span)
@@ -121,19 +112,19 @@ class Studies:
         for setting in study.settings:
             if setting.key in given:
                 self.scope.wrong(f"{setting.key} is given twice", "Give each key once.", setting.span)
-            elif setting.key not in allowed:
-                self._no_key(study, setting, allowed)
+            elif setting.key not in kind.keys:
+                self._no_key(study, setting, kind.keys)
             elif setting.key == "angle" and isinstance(setting.value, Worst):
                 given["worst"] = self._worst(setting.value)
             else:
                 given[setting.key] = self._setting(setting)
-        if study.kind == "transient" and "duration" not in given:
+        if kind.nature is Nature.COURSE and "duration" not in given:
             self.scope.wrong(
-                f"transient {study.name} has no duration", "Add `duration = 100 ms`, or yours.", study.span
+                f"{study.kind} {study.name} has no duration", "Add `duration = 100 ms`, or yours.", study.span
             )
         self._bounded(study, given)
         changes = [self._change(action) for action in study.actions]
-        events = self._events(study, given.get("duration"))
+        events = self._events(study, kind.nature, given.get("duration"))
         values = {key: value for key, value in given.items() if value is not None}
         return PlannedStudy(
             study.name,
@@ -167,8 +158,8 @@ class Studies:
             self.scope.wrong(f"the study spans {span / periods[fastest]:.2g} periods of {fastest}", cure, where)
 
     def _no_key(self, study: Study, setting: Setting, allowed: tuple[str, ...]) -> None:
-        if setting.key in STUDY_KINDS["transient"]:
-            kinds = [kind for kind, keys in STUDY_KINDS.items() if setting.key in keys]
+        if setting.key in STUDY_KEYS:
+            kinds = [kind.name for kind in STUDY_KINDS.values() if setting.key in kind.keys]
             cure = f"It belongs to {' and '.join(kinds)}: leave it out."
         else:
             cure = suggest(setting.key, list(allowed))
@@ -224,7 +215,8 @@ class Studies:
         if study is None:
             self.scope.unknown(name or "here", list(self.studies), span_of(value), "no study is named")
             return None
-        if study.kind == "operating_point":
+        kind = STUDY_KINDS.get(study.kind)
+        if kind is not None and kind.nature is Nature.REST:
             cure = "Begin after a settled or transient study."
             self.scope.wrong(f"{name} is an operating point, which has no end to go on from", cure, span_of(value))
             return None
@@ -254,9 +246,9 @@ class Studies:
             cure = f"Let one of them start from rest: at most {DEEPEST_AFTER} may follow one another."
             self.scope.wrong("too many studies start from one another", cure, self.studies[deep].span)
 
-    def _events(self, study: Study, duration: float | None) -> tuple[tuple[float, Change], ...]:
+    def _events(self, study: Study, nature: Nature, duration: float | None) -> tuple[tuple[float, Change], ...]:
         found = []
-        if study.events and study.kind != "transient":
+        if study.events and nature is not Nature.COURSE:
             cure = "Put the action among the study's keys, or make it a transient."
             self.scope.wrong(f"a study of kind {study.kind} has no instants", cure, study.events[0].span)
             return ()

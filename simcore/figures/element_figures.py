@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Callable
 
 from grammar.quantities import ANGLE, JOULE, KELVIN, NONE, SECOND, WATT, Dimension
+from simcore.design.study_kinds import Nature
 from simcore.figures import measure, stored
 from simcore.figures.figure import Figure, undefined
 from simcore.figures.record import Part, Record
@@ -122,7 +123,7 @@ def life(record: Record, name: str) -> Figure:
     core of T_0 (common practice, no source); of what settles, as a transient says nothing of years.
     """
     element = record.part(name).element
-    if element.given.get("temperature") is None and record.solution.study.kind == "transient":
+    if element.given.get("temperature") is None and record.solution.study.nature is Nature.COURSE:
         return undefined(SECOND, f"a transient says nothing of how hot {name} gets in the long run")
     endurance, at = element.given["endurance"]
     return Figure(endurance * 2.0 ** ((at - core_temperature(record, name).value) / _HALVES), SECOND)

@@ -13,6 +13,7 @@ from grammar.quantities import AMPERE, I2T
 from simcore.components import KINDS
 from simcore.design.circuit import Circuit, Element, Requirement
 from simcore.design.graph import port_name
+from simcore.design.study_kinds import Nature
 from simcore.figures import element_figures, measure
 from simcore.figures.figure import Figure
 from simcore.figures.record import Record
@@ -101,7 +102,7 @@ def _surge(record: Record, element: Element, name: str) -> Figure:
     plain = _highest(current)
     if width is not None:
         cycles, shares = element.given.get("surge_half_cycles") or (), _array(element, "in_parallel")
-        repeats = record.solution.study.kind == "settled"
+        repeats = record.solution.study.nature is Nature.PERIOD
         weighed = weighted_surge(current, width, rated * shares, [(n, crest * shares) for n, crest in cycles], repeats)
         plain = replace(plain, value=weighed, scale=max(plain.scale, weighed))
     return _divided(plain, _array(element, "in_parallel"))
@@ -109,7 +110,7 @@ def _surge(record: Record, element: Element, name: str) -> Figure:
 
 def _surge_i2t(record: Record, element: Element, name: str) -> Figure:
     current = record.window(record.current(name))
-    repeats = record.solution.study.kind == "settled"
+    repeats = record.solution.study.nature is Nature.PERIOD
     value = measure.largest_i2t(current, SURGE, repeats) / _array(element, "in_parallel") ** 2
     return Figure(value, I2T)
 

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from grammar.quantities import KELVIN
 from simcore.components import KINDS
 from simcore.design.circuit import Circuit, Element, PlannedStudy
+from simcore.design.study_kinds import Nature
 from simcore.figures.figure import Figure, bounded
 from simcore.figures.record import Record
 from simcore.figures.stresses import Stress, rated_elements, rated_stresses, stress_names, stresses_of
@@ -97,7 +98,7 @@ def bill_of(proof: Proof, variants: Iterable[Demand] = ()) -> list[BillLine]:
 
 def lasts(study: PlannedStudy) -> bool:
     """Whether what a study judges goes on: a state that has settled or rests, or the last periods of a transient."""
-    return study.kind != "transient" or study.last is not None
+    return study.nature is not Nature.COURSE or study.last is not None
 
 
 def _stresses(element: Element) -> Sequence[Stress]:

@@ -11,6 +11,7 @@ from grammar.quantities import FARAD, SECOND, VOLT, show
 from simcore.design.accessible import DischargeTable
 from simcore.design.circuit import Circuit, Requirement
 from simcore.design.graph import port_name
+from simcore.design.study_kinds import Nature
 from simcore.figures import measure
 from simcore.figures.evaluate import Records
 from simcore.figures.figure import Figure, plain
@@ -31,7 +32,7 @@ def judge_discharge(requirement: Requirement, coarse: Records, fine: Records) ->
         return Verdict(requirement, State.UNDECIDED, reason=f"study {study} was not solved")
     record, name = fine[study], tabled_element(requirement)
     start = record.begin() + table.after
-    if record.solution.study.kind != "transient" or start >= float(record.times[-1]):
+    if record.solution.study.nature is not Nature.COURSE or start >= float(record.times[-1]):
         why = f"only a transient that lasts {show(table.after, SECOND)} beyond its first event shows what is left then"
         return Verdict(requirement, State.NOT_JUDGED, reason=why)
     capacitance = capacitance_across(record.circuit, name)

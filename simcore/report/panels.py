@@ -14,6 +14,7 @@ import numpy as np
 from grammar.quantities import AMPERE, JOULE, KELVIN, NONE, OHM, PREFIXES, SECOND, VOLT, WATT, Dimension, unit_of
 from simcore.design.limits import LimitTable
 from simcore.design.overview import sentence
+from simcore.design.study_kinds import Nature
 from simcore.figures import measure
 from simcore.figures.overview import VALVES, Row
 from simcore.figures.polynomials import Array
@@ -98,14 +99,14 @@ class Bars:
 def picture_of(name: str, study: ProvedStudy) -> Picture | None:
     """The traces of a study; None for one without a course, such as an operating point."""
     record = study.record
-    if study.study.kind == "operating_point":
+    if study.study.nature is Nature.REST:
         return None
     prefix = prefix_of(float(record.times[-1] - record.times[0]))
     scale = 1.0 / PREFIXES[prefix]
     start, end = float(record.times[0]) * scale, float(record.times[-1]) * scale
     window = tuple(each * scale for each in record.solution.window)
     whole = abs(window[1] - window[0] - (end - start)) <= 1e-9 * (end - start)
-    periodic = study.study.kind == "settled" or not whole
+    periodic = study.study.nature is Nature.PERIOD or not whole
     rows = {row.name: row for row in study.signals} if periodic else {}
     return Picture(
         f"{name}: {sentence(study.study)}",

@@ -14,7 +14,8 @@ from grammar.quantities import AMPERE, NONE, VOLT, Dimension, show, unit_of
 from simcore.components import KINDS
 from simcore.components.kind import Key, Kind
 from simcore.design.overview import value_text
-from simcore.design.studies import STUDY_KEYS, STUDY_KINDS, STUDY_MEANINGS
+from simcore.design.studies import STUDY_KEYS
+from simcore.design.study_kinds import STUDY_KINDS
 from simcore.figures.catalogue import FIGURES, SIGNALS, Measure
 from simcore.report.writing import whole_file
 
@@ -134,13 +135,13 @@ def _amount(value: float, key: Key) -> str:
 
 
 def _studies() -> list[str]:
-    kinds = [[f"`{kind}`", _said(STUDY_MEANINGS[kind], kind)] for kind in STUDY_KINDS]
+    kinds = [[f"`{kind.name}`", _said(kind.meaning, kind.name)] for kind in STUDY_KINDS.values()]
     keys = [
         [
             f"`{key.name}`",
             key.takes or _unit(key.dimension or NONE),
             key.default,
-            ", ".join(key.kinds),
+            ", ".join(kind.name for kind in STUDY_KINDS.values() if key.name in kind.keys),
             _said(key.meaning, key.name),
         ]
         for key in STUDY_KEYS.values()

@@ -17,6 +17,7 @@ from simcore.components import KINDS
 from simcore.components.part import temperature_of
 from simcore.design.circuit import Change, Circuit, Element, PlannedStudy
 from simcore.design.overview import celsius
+from simcore.design.study_kinds import Nature
 from simcore.equations.kernel import KernelCache
 from simcore.solve.course import Course, Reached, Variant, Watch
 from simcore.solve.failure import NoSolution, Reason
@@ -62,7 +63,7 @@ def solve_warm(
     """
     earlier = before.changes if before is not None else ()
     balance = _Balance(variant(earlier + study.changes), dict(before.temperatures) if before is not None else {})
-    enough = _STILL if study.kind == "operating_point" else max(_LEAST, _SHARE * tolerance)
+    enough = _STILL if study.nature is Nature.REST else max(_LEAST, _SHARE * tolerance)
     for round_ in range(_ROUNDS):
         if round_ == _PATIENCE:
             enough *= 10.0
@@ -71,14 +72,14 @@ def solve_warm(
         course.watch = watch
         solution, left = course.solve()
         left = replace(left, temperatures=dict(balance.temperatures))
-        if study.kind == "transient":
+        if study.nature is Nature.COURSE:
             return solution, left
         if not balance.update(solution, enough):
             return _with_cores(solution, left, balance.cores)
         hottest = max(balance.temperatures, key=lambda name: balance.temperatures[name])
         if balance.runaway or not balance.temperatures[hottest] < _HOTTEST:
             raise NoSolution(study.name, Reason.RUNAWAY, detail=balance.runaway or hottest)
-        if study.kind == "settled":
+        if study.nature is Nature.PERIOD:
             before = replace(left, changes=earlier)
     raise NoSolution(study.name, Reason.RUNAWAY, detail=hottest)
 

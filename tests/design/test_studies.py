@@ -176,7 +176,7 @@ def test_requirements_carry_full_names_and_values() -> None:
         ("require s: ratings of Q", "no element is named Q"),
         ("require s: ratings, margin = 2", "the margin is no share"),
         ("require s: ratings, margn = 2 %", "ratings has no key margn"),
-        ('require s: mean(u) within "IEC"', "only the harmonics of an element are compared with a table"),
+        ('require s: mean(u) within "IEC"', "only the harmonics or the discharge of an element are compared with a table"),
         ("require s: harmonics(e) <= 1", "harmonics stands before `within` only"),
         ("observe v = mean(u)", "v is a figure, not a signal"),
         ("observe v = R1", "R1 is an element, not a signal"),

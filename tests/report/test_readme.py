@@ -21,7 +21,8 @@ import simcore
 from simcore.command import main as run_command
 from simcore.components import KINDS
 from simcore.components.kind import Kind
-from simcore.design.studies import STUDY_KEYS, STUDY_KINDS
+from simcore.design.studies import STUDY_KEYS
+from simcore.design.study_kinds import STUDY_KINDS
 from simcore.figures.catalogue import FIGURES, SIGNALS
 from simcore.report import reference as written
 from simcore.report.reference import BEGIN, END, README, main, reference, with_reference
@@ -65,7 +66,7 @@ def test_nothing_is_declared_without_a_meaning(monkeypatch: pytest.MonkeyPatch, 
         "kind": (KINDS, "diode", replace(diode, meaning=" ")),
         "key": (KINDS, "diode", replace(diode, keys=(*diode.keys[:-1], replace(diode.keys[-1], meaning="")))),
         "study key": (STUDY_KEYS, "last", replace(STUDY_KEYS["last"], meaning="")),
-        "study": (written.STUDY_MEANINGS, "settled", ""),
+        "study": (STUDY_KINDS, "settled", replace(STUDY_KINDS["settled"], meaning="")),
         "figure": (FIGURES, "rms", replace(FIGURES["rms"], meaning="")),
         "signal": (SIGNALS, "power", replace(SIGNALS["power"], meaning="")),
     }

@@ -1,0 +1,56 @@
+"""The kinds of study, declared once: what each means, finds and takes.
+
+Checking, help text and the language reference come from this table. It knows nothing of circuits or of how a study is
+solved.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import Enum
+
+
+class Nature(Enum):
+    """What a study finds: a state of rest, a period that goes on for ever, or a course from a beginning to an end."""
+
+    REST = "rest"
+    PERIOD = "period"
+    COURSE = "course"
+
+
+@dataclass(frozen=True)
+class StudyKind:
+    """A kind of study.
+
+    meaning: in words; keys: those of `studies.STUDY_KEYS` that it takes
+    """
+
+    name: str
+    meaning: str
+    nature: Nature
+    keys: tuple[str, ...]
+
+
+STUDY_KINDS = {
+    kind.name: kind
+    for kind in (
+        StudyKind(
+            "operating_point",
+            "the rest state, sources at their value at t = 0",
+            Nature.REST,
+            ("angle", "accuracy"),
+        ),
+        StudyKind(
+            "settled",
+            "the periodic steady state",
+            Nature.PERIOD,
+            ("period", "angle", "accuracy", "record_every"),
+        ),
+        StudyKind(
+            "transient",
+            "the course in time, from rest or from where another study ended",
+            Nature.COURSE,
+            ("after", "duration", "period", "angle", "last", "accuracy", "record_every"),
+        ),
+    )
+}
