@@ -87,7 +87,7 @@ class Course:
         circuit = self.variant(changes)
         frame = self._frame(circuit, 0.0)
         engine = self._engine(circuit, frame, {})
-        clock = clock_at_phase(frame, self.study.angle)
+        clock = self._asked_clock(changes, 0.0)
         stretch = self._guard(lambda: rest(engine, clock), clock)
         memory: Memory = {}
         engine.remember(memory)
@@ -100,7 +100,7 @@ class Course:
         period = self._settling_period(frame, changes)
         memory = dict(self.before.memory) if self.before else {}
         engine = self._engine(circuit, frame, memory)
-        clock = clock_at_phase(frame, self.study.angle)
+        clock = self._asked_clock(changes, math.inf)
         stepping = self._stepping(frame, period)
         slope = self.before.slopes.get(self.study.name) if self.before else None
         found = self._guard(lambda: settle(engine, clock, period, stepping, slope), clock)
@@ -142,8 +142,8 @@ class Course:
             circuit = self.variant(changes)
             frame = self._frame(circuit, moment + now)
             if not stretches:
-                clock = self._first_clock(circuit, frame, memory)
-                period = self.study.period or common_period(frame)
+                clock = self._first_clock(changes, moment, memory)
+                period = self.study.period or common_period(frame) or common_period(self._whole(changes, moment))
             end = self._next_change(circuit, moment, now, events)
             piece = self._piece(circuit, frame, memory, clock + now, clock + end, now)
             stretches += piece
@@ -181,20 +181,25 @@ class Course:
         times += [instant - moment for instant in instants(circuit) if instant - moment > now]
         return min(time for time in times if time is not None and time > now)
 
-    def _first_clock(self, circuit: Circuit, frame: Frame, memory: Memory) -> float:
+    def _whole(self, changes: tuple[Change, ...], moment: float) -> Frame:
+        """The circuit with all its sources in place, whatever is opened: what an angle counts from."""
+        return self._frame(self._set(changes), moment)
+
+    def _asked_clock(self, changes: tuple[Change, ...], moment: float) -> float:
+        """The sources' clock at the study's angle."""
+        return clock_at_phase(self._whole(changes, moment), self.study.angle)
+
+    def _first_clock(self, changes: tuple[Change, ...], moment: float, memory: Memory) -> float:
         """The sources' clock at t = 0; after another study with an angle, the state is carried on to that instant."""
         if self.before is None:
-            return clock_at_phase(frame, self.study.angle)
+            return self._asked_clock(changes, moment)
         clock = self.before.clock
-        if self.study.angle is None:
+        period = common_period(self._whole(changes, moment))
+        if self.study.angle is None or period is None:
             return clock
         earlier = self.variant(self.before.changes)
-        frame = self._frame(earlier, self.before.moment)
-        period = common_period(frame)
-        if period is None:
-            return clock
-        ahead = (clock_at_phase(frame, self.study.angle) - clock) % period
-        self._piece(earlier, frame, memory, clock, clock + ahead)
+        ahead = (self._asked_clock(changes, moment) - clock) % period
+        self._piece(earlier, self._frame(earlier, moment), memory, clock, clock + ahead)
         return clock + ahead
 
     def _frame(self, circuit: Circuit, moment: float) -> Frame:
@@ -238,7 +243,10 @@ class Course:
 
     def _valued(self, changes: tuple[Change, ...], stretches: list[Stretch]) -> list[Circuit]:
         """For each stretch, the circuit with the lets that changes set."""
-        return [self.variant(tuple(change for change in changes if change.verb == "set"))] * len(stretches)
+        return [self._set(changes)] * len(stretches)
+
+    def _set(self, changes: tuple[Change, ...]) -> Circuit:
+        return self.variant(tuple(change for change in changes if change.verb == "set"))
 
     def _solution(
         self, valued: list[Circuit], stretches: list[Stretch], clock: float, period: float | None, span: float

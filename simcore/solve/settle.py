@@ -13,6 +13,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from grammar.quantities import AMPERE, COULOMB, KELVIN, SECOND, VOLT, show
 from simcore.solve.engine import Engine, Interrupted, Stepping
 from simcore.solve.failure import Reason
 from simcore.solve.stretch import Stretch
@@ -34,6 +35,10 @@ _SHORTEST = 0.25
 _GROWTH = 4.0
 _LARGEST_GROWTH = 100.0
 _FREE = 1e-9
+_UNMET = 0.3
+"""Most that a period may add to what nothing takes back, over the tolerance of a step: more is drift."""
+_LONG = 1e3
+"""Periods ahead after which what still grows as at first is said to drift."""
 _SMALL_SHARE = 0.01
 _MOST_PERIODS = 4_000
 _SPAN = 4
@@ -41,6 +46,10 @@ _LEAVES = 1.0 + 1e-3
 _LONGEST_REPEAT = 8
 _LOOK_EVERY = 50
 _STANDING = 4
+
+
+_DRIFTS = {"voltage": VOLT, "current": AMPERE, "charge": COULOMB, "temperature": KELVIN, "flux": VOLT * SECOND}
+"""Units of what a state may hold."""
 
 
 @dataclass(frozen=True)
@@ -124,7 +133,9 @@ def settle(
     try:
         found = _closed(way, start, slope) if slope is not None and len(slope) == len(start) else None
         found = found or _by_newton(way, start)
-    except Interrupted:
+    except Interrupted as stop:
+        if stop.reason is Reason.NOT_SETTLED:
+            raise
         found = None
     return found or _by_following(way, start)
 
@@ -132,7 +143,8 @@ def settle(
 @dataclass(frozen=True)
 class _Point:
     """States, the derivative of those a period later, and over the scale of the states: what a period adds (residual),
-    the derivative (slope) and what Newton would add (rest)."""
+    the derivative (slope), what Newton would add (rest), what of the residual no correction meets, since nothing takes
+    it back (unmet), and how much of that the roughness of the map may be (unsure)."""
 
     states: np.ndarray
     derivative: np.ndarray
@@ -140,13 +152,18 @@ class _Point:
     residual: np.ndarray
     slope: np.ndarray
     rest: np.ndarray
+    unmet: np.ndarray
+    unsure: float
 
     @classmethod
     def of(cls, way: _Map, states: np.ndarray, after: np.ndarray, derivative: np.ndarray) -> _Point:
         """From the states at both ends of a period."""
         scale = way.scale(after)
         residual, slope = (after - states) / scale, derivative * scale / scale[:, None]
-        return cls(states, derivative, scale, residual, slope, _solved(np.eye(len(states)) - slope, residual))
+        matrix = np.eye(len(states)) - slope
+        rest = _solved(matrix, residual)
+        unmet, unsure = residual - matrix @ rest, _UNMET * way.stepping.tolerance
+        return cls(states, derivative, scale, residual, slope, rest, unmet, unsure)
 
     @property
     def size(self) -> float:
@@ -155,8 +172,8 @@ class _Point:
 
     @property
     def distance(self) -> float:
-        """How far Newton takes the settled state to be."""
-        return float(np.max(np.abs(self.rest)))
+        """How far Newton takes the settled state to be; without end where it drifts."""
+        return np.inf if np.max(np.abs(self.unmet)) > self.unsure else float(np.max(np.abs(self.rest)))
 
     def corrected(self, pseudo: float = np.inf) -> np.ndarray:
         """The states after a correction with a pseudo time in periods; without one, Newton's."""
@@ -179,30 +196,44 @@ def _by_newton(way: _Map, start: np.ndarray) -> Settled | None:
     """
     pseudo, since, whole = _FIRST, 0, True
     roughness = 3.0 * way.stepping.tolerance
-    base = best = _point(way, way.follow(start))
+    base = best = first = _point(way, way.follow(start))
     for _ in range(_ROUNDS):
-        if base is None or best is None:
+        if base is None or best is None or first is None:
             return None
         near = best.distance <= _NEAR and since == 0
         found = _closed(way, best.corrected(), best.derivative) if near else None
-        if found is None and since >= _STANDING and best.size <= roughness:
+        if found is None and since >= _STANDING and best.size <= roughness and best.distance < np.inf:
             _, stretches = way.record(best.corrected())
             found = _described(way, best.derivative, best.distance, stretches)
         if found is not None:
             return found if found.multiplier <= _LEAVES else None
-        far = base.distance > _FAR and not (whole and base.size <= max(_LITTLE, roughness))
+        little = whole and base.size <= max(_LITTLE, roughness) and base.distance < np.inf
+        far = base.distance > _FAR and not little
         point = _point(way, way.follow(base.corrected(pseudo)) if far else base.corrected())
         if point is None:
             return None
+        if far and pseudo >= _LONG:
+            _hold_against_drift(way, first, point)
         whole = point.size <= 1.5 * base.size or pseudo <= _SHORTEST
         if not whole:
             pseudo /= 8.0
         else:
             pseudo *= min(_GROWTH * max(base.size / max(point.size, 1e-300), 1.0), _LARGEST_GROWTH)
             base = point
-        since = since + 1 if point.distance > 0.5 * best.distance else 0
+        since = 0 if point.distance <= 0.5 * best.distance < np.inf else since + 1
         best = point if point.distance < best.distance else best
     return None
+
+
+def _hold_against_drift(way: _Map, first: _Point, later: _Point) -> None:
+    """What a period adds long after at least half as fast as at first, and nothing takes back, drifts."""
+    state = int(np.argmax(np.abs(first.unmet)))
+    before, after = (float(point.unmet[state] * point.scale[state]) for point in (first, later))
+    if abs(first.unmet[state]) > first.unsure and abs(after) >= 0.5 * abs(before):
+        unit = _DRIFTS.get(way.quantities[state])
+        speed = f"{after:.3g}" if unit is None else show(after, unit)
+        detail = f"the {way.owner(state)} drifts by {speed} a period, and nothing takes it back"
+        raise Interrupted(Reason.NOT_SETTLED, way.clock, detail)
 
 
 def _closed(way: _Map, states: np.ndarray, derivative: np.ndarray) -> Settled | None:
@@ -215,7 +246,7 @@ def _closed(way: _Map, states: np.ndarray, derivative: np.ndarray) -> Settled | 
         point = _Point.of(way, states, after, derivative)
         if point.distance <= agreement:
             return _described(way, derivative, point.distance, stretches)
-        if point.distance > _SHRINKS * last:
+        if point.distance > _SHRINKS * last or point.distance == np.inf:
             return None
         states, last = point.corrected(), point.distance
 

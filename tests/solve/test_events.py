@@ -92,6 +92,16 @@ def test_after_a_settled_state_the_sources_keep_their_place() -> None:
     assert at(solved(text, "later"), 0.005) == pytest.approx(-1.0, abs=1e-4)
 
 
+def test_an_angle_counts_from_the_first_source_though_it_is_open() -> None:
+    """1 V peak on 1 Ohm, closed 5 ms after 90 deg: 1 ms later it stands at 198 deg; so it does after a study that had it open."""
+    text = "a -> g: source V, sine = 1 V peak, frequency = 50 Hz\na -> g: resistor R, 1 Ohm\nreference g\n"
+    text += "study off: transient, duration = 7 ms, open V\nstudy s: transient, duration = 10 ms, angle = 90 deg, open V {\n at 5 ms: close V\n}\n"
+    for study in (text, text.replace("angle = 90 deg, open V", "after = off, angle = 90 deg")):
+        result = solved(study)
+        assert at(result, 4e-3) == 0.0
+        assert at(result, 6e-3) == pytest.approx(math.sin(math.radians(198.0)), rel=1e-4)
+
+
 def test_corners_and_jumps_of_a_source_are_hit() -> None:
     points = "points = [0 s: 0 V, 1 ms: 4 V, 1 ms: 1 V, 2 ms: 1 V]"
     result = solved(

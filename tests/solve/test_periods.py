@@ -95,3 +95,44 @@ def test_a_core_that_forgets_within_thousands_of_periods_is_settled_at_once() ->
     core, drawn = result.figure("mean(current(L))"), float(result.figure("mean(current(D))"))
     assert abs(core.value + drawn) <= core.bound
     assert core.value == pytest.approx(-drawn, rel=2e-2)
+
+
+# --- what does not settle --------------------------------------------------------------------------------------------------------
+
+ASIDE = "a -> g: source V, sine = 10 V peak, frequency = 50 Hz\na -> b: resistor R, 1 kOhm\nb -> g: capacitor C, 1 uF\nreference g\nstudy s: settled"
+FED = "x -> g: source I, constant = -1 mA\nx -> g: capacitor C2, 1 mF"
+
+
+@pytest.mark.parametrize(
+    ("drifting", "said"),
+    [
+        (FED, "the voltage of C2 drifts by 20 mV a period, and nothing takes it back"),
+        (FED + ", initial_voltage = 10 V", "the voltage of C2 drifts by 20 mV a period, and nothing takes it back"),
+        ("a -> m: source E, constant = 1 V\nm -> g: inductor L, 1 H", "the current of L drifts by -20 mA a period, and nothing takes it back"),
+    ],
+)
+def test_what_drifts_is_told(drifting: str, said: str) -> None:
+    """1 mA into 1 mF adds 20 mV in 20 ms, and so does 1 V across 1 H in mA; no steady state is made up of it."""
+    with pytest.raises(NoSolution) as failure:
+        solved(f"{drifting}\n{ASIDE}")
+    assert failure.value.reason is Reason.NOT_SETTLED and said in str(failure.value)
+
+
+def test_what_a_clamp_ends_does_not_drift() -> None:
+    """The same capacitor, which takes a thousand periods to charge to a clamp of 20 V at 0.5 mA and 25 V at 2 mA: 1 mA by its power law."""
+    result = solved(f"{FED}\nx -> g: clamp Z, clamping = [20 V @ 0.5 mA, 25 V @ 2 mA]\n{ASIDE}")
+    volts = 20.0 * 2.0 ** (math.log(25.0 / 20.0) / math.log(4.0))
+    assert float(result.figure("mean(voltage(x))")) == pytest.approx(volts, rel=1e-4)
+
+
+def test_what_repeats_only_every_few_periods_is_told_and_settles_at_that_period() -> None:
+    """A relay that empties the reservoir whenever it has filled comes back to the same phase every fifth period."""
+    text = f"""a -> g: source V, sine = 10 V peak, frequency = 50 Hz, series_resistance = 1 kOhm
+    a -> p: diode D, {LAW}\np -> g: capacitor C, 4 uF\np -> x: resistor R_x, 10 Ohm
+    x -> g: switch K, closed_resistance = 1 Ohm, open_resistance = 1 GOhm, control = voltage(p), closes_above = 5 V, opens_below = 0.1 V
+    reference g\nstudy s: settled"""
+    with pytest.raises(NoSolution, match=r"repeats only every 5 periods of the sources; give it `period = 0.1 s`"):
+        solved(text)
+    result = solved(text + ", period = 0.1 s")
+    cycled = solved(text.replace("settled", "transient, duration = 1 s, period = 0.1 s, last = 1"))
+    assert float(result.figure("mean(voltage(p))")) == pytest.approx(float(cycled.figure("mean(voltage(p))")), rel=2e-3)
