@@ -46,7 +46,7 @@ def sweep_lines(results: Results, label: str | None = None, width: int | None = 
     worst = results.worst
     if worst:
         lines += ["", INDENT + "The worst case of each requirement, and the variant where it lies"]
-        lines += table(WORST_HEADINGS, [worst_cells(each) for each in worst], 3, width)
+        lines += table(WORST_HEADINGS, [worst_cells(each) for each in worst], 3, width, 1)
         lines += ["", *_variants(results, worst)]
     return lines + _unsolved(results) + [INDENT + text for text in sums(results)]
 

@@ -14,29 +14,68 @@ NARROWEST = 16
 """Of a text column that is broken."""
 
 
-def table(headings: Sequence[str], rows: Sequence[Sequence[str]], left: int = 1, width: int | None = None) -> list[str]:
+def table(
+    headings: Sequence[str],
+    rows: Sequence[Sequence[str]],
+    left: int = 1,
+    width: int | None = None,
+    grouping: int | None = None,
+) -> list[str]:
     """The lines of a table: headings, a rule, one line a row; the first `left` columns are text, the others numbers.
 
     headings: of each column; rows: cells of each row, as many as headings
     width: characters a line may have: the widest text column is broken where that helps, and columns that are still
     beyond follow below, behind the text columns again
+    grouping: the text column that stands over rows that share it instead, where that spares a block or fits
     """
-    cells = [list(headings), *map(list, rows)]
-    if any(len(row) != len(headings) for row in cells):
+    if any(len(row) != len(headings) for row in rows):
         raise ValueError("a row has not as many cells as the table has columns")
+    plain = _laid_out(headings, rows, left, width)
+    if grouping is None or _strain(plain, width) == (False, 1):
+        return _joined(plain)
+    groups = dict.fromkeys(row[grouping] for row in rows)
+    order = [row for group in groups for row in rows if row[grouping] == group]
+    shorter = [[*row[:grouping], *row[grouping + 1 :]] for row in order]
+    cut = [*headings[:grouping], *headings[grouping + 1 :]]
+    grouped = _laid_out(cut, shorter, left - 1, width, [row[grouping] for row in order])
+    return _joined(min(plain, grouped, key=lambda blocks: _strain(blocks, width)))
+
+
+def _strain(blocks: Sequence[Sequence[str]], width: int | None) -> tuple[bool, int]:
+    """What speaks against a layout: whether it is too wide, then how many blocks it has."""
+    return width is not None and any(len(line) > width for block in blocks for line in block), len(blocks)
+
+
+def _joined(blocks: Sequence[Sequence[str]]) -> list[str]:
+    return [line for at, block in enumerate(blocks) for line in ([""] if at else []) + list(block)]
+
+
+def _laid_out(
+    headings: Sequence[str],
+    rows: Sequence[Sequence[str]],
+    left: int,
+    width: int | None,
+    groups: Sequence[str] = (),
+) -> list[list[str]]:
+    """The blocks of a table; groups: of each row, what stands over the first of those that share it."""
+    cells = [list(headings), *map(list, rows)]
     widths = [max(len(row[column]) for row in cells) for column in range(len(headings))]
     longest = max(range(left), key=lambda column: widths[column], default=0)
     if width is not None and left:
         widths[longest] = _narrowed(widths, longest, left, width)
-    broken = [part for row in cells for part in _broken(row, longest, widths)]
-    head = len(_broken(cells[0], longest, widths))
-    lines: list[str] = []
+    broken = [_broken(row, longest, widths) for row in cells]
+    blocks = []
     for columns in _blocks(widths, left, width):
         chosen = [widths[column] for column in columns]
-        block = [_line([row[column] for column in columns], chosen, left) for row in broken]
-        block.insert(head, INDENT + "-" * (sum(chosen) + len(GAP) * (len(chosen) - 1)))
-        lines += [""] * bool(lines) + block
-    return lines
+        block: list[str] = []
+        for at, parts in enumerate(broken):
+            if groups and at and (at == 1 or groups[at - 1] != groups[at - 2]):
+                block.append(f"{INDENT}{groups[at - 1]}:")
+            block += [_line([row[column] for column in columns], chosen, left) for row in parts]
+            if at == 0:
+                block.append(INDENT + "-" * (sum(chosen) + len(GAP) * (len(chosen) - 1)))
+        blocks.append(block)
+    return blocks
 
 
 def _narrowed(widths: Sequence[int], longest: int, left: int, width: int) -> int:

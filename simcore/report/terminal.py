@@ -116,9 +116,13 @@ def cost_line(study: ProvedStudy) -> str:
 
 
 def bill_lines(bill: Sequence[BillLine], width: int | None = None) -> list[str]:
-    """The bill of ratings."""
-    cells = [words.bill_cells(line) for line in bill]
-    return ["Bill of ratings", *table(words.BILL_HEADINGS, cells, 3, width), INDENT + words.bill_note(bill)]
+    """The bill of ratings; where it would not fit as one table, its bounds are left to the file."""
+    lines = table(words.BILL_HEADINGS, [words.bill_cells(line) for line in bill], 3, width, 0)
+    note = words.bill_note(bill)
+    if "" in lines:
+        lines = table(words.BILL_HEADINGS, [words.bill_cells(line, bounds=False) for line in bill], 3, width, 0)
+        note += "; the bounds of what was found stand in bill.csv"
+    return ["Bill of ratings", *lines, INDENT + note]
 
 
 def verdict_lines(verdicts: Sequence[Verdict], width: int | None = None) -> list[str]:
@@ -126,7 +130,7 @@ def verdict_lines(verdicts: Sequence[Verdict], width: int | None = None) -> list
     if not verdicts:
         return ["No requirement was judged."]
     cells = [words.verdict_cells(verdict) for verdict in verdicts]
-    lines = ["Requirements", *table(words.VERDICT_HEADINGS, cells, 3, width)]
+    lines = ["Requirements", *table(words.VERDICT_HEADINGS, cells, 3, width, 1)]
     return lines + [INDENT + reason for reason in words.reasons(verdicts)]
 
 

@@ -6,6 +6,7 @@ Knows how numbers are written; lays nothing out and works nothing out.
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Iterable, Sequence
 
 from grammar.quantities import AMPERE, KELVIN, show
@@ -134,10 +135,12 @@ def closing(verdicts: Sequence[Verdict]) -> str:
 # --- ratings and harmonics -------------------------------------------------------------------------------------------
 
 
-def bill_cells(line: BillLine) -> list[str]:
-    """A line of the bill of ratings under BILL_HEADINGS."""
-    found = f"{stress_text(line.figure)} ± {bound(line.figure)}"
+def bill_cells(line: BillLine, bounds: bool = True) -> list[str]:
+    """A line of the bill of ratings under BILL_HEADINGS; bounds: whether with what follows ±."""
+    found = stress_text(line.figure) + (f" ± {bound(line.figure)}" if bounds else "")
     suggested = "-" if line.suggested is None else f"{show(line.suggested, line.figure.dimension)}"
+    if line.stress == "apparent power":
+        found, suggested = (re.sub(r"W\b", "VA", text) for text in (found, suggested))
     left = "-" if line.unused is None else percent(line.unused)
     where = f"{line.study}, {line.variant}" if line.variant else line.study
     return [line.name, line.stress, where, found, line.rating_text or "-", left, suggested]
