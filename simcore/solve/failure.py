@@ -30,7 +30,8 @@ class Reason(Enum):
     )
     CHATTER = (
         "parts switch one another on and off without end",
-        "set the level that closes or starts them further from the one that opens or stops them",
+        "set the level that closes or starts them further from the one that opens or stops them, or describe what "
+        "holds the voltage meanwhile, such as a capacitor beside a load",
     )
     KIRCHHOFF = (
         "the currents at a node do not add up to zero",

@@ -12,6 +12,8 @@ from simcore.equations.plain import evaluate
 
 MOST_PERIODS = 1000
 _SAMPLES = 64
+_ASIDE = 1e-9
+"""Share of a corner's time by which an instant lies aside of it."""
 _ROUNDING = 3e-15
 _LEAST_CURRENT = 1e-18
 """In A, far below what any current is told to: a scale that nothing is divided by as zero, where no resistance gives
@@ -47,12 +49,9 @@ def clock_at_phase(frame: Frame, angle: float | None) -> float:
 
 def largest_voltage(frame: Frame, span: float) -> float:
     """The largest source voltage over a span of time, in V, else the largest initial voltage, else 1 V."""
-    inputs = {f"p{index}": np.float64(number) for index, number in enumerate(frame.numbers)}
-    inputs["t"] = np.linspace(0.0, span, _SAMPLES)
+    inputs = _over(frame, span)
     series = [branch for branch in frame.branches if isinstance(branch, SeriesBranch)]
-    peaks = [abs(value) for waveform in frame.waveforms for _, value in waveform.points]
-    for value in evaluate([branch.source for branch in series], inputs):
-        peaks.append(float(np.max(np.abs(value))))
+    peaks = [float(np.max(np.abs(value))) for value in evaluate([branch.source for branch in series], inputs)]
     if not any(peaks):
         peaks = [abs(float(value)) for value in evaluate([branch.initial_voltage for branch in series], inputs)]
     return max(peaks, default=0.0) or 1.0
@@ -61,7 +60,19 @@ def largest_voltage(frame: Frame, span: float) -> float:
 def rounding_current(frame: Frame, voltage: float) -> float:
     """What rounding may make of the current of a branch, in A: a share of the sources' largest voltage in V over the
     smallest resistance, which is what flows in and out of a node in the equations."""
-    inputs = {f"p{index}": np.float64(number) for index, number in enumerate(frame.numbers)} | {"t": np.float64(0.0)}
     series = [branch.resistance for branch in frame.branches if isinstance(branch, SeriesBranch)]
-    resistances = [float(value) for value in evaluate([value for value in series if value.constant != 0.0], inputs)]
-    return max(_ROUNDING * voltage / min(resistances, default=math.inf), _LEAST_CURRENT)
+    given = evaluate([value for value in series if value.constant != 0.0], _over(frame, 0.0))
+    smallest = min((float(np.min(values)) for values in given), default=math.inf)
+    return max(_ROUNDING * voltage / smallest, _LEAST_CURRENT)
+
+
+def _over(frame: Frame, span: float) -> dict[str, np.ndarray]:
+    """The inputs of a frame over a span of time, among them both sides of every corner of its waveforms."""
+    inputs = {f"p{index}": np.array(number) for index, number in enumerate(frame.numbers)}
+    points = [np.array(waveform.points).T for waveform in frame.waveforms]
+    corners = np.concatenate([np.zeros(0), *(instants for instants, _ in points)])
+    times = np.concatenate([np.linspace(0.0, span, _SAMPLES), (1.0 - _ASIDE) * corners, (1.0 + _ASIDE) * corners])
+    for waveform, (instants, values) in zip(frame.waveforms, points, strict=True):
+        local = times if waveform.period is None else times % waveform.period
+        inputs[f"p{waveform.base}"] = np.interp(local, instants, values)
+    return inputs | {"t": times}

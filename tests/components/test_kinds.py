@@ -55,6 +55,7 @@ REPRESENTATIVES: dict[str, list[str]] = {
     "load": [
         "a -> b: load X, current = 0.1 A",
         "a -> b: load X, resistance = 20 Ohm",
+        "a -> b: load X, resistance = [0 s: 20 Ohm, 4 ms: 20 Ohm, 4 ms: 50 Ohm, 10 ms: 50 Ohm], period = 10 ms",
         "a -> b: load X, power = 0.5 W, cut_in = 6 V, cut_out = 3 V",
         "a -> b: load X, power = [0 s: 0 W, 5 ms: 1 W], cut_in = 6 V, cut_out = 3 V, period = 5 ms",
     ],
@@ -244,7 +245,8 @@ def test_building_is_repeatable(kind: str, text: str) -> None:
     larger = re.sub(size, lambda match: repr(1.03 * float(match[1])), text)
     other = framed(kind, larger)[0]
     assert other.signature() == first.signature()
-    assert other.numbers != first.numbers and len(other.numbers) == len(first.numbers)
+    assert (other.numbers, other.waveforms) != (first.numbers, first.waveforms)
+    assert len(other.numbers) == len(first.numbers)
     assert all(math.isfinite(number) for number in other.numbers)
 
 

@@ -11,6 +11,10 @@ import numpy as np
 import pytest
 from checking import close, course, solved
 
+import simcore
+from simcore.components.build import build_frame
+from simcore.solve.sources import largest_voltage, rounding_current
+
 FINE = "accuracy = 0.01 %"
 
 # --- loads ------------------------------------------------------------------------------------------------------------------
@@ -51,6 +55,36 @@ def test_hold_up_with_constant_current() -> None:
 def test_hold_up_with_a_resistance() -> None:
     """R C ln(V0 / V1) at 1444 Ohm. T2."""
     close(solved(reservoir("resistance = 1444 Ohm")), "time_until_below(voltage(a), 300 V)", 0.075095987, 1e-4)
+
+
+def test_a_stepped_resistance_and_a_duty_cycle_of_current() -> None:
+    """10 V on 20 Ohm for 3 ms and on 50 Ohm for 7 ms: (0.3 / 20 + 0.7 / 50) V^2 = 2.9 W; 2 A for a quarter of the time: rms 1 A, at
+    10 V less a millionth of half of it, as a load of constant current lets go about 10 mV."""
+    result = solved("""
+    a -> g: source e, constant = 10 V
+    a -> g: load R, resistance = [0 s: 20 Ohm, 3 ms: 20 Ohm, 3 ms: 50 Ohm, 10 ms: 50 Ohm], period = 10 ms
+    a -> g: load I, current = [0 s: 2 A, 2.5 ms: 2 A, 2.5 ms: 0 A, 10 ms: 0 A], period = 10 ms
+    reference g
+    study s: settled
+    """)
+    close(result, "mean_power(R)", 2.9, 1e-6)
+    close(result, "rms(current(I))", 1.0 / math.sqrt(1.0 + 1e-6), 1e-7)
+    close(result, "ripple(current(R))", 0.3, 1e-9)
+
+
+def test_the_scale_of_voltages_is_that_of_sources_alone() -> None:
+    """A list of powers in kW is no list of voltages: the floor below which a voltage needs no accuracy follows from the 1 V source,
+    on both sides of every jump of it."""
+    text = """
+    a -> g: source e, points = [0 s: 0 V, 1 ms: 0 V, 1 ms: 1 V, 1.1 ms: 0 V, 10 ms: 0 V], period = 10 ms, series_resistance = 1 mOhm
+    a -> g: load P, power = [0 s: 1 kW, 10 ms: 5 kW], period = 10 ms, cut_in = 100 V, cut_out = 50 V
+    a -> g: load R, resistance = [0 s: 20 Ohm, 3 ms: 20 Ohm, 3 ms: 0.5 Ohm, 10 ms: 50 Ohm], period = 10 ms
+    reference g
+    study s: settled
+    """
+    frame = build_frame(simcore.read_text(text, "x").circuit)
+    assert largest_voltage(frame, 0.01) == pytest.approx(1.0, rel=1e-4)
+    assert rounding_current(frame, 1.0) == pytest.approx(3e-15 / 1e-3, rel=1e-4)
 
 
 def test_power_over_time() -> None:
