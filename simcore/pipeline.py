@@ -191,13 +191,16 @@ class _Proof:
         observed; with neither, nothing asks for accuracy. Where it is not above 1 it may be less than this says."""
         records = ({study.name: coarse.record}, {study.name: fine.record})
         mine = [requirement for requirement in self.circuit.requirements if requirement.study == study.name]
-        asked = [figure for requirement in mine for figure in _asked(requirement, self.circuit)]
-        figures = [bounded(*(figure(study.name, record) for record in records)) for figure in asked]
-        if not asked and self.circuit.observes:
+        figures = [
+            (bounded(*(figure(study.name, record) for record in records)), _limit(requirement, records[1]))
+            for requirement in mine
+            for figure in _asked(requirement, self.circuit)
+        ]
+        if not figures and self.circuit.observes:
             rows = signal_rows(fine.record, coarse.record)
-            figures = [figure for row in rows for figure in row.figures.values()]
+            figures = [(figure, 0.0) for row in rows for figure in row.figures.values()]
         floors = _Floors(fine.solution)
-        return max((_share(figure, study.accuracy, floors) for figure in figures), default=0.0)
+        return max((_share(figure, study.accuracy, floors, limit) for figure, limit in figures), default=0.0)
 
 
 _Asked = Callable[[str, Mapping[str, Record]], Figure]
@@ -212,6 +215,13 @@ def _asked(requirement: Requirement, circuit: Circuit) -> list[_Asked]:
     if isinstance(figure, Call) and figure.name in TABLED:
         figure = Call("rms", (Call(TABLED[figure.name], figure.arguments),))
     return [] if figure is None else [lambda study, records: figure_of(figure, study, records)]
+
+
+def _limit(requirement: Requirement, records: Mapping[str, Record]) -> float:
+    """The largest magnitude that a requirement allows, as far as the records tell; zero where it has none."""
+    bounds = [each for each in (requirement.bound, requirement.upper) if each is not None]
+    sizes = [abs(figure_of(each, requirement.study, records).value) for each in bounds]
+    return max((size for size in sizes if math.isfinite(size)), default=0.0)
 
 
 def _stress(element: Element, stress: Stress) -> _Asked:
@@ -247,11 +257,14 @@ class _Floors:
         return 0.0
 
 
-def _share(figure: Figure, accuracy: float, floors: _Floors) -> float:
-    """A figure's bound over the one allowed; what counts as nothing is looked up only where it can decide."""
+def _share(figure: Figure, accuracy: float, floors: _Floors, limit: float) -> float:
+    """A figure's bound over the one allowed; what counts as nothing is looked up only where it can decide. Where the
+    figure is near nothing (by symmetry, mostly), the limit that it is held to says what it is to be told from."""
     if figure.bound is None or not figure.defined or figure.bound <= figure.rounding:
         return 0.0
     size = max(abs(figure.value), NOTHING * figure.scale)
+    if abs(figure.value) < NOTHING * figure.scale:
+        size = max(size, min(limit, figure.scale))
     if figure.bound > accuracy * size + figure.rounding:
         size = max(size, floors.of(figure.dimension))
     return figure.bound / (accuracy * size + figure.rounding)

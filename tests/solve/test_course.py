@@ -223,6 +223,18 @@ def test_a_verdict_near_its_limit_is_solved_more_tightly() -> None:
         assert verdict.state is state
 
 
+def test_what_is_nothing_by_symmetry_is_told_from_its_limit() -> None:
+    """The mean of a bridge's mains current is zero: 0.1 % of a limit of 2 A needs no third solution, 0.1 % of 1 mA does."""
+    text = BRIDGE.format(series=", series_resistance = 0.5 Ohm", law=LAW).split("study")[0]
+    counts = []
+    for limit in ("2 A", "1 mA"):
+        design = simcore.read_text(f"{text}study s: settled\nrequire s: mean(current(e)) between -{limit} and {limit}\n", "x")
+        result = design.run("s")
+        assert result.holds
+        counts.append(result.solved.statistics["solutions"])
+    assert counts[0] == 2 < counts[1]
+
+
 @pytest.mark.parametrize("milliseconds", [70, 100])
 def test_a_corner_but_for_rounding_at_the_end_is_the_end(milliseconds: int) -> None:
     """Seven or ten periods of a stepped load end a rounding before the study does: a step of that length has no currents to tell."""
