@@ -182,7 +182,7 @@ class Scope:
             raise Poisoned
         if not low <= round(number) <= high:
             cure = f"Keep it between {low} and {high}."
-            self.wrong(f"{what} is {round(number)}, which is out of range", cure, span_of(expression))
+            self.wrong(f"{what} is {number:.10g}, which is out of range", cure, span_of(expression))
             raise Poisoned
         return round(number)
 

@@ -19,7 +19,7 @@ from simcore.judge.outcome import Outcome
 from simcore.judge.verdict import Verdict
 from simcore.proof import Proof, ProvedStudy
 from simcore.report.traces import TIME, recorded, traces
-from simcore.report.writing import whole_file
+from simcore.report.writing import Opened, together, whole_file
 
 FIGURE_COLUMNS = ("study", "subject", "figure", "value", "unit", "bound", "note")
 VERDICT_COLUMNS = (
@@ -56,53 +56,58 @@ BILL_COLUMNS = (
 
 def write_results(proof: Proof, folder: Path, description: str, bill: Sequence[BillLine] = ()) -> list[Path]:
     """Write all files of a proof to a folder, made where it is missing; description: the file that was proved; bill:
-    where it was asked for."""
-    written = [path for write in WRITERS for path in write(proof, folder, description)]
-    return [*written, write_bill(bill, folder)] if bill else written
+    where it was asked for. They take their names together, so that they are of one run."""
+    with together() as opened:
+        written = [path for write in WRITERS for path in write(proof, folder, description, opened)]
+        return [*written, write_bill(bill, folder, opened)] if bill else written
 
 
-def _write_traces(proof: Proof, folder: Path, description: str) -> list[Path]:
+def _write_traces(proof: Proof, folder: Path, description: str, opened: Opened) -> list[Path]:
     for name, study in proof.studies.items():
-        write_table(folder / f"{name}.csv", *_trace(study))
+        write_table(folder / f"{name}.csv", *_trace(study), opened)
     return [folder / f"{name}.csv" for name in proof.studies]
 
 
-def _write_figures(proof: Proof, folder: Path, description: str) -> list[Path]:
-    write_table(folder / "figures.csv", FIGURE_COLUMNS, _figure_rows(proof))
+def _write_figures(proof: Proof, folder: Path, description: str, opened: Opened) -> list[Path]:
+    write_table(folder / "figures.csv", FIGURE_COLUMNS, _figure_rows(proof), opened)
     return [folder / "figures.csv"]
 
 
-def _write_verdicts(proof: Proof, folder: Path, description: str) -> list[Path]:
-    write_table(folder / "verdicts.csv", VERDICT_COLUMNS, [_verdict_row(verdict) for verdict in proof.verdicts])
+def _write_verdicts(proof: Proof, folder: Path, description: str, opened: Opened) -> list[Path]:
+    rows = [_verdict_row(verdict) for verdict in proof.verdicts]
+    write_table(folder / "verdicts.csv", VERDICT_COLUMNS, rows, opened)
     return [folder / "verdicts.csv"]
 
 
-def _write_summary(proof: Proof, folder: Path, description: str) -> list[Path]:
-    with whole_file(folder / "summary.json") as file:
+def _write_summary(proof: Proof, folder: Path, description: str, opened: Opened) -> list[Path]:
+    with opened(folder / "summary.json") as file:
         json.dump(_summary(proof, description), file, indent=2, ensure_ascii=False, allow_nan=False)
         file.write("\n")
     return [folder / "summary.json"]
 
 
-WRITERS: tuple[Callable[[Proof, Path, str], list[Path]], ...] = (
+WRITERS: tuple[Callable[[Proof, Path, str, Opened], list[Path]], ...] = (
     _write_traces,
     _write_figures,
     _write_verdicts,
     _write_summary,
 )
-"""What every run writes: each from the proof, the folder and the description's file to the files it wrote."""
+"""What every run writes: each from the proof, the folder, the description's file and what opens a file to
+the files it wrote."""
 
 
-def write_bill(bill: Sequence[BillLine], folder: Path) -> Path:
+def write_bill(bill: Sequence[BillLine], folder: Path, opened: Opened = whole_file) -> Path:
     """Write a bill of ratings to a folder, and say where it is."""
     path = folder / "bill.csv"
-    write_table(path, BILL_COLUMNS, [_bill_row(line) for line in bill])
+    write_table(path, BILL_COLUMNS, [_bill_row(line) for line in bill], opened)
     return path
 
 
-def write_table(path: Path, columns: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
-    """Write a table as CSV."""
-    with whole_file(path) as file:
+def write_table(
+    path: Path, columns: Sequence[str], rows: Iterable[Sequence[object]], opened: Opened = whole_file
+) -> None:
+    """Write a table as CSV; opened: what opens the file."""
+    with opened(path) as file:
         writer = csv.writer(file)
         writer.writerow(columns)
         writer.writerows([_cell(value) for value in row] for row in rows)

@@ -7,8 +7,8 @@ from __future__ import annotations
 
 import os
 import tempfile
-from collections.abc import Iterator
-from contextlib import contextmanager, suppress
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import AbstractContextManager, contextmanager, suppress
 from pathlib import Path
 from typing import TextIO
 
@@ -28,34 +28,66 @@ def whole_file(path: Path) -> Iterator[TextIO]:
     Whatever stops the block leaves an earlier file of that name as it was, and no part of the new one. What takes the
     place of another file has its rights.
     """
-    with _whole(path) as handle, open(handle, "w", encoding="utf-8", newline="") as file:
+    with together() as opened, opened(path) as file:
         yield file
-        file.flush()
-        os.fsync(file.fileno())
+
+
+Opened = Callable[[Path], AbstractContextManager[TextIO]]
+
+
+@contextmanager
+def together() -> Iterator[Opened]:
+    """Opens whole files that take their names one right after the other when the block ends, in the order in which they
+    were finished: whatever stops it before, a full disk too, none of them has changed."""
+    finished: list[tuple[str, Path]] = []
+
+    @contextmanager
+    def opened(path: Path) -> Iterator[TextIO]:
+        with _part(path) as (handle, temporary), open(handle, "w", encoding="utf-8", newline="") as file:
+            yield file
+            file.flush()
+            os.fsync(file.fileno())
+        finished.append((temporary, path))
+
+    try:
+        yield opened
+        _name(finished)
+    except BaseException:
+        for temporary, _ in finished:
+            with suppress(FileNotFoundError):
+                os.unlink(temporary)
+        raise
 
 
 def whole_bytes(path: Path, content: bytes) -> None:
     """The same for a file that is no text, such as a picture."""
-    with _whole(path) as handle, open(handle, "wb") as file:
+    with _part(path) as (handle, temporary), open(handle, "wb") as file:
         file.write(content)
         file.flush()
         os.fsync(file.fileno())
+        _name([(temporary, path)])
 
 
 @contextmanager
-def _whole(path: Path) -> Iterator[int]:
-    """The handle of a temporary file beside the target, which takes the target's name when the block ends."""
+def _part(path: Path) -> Iterator[tuple[int, str]]:
+    """The handle and name of a temporary file beside the target, with its rights; it goes where the block fails."""
     path.parent.mkdir(parents=True, exist_ok=True)
     handle, temporary = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=path.parent)
     try:
-        yield handle
         os.chmod(temporary, path.stat().st_mode & 0o777 if path.exists() else 0o666 & ~_umask())
-        os.replace(temporary, path)
+        yield handle, temporary
     except BaseException:
         with suppress(FileNotFoundError):
             os.unlink(temporary)
         raise
-    _force_folder(path.parent)
+
+
+def _name(finished: Sequence[tuple[str, Path]]) -> None:
+    """Give finished files their names, and force the names to disk."""
+    for temporary, path in finished:
+        os.replace(temporary, path)
+    for folder in dict.fromkeys(path.parent for _, path in finished):
+        _force_folder(folder)
 
 
 def _umask() -> int:

@@ -115,6 +115,26 @@ def test_a_full_disk_is_a_message_and_loses_nothing(
     assert contents(good) == before and not list(good.rglob(".*"))
 
 
+@pytest.mark.parametrize("file", [2, 3, 4])
+def test_a_disk_that_fills_up_among_the_files_leaves_those_of_one_run(
+    file: int, good: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    main(list(ASKED["run"]))
+    (good / "good.rect").write_text(GOOD.replace("100 Ohm", "50 Ohm"))
+    before, force, forced = contents(good), os.fsync, []
+
+    def full(handle: int) -> None:
+        forced.append(handle)
+        if len(forced) == file:
+            raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+        force(handle)
+
+    monkeypatch.setattr(os, "fsync", full)
+    assert main(list(ASKED["run"])) == 2 and len(forced) == file
+    monkeypatch.undo()
+    assert contents(good) == before and not list(good.rglob(".*"))
+
+
 def test_two_runs_into_one_folder_leave_what_either_writes(good: Path) -> None:
     start(good, *ASKED["run"]).communicate(timeout=120)
     whole = contents(good)

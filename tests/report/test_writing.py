@@ -6,7 +6,7 @@ from pathlib import Path
 
 import pytest
 
-from simcore.report.writing import whole_file
+from simcore.report.writing import together, whole_file
 
 
 def test_a_finished_file_has_its_text_and_nothing_lies_beside_it(tmp_path: Path) -> None:
@@ -43,3 +43,23 @@ def test_a_new_file_can_be_read_by_whom_the_system_lets(tmp_path: Path) -> None:
     with whole_file(ours) as file:
         file.write("")
     assert ours.stat().st_mode == plain.stat().st_mode
+
+
+@pytest.mark.parametrize("stop", [OSError, KeyboardInterrupt])
+def test_files_written_together_take_their_names_together(tmp_path: Path, stop: type[BaseException]) -> None:
+    """What stops the second leaves the first as it was; nothing has a new name before all are whole."""
+    first, second = tmp_path / "figures.csv", tmp_path / "summary.json"
+    first.write_text("old")
+    with pytest.raises(stop), together() as opened:
+        with opened(first) as file:
+            file.write("new")
+        assert first.read_text() == "old"
+        with opened(second) as file:
+            raise stop
+    assert first.read_text() == "old" and list(tmp_path.iterdir()) == [first]
+    with together() as opened:
+        for path in (first, second):
+            with opened(path) as file:
+                file.write("new")
+    assert [path.read_text() for path in (first, second)] == ["new", "new"]
+    assert sorted(tmp_path.iterdir()) == [first, second]
