@@ -82,7 +82,8 @@ def test_connected_components_are_those_of_the_graph(seed: int) -> None:
     nodes = [f"n{index}" for index in range(12)]
     draw.shuffle(nodes)
     branches = [(draw.choice(nodes), draw.choice(nodes)) for _ in range(seed)]
-    graph = networkx.Graph(branches)
+    graph = networkx.Graph()
+    graph.add_edges_from(branches)
     graph.add_nodes_from(nodes)
     parts = joined(nodes, branches)
     assert {frozenset(part) for part in parts} == {frozenset(part) for part in networkx.connected_components(graph)}

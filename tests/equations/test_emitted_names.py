@@ -10,6 +10,7 @@ import tokenize
 
 import pytest
 
+from simcore.components import KINDS
 from simcore.equations.kernel import Kernel, compile_function
 from simcore.equations.run_source import RunSource
 
@@ -21,6 +22,17 @@ let {let} = 100 Ohm
 {p} -> {c}: capacitor {capacitor}, 1 mF
 {p} -> {c}: resistor {resistor}, {let}
 {p} -> {c}: switch {switch}, closes_at = 1 ms
+{p} -> {c}: thyristor {thyristor}, saturation_current = 1 nA, ideality_factor = 1.8, firing_angle = 30 deg, firing_reference = voltage({p} -> {c}), holding_current = 1 mA
+{p} -> {c}: load {load}, power = 1 W, cut_in = 5 V, cut_out = 2 V
+{p} -> {c}: load {other}, current = [0 s: 1 mA, 1 s: 2 mA], period = 1 s
+{p} -> {c}: clamp {clamp}, clamping = [15 V @ 1 mA, 25 V @ 10 A]
+{p} -> {m}: fuse {fuse}, resistance = 20 mOhm, melting_i2t = 1 A^2 s
+{m} -> {k}: inrush_limiter {limiter}, cold_resistance = 5 Ohm, sensitivity = 2800 K, dissipation = 15 mW/K, heat_capacity = 300 mJ/K
+{k} -> {c}: inductor {choke}, 1 mH, saturation_current = 1 A, series_resistance = 1 Ohm
+({x}, {y}, {z}) -> {c}: three_phase {grid}, sine = 10 V line rms, frequency = 50 Hz, series_resistance = 1 Ohm
+{x} -> {c}: resistor {rx}, {let}
+{y} -> {c}: resistor {ry}, {let}
+{z} -> {c}: resistor {rz}, {let}
 reference {g}, {c}
 observe {observe} = voltage({p})
 datasheet {sheet}: diode {{ saturation_current = 1 nA, ideality_factor = 1.8 }}
@@ -40,6 +52,8 @@ PARTS = (
     "switch",
     "observe",
     "sheet",
+    *("thyristor", "load", "other", "clamp", "fuse", "limiter", "choke", "grid"),
+    *("m", "k", "x", "y", "z", "rx", "ry", "rz"),
 )
 PLAIN = {part: f"zq_{part}" for part in PARTS} | {"purpose": "zq"}
 HOSTILE = dict(
@@ -60,11 +74,17 @@ HOSTILE = dict(
             "raise",
             "x1",
             "run",
+            *("yield", "assert", "with", "pass", "async", "await", "nonlocal", "try"),
+            *("s", "out", "now", "wish", "h", "c1_0", "exp", "getattr"),
         ),
         strict=True,
     )
 )
 HOSTILE["purpose"] = "'); import os; os.system('true') #"
+
+
+def test_every_kind_is_among_them() -> None:
+    assert all(re.search(rf": {kind} ", TEXT) for kind in KINDS)
 
 
 @pytest.mark.parametrize("responses", [False, True])

@@ -26,8 +26,11 @@ KINDS: dict[str, st.SearchStrategy[str]] = {
 }  # fmt: skip
 
 
+STUDIES = ["operating_point", "transient, duration = 4 ms", "transient, duration = 4 ms, angle = 90 deg"]
+
+
 @st.composite
-def graphs(draw: st.DrawFn, most: int) -> str:
+def graphs(draw: st.DrawFn, most: int, studies: tuple[str, ...] = tuple(STUDIES)) -> str:
     """A source and up to so many elements between any nodes; what would make it unsound is drawn as well."""
     count = draw(st.integers(2, most))
     nodes = [f"n{index}" for index in range(draw(st.integers(1, max(1, count // 2))))] + ["g"]
@@ -40,13 +43,27 @@ def graphs(draw: st.DrawFn, most: int) -> str:
             kind = draw(st.sampled_from(sorted(KINDS)))
             lines.append(f"{a} -> {b}: {kind} X{index}, {draw(KINDS[kind])}")
     lines += [f"{node} -> g: resistor tie_{node}, 10 MOhm" for node in nodes[:-1]]
-    kind = draw(st.sampled_from(["operating_point", "transient, duration = 4 ms", "transient, duration = 4 ms, angle = 90 deg"]))
+    kind = draw(st.sampled_from(studies))
     return "\n".join([*lines, f"study s: {kind}, accuracy = 1 %"]) + "\n"
 
 
 @settings(max_examples=150, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
 @given(graphs(14))
 def test_random_graphs_end(text: str) -> None:
+    with pytest.MonkeyPatch.context() as monkeypatch:
+        ended(text, monkeypatch)
+
+
+@settings(max_examples=130, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(graphs(14, ("operating_point",)))
+def test_random_graphs_rest(text: str) -> None:
+    with pytest.MonkeyPatch.context() as monkeypatch:
+        ended(text, monkeypatch)
+
+
+@settings(max_examples=20, deadline=None, derandomize=True, suppress_health_check=list(HealthCheck))
+@given(graphs(60, ("operating_point",)))
+def test_large_random_graphs_rest(text: str) -> None:
     with pytest.MonkeyPatch.context() as monkeypatch:
         ended(text, monkeypatch)
 
