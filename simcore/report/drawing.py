@@ -76,21 +76,28 @@ def _panel(axes: Axes, panel: Panel, picture: Picture) -> None:
         for time in picture.judged:
             axes.axvline(time, color=INK, linewidth=0.8, linestyle=":")
         axes.annotate("judged", (picture.judged[0], high), (3, -9), textcoords="offset points", fontsize=8.0)
-    for curve, colour, dash in zip(panel.curves, COLOURS, DASHES, strict=False):
-        style: object = (0.0, tuple(float(part) for part in dash.split())) if dash else "solid"
-        axes.plot(curve.times, curve.values, color=colour, linewidth=1.2, linestyle=style)
+    for at, (curve, colour) in enumerate(zip(panel.curves, COLOURS, strict=False)):
+        axes.plot(curve.times, curve.values, color=colour, linewidth=1.2, linestyle=_dashed(at))
         _noted(axes, curve, colour, picture.judged or picture.span)
     points = PANEL * 72.0 / (high - low)
     sizes = [LABEL_POINTS * label_lines(curve) for curve in panel.curves]
     span = (-high * points, -low * points)
     heights = placed([-float(curve.values[-1]) * points for curve in panel.curves], sizes, span)
-    for curve, colour, height in zip(panel.curves, COLOURS, heights, strict=False):
-        place = (picture.span[1], -height / points)
+    sample = 0.05 if len(panel.curves) > 1 else 0.0
+    for at, (curve, height) in enumerate(zip(panel.curves, heights, strict=True)):
+        colour, y = COLOURS[at], -height / points
+        if sample:
+            ends, beside = [1.006, 1.0 + sample], axes.get_yaxis_transform()
+            axes.plot(ends, [y, y], color=colour, linewidth=1.2, linestyle=_dashed(at), transform=beside, clip_on=False)
         for step, words in enumerate((curve.label, *(curve.noted.words if curve.noted else ()))):
             shift, size = (5.0, -3.0 - step * LABEL_POINTS), (9.0 if step == 0 else 7.5)
-            axes.annotate(
-                words, place, shift, textcoords="offset points", color=colour, fontsize=size, annotation_clip=False
-            )
+            where = (1.0 + sample, y), shift, ("axes fraction", "data"), "offset points"
+            axes.annotate(words, *where, color=colour, fontsize=size, annotation_clip=False)
+
+
+def _dashed(place: int) -> object:
+    """The dashes of a panel's curve, as matplotlib has them."""
+    return (0.0, tuple(float(part) for part in DASHES[place].split())) if DASHES[place] else "solid"
 
 
 def _noted(axes: Axes, curve: Curve, colour: str, window: tuple[float, float]) -> None:
@@ -189,9 +196,9 @@ def _spread(axes: Axes, panel: SweepPanel, picture: SweepPicture) -> None:
     high, _ = np.histogram(bad, bins)
     widths = np.diff(bins)
     axes.bar(bins[:-1], low, widths, align="edge", color=COLOURS[2])
-    axes.bar(
-        bins[:-1], high, widths, low, align="edge", facecolor="white", edgecolor=LIMIT, hatch="////", linewidth=0.4
-    )
+    there = high > 0
+    over = bins[:-1][there], high[there], widths[there], low[there]
+    axes.bar(*over, align="edge", facecolor="white", edgecolor=LIMIT, hatch="////", linewidth=0.4)
     axes.set_ylim(0.0, 1.2 * max(float((low + high).max()), 1.0))
     axes.yaxis.set_major_locator(MaxNLocator(5, integer=True))
     for limit in panel.limits:

@@ -19,8 +19,10 @@ COLOURS = ("#1f3d5c", "#b0722c", "#5f8f80", "#7a5a86", "#8d8d8d", "#33261d")
 """Muted, each of another lightness, so that they stay apart in grey."""
 DASHES = ("", "7 3", "2 2", "9 3 2 3", "5 2", "1 2")
 
-WIDTH, LEFT, RIGHT, HEIGHT, GAP, TOP, STRIP = 760, 74, 120, 170, 26, 12, 12
+WIDTH, LEFT, RIGHT, HEIGHT, GAP, TOP, STRIP = 784, 74, 144, 170, 26, 12, 12
 LABEL_GAP = 13.0
+SAMPLE = 24.0
+"""Room for a piece of the line before its name, where several lines are to be told apart in grey too."""
 
 
 def text(x: float, y: float, words: str, anchor: str = "start", colour: str = INK, turn: bool = False) -> str:
@@ -129,9 +131,14 @@ def _panel(panel: Panel, picture: Picture, shaded: Sequence[tuple[float, float]]
         parts += _noted(curve, COLOURS[place], picture, y)
     sizes = [LABEL_GAP * label_lines(curve) for curve in panel.curves]
     heights = placed([y(float(curve.values[-1])) for curve in panel.curves], sizes, (top, top + HEIGHT + GAP / 2.0))
+    sample = SAMPLE if len(panel.curves) > 1 else 0.0
     for place, (curve, height) in enumerate(zip(panel.curves, heights, strict=True)):
+        if sample:
+            dash = f' stroke-width="1.3" stroke-dasharray="{DASHES[place]}"'
+            parts.append(line(WIDTH - RIGHT + 6, height, WIDTH - RIGHT + 2 + sample, height, COLOURS[place], dash))
         for step, words in enumerate((curve.label, *(curve.noted.words if curve.noted else ()))):
-            parts.append(text(WIDTH - RIGHT + 6, height + 4 + step * LABEL_GAP, words, "start", COLOURS[place]))
+            at = WIDTH - RIGHT + 6 + sample, height + 4 + step * LABEL_GAP
+            parts.append(text(*at, words, "start", COLOURS[place]))
     return parts
 
 

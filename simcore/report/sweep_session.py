@@ -25,10 +25,10 @@ from simcore.campaign.workers import Crew, WorkersLost, crew_of
 from simcore.design.circuit import Circuit, PlannedSweep
 from simcore.design.overview import in_words
 from simcore.judge.bill import bill_of
-from simcore.judge.cautions import GENERAL
+from simcore.judge.cautions import GENERAL, cautions
 from simcore.judge.outcome import Outcome, worst
 from simcore.opening import Opened, open_design
-from simcore.proof import TAKEN, prove
+from simcore.proof import TAKEN, Proof, prove
 from simcore.report.files import write_bill
 from simcore.report.page import write_page
 from simcore.report.progress import progress
@@ -38,7 +38,9 @@ from simcore.report.sweeps import sensitivity_lines, sweep_lines, swept, write_s
 from simcore.report.terminal import bill_lines, show_seconds
 from simcore.solve.failure import NoSolution
 
-_CAUTIONS = ("Cautions", *(f"  {line}" for line in GENERAL))
+
+def _warning(lines: Sequence[str]) -> list[str]:
+    return ["Cautions", *(f"  {line}" for line in lines)]
 
 
 @dataclass(frozen=True)
@@ -69,9 +71,10 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
         crew = crew_of(asked.workers, asked.scheduler)
         say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
         solved = [_solve(sweep, task, crew, folder, asked.resume, say, complain) for sweep, task in tasks]
+        warned: Sequence[str] = GENERAL
         if asked.bill or asked.page is not None:
             labelled = [(results, sweep.label) for sweep, (results, _) in zip(sweeps, solved, strict=True)]
-            _sign_off(opened, labelled, folder, asked, say)
+            warned = cautions(_sign_off(opened, labelled, folder, asked, say))
         for _, journal in solved:
             journal.end()
     except DescriptionError as error:
@@ -84,15 +87,15 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
     except NoSolution as failure:
         complain(f"{file}: {failure}")
         return Outcome.NO_SOLUTION
-    say("\n".join(present_screen().fitted(["", *_CAUTIONS, ""])))
+    say("\n".join(present_screen().fitted(["", *_warning(warned), ""])))
     return worst(results.outcome for results, _ in solved)
 
 
 def _sign_off(
     opened: Opened, solved: Sequence[tuple[Results, str | None]], folder: Path, asked: Asked, say: Say
-) -> None:
+) -> Proof:
     """The bill of ratings over all studies of the design as described and all variants of sweeps, and a page with
-    both. Raises NoSolution."""
+    both. Returns the proof of the design as described. Raises NoSolution."""
     proof = prove(opened, list(opened.circuit.studies))
     variants = [demand for results, _ in solved for demand in demands_of(results, opened.circuit)]
     bill = bill_of(proof, variants)
@@ -109,6 +112,7 @@ def _sign_off(
             write_page(asked.page, proof, opened.project, [swept(*each) for each in solved], bill)
         said.append(f"  Page: {asked.page}.")
     say("\n".join(present_screen().fitted(said)))
+    return proof
 
 
 def sensitivity_of_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
@@ -138,7 +142,7 @@ def sensitivity_of_file(file: str, folder: Path, asked: Asked, say: Say, complai
         complain(f"{file}: {fault}\n    cure: give it fewer --workers, if memory is short")
         return Outcome.NO_SOLUTION
     title = [opened.circuit.purpose, file] if opened.circuit.purpose else [file]
-    lines = [*title, *sensitivity_lines(found), "", f"  Table: {path}.", "", *_CAUTIONS, ""]
+    lines = [*title, *sensitivity_lines(found), "", f"  Table: {path}.", "", *_warning(GENERAL), ""]
     say("\n".join(present_screen().fitted(lines)))
     return Outcome.ALL_HOLD if nominal.passes else Outcome.NOT_ALL_HOLD
 
