@@ -61,7 +61,7 @@ def _timed(spec: Bridge | Ladder, way: Way) -> tuple[Settled, float, float]:
     frame = build_frame(circuit, math.inf)
     period = common_period(frame)
     assert period is not None
-    engine, stepping = course._engine(circuit, frame, {}), course._stepping(frame, period)
+    engine, stepping = course.engine(circuit, frame, {}), course.stepping(frame, period)
     start = time.process_time()
     found = way(engine, period, stepping)
     middle = time.process_time()
