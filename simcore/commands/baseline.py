@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import argparse
 
-from simcore.commands.options import add_files, add_junit
+from simcore.commands.options import add_amount, add_files, add_junit
 from simcore.commands.speaking import complain, say
 from simcore.judge.outcome import Outcome
 
@@ -17,6 +17,7 @@ def add(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
     compare = commands.add_parser("compare", help="solve again and report what drifted beyond the bounds")
     add_files(compare)
     add_junit(compare)
+    add_amount(compare, "print only what drifted or is missing", "print what drifted as JSON, for programs")
     compare.set_defaults(action=_compare)
 
 
@@ -29,4 +30,4 @@ def _keep(options: argparse.Namespace) -> Outcome:
 def _compare(options: argparse.Namespace) -> Outcome:
     from simcore.report.drift import compare_files
 
-    return compare_files(options.files, options.junit, say, complain)
+    return compare_files(options.files, options.junit, say, complain, options.quiet, options.json)

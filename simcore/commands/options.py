@@ -54,6 +54,13 @@ def add_junit(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--junit", metavar="FILE", type=Path, help="write the verdicts as JUnit XML too")
 
 
+def add_amount(parser: argparse.ArgumentParser, quiet: str, as_json: str) -> None:
+    """How much is said, and to whom; quiet, as_json: what help says of either."""
+    amount = parser.add_mutually_exclusive_group()
+    amount.add_argument("--quiet", action="store_true", help=quiet)
+    amount.add_argument("--json", action="store_true", help=as_json)
+
+
 def _setting(text: str) -> tuple[str, str]:
     name, equals, value = (part.strip() for part in text.partition("="))
     if not (name and equals and value):

@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from pathlib import Path
 
-from simcore.commands.options import add_files, add_junit, add_out, add_settings, add_studies, folders
+from simcore.commands.options import add_amount, add_files, add_junit, add_out, add_settings, add_studies, folders
 from simcore.commands.speaking import complain, say
 from simcore.judge.outcome import Outcome
 
@@ -24,9 +24,7 @@ def add(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
     )
     run.add_argument("--page", metavar="FILE", type=Path, help="write the whole report as one HTML page too")
     add_junit(run)
-    amount = run.add_mutually_exclusive_group()
-    amount.add_argument("--quiet", action="store_true", help="print only what does not hold")
-    amount.add_argument("--json", action="store_true", help="print the summaries as JSON, for programs")
+    add_amount(run, "print only what does not hold", "print the summaries as JSON, for programs")
     run.set_defaults(action=_run)
 
 

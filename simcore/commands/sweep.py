@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from pathlib import Path
 
-from simcore.commands.options import add_files, add_out, add_settings, folders
+from simcore.commands.options import add_amount, add_files, add_out, add_settings, folders
 from simcore.commands.speaking import complain, say
 from simcore.judge.outcome import Outcome
 
@@ -34,6 +34,7 @@ def add(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
     sweep.add_argument(
         "--page", metavar="FILE", type=Path, help="write the whole report with the worst cases as one HTML page too"
     )
+    add_amount(sweep, "print only what does not hold", "print the worst cases as JSON, for programs")
     add_settings(sweep)
     sweep.set_defaults(action=_sweep)
 
@@ -55,7 +56,17 @@ def _sweep(options: argparse.Namespace) -> Outcome:
         complain("--page takes one description")
         complain("    cure: run each apart, with a page of its own")
         return Outcome.INPUT_WRONG
+    if options.sensitivity and (options.bill or options.page is not None or options.quiet or options.json):
+        complain("--sensitivity goes with none of --bill, --page, --quiet and --json: it solves no sweep")
+        complain("    cure: call it apart; its table is sensitivity.csv")
+        return Outcome.INPUT_WRONG
     more = options.workers, options.scheduler, options.resume, options.bill, options.page
-    asked = Asked(options.sweep, dict(options.settings), *more)
-    call = sensitivity_of_file if options.sensitivity else sweep_file
-    return worst([call(file, folder, asked, say, complain) for file, folder in places.items()])
+    asked = Asked(options.sweep, dict(options.settings), *more, options.quiet, options.json)
+    if options.sensitivity:
+        return worst([sensitivity_of_file(file, folder, asked, say, complain) for file, folder in places.items()])
+    objects: list[str] = []
+    tell = objects.append if options.json else say
+    outcomes = [sweep_file(file, folder, asked, tell, complain) for file, folder in places.items()]
+    if options.json:
+        say(f"[{', '.join(objects)}]")
+    return worst(outcomes)

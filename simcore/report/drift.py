@@ -5,6 +5,7 @@ Knows proofs and kept files; works no figure out.
 
 from __future__ import annotations
 
+import json
 import math
 from collections.abc import Mapping, Sequence
 from pathlib import Path
@@ -52,8 +53,13 @@ def keep_files(files: Sequence[str], say: Say, complain: Say) -> Outcome:
     return Outcome.ALL_HOLD
 
 
-def compare_files(files: Sequence[str], junit: Path | None, say: Say, complain: Say) -> Outcome:
-    """Solve designs again and say what drifted from the kept figures; also write it as a test report where asked."""
+def compare_files(
+    files: Sequence[str], junit: Path | None, say: Say, complain: Say, quiet: bool = False, as_json: bool = False
+) -> Outcome:
+    """Solve designs again and say what drifted from the kept figures; also write it as a test report where asked.
+
+    quiet: say only what drifted or is missing; as_json: say it as JSON and nothing else
+    """
     kept: dict[str, dict[Key, Kept]] = {}
     mistakes = []
     for file in files:
@@ -67,17 +73,21 @@ def compare_files(files: Sequence[str], junit: Path | None, say: Say, complain: 
         complain(rendered(mistakes))
     if jobs is None or mistakes:
         return Outcome.INPUT_WRONG
-    outcomes, suites, screen = [], [], present_screen()
+    outcomes, suites, listed, screen = [], [], [], present_screen()
     for job in jobs:
         ended = proved(job, complain)
+        outcomes.append(ended.outcome)
         if ended.proof is None:
-            outcomes.append(ended.outcome)
             suites.append(Suite(job.file, [], ended.why))
+            listed.append({"description": job.file, "outcome": ended.outcome.status, "why": ended.why})
             continue
-        outcome, text, suite = _one(job.file, kept[job.file], ended.proof, screen)
-        say(text)
-        outcomes.append(outcome)
+        outcomes[-1], text, suite = _one(job.file, kept[job.file], ended.proof, screen)
+        if not (as_json or quiet and outcomes[-1] is Outcome.ALL_HOLD):
+            say(text)
         suites.append(suite)
+        listed.append(_listed(job.file, outcomes[-1], kept[job.file], ended.proof))
+    if as_json:
+        say(json.dumps(listed, indent=2, ensure_ascii=False, allow_nan=False))
     if junit is not None and not written(lambda: write_junit(junit, suites), junit, complain):
         outcomes.append(Outcome.INPUT_WRONG)
     return worst(outcomes)
@@ -102,6 +112,27 @@ def _one(file: str, was: Mapping[Key, Kept], proof: Proof, screen: Screen) -> tu
     cases = [_case(key, bad.get(key)) for key in dict.fromkeys((*was, *now))]
     outcome = Outcome.NOT_ALL_HOLD if bad else Outcome.ALL_HOLD
     return outcome, "\n".join(screen.fitted(lines)), Suite(file, cases, "", proof.seconds)
+
+
+def _listed(file: str, outcome: Outcome, was: Mapping[Key, Kept], proof: Proof) -> dict[str, object]:
+    """How a design compares, for programs; a number that there is none of is null."""
+    found: dict[str, object] = {"description": file, "outcome": outcome.status}
+    for name, drifts in zip(("drifted", "missing", "new"), compared(was, figures_to_keep(proof)), strict=True):
+        found[name] = [
+            {
+                **dict(zip(("study", "subject", "figure"), drift.key, strict=True)),
+                "was": _plain(drift.was),
+                "is": _plain(drift.now),
+                "bounds allow": drift.allowed if math.isfinite(drift.allowed) else None,
+                "unit": (drift.now or drift.was or _NOTHING).unit,
+            }
+            for drift in drifts
+        ]
+    return found
+
+
+def _plain(kept: Kept | None) -> float | None:
+    return kept.value if kept is not None and math.isfinite(kept.value) else None
 
 
 def _share(drift: Drift) -> float:

@@ -5,6 +5,7 @@ Everything wrong with the description is said before anything is solved.
 
 from __future__ import annotations
 
+import json
 import time
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager
@@ -34,7 +35,15 @@ from simcore.report.page import write_page
 from simcore.report.progress import progress
 from simcore.report.screen import present_screen
 from simcore.report.session import Say
-from simcore.report.sweeps import sensitivity_lines, sweep_lines, swept, write_sensitivities, write_sweep
+from simcore.report.sweeps import (
+    for_programs,
+    quiet_lines,
+    sensitivity_lines,
+    sweep_lines,
+    swept,
+    write_sensitivities,
+    write_sweep,
+)
 from simcore.report.terminal import bill_lines, show_seconds
 from simcore.solve.failure import NoSolution
 
@@ -47,7 +56,7 @@ def _warning(lines: Sequence[str]) -> list[str]:
 class Asked:
     """What a call asks for: the sweeps, none for all; lets with other values; workers, None for one a core; a
     scheduler's address, "" for none; whether to go on with an interrupted sweep; whether for a bill of ratings; a page
-    to write."""
+    to write; whether to say only what does not hold; whether to say one JSON object and nothing else."""
 
     sweeps: Sequence[str]
     settings: Mapping[str, str]
@@ -56,11 +65,14 @@ class Asked:
     resume: bool = False
     bill: bool = False
     page: Path | None = None
+    quiet: bool = False
+    as_json: bool = False
 
 
 def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -> Outcome:
     """Solve the sweeps of a description and write their tables to a folder."""
     opened, mistakes = open_design(file, asked.settings)
+    tell: Say = _unsaid if asked.quiet or asked.as_json else say
     try:
         if mistakes:
             raise DescriptionError(mistakes)
@@ -69,12 +81,12 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
             (sweep, replace(task_of(opened, sweep), billed=asked.bill or asked.page is not None)) for sweep in sweeps
         ]
         crew = crew_of(asked.workers, asked.scheduler)
-        say("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
-        solved = [_solve(sweep, task, crew, folder, asked.resume, say, complain) for sweep, task in tasks]
+        tell("\n".join([opened.circuit.purpose, file] if opened.circuit.purpose else [file]))
+        solved = [_solve(sweep, task, crew, folder, asked.resume, tell, complain) for sweep, task in tasks]
         warned: Sequence[str] = GENERAL
         if asked.bill or asked.page is not None:
             labelled = [(results, sweep.label) for sweep, (results, _) in zip(sweeps, solved, strict=True)]
-            warned = cautions(_sign_off(opened, labelled, folder, asked, say))
+            warned = cautions(_sign_off(opened, labelled, folder, asked, tell))
         for _, journal in solved:
             journal.end()
     except DescriptionError as error:
@@ -87,8 +99,25 @@ def sweep_file(file: str, folder: Path, asked: Asked, say: Say, complain: Say) -
     except NoSolution as failure:
         complain(f"{file}: {failure}")
         return Outcome.NO_SOLUTION
-    say("\n".join(present_screen().fitted(["", *_warning(warned), ""])))
-    return worst(results.outcome for results, _ in solved)
+    tell("\n".join(present_screen().fitted(["", *_warning(warned), ""])))
+    found = [(sweep, results) for sweep, (results, _) in zip(sweeps, solved, strict=True)]
+    if asked.as_json:
+        said = {"description": file, "sweeps": [for_programs(results) for _, results in found]}
+        say(json.dumps(said, indent=2, ensure_ascii=False, allow_nan=False))
+    elif asked.quiet:
+        _say_quietly(file, found, say)
+    return worst(results.outcome for _, results in found)
+
+
+def _unsaid(_: str) -> None:
+    """What nobody asked to be told."""
+
+
+def _say_quietly(file: str, found: Sequence[tuple[PlannedSweep, Results]], say: Say) -> None:
+    screen = present_screen()
+    lines = [line for sweep, results in found for line in quiet_lines(results, sweep.label, screen.width)]
+    if lines:
+        say("\n".join(screen.painted(screen.fitted([file, *lines]))))
 
 
 def _sign_off(

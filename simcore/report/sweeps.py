@@ -15,6 +15,7 @@ from grammar.quantities import quantity, show
 from simcore.campaign.results import AS_DESCRIBED, CONFIDENCE, SOURCE, PassRate, Results, Worst, variant_words
 from simcore.campaign.rows import Found
 from simcore.campaign.sensitivity import Sensitivity
+from simcore.judge.outcome import State
 from simcore.report.tables import INDENT, table
 from simcore.report.writing import whole_file
 
@@ -49,6 +50,37 @@ def sweep_lines(results: Results, label: str | None = None, width: int | None = 
         lines += table(WORST_HEADINGS, [worst_cells(each) for each in worst], 3, width, 1)
         lines += ["", *_variants(results, worst)]
     return lines + _unsolved(results) + [INDENT + text for text in sums(results)]
+
+
+def quiet_lines(results: Results, label: str | None = None, width: int | None = None) -> list[str]:
+    """Only what does not hold in some variant, or was not solved; nothing where all is well."""
+    wrong = [each for each in results.worst if each.found is None or each.found.state != State.HOLDS]
+    lines = table(WORST_HEADINGS, [worst_cells(each) for each in wrong], 3, width, 1) if wrong else []
+    lines += _unsolved(results)
+    return [_title(results, label), *lines] if lines else []
+
+
+def for_programs(results: Results) -> dict[str, object]:
+    """What a sweep found, as it goes into JSON; a number that there is none of is null."""
+    passing, failing, unsolved = results.counts
+    return {
+        "sweep": results.plan.name,
+        "outcome": results.outcome.status,
+        "variants": {"pass": passing, "do not": failing, "not solved": unsolved},
+        "worst": [_plain_worst(results, each) for each in results.worst],
+        "pass rates": [vars(rate) for rate in results.pass_rates],
+    }
+
+
+def _plain_worst(results: Results, worst: Worst) -> dict[str, object]:
+    claim, found, row = worst.claim, worst.found, worst.row
+    said: dict[str, object] = {"study": claim.study, "requirement": claim.requirement, "label": claim.label}
+    if found is None or row is None:
+        return {**said, "verdict": "not solved"}
+    numbers = {"value": found.value, "bound": found.bound, "margin": found.margin}
+    finite = {name: number if math.isfinite(number) else None for name, number in numbers.items()}
+    lines = list(results.pasted(row))
+    return {**said, "verdict": str(found.state), **finite, "unit": claim.unit, "variant": row.number, "lines": lines}
 
 
 def _title(results: Results, label: str | None) -> str:

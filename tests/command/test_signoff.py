@@ -130,6 +130,36 @@ def test_json_is_for_programs(folder: Path, bulkrail: Call) -> None:
     assert summary == json.loads((folder / "results" / "d" / "summary.json").read_text())
 
 
+def test_sweeps_say_less_or_speak_to_programs(folder: Path, bulkrail: Call) -> None:
+    (folder / "w.rect").write_text(TEXT + "sweep filters: C_res over [10 uF, 4700 uF]\nsweep fine: C_res over [1 mF, 2 mF]\n")
+    quiet = bulkrail("sweep", "w.rect", "--workers", "1", "--quiet", folder=folder)
+    assert quiet.returncode == 1 and quiet.stdout.startswith("w.rect\nfilters")
+    assert "quiet enough" in quiet.stdout and "holds" not in quiet.stdout and "fine" not in quiet.stdout
+    calm = bulkrail("sweep", "w.rect", "--workers", "1", "--sweep", "fine", "--quiet", folder=folder)
+    assert (calm.returncode, calm.stdout) == (0, "")
+    both = bulkrail("sweep", "w.rect", "--sensitivity", "--json", folder=folder)
+    assert both.returncode == 2 and "cure:" in both.stderr
+    (said,) = json.loads(bulkrail("sweep", "w.rect", "--workers", "1", "--json", folder=folder).stdout)
+    filters, fine = said["sweeps"]
+    assert (said["description"], filters["outcome"], fine["outcome"]) == ("w.rect", 1, 0)
+    assert filters["variants"] == {"pass": 1, "do not": 1, "not solved": 0}
+    (worst,) = [each for each in filters["worst"] if each["label"] == "quiet enough"]
+    assert worst["verdict"] == "fails" and worst["variant"] == 1 and worst["lines"][0].startswith("let C_res = 10 uF")
+    assert worst["value"] > 5.0 and worst["margin"] == pytest.approx(5.0 - worst["value"])
+
+
+def test_comparisons_say_less_or_speak_to_programs(folder: Path, bulkrail: Call) -> None:
+    bulkrail("keep", "d.rect", folder=folder)
+    assert bulkrail("compare", "d.rect", "--quiet", folder=folder).stdout == ""
+    (folder / "d.rect").write_text(TEXT.replace("100 Ohm", "101 Ohm"))
+    assert "drifted" in bulkrail("compare", "d.rect", "--quiet", folder=folder).stdout
+    done = bulkrail("compare", "d.rect", "--json", folder=folder)
+    (said,) = json.loads(done.stdout)
+    assert done.returncode == 1 and (said["description"], said["outcome"], said["missing"], said["new"]) == ("d.rect", 1, [], [])
+    (mean,) = [each for each in said["drifted"] if (each["subject"], each["figure"]) == ("u_out", "mean")]
+    assert mean["unit"] == "V" and abs(mean["is"] - mean["was"]) > mean["bounds allow"] > 0.0
+
+
 def test_a_page_is_of_one_description(folder: Path, bulkrail: Call) -> None:
     (folder / "e.rect").write_text(TEXT)
     done = bulkrail("run", "d.rect", "e.rect", "--page", "p.html", folder=folder)
