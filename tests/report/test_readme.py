@@ -202,3 +202,9 @@ def test_the_options_shown_are_those_of_the_verb(verb: str, capsys: pytest.Captu
     if verb == "sweep":
         named |= set(re.findall(r"^    (--[a-z]+)", TEXT, re.M))
     assert named <= offered and offered - named <= {"--set", "--out", "--study"}, (named, offered)
+
+
+def test_every_worked_circuit_is_in_the_table() -> None:
+    table = TEXT.partition("## Worked circuits")[2].partition("\n## ")[0]
+    named = sorted(re.findall(r"`(\w+)\.rect`", table))
+    assert named == sorted(path.stem for path in simcore.library_folder().glob("*.rect"))
