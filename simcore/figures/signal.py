@@ -14,6 +14,7 @@ import numpy as np
 
 from grammar.quantities import NONE, SECOND, Dimension
 from simcore.figures import polynomials
+from simcore.figures.corners import highest_turn
 from simcore.figures.polynomials import Array
 
 MAX_ORDER = 16
@@ -235,13 +236,11 @@ class Signal:
     def _highest(self) -> float:
         """Only pieces whose Bernstein form leaves room for more than the ends show are searched."""
         start, end = self.piece_ends
-        best = max(float(start.max()), float(end.max()))
-        room = (polynomials.bernstein(self.coefficients).max(axis=1) > best) & self._smooth_pieces()
-        rows = self.coefficients[room]
+        best, smooth = max(float(start.max()), float(end.max())), self._smooth_pieces()
+        rows = self.coefficients[(polynomials.bernstein(self.coefficients).max(axis=1) > best) & smooth]
         piece, local = polynomials.roots(polynomials.derivative(rows))
-        if len(piece) == 0:
-            return best
-        return max(best, float(polynomials.values(rows[piece], local).max()))
+        best = max(best, float(polynomials.values(rows[piece], local).max(initial=best)))
+        return highest_turn(self.times, self.coefficients, ~smooth, best)
 
     def _smooth_pieces(self) -> Array:
         """Which pieces lie in no rough span, shape (n,)."""
