@@ -19,6 +19,7 @@ from simcore.figures import measure
 from simcore.figures.overview import VALVES, Row
 from simcore.figures.polynomials import Array
 from simcore.figures.record import Record
+from simcore.figures.signal import Signal
 from simcore.judge.harmonics import Harmonic, harmonics, tabled_element, unfit
 from simcore.proof import Proof, ProvedStudy
 from simcore.report.traces import heading, recorded, traces
@@ -35,6 +36,8 @@ QUANTITIES = {
 }
 MOST_POINTS = 1500
 """Of a curve, so that a picture stays small; extremes are kept."""
+PARTS = 4
+"""Of each stretch between two points of a curve that has few."""
 MOST_CURVES = 6
 """In one panel."""
 MOST_NOTED = 2
@@ -134,7 +137,8 @@ def _panels(record: Record, scale: float, rows: Mapping[str, Row], window: tuple
             unit = prefix + unit_of(dimension)
             curves = []
             for name, column in columns.items():
-                times, values = sampled.times * scale, column / PREFIXES[prefix]
+                times, values = _smooth(sampled.times, column, chosen[name])
+                times, values = times * scale, values / PREFIXES[prefix]
                 row = rows.get(name) if len(columns) <= MOST_NOTED else None
                 noted = None if row is None else _noted(row, times, values, window, 1.0 / PREFIXES[prefix])
                 curves.append(Curve(name, *_thinned(times, values), noted))
@@ -161,6 +165,21 @@ def prefix_of(size: float, dimension: Dimension = SECOND) -> str:
         return ""
     fitting = [name for name, factor in PREFIXES.items() if size >= factor and (factor <= 1.0 or dimension != SECOND)]
     return fitting[-1] if fitting else "f"
+
+
+def _smooth(times: Array, values: Array, signal: Signal) -> tuple[Array, Array]:
+    """A curve of few points with more between them, since a solution bends between its steps; straight where a step has
+    a kink inside, and where it jumps."""
+    if len(times) > MOST_POINTS // PARTS:
+        return times, values
+    shares = np.arange(PARTS) / PARTS
+    widths, rises = np.diff(times)[:, None], np.diff(values)[:, None]
+    fine, straight = times[:-1, None] + widths * shares, values[:-1, None] + rises * shares
+    bent = np.where(widths > 0.0, signal.value(fine.ravel()).reshape(fine.shape), straight)
+    for start, end in signal.rough:
+        bent = np.where((fine >= start) & (fine <= end), straight, bent)
+    bent[:, 0] = values[:-1]
+    return np.append(fine.ravel(), times[-1]), np.append(bent.ravel(), values[-1])
 
 
 def _thinned(times: Array, values: Array) -> tuple[Array, Array]:

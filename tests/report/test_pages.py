@@ -16,6 +16,7 @@ from simcore.report.junit import Case, Suite, verdict_case, write_junit
 from simcore.report.page import page
 from simcore.report.panels import any_conducts, bars_of, decades, picture_of, ticks
 from simcore.report.svg import bars_svg, picture_svg, placed
+from simcore.report.traces import traces
 
 TEXT = """
 purpose "<script>alert(1)</script> & more"
@@ -131,6 +132,22 @@ def test_a_curve_keeps_its_extremes_in_the_unit_of_its_axis(proof: Proof) -> Non
     assert len(spans) == 5 and np.all(spans[:, 1] > spans[:, 0])
     share = record.current("D1").time_above(1e-3 * record.current("D1").highest()) * 1e3
     assert np.sum(np.diff(spans)) == pytest.approx(share)
+
+
+def test_a_curve_of_few_points_bends_between_them(proof: Proof) -> None:
+    """As the solution does, and through all that was sampled of it."""
+    study = proof.studies["s"]
+    picture = picture_of("s", study)
+    assert picture is not None
+    curve, signal = picture.panels[0].curves[0], study.record.between("p")
+    sampled = traces({"u": signal})
+    assert len(curve.times) == 4 * (len(sampled.times) - 1) + 1
+    assert np.array_equal(curve.values[::4], sampled.columns["u [V]"])
+    rough = np.zeros(len(curve.times), dtype=bool)
+    for start, end in signal.rough:
+        rough |= (curve.times * 1e-3 >= start - 1e-9) & (curve.times * 1e-3 <= end + 1e-9)
+    assert np.mean(~rough) > 0.5
+    assert np.allclose(curve.values[~rough], signal.value(curve.times * 1e-3)[~rough], rtol=0.0, atol=1e-9)
 
 
 def test_bars_show_each_order_beside_its_limit(proof: Proof) -> None:
