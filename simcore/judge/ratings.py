@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from grammar.quantities import KELVIN, show
+from grammar.quantities import KELVIN, WATT, show
 from simcore.components import KINDS
 from simcore.components.kind import Key
 from simcore.design.circuit import Circuit, Element, Requirement
@@ -109,8 +109,10 @@ def _worded(requirement: Requirement, text: str) -> Requirement:
 
 
 def rating_text(key: Key, element: Element) -> str:
-    """A rating in words: `rated 1 kV`, `rated 2 A @ 100 Hz`."""
-    return f"rated {value_text(key, element.given[key.name])}"
+    """A rating in words: `rated 1 kV`, `rated 2 A @ 100 Hz`; a transformer's power is an apparent one."""
+    text = value_text(key, element.given[key.name])
+    apparent = element.kind == "transformer" and key.dimension == WATT
+    return f"rated {text.removesuffix('W')}VA" if apparent else f"rated {text}"
 
 
 def knows_temperature(element: Element) -> bool:

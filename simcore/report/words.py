@@ -9,8 +9,10 @@ import math
 import re
 from collections.abc import Iterable, Sequence
 
+from grammar.description import Call
 from grammar.quantities import AMPERE, KELVIN, show
 from grammar.writer import write_expression
+from simcore.design.circuit import Requirement
 from simcore.figures.catalogue import ABSOLUTE
 from simcore.figures.figure import Figure
 from simcore.figures.overview import Row
@@ -21,6 +23,8 @@ from simcore.judge.outcome import State
 from simcore.judge.ratings import stress_text
 
 BOUND_DIGITS = 2
+APPARENT = "apparent power"
+"""What a stress in VA is called."""
 CELSIUS = 273.15
 """K at 0 degC."""
 
@@ -77,14 +81,22 @@ def largest_bound(figures: Iterable[Figure]) -> str:
 def verdict_cells(verdict: Verdict) -> list[str]:
     """A verdict under VERDICT_HEADINGS."""
     margin = value(verdict.margin) if verdict.margin is not None else "-"
-    return [
-        str(verdict.state),
-        verdict.requirement.study,
-        subject(verdict),
-        required(verdict),
-        "-" if verdict.figure is None else with_bound(verdict.figure, verdict.requirement.temperature),
-        margin,
-    ]
+    found = "-" if verdict.figure is None else with_bound(verdict.figure, verdict.requirement.temperature)
+    numbers = [required(verdict), found, margin]
+    if _is_apparent(verdict.requirement):
+        numbers = [volt_amperes(each) for each in numbers]
+    return [str(verdict.state), verdict.requirement.study, subject(verdict), *numbers]
+
+
+def _is_apparent(requirement: Requirement) -> bool:
+    """Whether a requirement is on an apparent power, which is in VA."""
+    figure = requirement.figure
+    return figure.name == "apparent_power" if isinstance(figure, Call) else APPARENT in requirement.wording
+
+
+def volt_amperes(text: str) -> str:
+    """A power in words as an apparent one."""
+    return re.sub(r"\b([a-zA-Z]?)W\b", r"\1VA", text)
 
 
 def subject(verdict: Verdict) -> str:
@@ -139,8 +151,8 @@ def bill_cells(line: BillLine, bounds: bool = True) -> list[str]:
     """A line of the bill of ratings under BILL_HEADINGS; bounds: whether with what follows ±."""
     found = stress_text(line.figure) + (f" ± {bound(line.figure)}" if bounds else "")
     suggested = "-" if line.suggested is None else f"{show(line.suggested, line.figure.dimension)}"
-    if line.stress == "apparent power":
-        found, suggested = (re.sub(r"W\b", "VA", text) for text in (found, suggested))
+    if line.stress == APPARENT:
+        found, suggested = volt_amperes(found), volt_amperes(suggested)
     left = "-" if line.unused is None else percent(line.unused)
     where = f"{line.study}, {line.variant}" if line.variant else line.study
     return [line.name, line.stress, where, found, line.rating_text or "-", left, suggested]

@@ -114,6 +114,23 @@ def test_the_page_of_a_sweep_shows_the_worst_cases_and_the_bill_over_them(folder
     assert two.returncode == 2 and "cure:" in two.stderr
 
 
+def test_an_apparent_power_is_in_volt_amperes(folder: Path, bulkrail: Call) -> None:
+    """230 V over 5 Ohm times (230/12)^2 take 28.8 VA; the resistor's share of that is in W."""
+    (folder / "v.rect").write_text(
+        "a -> g: source e, sine = 230 V rms, frequency = 50 Hz\n(a -> g) : (s -> n): transformer T1, turns = 230 : 12, "
+        "rated_power = 50 VA\ns -> n: resistor R1, 5 Ohm, rated_power = 50 W\nreference g, n\nstudy s: settled\n"
+        "require s: ratings\nrequire s: apparent_power(T1.w1) <= 40 VA\n"
+    )
+    lines = bulkrail("run", "v.rect", "--bill", folder=folder).stdout.splitlines()
+    (bill,) = [line for line in lines if re.match(r"  T1 +apparent power", line)]
+    assert re.search(r"28\.8 VA ± \S+ \S*VA +50 VA +42\.4 % +31\.5 VA$", bill), bill
+    rated, asked = [line for line in lines if line.startswith("  holds") and "apparent" in line]
+    assert re.search(r"\(rated 50 VA\) +<= 50 VA +28\.8 VA ± \S+ \S*VA +21\.2 VA$", rated), rated
+    assert re.search(r"<= 40 VA +28\.8 VA ± \S+ \S*VA +11\.2 VA$", asked), asked
+    (resistor,) = [line for line in lines if "R1: dissipation" in line]
+    assert "VA" not in resistor
+
+
 def test_quiet_says_only_what_does_not_hold(folder: Path, bulkrail: Call) -> None:
     quiet = bulkrail("run", "d.rect", "--quiet", folder=folder)
     assert (quiet.returncode, quiet.stdout, quiet.stderr) == (0, "", "")
