@@ -2,7 +2,8 @@
 
 A text file of lines, each with a checksum of its own. The first line says which sweep of which design it belongs to;
 every other is a block: first variant, the one after the last, and the rows. A last line that was cut short is what an
-interruption leaves, and counts as not written; anything else that does not check is a mistake.
+interruption leaves, and counts as not written. A block whose line was damaged since is left out, those that check are
+kept; a first line that does not check, or a line that checks and makes no sense, is a mistake.
 """
 
 from __future__ import annotations
@@ -39,7 +40,7 @@ class Journal:
 
         Raises DescriptionError where it is not a journal of this sweep, or is damaged.
         """
-        lines = self._lines()
+        lines, _ = self._lines()
         blocks: dict[Block, str] = {}
         for number, line in enumerate(lines[1:], 2):
             try:
@@ -57,7 +58,14 @@ class Journal:
     def left_by(self) -> int:
         """Blocks in a journal that an earlier run of this same sweep left; 0 where there is none."""
         try:
-            return len(self._lines()) - 1
+            return len(self._lines()[0]) - 1
+        except DescriptionError:
+            return 0
+
+    def damaged(self) -> int:
+        """Lines of blocks that are no longer as they were written; 0 where there is no journal of this sweep."""
+        try:
+            return self._lines()[1]
         except DescriptionError:
             return 0
 
@@ -68,29 +76,29 @@ class Journal:
     def _head(self) -> str:
         return f"{_TITLE} {self.fingerprint}"
 
-    def _lines(self) -> list[str]:
-        """The lines that were written whole."""
+    def _lines(self) -> tuple[list[str], int]:
+        """The lines that are as they were written, and how many are not."""
         try:
-            with open(self.path, encoding="utf-8", newline="") as file:
-                pieces = file.read().split("\n")
+            pieces = self.path.read_bytes().split(b"\n")
         except FileNotFoundError:
             cure = "Run it without --resume, or name the folder of the interrupted run with --out."
             raise DescriptionError([Mistake("no interrupted sweep is here", cure, file=str(self.path))]) from None
-        except (OSError, UnicodeDecodeError) as fault:
+        except OSError as fault:
             raise self._wrong("it can't be read") from fault
         found = []
-        for number, piece in enumerate(pieces[:-1], 1):
-            check, _, line = piece.partition(" ")
-            if check != _check(line):
-                raise self._wrong(f"line {number} is not as it was written")
-            found.append(line)
+        for piece in pieces[:-1]:
+            check, _, line = piece.decode("utf-8", "replace").partition(" ")
+            if check == _check(line):
+                found.append(line)
+            elif not found:
+                raise self._wrong("line 1 is not as it was written")
         if not found or not found[0].startswith(_TITLE):
             raise self._wrong("this is no journal of a sweep")
         if found[0] != self._head():
             what = "the journal belongs to another description, sweep or version of the tool"
             cure = "Run the sweep without --resume; its journal then starts afresh."
             raise DescriptionError([Mistake(what, cure, file=str(self.path))])
-        return found
+        return found, len(pieces) - 1 - len(found)
 
     def _wrong(self, what: str) -> DescriptionError:
         cure = "Delete the journal and run the sweep without --resume."

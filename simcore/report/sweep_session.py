@@ -237,7 +237,7 @@ def _solve(
     path = folder / f"{sweep.name}.csv"
     try:
         with writing(folder):
-            keeping = Keeping(journal, _goes_on(journal, resume))
+            keeping = Keeping(journal, _goes_on(journal, resume, complain))
             with progress(sweep.name, len(task.plan), complain) as tell:
                 rows = list(solved_rows(task, crew, keeping, tell=tell))
             results = Results(task.plan, rows, task.claims, task.designs)
@@ -252,10 +252,15 @@ def _solve(
     return results, journal
 
 
-def _goes_on(journal: Journal, resume: bool) -> bool:
-    """Whether a sweep goes on with its journal. Finished work is not thrown away unasked."""
+def _goes_on(journal: Journal, resume: bool, complain: Say) -> bool:
+    """Whether a sweep goes on with its journal. Finished work is not thrown away unasked, and what was damaged is
+    told."""
     left = journal.left_by()
     if left and not resume:
         cure = "Add --resume to go on with it, or delete the file to start over."
         raise DescriptionError([Mistake("an interrupted run of this sweep is here", cure, file=str(journal.path))])
+    damaged = journal.damaged() if resume else 0
+    if damaged:
+        lines = f"{damaged} damaged line{'s' * (damaged > 1)}"
+        complain(f"{journal.path}: {lines} left out; the variants in question are solved again")
     return resume and journal.path.exists()
