@@ -47,6 +47,8 @@ from simcore.report.sweeps import (
 from simcore.report.terminal import bill_lines, show_seconds
 from simcore.solve.failure import NoSolution
 
+_CURE = "Make room there, or name another folder with --out; --resume goes on with what is finished in this one."
+
 
 def _warning(lines: Sequence[str]) -> list[str]:
     return ["Cautions", *(f"  {line}" for line in lines)]
@@ -195,12 +197,11 @@ def judged_studies(circuit: Circuit, wanted: Sequence[str], where: str) -> tuple
 
 
 @contextmanager
-def writing(folder: Path) -> Iterator[None]:
+def writing(folder: Path, cure: str = "Name a folder that can be written to with --out.") -> Iterator[None]:
     """Turns what the system says of files that can't be written into a mistake."""
     try:
         yield
     except OSError as error:
-        cure = "Name a folder that can be written to with --out."
         what = f"the results can't be written: {error.strerror}"
         raise DescriptionError([Mistake(what, cure, file=str(folder))]) from error
 
@@ -236,7 +237,7 @@ def _solve(
     journal = Journal(folder / f"{sweep.name}.journal", fingerprint(task))
     path = folder / f"{sweep.name}.csv"
     try:
-        with writing(folder):
+        with writing(folder, _CURE):
             keeping = Keeping(journal, _goes_on(journal, resume, complain))
             with progress(sweep.name, len(task.plan), complain) as tell:
                 rows = list(solved_rows(task, crew, keeping, tell=tell))

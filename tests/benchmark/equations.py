@@ -13,7 +13,7 @@ from typing import Protocol
 
 import numpy as np
 
-from tests.benchmark.circuits import IDEALITY_FACTOR, SATURATION_CURRENT, Bridge, Ladder
+from tests.benchmark.circuits import IDEALITY_FACTOR, SATURATION_CURRENT, Bridge, Ladder, SixPulse
 
 SCALE = IDEALITY_FACTOR * 1.380649e-23 / 1.602176634e-19 * 298.15
 """n k T / q in V at 25 degC (SI, exact since 2019)."""
@@ -148,6 +148,49 @@ class BridgeNodes:
 
     def output(self, states: np.ndarray) -> np.ndarray:
         return states[2]
+
+
+class SixPulseNodes:
+    """The six-pulse bridge as nodal analysis gives it: states are the currents of the three lines and of the choke, then
+    the voltages of the bridge's terminals x, y, z and a against m, as in BridgeNodes. The star point of the lines, which
+    are alike, lies where their currents sum to nothing."""
+
+    states = 8
+    line_resistance, line_inductance, choke_resistance = 20e-3, 1e-3, 50e-3
+
+    def __init__(self, circuit: SixPulse, stray: float):
+        self.circuit = circuit
+        self.stored = (1.0,) * 4 + (1.0 if stray else 0.0,) * 4
+        self._held = np.array([self.line_inductance] * 3 + [circuit.inductance] + [stray or 1.0] * 4)
+        self._speed, self._phases = 2.0 * math.pi * circuit.frequency, np.array([0.0, 1.0, 2.0]) * -2.0 * math.pi / 3.0
+
+    def rates(self, time: float, states: np.ndarray) -> np.ndarray:
+        lines, choke, terminals, a = states[:3], float(states[3]), states[4:7], float(states[7])
+        driving = self.circuit.crest * np.sin(self._speed * time + self._phases) - terminals
+        driving -= driving.mean()
+        up = [_diode(float(x) - a)[0] for x in terminals]
+        down = [_diode(-float(x))[0] for x in terminals]
+        flows = np.empty(8)
+        flows[:3] = driving - self.line_resistance * lines
+        flows[3] = a - (self.choke_resistance + self.circuit.load) * choke
+        flows[4:7] = lines - up + down
+        flows[7] = sum(up) - choke
+        return flows / self._held
+
+    def jacobian(self, time: float, states: np.ndarray) -> np.ndarray:
+        terminals, a = states[4:7], float(states[7])
+        up = np.array([_diode(float(x) - a)[1] for x in terminals])
+        down = np.array([_diode(-float(x))[1] for x in terminals])
+        found = np.zeros((8, 8))
+        found[:3, :3] = -self.line_resistance * np.eye(3)
+        found[:3, 4:7] = 1.0 / 3.0 - np.eye(3)
+        found[3, 3], found[3, 7] = -self.choke_resistance - self.circuit.load, 1.0
+        found[4:7, :3], found[4:7, 4:7], found[4:7, 7] = np.eye(3), -np.diag(up + down), up
+        found[7, 4:7], found[7, 7], found[7, 3] = up, -up.sum(), -1.0
+        return found / self._held[:, None]
+
+    def output(self, states: np.ndarray) -> np.ndarray:
+        return states[7]
 
 
 def _diode(voltage: float) -> tuple[float, float]:

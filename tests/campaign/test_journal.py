@@ -156,6 +156,31 @@ def test_killed_and_resumed_it_ends_with_the_same_bytes(
     assert (tmp_path / "o" / "long.csv").read_bytes() == resumed and resumed.count(b"\r\n") == 25
 
 
+def test_a_disk_that_is_full_in_the_middle_of_a_block_costs_that_block_alone(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Files may grow to a limit that the journal meets while a block is written, as a full disk would have it."""
+    resource = pytest.importorskip("resource", reason="no limits of this kind here")
+    most = 2048
+    (tmp_path / "small.rect").write_text(DESIGN + "sweep long: 12 samples of V, C, seed = 5, studies = [work]\n")
+    command = [sys.executable, "-m", "simcore.command", *ASKED, "--workers", "1"]
+    environment = {**os.environ, "PYTHONPATH": CHECKOUT, "PYTHONDONTWRITEBYTECODE": "1"}
+
+    def limited() -> None:
+        resource.setrlimit(resource.RLIMIT_FSIZE, (most, most))
+
+    done = subprocess.run(command, cwd=tmp_path, env=environment, preexec_fn=limited, capture_output=True, timeout=120)
+    assert done.returncode == 2 and b"--resume" in done.stderr and b"can't be written" in done.stderr and b"Traceback" not in done.stderr
+    journal = tmp_path / "o" / "long.journal"
+    assert journal.stat().st_size == most and not journal.read_bytes().endswith(b"\n"), "the last line is torn"
+    monkeypatch.chdir(tmp_path)
+    assert main([*ASKED, "--resume", "--workers", "1"]) == 1
+    resumed = (tmp_path / "o" / "long.csv").read_bytes()
+    assert main([*ASKED, "--workers", "1"]) == 1
+    assert (tmp_path / "o" / "long.csv").read_bytes() == resumed and resumed.count(b"\r\n") == 13
+    capsys.readouterr()
+
+
 def test_interrupted_from_the_keyboard_it_says_how_to_go_on(tmp_path: Path) -> None:
     process = begun(tmp_path, 1)
     process.send_signal(signal.SIGINT)
