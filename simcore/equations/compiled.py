@@ -22,8 +22,8 @@ SECONDS_A_LINE, SECONDS_A_PAIR = 0.014, 1e-5
 """What compiling takes by the lines of the emitted source and their square: 10 s for 531 lines, 35 s for 1428, 89 s for
 2312."""
 LINES_AT_MOST = 2400
-"""Lines beyond which nothing is compiled: of 2312, a settled ladder of five stages, numba holds 0.9 GB, and of 5300 more
-than 1.3 GB for many minutes."""
+"""Lines beyond which nothing is compiled: for 2312, a settled ladder of five stages, numba holds 0.9 GB, and for 5300
+more than 1.3 GB, many minutes long."""
 
 
 def available() -> bool:

@@ -88,11 +88,11 @@ class SixPulse:
     load: float = 20.0
     frequency: float = 50.0
     name: str = "six-pulse"
-    output: tuple[str, str] = ("a", "m")
+    output: tuple[str, str] = ("b", "m")
 
     @property
     def text(self) -> str:
-        """The description without a study; node a against m is the output."""
+        """The description without a study; node b against m, the load, is the output."""
         return f"""
 (x, y, z): three_phase e, sine = {self.crest!r} V phase peak, frequency = {self.frequency!r} Hz, series_resistance = 20 mOhm, series_inductance = 1 mH
 x -> a: diode D1, {LAW}

@@ -190,7 +190,7 @@ class SixPulseNodes:
         return found / self._held[:, None]
 
     def output(self, states: np.ndarray) -> np.ndarray:
-        return states[7]
+        return states[3] * self.circuit.load
 
 
 def _diode(voltage: float) -> tuple[float, float]:

@@ -18,14 +18,30 @@ _STEPS_A_PERIOD = 500
 _PERIODS = 200
 
 
-def _bridge_source() -> Callable:
-    def junction(v: float, saturation: float, scale: float, leak: float) -> tuple[float, float]:
-        """Conductance and current at zero voltage of a junction's tangent."""
-        if v < -40.0 * scale:
-            return leak, -saturation
-        current = saturation * math.exp(v / scale)
-        slope = current / scale + leak
-        return slope, current - saturation + leak * v - slope * v
+def _junction(v: float, saturation: float, scale: float, leak: float) -> tuple[float, float]:
+    """Conductance and current at zero voltage of a junction's tangent."""
+    if v < -40.0 * scale:
+        return leak, -saturation
+    current = saturation * math.exp(v / scale)
+    slope = current / scale + leak
+    return slope, current - saturation + leak * v - slope * v
+
+
+def _limited(new: float, old: float, critical: float, scale: float) -> tuple[float, bool]:
+    """The next junction voltage, and whether it has converged."""
+    change = new - old
+    if new < -6.0 * scale and old < -6.0 * scale:
+        return new, True
+    if new > critical and change > 0.0:
+        new = old + scale * math.log(1.0 + change / scale) if old > 0.0 else scale * math.log(new / scale)
+    return new, abs(change) <= 1e-3 * scale
+
+
+def _bridge_run() -> Callable:
+    """The run, compiled at its first call."""
+    from numba import njit
+
+    junction, limited = njit(_junction, inline="always"), njit(_limited, inline="always")
 
     def run(spec: tuple[float, ...], step: float, steps: int) -> tuple[int, float]:
         """Newton iterations of so many steps from rest, and the output in V at their end."""
@@ -70,24 +86,12 @@ def _bridge_source() -> Callable:
                     break
         return iterations, a
 
-    def limited(new: float, old: float, critical: float, scale: float) -> tuple[float, bool]:
-        """The next junction voltage, and whether it has converged."""
-        change = new - old
-        if new < -6.0 * scale and old < -6.0 * scale:
-            return new, True
-        if new > critical and change > 0.0:
-            new = old + scale * math.log(1.0 + change / scale) if old > 0.0 else scale * math.log(new / scale)
-        return new, abs(change) <= 1e-3 * scale
-
-    from numba import njit
-
-    junction, limited = njit(junction, inline="always"), njit(limited, inline="always")
     return njit(run)
 
 
 def seconds_an_iteration(spec: Bridge) -> float:
     """CPU time of a Newton iteration, the steps around it included; the fastest of some runs."""
-    run = _bridge_source()
+    run = _bridge_run()
     numbers = (spec.crest, spec.source_resistance, spec.capacitance, spec.load, spec.frequency)
     given = (*numbers, SATURATION_CURRENT, SCALE, LEAK)
     step, steps = 1.0 / spec.frequency / _STEPS_A_PERIOD, _STEPS_A_PERIOD * _PERIODS
