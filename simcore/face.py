@@ -171,7 +171,7 @@ class Design(SignOff):
         >>> bridge = simcore.read(simcore.library_folder() / "bench_supply.rect")
         >>> loads = bridge.sweep({"R_load": [10.0, 20.0]}, studies=["full_load"], figures=["rms(u_out)"], workers=1)
         >>> [round(value, 1) for value in loads.columns["rms(u_out) [V]"]]
-        [11.8, 12.9]
+        [11.9, 13.0]
         >>> loads.table["R_load [Ohm]"].tolist()
         [10.0, 20.0]
         """

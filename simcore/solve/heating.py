@@ -20,15 +20,16 @@ from simcore.design.overview import celsius
 from simcore.design.study_kinds import Nature
 from simcore.equations.kernel import KernelCache
 from simcore.solve.course import Course, Reached, Variant, Watch
+from simcore.solve.engine import Counts
 from simcore.solve.failure import NoSolution, Reason
 from simcore.solve.solution import Solution
 
-_ROUNDS, _PATIENCE = 40, 12
-"""Rounds in all, and those after which what the steps of a run make of a loss may hide the balance: ten times as far
-from it will do then."""
-_SHARE, _LEAST, _STILL = 0.3, 1e-6, 1e-9
-"""How far from balance is near enough, as a share of the rise: of the step tolerance, at least, and where nothing moves
-(then in K too)."""
+_ROUNDS, _PATIENCE, _LOOSEST = 40, 3, 1e-2
+"""Rounds in all, and those after which what the steps of a run make of a loss may hide the balance: with each round
+more, twice as far from it will do, up to a share of the rise that no temperature is known to."""
+_SHARE, _LEAST, _STILL = 3.0, 1e-6, 1e-9
+"""How far from balance is near enough, as a share of the rise: over the step tolerance (as near as a loss is known that
+comes from short overlaps), at least, and where nothing moves (then in K too)."""
 
 _HOTTEST = 1000.0
 """K: no junction lives there, and the law means nothing."""
@@ -64,13 +65,15 @@ def solve_warm(
     earlier = before.changes if before is not None else ()
     balance = _Balance(variant(earlier + study.changes), dict(before.temperatures) if before is not None else {})
     enough = _STILL if study.nature is Nature.REST else max(_LEAST, _SHARE * tolerance)
+    counts, periods = Counts(), {"periods": 0.0, "periods with derivatives": 0.0}
     for round_ in range(_ROUNDS):
-        if round_ == _PATIENCE:
-            enough *= 10.0
+        if round_ >= _PATIENCE:
+            enough = max(enough, min(2.0 * enough, _LOOSEST))
         warm = _Warm(variant, dict(balance.temperatures))
-        course = Course(study, warm, before, tolerance, kernels)
-        course.watch = watch
-        solution, left = course.solve()
+        solution, left = Course(study, warm, before, tolerance, kernels, counts, watch=watch).solve()
+        for name in periods.keys() & solution.statistics:
+            periods[name] += solution.statistics[name]
+            solution.statistics[name] = periods[name]
         left = replace(left, temperatures=dict(balance.temperatures))
         if study.nature is Nature.COURSE:
             return solution, left

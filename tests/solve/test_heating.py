@@ -168,3 +168,14 @@ def test_a_measured_core_temperature_wins() -> None:
     text = RIPPLE.replace("thermal_resistance = 20 K/W", "thermal_resistance = 20 K/W, temperature = 85 degC")
     result = simcore.read_text(text, "x").run("s")
     assert float(result.figure("life(C1)")) / 3600.0 == pytest.approx(16000.0)
+
+
+def test_what_all_rounds_cost_is_counted() -> None:
+    """The state at the balance is looked for from the one before it: more than a round at one temperature in all, each starting from the last."""
+    cold, warm = (
+        simcore.read_text(SUPPLY.format(law=LAW.replace(", data_temperature = 300.15 K", "")).replace("thermal_resistance = 40 K/W", heat), "x").run("s").solved.record.solution
+        for heat in ("temperature = 310 K, data_temperature = 300.15 K", "thermal_resistance = 40 K/W, data_temperature = 300.15 K")
+    )
+    for name in ("steps", "solves", "periods"):
+        assert cold.statistics[name] < warm.statistics[name] < 5.0 * cold.statistics[name], name
+    assert cold.work < warm.work
