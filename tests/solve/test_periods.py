@@ -136,3 +136,33 @@ def test_what_repeats_only_every_few_periods_is_told_and_settles_at_that_period(
     result = solved(text + ", period = 0.1 s")
     cycled = solved(text.replace("settled", "transient, duration = 1 s, period = 0.1 s, last = 1"))
     assert float(result.figure("mean(voltage(p))")) == pytest.approx(float(cycled.figure("mean(voltage(p))")), rel=2e-3)
+
+
+# --- what finding it costs, on any machine ------------------------------------------------------------------------------------------
+
+BRIDGE = f"""a -> b: source V, sine = 17 V peak, frequency = 50 Hz\na -> x: resistor R_s, SERIES\nx -> p: diode D1, {LAW}\nb -> p: diode D2, {LAW}
+m -> x: diode D3, {LAW}\nm -> b: diode D4, {LAW}\np -> q: inductor L, CHOKE\nq -> m: capacitor C, RESERVOIR\nq -> m: resistor R, LOAD\nreference m
+observe u = voltage(q)\nstudy s: settled, accuracy = 1 %"""
+LADDER = f"""let N = 10\nhigh[0] -> low[0]: source V, sine = 1 kV peak, frequency = 10 kHz, series_resistance = 100 Ohm
+repeat k from 1 to N {{
+    high[k-1] -> high[k]: capacitor A[k], 10 nF\n    low[k] -> low[k-1]: capacitor B[k], 10 nF
+    low[k-1] -> high[k]: diode D[k], {LAW}\n    high[k] -> low[k]: diode E[k], {LAW}
+}}
+low[N] -> low[0]: resistor R, 100 MOhm\nreference low[0]\nobserve u = voltage(low[N])\nstudy s: settled, accuracy = 1 %"""
+
+
+@pytest.mark.parametrize(
+    ("text", "most"),
+    [
+        (BRIDGE.replace("SERIES", "0.5 Ohm").replace("inductor L, CHOKE", "resistor L, 1 mOhm").replace("RESERVOIR", "1 mF").replace("LOAD", "500 Ohm"), 15),
+        (BRIDGE.replace("SERIES", "0.2 Ohm").replace("CHOKE", "50 mH").replace("RESERVOIR", "2.2 mF").replace("LOAD", "12 Ohm"), 15),
+        (LADDER, 50),
+    ],
+    ids=["bridge of 0.5 s", "choke input", "ladder of 10 stages"],
+)
+def test_a_settled_state_costs_few_periods_whatever_its_time_constant(text: str, most: int) -> None:
+    """Both solutions of each together, periods with derivatives counted as such; following alone takes 1266 for the ladder."""
+    result = simcore.read_text(text, "check").run("s")
+    counts = result.solved.statistics
+    assert counts["solutions"] >= 2 and "by Newton" in result.solved.notes[0]
+    assert counts["periods"] + counts["periods with derivatives"] <= most * counts["solutions"] / 2.0, counts

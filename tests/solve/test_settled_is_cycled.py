@@ -115,10 +115,10 @@ def test_a_slow_settled_state_lies_between_starts_that_cycle_towards_it(name: st
 
 @pytest.mark.nightly
 def test_a_core_is_cycled_until_it_has_forgotten() -> None:
-    """Of the core that forgets within some thousand periods all are followed."""
+    """Of the core that forgets within some thousand periods all are followed; the looser tolerances leave their own offset to forget."""
     asked, variant = planned("transformer_switch_on", "settled")
     found, _ = solved(asked, variant, None, 1e-6, KernelCache())
-    agree(found, cycled(asked, variant, found, 1e-6, NEARER, most=6_000))
+    agree(found, cycled(asked, variant, found, 1e-6, 1e-3, most=8_000))
 
 
 def test_every_worked_circuit_is_there() -> None:
