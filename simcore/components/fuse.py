@@ -40,7 +40,8 @@ def _build(frame: Frame, part: Part) -> None:
 
     def law(voltage: Value, before: Value) -> tuple[Value, Value, dict[str, Value]]:
         current = voltage / resistance
-        after = (before + frame.step * current * current) / (1.0 + frame.step * rate)
+        heated = (before + frame.step * current * current) / (1.0 + frame.step * rate)
+        after = molten.choose(before, heated)
         return current, after, {"heat": after}
 
     melting = frame.parameter(limit, positive=True)

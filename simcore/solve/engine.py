@@ -230,12 +230,29 @@ class Engine:
             if self.flags.fall_due(time):
                 self._forget_guesses()
             columns = self.begin(time, step)
-            passed = self.flags.passed(self.saved[len(self.saved) - len(self.kernel.system.thresholds) :])
+            passed = self.flags.passed(self._thresholds())
             if passed is None:
                 return columns
             self.flags.change(passed, time)
             self._forget_guesses()
         raise Interrupted(Reason.CHATTER, time, f"at {self.kernel.system.frame.thresholds[passed].element}")
+
+    def switched(self, time: float) -> str:
+        """Let the flags stand as their thresholds ask where nothing moves any more, with no delay since there is time
+        enough; the element at which one changed, "" for none."""
+        passed = self.flags.passed(self._thresholds())
+        due = self.flags.pending[0][1].element if self.flags.pending else ""
+        if passed is not None:
+            self.flags.change(passed, time)
+            due = self.kernel.system.frame.thresholds[passed].element
+        if due:
+            self.flags.fall_due(math.inf)
+            self._forget_guesses()
+        return due
+
+    def _thresholds(self) -> list[float]:
+        """How far each threshold is passed."""
+        return self.saved[len(self.saved) - len(self.kernel.system.thresholds) :]
 
     def _forget_guesses(self) -> None:
         """A law that has changed may not stand the voltage that its branch had: start its iteration from none."""

@@ -19,6 +19,7 @@ def solve(course: Course, changes: tuple[Change, ...]) -> tuple[Solution, Reache
     engine = course.engine(circuit, frame, {})
     clock = course.asked_clock(changes, 0.0)
     stretch = course.guard(lambda: rest(engine, clock), clock)
+    course.told += engine.flags.told
     memory: Memory = {}
     engine.remember(memory)
     valued = course.valued(changes, [stretch])

@@ -26,8 +26,9 @@ _ROUNDING = 16.0 * float(np.finfo(float).eps)
 
 def rest(engine: Engine, time: float) -> Stretch:
     """The operating point with the sources at their value at a time: a step long enough for every state to settle,
-    again while it still moves something (a temperature on which a resistance depends), and where that does not
-    converge, steps from short to long (pseudo-transient continuation; Kelley and Keyes, 1998). Raises Interrupted."""
+    again while it still moves something (a temperature on which a resistance depends) or passes a threshold (a load
+    that starts), and where that does not converge, steps from short to long (pseudo-transient continuation; Kelley and
+    Keyes, 1998). Raises Interrupted."""
     engine.follow(time)
     start = list(engine.saved)
     for steps in ([REST_STEP], [10.0**exponent for exponent in range(-12, 16)]):
@@ -55,17 +56,20 @@ def rest(engine: Engine, time: float) -> Stretch:
 
 
 def _stand_still(engine: Engine, time: float) -> None:
-    """Long steps until one moves no voltage and nothing that a branch carries. Currents follow from these, and are told
-    no better than these let them."""
+    """Long steps until one passes no threshold, and moves no voltage and nothing that a branch carries. Currents follow
+    from these, and are told no better than these let them."""
     system = engine.kernel.system
     sources = largest_voltage(system.frame, common_period(system.frame) or 1.0)
     last = engine.single(time, REST_STEP)
     for _ in range(_AT_MOST):
+        changed = engine.switched(time)
         record = engine.single(time, REST_STEP)
         moved = _movement(system, last, record, sources)
-        if not np.any(moved > 0.0):
+        if not changed and not np.any(moved > 0.0):
             return
         last = record
+    if changed:
+        raise Interrupted(Reason.CHATTER, time, f"at {changed}")
     moving = nearest(system, -1 - len(system.states) - int(np.argmax(moved)))
     raise Interrupted(Reason.NO_CONVERGENCE, time, moving)
 

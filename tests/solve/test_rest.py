@@ -42,6 +42,33 @@ def test_a_diode_that_hangs_from_one_end_rests() -> None:
     assert float(result.figure("mean(voltage(b))")) == pytest.approx(12.0 * 1.0 / 3.2)
 
 
+FED = "reference g\na -> g: source e, constant = 12 V, series_resistance = 1 Ohm\na -> g: {}\nstudy s: operating_point\n"
+
+
+@pytest.mark.parametrize(
+    ("part", "current", "told"),
+    [
+        # 12 V - i 1 Ohm = 10 W / i: the smaller root of i^2 - 12 i + 10 = 0.
+        ("load X, power = 10 W, cut_in = 8 V, cut_out = 4 V", 6.0 - 26.0**0.5, ["X starts at 0 s"]),
+        ("switch X, closed_resistance = 2 Ohm, open_resistance = 1 MOhm, control = voltage(a), closes_above = 5 V, opens_below = 3 V, delay = 1 h", 4.0, ["X is told to close at 0 s"]),
+        ("fuse X, resistance = 20 mOhm, melting_i2t = 1 A^2 s, rated_current = 20 A", 12.0 / 1.02, []),
+        ("fuse X, resistance = 20 mOhm, melting_i2t = 1 A^2 s, rated_current = 1 A", 0.0, ["X melts at 0 s"]),
+        ("fuse X, resistance = 20 mOhm, melting_i2t = 1 A^2 s", 0.0, ["X melts at 0 s"]),
+    ],
+    ids=["load", "switch", "fuse that holds", "fuse that melts", "fuse that loses no heat"],
+)  # fmt: skip
+def test_thresholds_are_passed_at_rest_too(part: str, current: float, told: list[str]) -> None:
+    result = simcore.read_text(FED.format(part)).run("s")
+    assert float(result.figure("mean(current(X))")) == pytest.approx(current, rel=1e-9, abs=1e-7)
+    assert result.solved.notes == told
+
+
+def test_what_switches_itself_off_and_on_has_no_rest() -> None:
+    part = "switch X, closed_resistance = 1 mOhm, open_resistance = 1 MOhm, control = voltage(a), closes_above = 5 V, opens_below = 3 V"
+    with pytest.raises(simcore.NoSolution, match=r"switch one another on and off .*\(at X\)"):
+        simcore.read_text(FED.format(part)).run("s")
+
+
 def test_what_does_not_come_to_rest_is_named(monkeypatch: pytest.MonkeyPatch) -> None:
     """Were no movement allowed at all, a hanging diode would never rest, and the message tells where."""
     monkeypatch.setattr(rest, "_ROUNDING", 0.0)
