@@ -23,6 +23,9 @@ from simcore.figures.weighted import weighted_ripple, weighted_surge
 SURGE = 10e-3
 """s: the length that a surge's i2t is stated for (half a sine of 50 Hz; IEC 60747-2, from memory)."""
 
+MOST_PERIODS = 20
+"""Whose harmonics are taken for a ripple."""
+
 
 @dataclass(frozen=True)
 class Stress:
@@ -81,14 +84,16 @@ def _forward_mean(current: Signal) -> Figure:
 
 
 def _ripple_current(record: Record, element: Element, name: str) -> Figure:
-    """Rms value about the mean, weighed by frequency where factors are given."""
+    """Rms value about the mean, weighed by frequency where factors are given and periods are judged, and not so many
+    that their harmonics would take longer than the solution; else the least factor counts."""
     current = record.window(record.current(name))
     scale = measure.rms(current).value
     factors = element.given.get("frequency_factors")
     if factors is None:
         return replace(measure.rms(current - measure.mean(current).value), scale=scale)
-    span, frequency = record.whole_periods(), None
-    if span is not None:
+    study, frequency = record.solution.study, None
+    span = record.whole_periods() if study.kind != "transient" or study.last is not None else None
+    if span is not None and (span[1] - span[0]) * record.frequency < MOST_PERIODS + 0.5:
         current, frequency = record.cut(record.current(name), *span), record.frequency
     at = element.given["rated_ripple_current"][1]
     return Figure(weighted_ripple(current, frequency, factors, at), AMPERE, scale=scale)

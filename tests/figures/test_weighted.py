@@ -13,7 +13,7 @@ F = 50.0
 FACTORS = [(100.0, 1.0), (1000.0, 1.3), (10000.0, 1.4)]
 
 
-def signal(function, span: float, count: int = 4000) -> Signal:
+def signal(function, span: float, count: int = 1000) -> Signal:
     """A function as quadratics through the ends and the middle of many steps."""
     times = np.linspace(0.0, span, count + 1)
     points = np.stack([times[:-1], 0.5 * (times[:-1] + times[1:]), times[1:]], axis=1)
@@ -34,11 +34,11 @@ def test_each_harmonic_counts_by_its_own_factor() -> None:
 
 
 def test_what_is_above_the_orders_and_what_has_no_period_counts_with_the_least_factor() -> None:
-    fast = signal(lambda t: math.sin(2.0 * math.pi * 20e3 * t), 1.0 / F, 40000)
+    fast = signal(lambda t: math.sin(2.0 * math.pi * 20e3 * t), 1.0 / F, 4000)
     assert weighted_ripple(fast, F, [(100.0, 1.0), (1000.0, 2.0), (20e3, 1.5)], None) == pytest.approx(
-        math.sqrt(0.5) / 1.5, rel=1e-4
+        math.sqrt(0.5) / 1.5, rel=1e-3
     )
-    assert weighted_ripple(fast, None, FACTORS, None) == pytest.approx(math.sqrt(0.5), rel=1e-4)
+    assert weighted_ripple(fast, None, FACTORS, None) == pytest.approx(math.sqrt(0.5), rel=1e-3)
 
 
 def half_sines(crests: list[float], width: float, period: float = 20e-3) -> Signal:
