@@ -82,10 +82,11 @@ def circuits(draw: st.DrawFn) -> str:
 @settings(max_examples=15, deadline=None, derandomize=True)
 @given(circuits())
 def test_kirchhoff_and_energy(text: str) -> None:
-    """At a node that carries a nanoampere through 20 mOhm the sum is rounding of the voltages: hence 3e-4, not less. A fuse that melts
-    cuts off what an inductance carries, and no arc takes its energy: then the books may stay open."""
+    """At a node that carries a nanoampere or less through 20 mOhm the sum is rounding of the voltages. What is told to a thousandth there
+    is 64 roundings; extrapolation, whose weights have magnitudes of up to 14 together, makes some thirty of a few: hence 5e-4, not
+    less. A fuse that melts cuts off what an inductance carries, and no arc takes its energy: then the books may stay open."""
     result = simcore.read_text(text, "random").run("s")
-    assert result.solved.kirchhoff < 3e-4
+    assert result.solved.kirchhoff < 5e-4
     books = balance(result.solved.record)
     assert not books.share.defined or books.share.value < 1e-2 or any("melts" in note for note in result.solved.notes)
 
