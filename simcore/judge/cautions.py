@@ -13,6 +13,7 @@ from simcore.design.circuit import Circuit, Element
 from simcore.design.overview import warnings_of
 from simcore.figures import measure
 from simcore.figures.element_figures import stored_energy
+from simcore.figures.record import Record
 from simcore.proof import Proof
 
 SAFE_DIRECT = 60.0
@@ -27,11 +28,32 @@ GENERAL = (
 )
 
 _DIGITS = 3
+_NOTHING = 1e-6
+"""A: less is the leakage of a thyristor that is not fired."""
 
 
 def cautions(proof: Proof) -> list[str]:
     """The cautions of a design, its own before the general ones."""
-    return [*warnings_of(proof.circuit), *_voltages(proof), *_energy(proof), *_bleeding(proof), *GENERAL]
+    own = (_never_fired, _voltages, _energy, _bleeding)
+    return [*warnings_of(proof.circuit), *(line for found in own for line in found(proof)), *GENERAL]
+
+
+def _never_fired(proof: Proof) -> Iterator[str]:
+    """Thyristors that carry nothing in a study: as meant, or because their firing reference is too small."""
+    for element in proof.circuit.elements.values():
+        if element.kind != "thyristor":
+            continue
+        studies = [name for name, study in proof.studies.items() if _carries(study.record, element) < _NOTHING]
+        if studies:
+            yield (
+                f"{element.name} carries nothing in {', '.join(studies)}: if it should, let its firing reference rise "
+                "beyond 1 % of the circuit's largest voltage."
+            )
+
+
+def _carries(record: Record, element: Element) -> float:
+    """The largest current of an element in the judged window, A."""
+    return measure.peak(record.window(record.current(element.name))).value
 
 
 def _voltages(proof: Proof) -> Iterator[str]:

@@ -273,3 +273,19 @@ def test_a_small_design_is_not_called_deadly() -> None:
     said = cautions(simcore.read_text(bridge()).prove())
     assert not any("not safe" in line or "charged to" in line for line in said)
     assert any("hold up to" in line for line in said)
+
+
+def test_a_thyristor_that_is_never_fired_is_told() -> None:
+    """A winding of 0.6 % of the mains does not fire it, one of 6 % does."""
+    text = """
+    a -> g: source mains, sine = 400 V rms, frequency = 50 Hz, series_resistance = 0.2 Ohm
+    (a -> g) : (x -> g): transformer T1, turns = 400 : {turns}, magnetising = 20 H
+    x -> g: resistor R_x, 1 kOhm
+    a -> p: thyristor V1, saturation_current = 1 nA, ideality_factor = 1.8, firing_angle = 60 deg, firing_reference = voltage(x -> g)
+    p -> g: resistor R, 20 Ohm
+    reference g
+    study s: settled
+    """
+    silent, fired = (cautions(simcore.read_text(text.format(turns=turns)).prove()) for turns in ("2.5", "25"))
+    assert any(line.startswith("V1 carries nothing in s: if it should") for line in silent)
+    assert not any("carries nothing" in line for line in fired)
