@@ -13,9 +13,9 @@ ALLOWED = 1e6
 """Work that a solution may take here: seconds instead of minutes."""
 
 
-def ended(text: str, monkeypatch) -> str:
+def ended(text: str, monkeypatch, allowed: float = ALLOWED) -> str:
     """"solved", or the reason, which names an element, a node or a source of the circuit; what is solved is finite."""
-    monkeypatch.setattr(engine, "_WORK_AT_MOST", ALLOWED)
+    monkeypatch.setattr(engine, "_WORK_AT_MOST", allowed)
     try:
         design = simcore.read_text(text, "torture")
         circuit = design.circuit

@@ -31,7 +31,7 @@ def test_ladders_start_cold(stages: int, monkeypatch: pytest.MonkeyPatch) -> Non
 @pytest.mark.nightly
 @pytest.mark.parametrize("stages", [2, 3, 5, 7, 15, 20, 30, 50, 70, 100])
 def test_more_ladders_start_cold(stages: int, monkeypatch: pytest.MonkeyPatch) -> None:
-    assert ended(ladder(stages, "transient, duration = 100 us"), monkeypatch) == "solved"
+    assert ended(ladder(stages, "transient, duration = 100 us"), monkeypatch, 1e8) == "solved"
 
 
 def test_a_run_that_records_nothing_is_bounded_too(monkeypatch: pytest.MonkeyPatch) -> None:
