@@ -1,4 +1,4 @@
-"""`python -m tests.benchmark [stepping] [settled] [accuracy] [command] [operations]
+"""`python -m tests.benchmark [stepping] [settings] [settled] [accuracy] [command] [operations]
 [campaign]`: prints tables, all by default."""
 
 from __future__ import annotations
@@ -7,7 +7,7 @@ import os
 import sys
 from importlib import import_module
 
-PARTS = ("command", "operations", "stepping", "settled", "accuracy", "campaign")
+PARTS = ("command", "operations", "stepping", "settings", "settled", "accuracy", "campaign")
 """In this order: a process that is started is counted with at least the memory that this one has by then."""
 
 
