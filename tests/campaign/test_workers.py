@@ -119,12 +119,13 @@ def local_cluster() -> Iterator:
     before = os.environ.get("PYTHONPATH")
     os.environ["PYTHONPATH"] = paths
     try:
-        with distributed.LocalCluster(n_workers=2, threads_per_worker=1, dashboard_address=None) as cluster:
+        with distributed.LocalCluster(n_workers=2, threads_per_worker=1, dashboard_address=":0") as cluster:
             yield cluster
     finally:
         os.environ.pop("PYTHONPATH") if before is None else os.environ.update(PYTHONPATH=before)
 
 
+@pytest.mark.xdist_group("cluster")
 def test_two_processes_under_a_scheduler_give_the_same_rows(spread: Task, local_cluster) -> None:
     plain = [encode([row], []) for row in solved_rows(spread, Here())]
     crew = Cluster(local_cluster.scheduler_address)
@@ -132,12 +133,14 @@ def test_two_processes_under_a_scheduler_give_the_same_rows(spread: Task, local_
     assert [encode([row], []) for row in solved_rows(spread, crew, block=2)] == plain
 
 
+@pytest.mark.xdist_group("cluster")
 def test_a_worker_killed_under_a_scheduler_has_its_blocks_done_again(tmp_path: Path, local_cluster) -> None:
     mark, crew = tmp_path / "died", Cluster(local_cluster.scheduler_address)
     lines = dict(solved_blocks(lambda *block: (dies_once, (mark, *block)), six_blocks(), crew))
     assert mark.exists() and lines == {(start, start + 2): f"{start} {start + 2}" for start in range(0, 12, 2)}
 
 
+@pytest.mark.xdist_group("cluster")
 def test_a_worker_of_another_version_is_refused(local_cluster, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("simcore.campaign.workers.__version__", "99")
     with pytest.raises(simcore.DescriptionError, match="(?s)has version .* not 99.*cure: Install this version"):
